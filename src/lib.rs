@@ -1,0 +1,5 @@
+//! x
+/// q
+pub mod quantity;
+/// f
+pub mod finding;
