@@ -130,6 +130,12 @@ fn with_prefix(si: f64, unit: &str, least: i32, greatest: i32, direction: Direct
     let mut rounded = Rounded::significant(si, 3, direction);
     if rounded.leading() < least {
         rounded = Rounded::at(si, least - 2, direction);
+        if rounded.digits == 0 {
+            return format!("0 {unit}");
+        }
+        let prefix = PREFIXES.iter().find(|(e, _)| *e == least).map_or("", |(_, p)| p);
+        rounded.exponent -= least;
+        return format!("{rounded} {prefix}{unit}");
     }
     let scale = rounded.leading().div_euclid(3).saturating_mul(3).clamp(least, greatest);
     let prefix = PREFIXES.iter().find(|(e, _)| *e == scale).map_or("", |(_, p)| p);
@@ -227,7 +233,7 @@ mod tests {
         assert_eq!(show(v(12_345.0), Up), "12.4 kV");
         assert_eq!(show(v(0.0), Up), "0 V");
         assert_eq!(show(v(1e-9), Up), "0.01 mV");
-        assert_eq!(show(v(1e-9), Down), "0.00 mV");
+        assert_eq!(show(v(1e-9), Down), "0 V");
         assert_eq!(show(Energy::from_si(928.125), Up), "929 J");
         assert_eq!(show(Temperature::from_si(313.15), Up), "40 °C");
         assert_eq!(show(Temperature::from_si(CELSIUS_ZERO_K - 10.5), Up), "-10 °C");
