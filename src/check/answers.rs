@@ -1,0 +1,121 @@
+//! The figures that the checks ask for, answered together: every corner of the box is solved once for all of them.
+
+use crate::bank::Bank;
+use crate::circuit::CircuitError;
+use crate::discharge::{Fault, Figure, Model, Scenario, Study, Worst};
+use crate::quantity::Quantity;
+use std::fmt;
+
+/// The engine could not certify a result: an internal error, and no plan.
+#[derive(Debug, Clone, PartialEq)]
+pub struct EngineError {
+    /// `healthy`, or the fault that was being computed.
+    pub scenario: String,
+    /// What failed.
+    pub cause: CircuitError,
+}
+
+impl fmt::Display for EngineError {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        write!(f, "no verdict: the engine could not certify its result ({}; {})", self.scenario, self.cause)
+    }
+}
+
+impl std::error::Error for EngineError {}
+
+/// Figures of the healthy bank: nominal, and greatest over the tolerance box at the highest voltage.
+#[derive(Debug, Clone, Default)]
+pub(crate) struct Answers {
+    figures: Vec<Figure>,
+    nominal: Vec<f64>,
+    worst: Vec<Worst>,
+}
+
+/// Figures under one fault: the greatest over the box and over the ways in which it can come about.
+#[derive(Debug, Clone)]
+pub(crate) struct FaultAnswers {
+    pub fault: Fault,
+    answers: Answers,
+}
+
+impl Answers {
+    /// Answers `figures` for the healthy bank.
+    pub fn healthy(bank: &Bank, model: &Model, mut figures: Vec<Figure>) -> Result<Self, EngineError> {
+        without_repeats(&mut figures);
+        let charged = &bank.description().charged_to;
+        let scenario = Scenario::default();
+        let study = |volts| Study { model, scenario: &scenario, volts, figures: &figures };
+        let failed = |cause| EngineError { scenario: "healthy".into(), cause };
+        let nominal = study(charged.nominal.si()).nominal().map_err(failed)?;
+        let worst = study(charged.highest.si()).worst().map_err(failed)?;
+        Ok(Answers { nominal, worst, figures })
+    }
+
+    /// Answers `figures` under `fault`.
+    pub fn under(bank: &Bank, model: &Model, fault: &Fault, mut figures: Vec<Figure>) -> Result<Self, EngineError> {
+        without_repeats(&mut figures);
+        let volts = bank.description().charged_to.highest.si();
+        let failed = |cause| EngineError { scenario: fault.name.clone(), cause };
+        let mut worst: Vec<Worst> = Vec::new();
+        for scenario in &fault.scenarios {
+            let found = Study { model, scenario, volts, figures: &figures }.worst().map_err(failed)?;
+            if worst.is_empty() {
+                worst = found;
+            } else {
+                let pairs = worst.iter_mut().zip(found);
+                pairs.filter(|(w, f)| f.value > w.value).for_each(|(w, f)| *w = f);
+            }
+        }
+        Ok(Answers { nominal: Vec::new(), worst, figures })
+    }
+
+    fn index(&self, figure: &Figure) -> Option<usize> {
+        self.figures.iter().position(|f| f == figure)
+    }
+
+    /// The nominal value of a figure; NaN where it was never asked for, which passes no check.
+    pub fn nominal(&self, figure: Figure) -> f64 {
+        self.index(&figure).and_then(|i| self.nominal.get(i)).copied().unwrap_or(f64::NAN)
+    }
+
+    /// The greatest value of a figure; NaN where it was never asked for, which passes no check.
+    pub fn worst(&self, figure: Figure) -> f64 {
+        self.index(&figure).and_then(|i| self.worst.get(i)).map_or(f64::NAN, |w| w.value)
+    }
+
+    /// The point of the box at which a figure is greatest.
+    pub fn worst_point(&self, figure: Figure) -> &[f64] {
+        self.index(&figure).and_then(|i| self.worst.get(i)).map_or(&[], |w| &w.point)
+    }
+}
+
+impl FaultAnswers {
+    /// Answers the figures for every fault.
+    pub fn all(
+        bank: &Bank,
+        model: &Model,
+        faults: Vec<Fault>,
+        figures: &[Figure],
+    ) -> Result<Vec<FaultAnswers>, EngineError> {
+        let under = |fault: Fault| {
+            let answers = Answers::under(bank, model, &fault, figures.to_vec())?;
+            Ok(FaultAnswers { fault, answers })
+        };
+        faults.into_iter().map(under).collect()
+    }
+
+    /// The greatest value of a figure under this fault.
+    pub fn worst(&self, figure: Figure) -> f64 {
+        self.answers.worst(figure)
+    }
+}
+
+fn without_repeats(figures: &mut Vec<Figure>) {
+    let mut kept: Vec<Figure> = Vec::with_capacity(figures.len());
+    for figure in figures.drain(..) {
+        if !kept.contains(&figure) {
+            kept.push(figure);
+        }
+    }
+    *figures = kept;
+}

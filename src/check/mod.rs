@@ -1,0 +1,34 @@
+//! Checks: one file per question that a plan answers. Each names the figures it needs, and from the answers makes
+//! its part of the result, its verdicts and its findings.
+
+mod answers;
+mod capacitors;
+mod energy;
+mod limits;
+mod notes;
+mod resistors;
+mod serial;
+mod stored;
+mod verdict;
+mod waits;
+
+pub(crate) use answers::{Answers, FaultAnswers};
+pub(crate) use capacitors::CapacitorCheck;
+pub(crate) use energy::remaining_energy;
+pub(crate) use limits::LimitChecks;
+pub(crate) use notes::{assumptions, notes};
+pub(crate) use resistors::ResistorChecks;
+pub(crate) use serial::{celsius_or_null, degrees, si, si_list, si_or_null};
+pub(crate) use stored::StoredCheck;
+pub(crate) use waits::WaitCheck;
+
+pub use answers::EngineError;
+pub use capacitors::CapacitorResult;
+pub use limits::{LimitResult, LimitSource};
+pub use resistors::{Check, ResistorResult};
+pub use stored::{Band, Stored};
+pub use verdict::Verdict;
+pub use waits::{FaultWait, Wait, WorstValue};
+
+/// A pair of nodes by name.
+pub type Pair = [String; 2];

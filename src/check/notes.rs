@@ -1,0 +1,130 @@
+//! What a reader should know of the description itself, and what the plan rests on.
+
+use super::waits::listed;
+use super::{CapacitorResult, ResistorResult, Verdict};
+use crate::bank::Bank;
+use crate::bank::description::{Role};
+use crate::circuit::Network;
+use crate::discharge::Model;
+use crate::finding::{Findings, Severity};
+use crate::quantity::{celsius, exact};
+
+/// Findings on what the description leaves open.
+pub(crate) fn notes(
+    bank: &Bank,
+    model: &Model,
+    resistors: &[ResistorResult],
+    capacitors: &[CapacitorResult],
+    findings: &mut Findings,
+) {
+    let description = bank.description();
+    if !description.charged_to.margin_given {
+        findings.add(
+            Severity::Caution,
+            "no-voltage-margin",
+            format!(
+                "No margin over the nominal {} was given: highest is taken as nominal. Line swings, braking and \
+                 regeneration can charge a bank higher.",
+                exact(description.charged_to.nominal)
+            ),
+        );
+    }
+    let connected = description.resistors.iter().filter(|r| r.role.always_connected());
+    let without: Vec<String> = description
+        .capacitors
+        .iter()
+        .filter(|c| c.tolerance.is_none())
+        .map(|c| c.id.clone())
+        .chain(connected.filter(|r| r.tolerance.is_none()).map(|r| r.id.clone()))
+        .collect();
+    if !without.is_empty() {
+        findings.add(
+            Severity::Caution,
+            "no-tolerance",
+            format!("No tolerance was given for {}: it counts as 0 %, and waits can be longer.", listed(&without)),
+        );
+    }
+    let leakage: Vec<String> =
+        description.resistors.iter().filter(|r| r.role == Role::Leakage).map(|r| r.id.clone()).collect();
+    if !leakage.is_empty() {
+        findings.add(
+            Severity::Warning,
+            "wait-rests-on-leakage",
+            format!("The waits rest on leakage ({}), which varies with temperature, age and dirt.", listed(&leakage)),
+        );
+    }
+    unchecked(resistors, capacitors, findings);
+    floating(model, findings);
+}
+
+/// Ratings that were not given can't be checked.
+fn unchecked(resistors: &[ResistorResult], capacitors: &[CapacitorResult], findings: &mut Findings) {
+    let open = |r: &&ResistorResult| r.checks.iter().any(|c| c.verdict == Verdict::NotChecked);
+    let names: Vec<String> = capacitors
+        .iter()
+        .filter(|c| c.verdict == Verdict::NotChecked)
+        .map(|c| c.id.clone())
+        .chain(resistors.iter().filter(|r| r.role != "leakage").filter(open).map(|r| r.id.clone()))
+        .collect();
+    if !names.is_empty() {
+        findings.add(
+            Severity::Caution,
+            "rating-not-given",
+            format!("Ratings were not given in full for {}: what is missing was not checked.", listed(&names)),
+        );
+    }
+}
+
+/// Capacitors whose inner node no resistor ties down divide by capacitance in the model, by leakage in truth.
+fn floating(model: &Model, findings: &mut Findings) {
+    let network: Network = model.network(&Default::default(), &model.nominal_point());
+    let held = network.parts_held_by_resistors(&model.terminals);
+    let names: Vec<String> = model
+        .capacitors
+        .iter()
+        .zip(&model.own_voltages)
+        .filter(|(c, own)| own.is_none() && !(held[c.a] && held[c.b]))
+        .map(|(c, _)| c.id.clone())
+        .collect();
+    if !names.is_empty() {
+        findings.add(
+            Severity::Warning,
+            "units-share-unequally",
+            format!(
+                "No resistor sets the voltage of {}: computed as divided by capacitance, in truth leakage moves it \
+                 over time. Such a unit can keep its charge after the ends read zero: short every unit on its own.",
+                listed(&names)
+            ),
+        );
+    }
+}
+
+/// What every plan rests on, and what this one assumes beyond its file.
+pub(crate) fn assumptions(bank: &Bank) -> Vec<String> {
+    let description = bank.description();
+    let mut list = vec![
+        "The file describes every part that stores or drains charge, and no source is left connected after \
+         isolation."
+            .to_string(),
+        "The bank was charged long enough for its resistors to set the division of the voltage; a part without a \
+         resistive path to a terminal divides by capacitance, from uncharged."
+            .to_string(),
+        "Values lie within the tolerances given; the worst of them are used, at the highest voltage.".to_string(),
+    ];
+    if !bank.ambient_given() {
+        list.push(format!("Air at the resistors: {} °C, since the file gives none.", celsius(bank.ambient()).round()));
+    }
+    if !description.charged_to.margin_given {
+        list.push(format!("Highest voltage: {}, the nominal one.", exact(description.charged_to.highest)));
+    }
+    let own: Vec<String> =
+        description.capacitors.iter().filter(|c| c.charged_to.is_some()).map(|c| c.id.clone()).collect();
+    if !own.is_empty() {
+        list.push(format!("At isolation {} at the voltage given, in every case.", stands(&own)));
+    }
+    list
+}
+
+fn stands(names: &[String]) -> String {
+    format!("{} {}", listed(names), if names.len() == 1 { "stands" } else { "stand" })
+}

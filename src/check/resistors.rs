@@ -1,0 +1,259 @@
+//! What resistors bear: standing load, voltage, the discharge itself.
+
+use super::{Answers, EngineError, FaultAnswers, Verdict, celsius_or_null, si, si_or_null};
+use crate::bank::Bank;
+use crate::bank::description::{Rating, Resistor};
+use crate::discharge::{Body, Figure, Model, element_model};
+use crate::finding::{Findings, Severity};
+use crate::quantity::{
+    Current, Direction, Energy, Power, Quantity, Resistance, Temperature, Voltage, celsius, exact, show,
+};
+use serde::Serialize;
+
+/// One check against a rating.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct Check {
+    /// What is checked: `continuous power`, `element voltage`, `pulse energy`, `overload power`, `overload energy`,
+    /// `body temperature`.
+    pub check: &'static str,
+    /// The unit of `found` and `allowed`: `W`, `V`, `J` or `C` (degree Celsius).
+    pub unit: &'static str,
+    /// The greatest figure found, in that unit; `None` where it can't be computed.
+    pub found: Option<f64>,
+    /// The rating, in that unit; `None` where none was given.
+    pub allowed: Option<f64>,
+    /// What it comes to.
+    pub verdict: Verdict,
+    /// Why it was not checked, or what else a reader should know.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub remark: Option<String>,
+}
+
+/// A resistor: figures of ONE element of an array, each at its own worst point.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct ResistorResult {
+    /// The part.
+    pub id: String,
+    /// Its role.
+    pub role: &'static str,
+    /// Resistance of one element, nominal.
+    #[serde(rename = "value_ohm", serialize_with = "si")]
+    pub value: Resistance,
+    /// How many elements the array has.
+    pub elements: u32,
+    /// Power before isolation at the highest voltage; `None` for a part that only a step connects.
+    #[serde(rename = "continuous_power_w", serialize_with = "si_or_null")]
+    pub continuous_power: Option<Power>,
+    /// Derated power at the ambient; `None` where the rating does not give it.
+    #[serde(rename = "allowed_power_w", serialize_with = "si_or_null")]
+    pub allowed_power: Option<Power>,
+    /// Greatest voltage across the element.
+    #[serde(rename = "element_voltage_v", serialize_with = "si_or_null")]
+    pub element_voltage: Option<Voltage>,
+    /// Greatest current from isolation on.
+    #[serde(rename = "peak_current_a", serialize_with = "si_or_null")]
+    pub peak_current: Option<Current>,
+    /// Greatest power from isolation on.
+    #[serde(rename = "peak_power_w", serialize_with = "si_or_null")]
+    pub peak_power: Option<Power>,
+    /// Energy from isolation on.
+    #[serde(rename = "energy_j", serialize_with = "si_or_null")]
+    pub energy: Option<Energy>,
+    /// Greatest body temperature; `None` where the rating does not give it.
+    #[serde(rename = "body_temperature_c", serialize_with = "celsius_or_null")]
+    pub body_temperature: Option<Temperature>,
+    /// Checks against the ratings.
+    pub checks: Vec<Check>,
+}
+
+/// Power that a rating allows at an ambient temperature: full up to `full_to`, then linearly to nothing at
+/// `zero_at`. `None` where the rating does not say; there is no default.
+pub(crate) fn derated(rating: &Rating, ambient: Temperature) -> Option<Power> {
+    let (power, full_to) = (rating.power?, rating.full_to?);
+    if ambient <= full_to {
+        return Some(power);
+    }
+    let zero_at = rating.zero_at?;
+    let share = (zero_at.si() - ambient.si()) / (zero_at.si() - full_to.si());
+    Some(Power::from_si(power.si() * share.max(0.0)))
+}
+
+/// First-order thermal data of one element: R_th = (zero_at - full_to) / power. `None` where something is missing.
+pub(crate) fn body(rating: &Rating) -> Option<Body> {
+    let kelvin = rating.zero_at?.si() - rating.full_to?.si();
+    let (power, time) = (rating.power?.si(), rating.thermal_time?.si());
+    let usable = kelvin > 0.0 && power > 0.0 && time > 0.0;
+    usable.then(|| Body { kelvin_per_watt: kelvin / power, time_constant: time })
+}
+
+/// What one element has to bear, in SI base units.
+struct Load {
+    standing: f64,
+    voltage: f64,
+    current: f64,
+    power: f64,
+    energy: f64,
+    rise: Option<f64>,
+}
+
+/// The resistors of a bank.
+pub(crate) struct ResistorChecks<'a> {
+    pub bank: &'a Bank,
+    pub model: &'a Model,
+}
+
+impl ResistorChecks<'_> {
+    /// What has to be known under every fault: the standing power of every resistor.
+    pub fn fault_figures(&self) -> Vec<Figure> {
+        (0..self.model.resistors.len()).map(|resistor| Figure::StandingPower { resistor }).collect()
+    }
+
+    /// The resistors, in the order of the file. Elements of arrays are opened up, each in a study of its own.
+    ///
+    /// # Errors
+    /// Where the engine can't certify a figure.
+    pub fn conclude(
+        &self,
+        faults: &[FaultAnswers],
+        findings: &mut Findings,
+    ) -> Result<Vec<ResistorResult>, EngineError> {
+        let mut results = Vec::new();
+        for resistor in &self.bank.description().resistors {
+            let load = self.load(resistor)?;
+            let result = self.result(resistor, load.as_ref());
+            rating_findings(&result, findings);
+            self.fault_findings(resistor, &result, faults, findings);
+            results.push(result);
+        }
+        Ok(results)
+    }
+
+    fn load(&self, resistor: &Resistor) -> Result<Option<Load>, EngineError> {
+        let Some((model, element)) = element_model(self.model, resistor) else { return Ok(None) };
+        let mut figures = vec![
+            Figure::StandingPower { resistor: element },
+            Figure::ResistorVoltage { resistor: element },
+            Figure::PeakCurrent { resistor: element },
+            Figure::PeakPower { resistor: element },
+            Figure::ResistorEnergy { resistor: element },
+        ];
+        figures.extend(body(&resistor.rating).map(|body| Figure::BodyRise { resistor: element, body }));
+        let answers = Answers::healthy(self.bank, &model, figures.clone())?;
+        let worst: Vec<f64> = figures.iter().map(|f| answers.worst(*f)).collect();
+        Ok(Some(Load {
+            standing: worst[0],
+            voltage: worst[1],
+            current: worst[2],
+            power: worst[3],
+            energy: worst[4],
+            rise: worst.get(5).copied(),
+        }))
+    }
+
+    fn result(&self, resistor: &Resistor, load: Option<&Load>) -> ResistorResult {
+        let ambient = self.bank.ambient();
+        let temperature = load.and_then(|l| l.rise).map(|rise| Temperature::from_si(ambient.si() + rise));
+        ResistorResult {
+            id: resistor.id.clone(),
+            role: resistor.role.word(),
+            value: resistor.value,
+            elements: resistor.series * resistor.parallel,
+            continuous_power: load.map(|l| Power::from_si(l.standing)),
+            allowed_power: derated(&resistor.rating, ambient),
+            element_voltage: load.map(|l| Voltage::from_si(l.voltage)),
+            peak_current: load.map(|l| Current::from_si(l.current)),
+            peak_power: load.map(|l| Power::from_si(l.power)),
+            energy: load.map(|l| Energy::from_si(l.energy)),
+            body_temperature: temperature,
+            checks: load.map_or_else(Vec::new, |l| checks(&resistor.rating, l, ambient)),
+        }
+    }
+
+    /// A rating that one failed part exceeds: the elements that are left carry the load of the lost string.
+    fn fault_findings(
+        &self,
+        resistor: &Resistor,
+        result: &ResistorResult,
+        faults: &[FaultAnswers],
+        findings: &mut Findings,
+    ) {
+        let Some((index, allowed)) = self.model.find_resistor(&resistor.id).zip(result.allowed_power) else { return };
+        let per_element = |fault: &FaultAnswers| {
+            let own = fault.fault.id == resistor.id && resistor.parallel > 1;
+            let elements = resistor.series * (resistor.parallel - u32::from(own));
+            fault.worst(Figure::StandingPower { resistor: index }) / f64::from(elements)
+        };
+        let worst = faults.iter().max_by(|x, y| per_element(x).total_cmp(&per_element(y)));
+        let Some(fault) = worst.filter(|f| Verdict::at_most(per_element(f), allowed.si()) != Verdict::Met) else { return };
+        if result.checks.iter().all(|c| c.verdict != Verdict::NotMet) {
+            findings.add(
+                Severity::Warning,
+                "rating-exceeded-under-fault",
+                format!(
+                    "{}: {} continuous on one element with {}, allowed {} at the ambient: that fault can burn it out \
+                     too.",
+                    resistor.id,
+                    show(Power::from_si(per_element(fault)), Direction::Up),
+                    fault.fault.name,
+                    show(allowed, Direction::Down)
+                ),
+            );
+        }
+    }
+}
+
+/// The checks that apply to a load.
+fn checks(rating: &Rating, load: &Load, ambient: Temperature) -> Vec<Check> {
+    let compare = |check, unit, found: f64, allowed: Option<f64>| Check {
+        check,
+        unit,
+        found: Some(found),
+        allowed,
+        verdict: allowed.map_or(Verdict::NotChecked, |a| Verdict::at_most(found, a)),
+        remark: None,
+    };
+    let allowed = derated(rating, ambient).map(Quantity::si);
+    let mut checks = vec![compare("continuous power", "W", load.standing, allowed)];
+    if allowed.is_none() {
+        checks[0].remark = Some(match rating.power {
+            None => "no power rating given".into(),
+            Some(power) => format!("{} rated, but not up to which temperature", exact(power)),
+        });
+    }
+    checks.push(compare("element voltage", "V", load.voltage, rating.voltage.map(Quantity::si)));
+    // A pulse is what exceeds the continuous power; a slow bleeder passes many times its pulse energy and stays cool.
+    if allowed.is_none_or(|a| load.power > a) {
+        checks.push(compare("pulse energy", "J", load.energy, rating.pulse.map(Quantity::si)));
+        if let Some((overload, power)) = rating.overload.zip(rating.power) {
+            let most = overload.times * power.si();
+            checks.push(compare("overload power", "W", load.power, Some(most)));
+            checks.push(compare("overload energy", "J", load.energy, Some(most * overload.duration.si())));
+        }
+    }
+    if let Some(rise) = load.rise {
+        checks.push(compare("body temperature", "C", celsius(ambient) + rise, rating.zero_at.map(celsius)));
+    }
+    checks
+}
+
+fn rating_findings(result: &ResistorResult, findings: &mut Findings) {
+    let figure = |value: f64, unit: &str, direction| match unit {
+        "W" => show(Power::from_si(value), direction),
+        "V" => show(Voltage::from_si(value), direction),
+        "J" => show(Energy::from_si(value), direction),
+        _ => show(Temperature::from_si(value + crate::quantity::CELSIUS_ZERO_K), direction),
+    };
+    for check in result.checks.iter().filter(|c| c.verdict == Verdict::NotMet) {
+        findings.add(
+            Severity::Warning,
+            "rating-exceeded",
+            format!(
+                "{}: {} {} at the highest voltage, allowed {}.",
+                result.id,
+                check.check,
+                figure(check.found.unwrap_or(f64::NAN), check.unit, Direction::Up),
+                figure(check.allowed.unwrap_or(f64::NAN), check.unit, Direction::Down)
+            ),
+        );
+    }
+}

@@ -1,0 +1,192 @@
+//! How long to wait at each test point.
+
+use super::{Answers, FaultAnswers, Pair, si, si_or_null};
+use crate::bank::description::Role;
+use crate::bank::Bank;
+use crate::discharge::{Figure, Model};
+use crate::finding::{Findings, Severity};
+use crate::quantity::{Direction, Quantity, Time, Voltage, duration, exact, show};
+use serde::Serialize;
+
+/// Waits at one test point.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct Wait {
+    /// The test point.
+    pub across: Pair,
+    /// Every value nominal; `None` is never.
+    #[serde(rename = "nominal_s", serialize_with = "si_or_null")]
+    pub nominal: Option<Time>,
+    /// The longest over the tolerance box at the highest voltage; `None` is never.
+    #[serde(rename = "slowest_s", serialize_with = "si_or_null")]
+    pub slowest: Option<Time>,
+    /// Greatest voltage at infinite time over the box, every part healthy.
+    #[serde(rename = "settles_at_v", serialize_with = "si")]
+    pub settles_at: Voltage,
+    /// Greatest voltage at isolation over the box.
+    #[serde(rename = "at_isolation_v", serialize_with = "si")]
+    pub at_isolation: Voltage,
+    /// The values of the loose parts at which the slowest wait was found.
+    pub worst_point: Vec<WorstValue>,
+    /// The same with one part failed.
+    pub faults: Vec<FaultWait>,
+}
+
+/// The value that a loose part has at a worst point.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct WorstValue {
+    /// The part.
+    pub id: String,
+    /// Its value over the marked one.
+    pub factor: f64,
+}
+
+/// The wait with one part failed.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct FaultWait {
+    /// `R1 open`, `C1 shorted`, `C1 one unit shorted`, `R2 absent`.
+    pub fault: String,
+    /// The longest wait over the box; `None` is never.
+    #[serde(rename = "wait_s", serialize_with = "si_or_null")]
+    pub wait: Option<Time>,
+    /// Greatest voltage at infinite time over the box.
+    #[serde(rename = "settles_at_v", serialize_with = "si")]
+    pub settles_at: Voltage,
+}
+
+/// The wait for the touch voltage, per test point.
+pub(crate) struct WaitCheck<'a> {
+    pub bank: &'a Bank,
+    pub model: &'a Model,
+}
+
+/// A time, or `None` for never.
+fn finite(seconds: f64) -> Option<Time> {
+    seconds.is_finite().then(|| Time::from_si(seconds))
+}
+
+impl WaitCheck<'_> {
+    fn level(&self) -> f64 {
+        self.bank.description().touch_voltage.si()
+    }
+
+    fn wait(&self, pair: usize) -> Figure {
+        Figure::VoltageWait { pair, level: self.level() }
+    }
+
+    fn pairs(&self) -> std::ops::Range<usize> {
+        0..self.model.test_points
+    }
+
+    /// What has to be known of the healthy bank.
+    pub fn figures(&self) -> Vec<Figure> {
+        self.pairs().flat_map(|pair| [self.wait(pair), Figure::Settles { pair }, Figure::Start { pair }]).collect()
+    }
+
+    /// What has to be known under every fault.
+    pub fn fault_figures(&self) -> Vec<Figure> {
+        self.pairs().flat_map(|pair| [self.wait(pair), Figure::Settles { pair }]).collect()
+    }
+
+    /// The waits, in the order of the test points.
+    pub fn conclude(&self, healthy: &Answers, faults: &[FaultAnswers], findings: &mut Findings) -> Vec<Wait> {
+        let waits: Vec<Wait> = self.pairs().map(|pair| self.wait_at(pair, healthy, faults)).collect();
+        for wait in &waits {
+            self.healthy_findings(wait, findings);
+        }
+        for (index, fault) in faults.iter().enumerate() {
+            self.fault_findings(fault, index, &waits, findings);
+        }
+        waits
+    }
+
+    fn wait_at(&self, pair: usize, healthy: &Answers, faults: &[FaultAnswers]) -> Wait {
+        let (a, b) = self.model.pairs[pair];
+        let point = healthy.worst_point(self.wait(pair));
+        let fault_wait = |fault: &FaultAnswers| FaultWait {
+            fault: fault.fault.name.clone(),
+            wait: finite(fault.worst(self.wait(pair))),
+            settles_at: Voltage::from_si(fault.worst(Figure::Settles { pair })),
+        };
+        Wait {
+            across: [self.model.node_names[a].clone(), self.model.node_names[b].clone()],
+            nominal: finite(healthy.nominal(self.wait(pair))),
+            slowest: finite(healthy.worst(self.wait(pair))),
+            settles_at: Voltage::from_si(healthy.worst(Figure::Settles { pair })),
+            at_isolation: Voltage::from_si(healthy.worst(Figure::Start { pair })),
+            worst_point: self
+                .model
+                .parameters
+                .iter()
+                .zip(point)
+                .map(|(p, factor)| WorstValue { id: p.id.clone(), factor: *factor })
+                .collect(),
+            faults: faults.iter().map(fault_wait).collect(),
+        }
+    }
+
+    fn healthy_findings(&self, wait: &Wait, findings: &mut Findings) {
+        let pair = wait.across.join("-");
+        let touch = exact(self.bank.description().touch_voltage);
+        match wait.slowest {
+            None => findings.add(
+                Severity::Danger,
+                "wait-never",
+                format!(
+                    "{pair} never stays below {touch} by itself, with every part healthy: it can settle at {}.",
+                    show(wait.settles_at, Direction::Up)
+                ),
+            ),
+            Some(slowest) if slowest.si() > 0.0 && wait.at_isolation.si() <= self.level() => findings.add(
+                Severity::Danger,
+                "voltage-rises-after-isolation",
+                format!(
+                    "{pair} reads below {touch} at isolation and rises above it later: another part of the bank \
+                     charges it. It is predicted below only from {} on.",
+                    duration(slowest, Direction::Up)
+                ),
+            ),
+            Some(_) => {}
+        }
+    }
+
+    fn fault_findings(&self, fault: &FaultAnswers, index: usize, waits: &[Wait], findings: &mut Findings) {
+        let never: Vec<&Wait> = waits.iter().filter(|w| w.faults[index].wait.is_none()).collect();
+        let Some(worst) = never.iter().max_by(|x, y| {
+            let settles = |w: &Wait| w.faults[index].settles_at.si();
+            settles(x).total_cmp(&settles(y))
+        }) else {
+            return;
+        };
+        let role = self.bank.description().resistors.iter().find(|r| r.id == fault.fault.id).map(|r| r.role);
+        let (code, why) = match role {
+            Some(Role::Bleeder) => ("bleeder-open-never", "with this bleeder open"),
+            Some(Role::Leakage) => ("leakage-absent-never", "without this leakage path"),
+            Some(_) => ("resistor-open-never", "with this resistor open"),
+            None => ("capacitor-fault-never", "with this capacitor failed"),
+        };
+        let pairs: Vec<String> = never.iter().map(|w| w.across.join("-")).collect();
+        findings.add(
+            Severity::Danger,
+            code,
+            format!(
+                "{}: {why} the wait never ends at {}; {} can stay at {}. The reading does not fall: test before \
+                 touch, and discharge by tool and strap.",
+                fault.fault.name,
+                listed(&pairs),
+                worst.across.join("-"),
+                show(worst.faults[index].settles_at, Direction::Up)
+            ),
+        );
+    }
+}
+
+/// `a`, `a and b`, `a, b and 3 more`.
+pub(super) fn listed(names: &[String]) -> String {
+    match names {
+        [] => String::new(),
+        [one] => one.clone(),
+        [a, b] => format!("{a} and {b}"),
+        [a, b, c] => format!("{a}, {b} and {c}"),
+        [a, b, rest @ ..] => format!("{a}, {b} and {} more", rest.len()),
+    }
+}

@@ -1,0 +1,65 @@
+//! The greatest magnitude that a sum of exponentials reaches.
+
+use super::crossing::{Bounds, split};
+use super::{CircuitError, ExpSum};
+
+/// Relative accuracy of a greatest value.
+const ACCURACY: f64 = 1e-13;
+
+const MOST_INTERVALS: usize = 200_000;
+
+impl ExpSum {
+    /// The greatest `|v|` for t >= 0, and the time in second at which it comes (infinite where it is only
+    /// approached as everything settles).
+    ///
+    /// Branch and bound on intervals: one whose bound does not exceed the best value found is discarded.
+    ///
+    /// # Errors
+    /// [`CircuitError::SearchNotClosed`] where the search does not close.
+    pub fn greatest_magnitude(&self) -> Result<(f64, f64), CircuitError> {
+        self.greatest_magnitude_over(0.0)
+    }
+
+    /// As [`ExpSum::greatest_magnitude`], but a value not above `floor` need not be found: `floor` is then given
+    /// back with time 0.
+    ///
+    /// # Errors
+    /// As [`ExpSum::greatest_magnitude`].
+    pub fn greatest_magnitude_over(&self, floor: f64) -> Result<(f64, f64), CircuitError> {
+        let mut best = (floor, 0.0);
+        let mut offer = |value: f64, t: f64| {
+            if value > best.0 {
+                best = (value, t);
+            }
+            best.0
+        };
+        let limit = self.envelope();
+        if offer(self.value(0.0).abs(), 0.0) >= limit * (1.0 - ACCURACY) {
+            return Ok(best);
+        }
+        offer(self.constant().abs(), f64::INFINITY);
+        // Past `end` every term is below rounding of the envelope.
+        let count = self.terms().len().max(1) as f64;
+        let small = limit * f64::EPSILON / count;
+        let end = self.terms().iter().map(|(a, r)| (a.abs() / small).ln().max(0.0) / r).fold(0.0, f64::max);
+        let mut open = vec![(0.0, end)];
+        for _ in 0..MOST_INTERVALS {
+            let Some((low, high)) = open.pop() else {
+                return Ok(best);
+            };
+            let bounds = Bounds::of(self, low, high);
+            let reachable = bounds.greatest.abs().max(bounds.least.abs());
+            let sofar = offer(self.value(high).abs(), high);
+            if reachable <= sofar * (1.0 + ACCURACY) || bounds.steepest_down >= 0.0 || bounds.steepest_up <= 0.0 {
+                continue; // The ends were offered: nothing between them is greater.
+            }
+            if high - low <= f64::EPSILON * high {
+                continue;
+            }
+            let middle = split(low, high);
+            open.push((middle, high));
+            open.push((low, middle));
+        }
+        Err(CircuitError::SearchNotClosed)
+    }
+}

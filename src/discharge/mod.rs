@@ -1,0 +1,23 @@
+//! A bank as circuits through time: operating point, scenarios, worst cases.
+//!
+//! [`Model`] is the bank as numbered nodes and parts whose values follow from a point of the tolerance box;
+//! [`Scenario`] says what is different under a fault; [`Case`] is one scenario at one point, solved; [`Figure`]
+//! is a question to a case; [`worst`] finds the point of the box at which a figure is greatest.
+//!
+//! Inside this room figures are `f64` in SI base units, as they come from `circuit`; the rooms above see them as
+//! typed quantities only.
+
+mod body;
+mod case;
+mod element;
+mod figure;
+mod model;
+mod scenario;
+mod worst;
+
+pub(crate) use element::element_model;
+pub(crate) use figure::{Body, Figure};
+pub(crate) use model::Model;
+pub(crate) use case::Case;
+pub(crate) use scenario::{Fault, Scenario, faults};
+pub(crate) use worst::{MOST_CORNERS, Study, Worst};

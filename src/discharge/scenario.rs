@@ -1,0 +1,74 @@
+//! What may have failed.
+
+use super::model::{Model, Variation};
+use crate::bank::Bank;
+use crate::bank::description::{Role};
+
+/// A bank with every part healthy, or with one part failed: what stood before isolation, and what stands after.
+#[derive(Debug, Clone, Default)]
+pub(crate) struct Scenario {
+    pub before: Variation,
+    pub after: Variation,
+    /// Own voltages of capacitors are dropped: all take the operating point of the failed circuit.
+    pub drops_own_voltages: bool,
+}
+
+/// One part failed, and the scenarios of which the worst counts.
+#[derive(Debug, Clone)]
+pub(crate) struct Fault {
+    /// `R1 open`, `R2 absent`, `C1 shorted`, `C1 one unit shorted`.
+    pub name: String,
+    /// The part.
+    pub id: String,
+    /// What it can look like: failed long before isolation (the voltages have settled without it), or at isolation.
+    pub scenarios: Vec<Scenario>,
+}
+
+impl Scenario {
+    fn settled(variation: Variation) -> Self {
+        Scenario { before: variation.clone(), after: variation, drops_own_voltages: false }
+    }
+}
+
+/// Every single fault, in the order of the file, resistors first.
+pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
+    let mut faults = Vec::new();
+    for resistor in &bank.description().resistors {
+        let Some(index) = model.find_resistor(&resistor.id) else { continue };
+        let word = if resistor.role == Role::Leakage { "absent" } else { "open" };
+        // One element open: one string of the parallel strings is lost.
+        let strings = f64::from(resistor.parallel);
+        let factor = if resistor.parallel > 1 { strings / (strings - 1.0) } else { f64::INFINITY };
+        let factor = if resistor.role == Role::Leakage { f64::INFINITY } else { factor };
+        let lost = Variation { resistor: Some((index, factor)), ..Variation::default() };
+        let at_isolation = Scenario { after: lost.clone(), ..Scenario::default() };
+        faults.push(Fault {
+            name: format!("{} {word}", resistor.id),
+            id: resistor.id.clone(),
+            scenarios: vec![Scenario::settled(lost), at_isolation],
+        });
+    }
+    for (index, capacitor) in bank.description().capacitors.iter().enumerate() {
+        let part = &model.capacitors[index];
+        let at_terminals = model.terminals.contains(&part.a) && model.terminals.contains(&part.b);
+        if !at_terminals {
+            let variation = Variation { shorted: Some(index), ..Variation::default() };
+            let scenario = Scenario { drops_own_voltages: true, ..Scenario::settled(variation) };
+            faults.push(Fault {
+                name: format!("{} shorted", capacitor.id),
+                id: capacitor.id.clone(),
+                scenarios: vec![scenario],
+            });
+        }
+        if capacitor.series > 1 {
+            let groups = f64::from(capacitor.series);
+            let variation = Variation { capacitor: Some((index, groups / (groups - 1.0))), ..Variation::default() };
+            faults.push(Fault {
+                name: format!("{} one unit shorted", capacitor.id),
+                id: capacitor.id.clone(),
+                scenarios: vec![Scenario::settled(variation)],
+            });
+        }
+    }
+    faults
+}

@@ -1,0 +1,231 @@
+//! The worst point of the tolerance box for each figure.
+//!
+//! With up to [`MOST_CORNERS`] loose values all corners are tried, then the neighbourhood and the inside of the box
+//! from the best corner of each figure. Maxima inside are real: charge that two capacitors share, a voltage that
+//! one section lends to another. With more loose values the corners are searched by flipping one value at a time
+//! from several starts, which is a search and no proof; a plan says which of the two it used.
+
+use super::case::Case;
+use super::figure::Figure;
+use super::model::Model;
+use super::scenario::Scenario;
+use crate::circuit::CircuitError;
+
+/// Up to this many loose values every corner is tried.
+pub(crate) const MOST_CORNERS: usize = 12;
+
+/// Starts of the search beyond that, besides the two extreme corners and the middle.
+const RANDOM_STARTS: usize = 24;
+
+/// The greatest value of a figure and where it was found.
+#[derive(Debug, Clone)]
+pub(crate) struct Worst {
+    pub value: f64,
+    pub point: Vec<f64>,
+}
+
+/// Figures of one scenario at one voltage, to be maximised over the box.
+pub(crate) struct Study<'a> {
+    pub model: &'a Model,
+    pub scenario: &'a Scenario,
+    /// Voltage across the terminals before isolation, in volt.
+    pub volts: f64,
+    pub figures: &'a [Figure],
+}
+
+impl Study<'_> {
+    /// The figures with every value nominal.
+    pub fn nominal(&self) -> Result<Vec<f64>, CircuitError> {
+        let case = self.case(&self.model.nominal_point())?;
+        self.figures.iter().map(|f| f.of(self.model, &case, 0.0)).collect()
+    }
+
+    /// The greatest value of each figure over the box.
+    pub fn worst(&self) -> Result<Vec<Worst>, CircuitError> {
+        let mut best = vec![Worst { value: f64::NEG_INFINITY, point: self.model.nominal_point() }; self.figures.len()];
+        self.offer(&self.model.nominal_point(), &mut best)?;
+        let count = self.model.parameters.len();
+        if count == 0 {
+            return Ok(best);
+        }
+        if count <= MOST_CORNERS {
+            // All high first: it is the worst of most figures, and a high floor ends most searches at once.
+            for mask in (0..1usize << count).rev() {
+                self.offer(&self.corner(|p| mask >> p & 1 == 1), &mut best)?;
+            }
+        } else {
+            self.flip_from_many_starts(&mut best)?;
+        }
+        for (index, worst) in best.iter_mut().enumerate() {
+            self.refine(index, worst)?;
+        }
+        Ok(best)
+    }
+
+    fn case(&self, point: &[f64]) -> Result<Case, CircuitError> {
+        Case::solve(self.model, self.scenario, point, self.volts)
+    }
+
+    /// The value of one figure, exact.
+    fn value(&self, index: usize, point: &[f64]) -> Result<f64, CircuitError> {
+        self.figures[index].of(self.model, &self.case(point)?, 0.0)
+    }
+
+    fn corner(&self, high: impl Fn(usize) -> bool) -> Vec<f64> {
+        let parameters = self.model.parameters.iter().enumerate();
+        parameters.map(|(p, range)| if high(p) { range.high } else { range.low }).collect()
+    }
+
+    /// Tries a point for every figure.
+    fn offer(&self, point: &[f64], best: &mut [Worst]) -> Result<(), CircuitError> {
+        let case = self.case(point)?;
+        for (figure, worst) in self.figures.iter().zip(best) {
+            if worst.value.is_infinite() && worst.value > 0.0 {
+                continue;
+            }
+            let value = figure.of(self.model, &case, worst.value.max(0.0))?;
+            if value > worst.value {
+                *worst = Worst { value, point: point.to_vec() };
+            }
+        }
+        Ok(())
+    }
+
+    /// Beyond [`MOST_CORNERS`]: from each start flip single values for as long as a figure grows.
+    fn flip_from_many_starts(&self, best: &mut [Worst]) -> Result<(), CircuitError> {
+        let count = self.model.parameters.len();
+        self.offer(&self.corner(|_| true), best)?;
+        self.offer(&self.corner(|_| false), best)?;
+        // A fixed sequence (xorshift; Marsaglia 2003), so that the same input gives the same plan.
+        let mut state = 0x9e37_79b9_7f4a_7c15_u64;
+        for _ in 0..RANDOM_STARTS {
+            let bits: Vec<bool> = (0..count)
+                .map(|_| {
+                    state ^= state << 13;
+                    state ^= state >> 7;
+                    state ^= state << 17;
+                    state & 1 == 1
+                })
+                .collect();
+            self.offer(&self.corner(|p| bits[p]), best)?;
+        }
+        for index in 0..best.len() {
+            let mut improved = true;
+            while improved && best[index].value.is_finite() {
+                let before = best[index].value;
+                for p in 0..count {
+                    let range = &self.model.parameters[p];
+                    let mut flipped = best[index].point.clone();
+                    flipped[p] = if flipped[p] < range.high { range.high } else { range.low };
+                    self.offer(&flipped, best)?;
+                }
+                improved = best[index].value > before;
+            }
+        }
+        Ok(())
+    }
+
+    /// Searches inside the box from the best corner of one figure.
+    fn refine(&self, index: usize, worst: &mut Worst) -> Result<(), CircuitError> {
+        if !worst.value.is_finite() || !self.rises_inwards(index, worst)? {
+            return Ok(());
+        }
+        const MOST_ROUNDS: usize = 40;
+        let count = worst.point.len();
+        for _ in 0..MOST_ROUNDS {
+            let start = worst.clone();
+            for p in 0..count {
+                let mut along = vec![0.0; count];
+                along[p] = self.model.parameters[p].high - self.model.parameters[p].low;
+                self.climb(index, worst, &along)?;
+            }
+            // Along a ridge single values creep; the way of the whole round leads on (Powell 1964).
+            let along: Vec<f64> = worst.point.iter().zip(&start.point).map(|(x, y)| x - y).collect();
+            if count > 1 && along.iter().any(|x| *x != 0.0) {
+                self.climb(index, worst, &along)?;
+            }
+            if worst.value.is_infinite() || worst.value <= start.value * (1.0 + 1e-14) {
+                break;
+            }
+        }
+        Ok(())
+    }
+
+    /// True where a step from the corner along some value, short, half way or long, makes the figure greater.
+    fn rises_inwards(&self, index: usize, worst: &Worst) -> Result<bool, CircuitError> {
+        for (p, range) in self.model.parameters.iter().enumerate() {
+            let here = worst.point[p];
+            let away = if here - range.low > range.high - here { range.low } else { range.high };
+            for share in [1e-3, 0.5, 0.9] {
+                let mut point = worst.point.clone();
+                point[p] = here + share * (away - here);
+                if self.value(index, &point)? > worst.value * (1.0 + 1e-13) {
+                    return Ok(true);
+                }
+            }
+        }
+        Ok(false)
+    }
+
+    /// The best point on the line through the best point so far along `along`: a scan, then golden section around
+    /// the best of it (Kiefer 1953).
+    fn climb(&self, index: usize, worst: &mut Worst, along: &[f64]) -> Result<(), CircuitError> {
+        let (low, high) = self.reach(&worst.point, along);
+        if high - low <= 0.0 {
+            return Ok(());
+        }
+        let origin = worst.point.clone();
+        let at = |s: f64| -> Vec<f64> {
+            let moved = origin.iter().zip(along).map(|(x, d)| x + s * d);
+            moved.zip(&self.model.parameters).map(|(x, r)| x.clamp(r.low, r.high)).collect()
+        };
+        let mut tried = |s: f64| -> Result<f64, CircuitError> {
+            let point = at(s);
+            let value = self.value(index, &point)?;
+            if value > worst.value {
+                *worst = Worst { value, point };
+            }
+            Ok(value)
+        };
+        const SCAN: usize = 8;
+        let step = (high - low) / SCAN as f64;
+        let mut top = (f64::NEG_INFINITY, 0.0);
+        for k in 0..=SCAN {
+            let s = if k == SCAN { high } else { low + step * k as f64 };
+            let value = tried(s)?;
+            if value > top.0 {
+                top = (value, s);
+            }
+        }
+        let here = tried(0.0)?;
+        let (mut a, mut b) = if here > top.0 { (-step, step) } else { (top.1 - step, top.1 + step) };
+        (a, b) = (a.max(low), b.min(high));
+        let golden = 0.5 * (5f64.sqrt() - 1.0);
+        let (mut x, mut y) = (b - golden * (b - a), a + golden * (b - a));
+        let (mut fx, mut fy) = (tried(x)?, tried(y)?);
+        while b - a > 1e-8 * (high - low) {
+            if fx > fy {
+                (b, y, fy) = (y, x, fx);
+                x = b - golden * (b - a);
+                fx = tried(x)?;
+            } else {
+                (a, x, fx) = (x, y, fy);
+                y = a + golden * (b - a);
+                fy = tried(y)?;
+            }
+        }
+        Ok(())
+    }
+
+    /// How far a point may move along a direction, backwards and forwards, inside the box.
+    fn reach(&self, point: &[f64], along: &[f64]) -> (f64, f64) {
+        let mut reach = (f64::NEG_INFINITY, f64::INFINITY);
+        for ((x, d), range) in point.iter().zip(along).zip(&self.model.parameters) {
+            if *d != 0.0 {
+                let (s, t) = ((range.low - x) / d, (range.high - x) / d);
+                reach = (reach.0.max(s.min(t)), reach.1.min(s.max(t)));
+            }
+        }
+        if reach.0.is_finite() && reach.1.is_finite() { reach } else { (0.0, 0.0) }
+    }
+}

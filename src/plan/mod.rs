@@ -1,0 +1,191 @@
+//! The plan: one result for one bank, its verdict and its exit status.
+
+mod result;
+mod working;
+
+pub use crate::check::EngineError;
+pub use result::*;
+
+use crate::bank::Bank;
+use crate::check::{
+    Answers, CapacitorCheck, FaultAnswers, LimitChecks, ResistorChecks, StoredCheck, WaitCheck, assumptions, notes,
+    remaining_energy,
+};
+use crate::discharge::{Figure, MOST_CORNERS, Model, faults};
+use crate::finding::{Findings, Severity};
+use crate::quantity::{Quantity, Time};
+
+/// What a plan is to contain beyond the figures.
+#[derive(Debug, Clone, Copy, Default, PartialEq, Eq)]
+pub struct Options {
+    /// The calculation of every wait, for a reviewer to check by hand.
+    pub working: bool,
+}
+
+/// Makes the plan of `bank`. `input_sha256` is printed with it, so that a plan can be matched with its file;
+/// `noticed` are findings that reading the file brought up.
+///
+/// # Errors
+/// [`EngineError`] where the engine can't certify a result: the energy balance fails or a search does not close.
+/// There is no plan then.
+///
+/// # Example: one capacitor and its bleeder
+/// ```
+/// use ebbvolt::{bank, finding::Findings, plan, quantity::Quantity};
+/// let file = b"
+/// ebbvolt: 1
+/// tag: PU-07
+/// touch_voltage: 50 V
+/// charged_to: {nominal: 565 V, highest: 750 V}
+/// capacitors: [{id: C1, value: 3300 uF, tolerance: 20 %}]
+/// resistors: [{id: R1, role: bleeder, value: 22 kohm, tolerance: 5 %}]
+/// ";
+/// let (bank, noticed) = bank::file::read("pu-07.yaml", file).expect("a valid file");
+/// let plan = plan::plan(&bank, "", noticed, plan::Options::default()).expect("a certified result");
+/// // tau = 1.05 * 22 kohm * 1.2 * 3300 uF, t = tau ln(750/50)
+/// let expected = 1.05 * 22e3 * 1.2 * 3300e-6 * (750.0f64 / 50.0).ln();
+/// let slowest = plan.waits[0].slowest.expect("it ends").si();
+/// assert!((slowest / expected - 1.0).abs() < 1e-9);
+/// ```
+pub fn plan(bank: &Bank, input_sha256: &str, noticed: Findings, options: Options) -> Result<Plan, EngineError> {
+    let mut findings = noticed;
+    let mut plan = blank(bank, input_sha256);
+    if !bank.is_three_phase() {
+        compute(bank, &mut plan, &mut findings, options)?;
+    }
+    for missing in &plan.not_computed {
+        findings.add(Severity::Warning, "not-computed", format!("Not computed by this version: {missing}."));
+    }
+    plan.findings = findings.into_sorted();
+    plan.verdict = plan.judged();
+    Ok(plan)
+}
+
+/// Fills in everything that is computed.
+fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Options) -> Result<(), EngineError> {
+    let model = Model::new(bank);
+    let description = bank.description();
+    let (first, last) = (description.terminals.first(), description.terminals.last());
+    let terminals = first.zip(last).and_then(|(a, b)| model.find_pair(a, b)).unwrap_or(0);
+
+    let waits = WaitCheck { bank, model: &model };
+    let stored = StoredCheck { bank, model: &model, terminals };
+    let limits = LimitChecks::new(bank, &model)?;
+    let resistors = ResistorChecks { bank, model: &model };
+    let capacitors = CapacitorCheck { bank, model: &model };
+
+    let figures = [waits.figures(), stored.figures(), limits.figures(), capacitors.figures()].concat();
+    let healthy = Answers::healthy(bank, &model, figures)?;
+    let fault_figures: Vec<Figure> = [
+        waits.fault_figures(),
+        limits.fault_figures(),
+        capacitors.figures(),
+        resistors.fault_figures(),
+    ]
+    .concat();
+    let under_faults = FaultAnswers::all(bank, &model, faults(bank, &model), &fault_figures)?;
+
+    plan.time_constants = working::time_constants(bank, &model)?.into_iter().map(Time::from_si).collect();
+    plan.stored = Some(stored.conclude(&healthy, findings));
+    plan.waits = waits.conclude(&healthy, &under_faults, findings);
+    remaining_energy(bank, &model, &plan.waits, findings)?;
+    plan.limits = limits.conclude(&healthy, &under_faults, findings);
+    plan.resistors = resistors.conclude(&under_faults, findings)?;
+    plan.capacitors = capacitors.conclude(&healthy, &under_faults, findings);
+    notes(bank, &model, &plan.resistors, &plan.capacitors, findings);
+    plan.worst_case_search = search_used(model.parameters.len());
+    if options.working {
+        plan.working = Some(working::working(bank, &model, &plan.waits)?);
+    }
+    Ok(())
+}
+
+/// A plan with everything that needs no engine.
+fn blank(bank: &Bank, input_sha256: &str) -> Plan {
+    let description = bank.description();
+    Plan {
+        ebbvolt: Stamp { version: env!("CARGO_PKG_VERSION"), format: 1 },
+        bank: Identity {
+            tag: description.tag.clone(),
+            title: description.title.clone(),
+            location: description.location.clone(),
+            prepared_by: description.prepared_by.clone(),
+            revision: description.revision.clone(),
+            notes: description.notes.clone(),
+            input_sha256: input_sha256.to_string(),
+        },
+        verdict: Verdict::NotChecked,
+        not_computed: not_computed(bank),
+        touch_voltage: description.touch_voltage,
+        ambient: bank.ambient(),
+        terminals: description.terminals.clone(),
+        charged_to: ChargedTo { nominal: description.charged_to.nominal, highest: description.charged_to.highest },
+        stored: None,
+        time_constants: Vec::new(),
+        waits: Vec::new(),
+        limits: Vec::new(),
+        resistors: Vec::new(),
+        capacitors: Vec::new(),
+        steps: Vec::new(),
+        recovery: Vec::new(),
+        findings: Vec::new(),
+        assumptions: assumptions(bank),
+        worst_case_search: String::new(),
+        working: None,
+    }
+}
+
+/// Parts of the description that this version reads but does not compute.
+fn not_computed(bank: &Bank) -> Vec<String> {
+    let description = bank.description();
+    let absorbing = description.capacitors.iter().any(|c| c.absorption.is_some() || c.dielectric.is_some());
+    let missing = [
+        (bank.is_three_phase(), "a three-phase bank: no wait, energy or rating is computed"),
+        (absorbing, "dielectric absorption: waits can be longer and voltage can come back"),
+        (!description.procedure.is_empty(), "the steps of the procedure, and what comes back after the last one"),
+        (!description.sinks.is_empty(), "sinks: no wait relies on them"),
+        (!description.supplies.is_empty(), "supplies that a step connects"),
+        (description.hold_energy.is_some(), "hold_energy: the waits are for the touch voltage alone"),
+    ];
+    missing.into_iter().filter(|(present, _)| *present).map(|(_, text)| text.to_string()).collect()
+}
+
+/// Which search found the worst cases, in one sentence.
+fn search_used(loose: usize) -> String {
+    match loose {
+        0 => "No value is loose: the worst case is the nominal one at the highest voltage.".into(),
+        1..=MOST_CORNERS => format!(
+            "All {} corners of {loose} loose values, then a search inside the box from the best of them.",
+            1usize << loose
+        ),
+        _ => format!(
+            "{loose} loose values: corners searched from several starts, then inside the box. A search, not a proof."
+        ),
+    }
+}
+
+impl Plan {
+    /// What the whole plan comes to: healthy figures decide, and single faults only where a limit asks for them.
+    fn judged(&self) -> Verdict {
+        if !self.not_computed.is_empty() {
+            return Verdict::Incomplete;
+        }
+        let limit_missed = |l: &LimitResult| {
+            l.met == Some(false) || (l.single_fault_asked && l.single_fault_met == Some(false))
+        };
+        let missed = self.waits.iter().any(|w| w.slowest.is_none() || w.nominal.is_none())
+            || self.limits.iter().any(limit_missed)
+            || self.resistors.iter().flat_map(|r| &r.checks).any(|c| c.verdict == Verdict::NotMet)
+            || self.capacitors.iter().any(|c| c.verdict == Verdict::NotMet);
+        if missed { Verdict::NotMet } else { Verdict::Met }
+    }
+
+    /// Exit status: 0 met, 1 not met, 3 no verdict.
+    pub fn exit_code(&self) -> u8 {
+        match self.verdict {
+            Verdict::Met => 0,
+            Verdict::NotMet => 1,
+            Verdict::NotChecked | Verdict::Incomplete => 3,
+        }
+    }
+}

@@ -1,0 +1,89 @@
+//! The calculation of a wait, for a reviewer to check by hand.
+
+use super::result::{Wait, Working, WorkingMode, WorkingSingle, WorkingValue};
+use crate::bank::Bank;
+use crate::check::EngineError;
+use crate::discharge::{Case, Model, Scenario};
+use crate::quantity::{Capacitance, Quantity, Resistance, Time, Voltage};
+
+fn solve(bank: &Bank, model: &Model, point: &[f64], volts: Voltage) -> Result<Case, EngineError> {
+    debug_assert_eq!(bank.description().capacitors.len(), model.capacitors.len());
+    let failed = |cause| EngineError { scenario: "healthy".into(), cause };
+    Case::solve(model, &Scenario::default(), point, volts.si()).map_err(failed)
+}
+
+/// Nominal time constants in second, the slowest first.
+pub(super) fn time_constants(bank: &Bank, model: &Model) -> Result<Vec<f64>, EngineError> {
+    let nominal = bank.description().charged_to.nominal;
+    Ok(solve(bank, model, &model.nominal_point(), nominal)?.response.modes().time_constants())
+}
+
+/// The nominal and the slowest wait at every test point, worked out.
+pub(super) fn working(bank: &Bank, model: &Model, waits: &[Wait]) -> Result<Vec<Working>, EngineError> {
+    let charged = bank.description().charged_to;
+    let mut list = Vec::with_capacity(2 * waits.len());
+    for (pair, wait) in waits.iter().enumerate() {
+        let worst: Vec<f64> = wait.worst_point.iter().map(|w| w.factor).collect();
+        let cases = [
+            ("nominal", model.nominal_point(), charged.nominal, wait.nominal),
+            ("slowest", worst, charged.highest, wait.slowest),
+        ];
+        for (name, point, volts, time) in cases {
+            list.push(worked(bank, model, (pair, name), &point, volts, time)?);
+        }
+    }
+    Ok(list)
+}
+
+fn worked(
+    bank: &Bank,
+    model: &Model,
+    (pair, name): (usize, &str),
+    point: &[f64],
+    volts: Voltage,
+    wait: Option<Time>,
+) -> Result<Working, EngineError> {
+    let case = solve(bank, model, point, volts)?;
+    let (a, b) = model.pairs[pair];
+    let voltage = case.across(a, b);
+    let factor = |parameter: Option<usize>| parameter.map_or(1.0, |p| point[p]);
+    let resistors = model.resistors.iter().map(|r| WorkingValue {
+        id: r.id.clone(),
+        resistance: Some(Resistance::from_si(r.nominal * factor(r.parameter))),
+        capacitance: None,
+        factor: factor(r.parameter),
+    });
+    let capacitors = model.capacitors.iter().map(|c| WorkingValue {
+        id: c.id.clone(),
+        resistance: None,
+        capacitance: Some(Capacitance::from_si(c.nominal * factor(c.parameter))),
+        factor: factor(c.parameter),
+    });
+    let modes = voltage.terms().iter().map(|(amplitude, rate)| WorkingMode {
+        tau: Time::from_si(rate.recip()),
+        amplitude: Voltage::from_si(*amplitude),
+    });
+    // One capacitor and one mode: tau = R C by hand.
+    let single = match (model.capacitors.as_slice(), voltage.terms()) {
+        ([c], [(amplitude, rate)]) if voltage.constant() == 0.0 => {
+            let farad = c.nominal * factor(c.parameter);
+            Some(WorkingSingle {
+                resistance: Resistance::from_si((rate * farad).recip()),
+                capacitance: Capacitance::from_si(farad),
+                from: Voltage::from_si(amplitude.abs()),
+                to: bank.description().touch_voltage,
+            })
+        }
+        _ => None,
+    };
+    Ok(Working {
+        across: [model.node_names[a].clone(), model.node_names[b].clone()],
+        case: name.to_string(),
+        values: resistors.chain(capacitors).collect(),
+        charged_to: volts,
+        settles_at: Voltage::from_si(voltage.constant()),
+        modes: modes.collect(),
+        single,
+        wait,
+    })
+}
