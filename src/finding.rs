@@ -36,7 +36,9 @@ impl Severity {
 /// A place in a text file. Lines and columns count from 1, columns in characters.
 #[derive(Debug, Clone, PartialEq, Eq, Serialize)]
 pub struct Place {
-    /// Name of the file as it was given, or `standard input`.
+    /// Name of the file as it was given, or `standard input`. It is not written to JSON: the same bytes have to give
+    /// the same result wherever they lie.
+    #[serde(skip)]
     pub file: String,
     /// Line, from 1.
     pub line: usize,
@@ -44,9 +46,12 @@ pub struct Place {
     pub column: usize,
     /// How many characters of the line are meant (at least 1).
     pub length: usize,
-    /// The line itself, without its end.
+    /// The line itself, without its end; of a very long line, the part around the column.
     #[serde(skip)]
     pub source: String,
+    /// The column of the first character of `source`: 1, unless the line was cut.
+    #[serde(skip)]
+    pub source_column: usize,
 }
 
 /// One finding.

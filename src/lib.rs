@@ -10,8 +10,10 @@
 pub mod bank;
 pub mod check;
 pub mod circuit;
+pub mod cli;
 pub mod data;
 mod discharge;
 pub mod finding;
 pub mod plan;
 pub mod quantity;
+pub mod report;

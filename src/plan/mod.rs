@@ -117,6 +117,7 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
         verdict: Verdict::NotChecked,
         not_computed: not_computed(bank),
         touch_voltage: description.touch_voltage,
+        hold_energy: description.hold_energy,
         ambient: bank.ambient(),
         terminals: description.terminals.clone(),
         charged_to: ChargedTo { nominal: description.charged_to.nominal, highest: description.charged_to.highest },

@@ -5,7 +5,7 @@
 
 use crate::finding::Finding;
 use crate::check::{degrees, si, si_list, si_or_null};
-use crate::quantity::{Capacitance, Resistance, Temperature, Time, Voltage};
+use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltage};
 use serde::Serialize;
 
 pub use crate::check::{
@@ -27,6 +27,9 @@ pub struct Plan {
     /// The voltage that the user chose to wait for.
     #[serde(rename = "touch_voltage_v", serialize_with = "si")]
     pub touch_voltage: Voltage,
+    /// The stored energy that the user waits for as well.
+    #[serde(rename = "hold_energy_j", serialize_with = "si_or_null")]
+    pub hold_energy: Option<Energy>,
     /// Air at the resistors.
     #[serde(rename = "ambient_c", serialize_with = "degrees")]
     pub ambient: Temperature,

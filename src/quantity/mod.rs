@@ -7,7 +7,7 @@ mod parse;
 mod show;
 
 pub use parse::{QuantityError, Reading, Tolerance, parse, parse_kind};
-pub use show::{Direction, Rounded, duration, exact, keepable, show};
+pub use show::{Direction, Rounded, duration, exact, keepable, show, show_digits};
 
 use uom::si;
 

@@ -167,16 +167,7 @@ const fn grammar(kind: Kind) -> Grammar {
         Kind::Resistance => Grammar {
             name: "a resistance",
             units: OHM,
-            prefixes: &[
-                ("u", -6),
-                ("m", -3),
-                ("", 0),
-                ("k", 3),
-                ("K", 3),
-                ("M", 6),
-                ("G", 9),
-                ("T", 12),
-            ],
+            prefixes: &[("u", -6), ("m", -3), ("", 0), ("k", 3), ("K", 3), ("M", 6), ("G", 9), ("T", 12)],
             example: "4.7 kohm",
             least: 1e-9,
             greatest: 1e18,
@@ -393,9 +384,7 @@ fn split_number(text: &str) -> Option<(&str, &str)> {
 /// point and the multiplier, as in `4k7`, `R47`, `100R`, `4n7`. The unit may follow.
 fn letter_code(text: &str, kind: Kind) -> Option<f64> {
     let (letters, units): (&[Scale], &[&str]) = match kind {
-        Kind::Resistance => {
-            (&[("R", 0), ("k", 3), ("K", 3), ("M", 6), ("G", 9), ("T", 12), ("L", -3)], &OHM[..])
-        }
+        Kind::Resistance => (&[("R", 0), ("k", 3), ("K", 3), ("M", 6), ("G", 9), ("T", 12), ("L", -3)], &OHM[..]),
         Kind::Capacitance => {
             (&[("p", -12), ("n", -9), ("u", -6), ("\u{b5}", -6), ("\u{3bc}", -6), ("m", -3), ("F", 0)], &["F"])
         }
@@ -446,7 +435,8 @@ mod tests {
         for text in ["3300 uF", "3300uF", "3300 \u{b5}F", "3300\u{3bc}F", "3300 MFD", "3300 mfd", "3300u", "3.3 mF"] {
             assert_eq!(value::<Capacitance>(text), 3300e-6, "{text}");
         }
-        for text in ["4.7 kohm", "4k7", "4K7", "4.7kOhm", "4.7 k\u{3a9}", "4.7k\u{2126}", "4.7 kR", "4700R", "4700 ohm"] {
+        for text in ["4.7 kohm", "4k7", "4K7", "4.7kOhm", "4.7 k\u{3a9}", "4.7k\u{2126}", "4.7 kR", "4700R", "4700 ohm"]
+        {
             assert_eq!(value::<Resistance>(text), 4700.0, "{text}");
         }
         assert_eq!(value::<Resistance>("2M2"), 2.2e6);
@@ -486,7 +476,9 @@ mod tests {
         assert!(refused::<Resistance>("0 ohm").problem.contains("zero"));
         assert!(refused::<Resistance>("-5 ohm").problem.contains("negative"));
         assert!(refused::<Resistance>("0R").problem.contains("zero"));
-        for text in ["NaN uF", "inf F", "-inf F", "1e999 F", "uF", "", "3300 furlong", "4k7k", "1.2.3 uF", "0x10 F", "."] {
+        for text in
+            ["NaN uF", "inf F", "-inf F", "1e999 F", "uF", "", "3300 furlong", "4k7k", "1.2.3 uF", "0x10 F", "."]
+        {
             refused::<Capacitance>(text);
         }
         assert_eq!(value::<Voltage>("0 V").to_bits(), 0f64.to_bits());

@@ -50,7 +50,11 @@ impl Rounded {
         let rounded = Self::at(value, leading_exponent(value) - count + 1, direction);
         // 999.1 rounded up to three digits is 1000: one digit too many.
         let carried = rounded.digits.checked_ilog10().is_some_and(|n| n as i32 >= count) && rounded.digits % 10 == 0;
-        if carried { Rounded { digits: rounded.digits / 10, exponent: rounded.exponent + 1, ..rounded } } else { rounded }
+        if carried {
+            Rounded { digits: rounded.digits / 10, exponent: rounded.exponent + 1, ..rounded }
+        } else {
+            rounded
+        }
     }
 
     /// Power of ten of the first digit; 0 for zero.
@@ -108,26 +112,33 @@ fn unit_of(kind: Kind) -> (&'static str, i32, i32) {
 /// assert_eq!(show(Voltage::from_si(49.91), Direction::Down), "49.9 V");
 /// ```
 pub fn show<Q: Quantity>(quantity: Q, direction: Direction) -> String {
+    show_digits(quantity, 3, direction)
+}
+
+/// The same with `digits` significant digits, for figures that are checked by hand; a temperature stays in whole
+/// degrees.
+pub fn show_digits<Q: Quantity>(quantity: Q, digits: u32, direction: Direction) -> String {
+    let digits = digits.clamp(1, MEANT_DIGITS as u32) as i32;
     let si = quantity.si();
     if !si.is_finite() {
         return "not finite".into();
     }
     match Q::KIND {
         Kind::Temperature => format!("{} °C", Rounded::at(si - CELSIUS_ZERO_K, 0, direction)),
-        Kind::Ratio => format!("{} %", trimmed(&Rounded::significant(si * 100.0, 3, direction).to_string())),
+        Kind::Ratio => format!("{} %", trimmed(&Rounded::significant(si * 100.0, digits, direction).to_string())),
         kind => {
             let (unit, least, greatest) = unit_of(kind);
-            with_prefix(si, unit, least, greatest, direction)
+            with_prefix(si, unit, (least, greatest), digits, direction)
         }
     }
 }
 
-fn with_prefix(si: f64, unit: &str, least: i32, greatest: i32, direction: Direction) -> String {
+fn with_prefix(si: f64, unit: &str, (least, greatest): (i32, i32), digits: i32, direction: Direction) -> String {
     if si == 0.0 {
         return format!("0 {unit}");
     }
     // Far below the smallest prefix, two decimals of it are enough; rounding up keeps it above zero.
-    let mut rounded = Rounded::significant(si, 3, direction);
+    let mut rounded = Rounded::significant(si, digits, direction);
     if rounded.leading() < least {
         rounded = Rounded::at(si, least - 2, direction);
         if rounded.digits == 0 {
@@ -157,7 +168,8 @@ pub fn duration(time: Time, direction: Direction) -> String {
         return show(time, direction);
     }
     // (up to this many seconds, coarse unit, fine unit)
-    let steps: [(f64, (&str, u32), (&str, u32)); 2] = [(7200.0, ("min", 60), ("s", 1)), (172_800.0, ("h", 3600), ("min", 60))];
+    let steps: [(f64, (&str, u32), (&str, u32)); 2] =
+        [(7200.0, ("min", 60), ("s", 1)), (172_800.0, ("h", 3600), ("min", 60))];
     let (coarse, fine) =
         steps.iter().find(|(up_to, ..)| s < *up_to).map_or((("d", 86_400), ("h", 3600)), |(_, c, f)| (*c, *f));
     let count = units(s / f64::from(fine.1), direction);

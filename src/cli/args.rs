@@ -1,0 +1,129 @@
+//! What was typed. What it means is decided by each command.
+
+use super::Terminal;
+use clap::{Args, CommandFactory, FromArgMatches, Parser, Subcommand, ValueEnum};
+use std::ffi::OsString;
+use std::path::PathBuf;
+
+/// Plans the discharge of charged capacitor banks: how long to wait, what is left, what a failed part changes.
+///
+/// Every result is a prediction from a description. Before anyone touches, the voltage is tested with a rated
+/// instrument that is proved before and after.
+#[derive(Parser)]
+#[command(name = "ebbvolt", version, arg_required_else_help = true, disable_help_subcommand = true, after_help = START)]
+pub(super) struct Typed {
+    #[command(subcommand)]
+    pub command: Command,
+}
+
+const START: &str = "\
+To start: ebbvolt plan --example
+          ebbvolt draft > bank.yaml, then ebbvolt plan bank.yaml";
+
+const PLAN_EXAMPLES: &str = "\
+Examples: ebbvolt plan bank.yaml
+          ebbvolt plan --charged-to 565V --capacitance 3300uF --bleeder 22k --touch-voltage 50V
+
+Exit status: 0 all limits met and no rating exceeded; 1 a limit not met, a rating exceeded or a wait of never; \
+2 wrong input; 3 no verdict";
+
+#[derive(Subcommand)]
+pub(super) enum Command {
+    /// Print the plan of a bank: the wait to keep, stored energy, limits, ratings, findings
+    Plan(Box<PlanArgs>),
+    /// List the published limits that a bank file can name
+    #[command(after_help = "Example: ebbvolt limits --format csv")]
+    Limits(LimitsArgs),
+    /// Print a commented bank file to start from
+    #[command(after_help = "Example: ebbvolt draft > bank.yaml")]
+    Draft,
+}
+
+#[derive(Args)]
+#[command(after_help = PLAN_EXAMPLES)]
+pub(super) struct PlanArgs {
+    /// The bank file; - reads standard input
+    #[arg(value_name = "BANK.yaml")]
+    pub bank: Option<PathBuf>,
+    /// Plan the bank that is built in
+    #[arg(long)]
+    pub example: bool,
+    /// Show the calculation so that it can be checked by hand
+    #[arg(long)]
+    pub working: bool,
+    /// How the plan is written
+    #[arg(long, value_enum, default_value_t = PlanFormat::Text)]
+    pub format: PlanFormat,
+    #[command(flatten)]
+    pub quick: QuickArgs,
+}
+
+/// One capacitance with one bleeder, without a file.
+#[derive(Args)]
+#[command(next_help_heading = "Without a file: one capacitance, one bleeder")]
+pub(super) struct QuickArgs {
+    /// Voltage at isolation, such as 565V
+    #[arg(long, value_name = "VOLTAGE", allow_hyphen_values = true)]
+    pub charged_to: Option<String>,
+    /// Worst credible voltage; without it --charged-to is taken for both
+    #[arg(long, value_name = "VOLTAGE", allow_hyphen_values = true)]
+    pub highest: Option<String>,
+    /// Capacitance, such as 3300uF
+    #[arg(long, value_name = "CAPACITANCE", allow_hyphen_values = true)]
+    pub capacitance: Option<String>,
+    /// Bleeder resistance, such as 22k
+    #[arg(long, value_name = "RESISTANCE", allow_hyphen_values = true)]
+    pub bleeder: Option<String>,
+    /// The voltage to wait for, such as 50V
+    #[arg(long, value_name = "VOLTAGE", allow_hyphen_values = true)]
+    pub touch_voltage: Option<String>,
+    /// Tolerance of the capacitance, such as 20%
+    #[arg(long, value_name = "SHARE", allow_hyphen_values = true)]
+    pub capacitance_tolerance: Option<String>,
+    /// Tolerance of the bleeder, such as 5%
+    #[arg(long, value_name = "SHARE", allow_hyphen_values = true)]
+    pub bleeder_tolerance: Option<String>,
+    /// Also write the bank file that this stands for; an existing file is never overwritten
+    #[arg(long, value_name = "FILE")]
+    pub save: Option<PathBuf>,
+}
+
+#[derive(Args)]
+pub(super) struct LimitsArgs {
+    /// How the list is written
+    #[arg(long, value_enum, default_value_t = ListFormat::Text)]
+    pub format: ListFormat,
+}
+
+/// Formats of a plan. There is no CSV: a plan is not one table.
+#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub(super) enum PlanFormat {
+    Text,
+    Json,
+    Markdown,
+}
+
+/// Formats of a list.
+#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub(super) enum ListFormat {
+    Text,
+    Json,
+    Markdown,
+    Csv,
+}
+
+/// The command line as typed; the error is what to print instead, help and version among it.
+pub(super) fn parse(words: impl Iterator<Item = OsString>, terminal: Terminal) -> Result<Typed, clap::Error> {
+    let command = Typed::command().term_width(terminal.width.clamp(60, 100));
+    Typed::from_arg_matches(&command.try_get_matches_from(words)?)
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn the_command_line_is_consistent() {
+        Typed::command().debug_assert();
+    }
+}

@@ -1,0 +1,23 @@
+//! What a plan says, in the order in which a person needs it.
+
+mod closing;
+mod limits;
+mod ratings;
+mod summary;
+mod waits;
+mod working;
+
+use super::block::Block;
+use crate::plan::Plan;
+
+/// The whole plan as a document.
+pub(super) fn document(plan: &Plan) -> Vec<Block> {
+    let mut blocks = summary::blocks(plan);
+    blocks.extend(waits::blocks(plan));
+    blocks.extend(limits::blocks(plan));
+    blocks.extend(ratings::blocks(plan));
+    blocks.extend(closing::findings(plan));
+    blocks.extend(working::blocks(plan));
+    blocks.extend(closing::footer(plan));
+    blocks
+}
