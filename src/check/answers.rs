@@ -4,6 +4,7 @@ use crate::bank::Bank;
 use crate::circuit::CircuitError;
 use crate::discharge::{Fault, Figure, Model, Scenario, Study, Worst};
 use crate::quantity::Quantity;
+use rayon::prelude::*;
 use std::fmt;
 
 /// The engine could not certify a result: an internal error, and no plan.
@@ -101,7 +102,7 @@ impl FaultAnswers {
             let answers = Answers::under(bank, model, &fault, figures.to_vec())?;
             Ok(FaultAnswers { fault, answers })
         };
-        faults.into_iter().map(under).collect()
+        faults.into_par_iter().map(under).collect()
     }
 
     /// The greatest value of a figure under this fault.

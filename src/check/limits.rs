@@ -248,7 +248,7 @@ fn interpolate(table: &[(Capacitance, Voltage)], farad: f64) -> f64 {
 
 fn rule_text(prepared: &Prepared, governing: Option<&Requirement>) -> String {
     let bounds: Vec<String> = governing.map_or(Vec::new(), |r| r.healthy.iter().map(bound_text).collect());
-    let within = prepared.within.map(|t| duration(t, Direction::Down));
+    let within = prepared.within.map(given);
     match (bounds.is_empty(), within) {
         (true, Some(within)) => format!("a wait of at least {within} before the short is applied"),
         (true, None) => "no figure to check".into(),
@@ -263,6 +263,17 @@ fn bound_text(bound: &Bound) -> String {
         Bound::Charge(q) => exact(*q),
         Bound::InitialCharge(q) => format!("{} at isolation", exact(*q)),
         Bound::Energy(e) => exact(*e),
+    }
+}
+
+/// A time that was given, without the zeros of a computed one.
+fn given(time: Time) -> String {
+    let text = duration(time, Direction::Down);
+    match text.split_once(' ') {
+        Some((number, unit)) if number.contains('.') => {
+            format!("{} {unit}", number.trim_end_matches('0').trim_end_matches('.'))
+        }
+        _ => text,
     }
 }
 

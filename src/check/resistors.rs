@@ -8,6 +8,7 @@ use crate::finding::{Findings, Severity};
 use crate::quantity::{
     Current, Direction, Energy, Power, Quantity, Resistance, Temperature, Voltage, celsius, exact, show,
 };
+use rayon::prelude::*;
 use serde::Serialize;
 
 /// One check against a rating.
@@ -96,6 +97,37 @@ struct Load {
     rise: Option<f64>,
 }
 
+fn is_single(resistor: &Resistor) -> bool {
+    resistor.series == 1 && resistor.parallel == 1
+}
+
+/// The figures of a load, in the order in which [`Load::from`] takes them.
+fn load_figures(resistor: usize, rating: &Rating) -> Vec<Figure> {
+    let mut figures = vec![
+        Figure::StandingPower { resistor },
+        Figure::ResistorVoltage { resistor },
+        Figure::PeakCurrent { resistor },
+        Figure::PeakPower { resistor },
+        Figure::ResistorEnergy { resistor },
+    ];
+    figures.extend(body(rating).map(|body| Figure::BodyRise { resistor, body }));
+    figures
+}
+
+impl Load {
+    fn from(figures: &[Figure], answers: &Answers) -> Self {
+        let worst: Vec<f64> = figures.iter().map(|f| answers.worst(*f)).collect();
+        Load {
+            standing: worst[0],
+            voltage: worst[1],
+            current: worst[2],
+            power: worst[3],
+            energy: worst[4],
+            rise: worst.get(5).copied(),
+        }
+    }
+}
+
 /// The resistors of a bank.
 pub(crate) struct ResistorChecks<'a> {
     pub bank: &'a Bank,
@@ -103,6 +135,12 @@ pub(crate) struct ResistorChecks<'a> {
 }
 
 impl ResistorChecks<'_> {
+    /// What has to be known of the healthy bank: the load of every resistor that is no array.
+    pub fn figures(&self) -> Vec<Figure> {
+        let single = self.bank.description().resistors.iter().filter(|r| is_single(r));
+        single.filter_map(|r| Some(load_figures(self.model.find_resistor(&r.id)?, &r.rating))).flatten().collect()
+    }
+
     /// What has to be known under every fault: the standing power of every resistor.
     pub fn fault_figures(&self) -> Vec<Figure> {
         (0..self.model.resistors.len()).map(|resistor| Figure::StandingPower { resistor }).collect()
@@ -114,12 +152,15 @@ impl ResistorChecks<'_> {
     /// Where the engine can't certify a figure.
     pub fn conclude(
         &self,
+        healthy: &Answers,
         faults: &[FaultAnswers],
         findings: &mut Findings,
     ) -> Result<Vec<ResistorResult>, EngineError> {
+        let resistors = &self.bank.description().resistors;
+        let loads: Vec<Option<Load>> =
+            resistors.par_iter().map(|r| self.load(r, healthy)).collect::<Result<_, EngineError>>()?;
         let mut results = Vec::new();
-        for resistor in &self.bank.description().resistors {
-            let load = self.load(resistor)?;
+        for (resistor, load) in resistors.iter().zip(loads) {
             let result = self.result(resistor, load.as_ref());
             rating_findings(&result, findings);
             self.fault_findings(resistor, &result, faults, findings);
@@ -128,26 +169,16 @@ impl ResistorChecks<'_> {
         Ok(results)
     }
 
-    fn load(&self, resistor: &Resistor) -> Result<Option<Load>, EngineError> {
+    /// What one element bears. A single element stands in the healthy bank's own study; an array is opened up.
+    fn load(&self, resistor: &Resistor, healthy: &Answers) -> Result<Option<Load>, EngineError> {
+        let Some(index) = self.model.find_resistor(&resistor.id) else { return Ok(None) };
+        if is_single(resistor) {
+            return Ok(Some(Load::from(&load_figures(index, &resistor.rating), healthy)));
+        }
         let Some((model, element)) = element_model(self.model, resistor) else { return Ok(None) };
-        let mut figures = vec![
-            Figure::StandingPower { resistor: element },
-            Figure::ResistorVoltage { resistor: element },
-            Figure::PeakCurrent { resistor: element },
-            Figure::PeakPower { resistor: element },
-            Figure::ResistorEnergy { resistor: element },
-        ];
-        figures.extend(body(&resistor.rating).map(|body| Figure::BodyRise { resistor: element, body }));
+        let figures = load_figures(element, &resistor.rating);
         let answers = Answers::healthy(self.bank, &model, figures.clone())?;
-        let worst: Vec<f64> = figures.iter().map(|f| answers.worst(*f)).collect();
-        Ok(Some(Load {
-            standing: worst[0],
-            voltage: worst[1],
-            current: worst[2],
-            power: worst[3],
-            energy: worst[4],
-            rise: worst.get(5).copied(),
-        }))
+        Ok(Some(Load::from(&figures, &answers)))
     }
 
     fn result(&self, resistor: &Resistor, load: Option<&Load>) -> ResistorResult {

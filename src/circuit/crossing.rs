@@ -137,12 +137,15 @@ pub(super) struct Bounds {
     pub greatest: f64,
     pub steepest_down: f64,
     pub steepest_up: f64,
+    pub least_curvature: f64,
+    pub greatest_curvature: f64,
 }
 
 impl Bounds {
     pub fn of(f: &ExpSum, low: f64, high: f64) -> Self {
         let (mut least, mut greatest) = (f.constant(), f.constant());
         let (mut down, mut up) = (0.0, 0.0);
+        let (mut least_curvature, mut greatest_curvature) = (0.0, 0.0);
         let (mut middle, half) = (f.constant(), 0.5 * (high - low));
         for (a, r) in f.terms() {
             let (first, last) = ((-r * low).exp(), (-r * high).exp());
@@ -151,6 +154,8 @@ impl Bounds {
             greatest += most;
             down -= r * most;
             up -= r * fewest;
+            least_curvature += r * r * fewest;
+            greatest_curvature += r * r * most;
             middle += a * (-r * (low + half)).exp();
         }
         // Mean value form: tighter than the sum of the terms on short intervals.
@@ -160,6 +165,8 @@ impl Bounds {
             greatest: greatest.min(middle + reach),
             steepest_down: down,
             steepest_up: up,
+            least_curvature,
+            greatest_curvature,
         }
     }
 }

@@ -33,7 +33,9 @@ impl ExpSum {
             }
             best.0
         };
-        let limit = self.envelope();
+        // No sum of the terms of one sign is ever exceeded.
+        let of_sign = |sign: f64| self.terms().iter().map(|(a, _)| (a * sign).max(0.0)).sum::<f64>();
+        let limit = (self.constant() + of_sign(1.0)).max(of_sign(-1.0) - self.constant());
         if offer(self.value(0.0).abs(), 0.0) >= limit * (1.0 - ACCURACY) {
             return Ok(best);
         }
@@ -56,10 +58,40 @@ impl ExpSum {
             if high - low <= f64::EPSILON * high {
                 continue;
             }
+            if bounds.least_curvature >= 0.0 || bounds.greatest_curvature <= 0.0 {
+                // The slope is monotone: at most one stationary point, which is found at once.
+                if let Some(t) = self.stationary(low, high) {
+                    offer(self.value(t).abs(), t);
+                }
+                continue;
+            }
             let middle = split(low, high);
             open.push((middle, high));
             open.push((low, middle));
         }
         Err(CircuitError::SearchNotClosed)
+    }
+
+    /// The zero of a monotone slope in `[low, high]`, where there is one. The value there is flat, so half the
+    /// digits of the time give all digits of the value.
+    fn stationary(&self, mut low: f64, mut high: f64) -> Option<f64> {
+        let (_, first) = self.value_and_slope(low);
+        let (_, last) = self.value_and_slope(high);
+        if (first > 0.0) == (last > 0.0) {
+            return None;
+        }
+        for _ in 0..200 {
+            let middle = split(low, high);
+            let (_, slope) = self.value_and_slope(middle);
+            if (slope > 0.0) == (first > 0.0) {
+                low = middle;
+            } else {
+                high = middle;
+            }
+            if high - low <= 1e-10 * high {
+                break;
+            }
+        }
+        Some(0.5 * (low + high))
     }
 }

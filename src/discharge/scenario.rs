@@ -66,7 +66,8 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
             faults.push(Fault {
                 name: format!("{} one unit shorted", capacitor.id),
                 id: capacitor.id.clone(),
-                scenarios: vec![Scenario::settled(variation)],
+                // Its voltage is unchanged: the units that are left carry what the string carried.
+                scenarios: vec![Scenario { after: variation, ..Scenario::default() }],
             });
         }
     }

@@ -10,6 +10,7 @@ use super::figure::Figure;
 use super::model::Model;
 use super::scenario::Scenario;
 use crate::circuit::CircuitError;
+use std::collections::HashSet;
 
 /// Up to this many loose values every corner is tried.
 pub(crate) const MOST_CORNERS: usize = 12;
@@ -56,9 +57,7 @@ impl Study<'_> {
         } else {
             self.flip_from_many_starts(&mut best)?;
         }
-        for (index, worst) in best.iter_mut().enumerate() {
-            self.refine(index, worst)?;
-        }
+        self.refine_all(&mut best)?;
         Ok(best)
     }
 
@@ -109,27 +108,66 @@ impl Study<'_> {
                 .collect();
             self.offer(&self.corner(|p| bits[p]), best)?;
         }
-        for index in 0..best.len() {
-            let mut improved = true;
-            while improved && best[index].value.is_finite() {
-                let before = best[index].value;
+        // Corners one flip away from each figure's best corner, until no best corner is new.
+        let mut tried: HashSet<Vec<u64>> = HashSet::new();
+        loop {
+            let fresh: Vec<Vec<f64>> = distinct(best).into_iter().filter(|p| !tried.contains(&bits(p))).collect();
+            if fresh.is_empty() {
+                return Ok(());
+            }
+            for corner in fresh {
+                tried.insert(bits(&corner));
                 for p in 0..count {
                     let range = &self.model.parameters[p];
-                    let mut flipped = best[index].point.clone();
+                    let mut flipped = corner.clone();
                     flipped[p] = if flipped[p] < range.high { range.high } else { range.low };
                     self.offer(&flipped, best)?;
                 }
-                improved = best[index].value > before;
+            }
+        }
+    }
+
+    /// Searches inside the box, for every figure that grows on the way there from its best corner.
+    fn refine_all(&self, best: &mut [Worst]) -> Result<(), CircuitError> {
+        for corner in distinct(best) {
+            // Figures with the same best corner share the solved neighbours.
+            let here: Vec<usize> =
+                (0..best.len()).filter(|i| best[*i].point == corner && best[*i].value.is_finite()).collect();
+            let mut rising = vec![false; best.len()];
+            for point in self.inwards(&corner) {
+                if here.iter().all(|i| rising[*i]) {
+                    break;
+                }
+                let case = self.case(&point)?;
+                for i in here.iter().copied().filter(|i| !rising[*i]).collect::<Vec<_>>() {
+                    let bar = best[i].value * (1.0 + 1e-13);
+                    rising[i] = self.figures[i].of(self.model, &case, bar.max(0.0))? > bar;
+                }
+            }
+            for i in here.into_iter().filter(|i| rising[*i]) {
+                self.refine(i, &mut best[i])?;
             }
         }
         Ok(())
     }
 
+    /// Points on the way from a corner into the box along each value: short, half way, long.
+    fn inwards(&self, corner: &[f64]) -> Vec<Vec<f64>> {
+        let mut points = Vec::with_capacity(3 * corner.len());
+        for (p, range) in self.model.parameters.iter().enumerate() {
+            let here = corner[p];
+            let away = if here - range.low > range.high - here { range.low } else { range.high };
+            for share in [1e-3, 0.5, 0.9] {
+                let mut point = corner.to_vec();
+                point[p] = here + share * (away - here);
+                points.push(point);
+            }
+        }
+        points
+    }
+
     /// Searches inside the box from the best corner of one figure.
     fn refine(&self, index: usize, worst: &mut Worst) -> Result<(), CircuitError> {
-        if !worst.value.is_finite() || !self.rises_inwards(index, worst)? {
-            return Ok(());
-        }
         const MOST_ROUNDS: usize = 40;
         let count = worst.point.len();
         for _ in 0..MOST_ROUNDS {
@@ -149,22 +187,6 @@ impl Study<'_> {
             }
         }
         Ok(())
-    }
-
-    /// True where a step from the corner along some value, short, half way or long, makes the figure greater.
-    fn rises_inwards(&self, index: usize, worst: &Worst) -> Result<bool, CircuitError> {
-        for (p, range) in self.model.parameters.iter().enumerate() {
-            let here = worst.point[p];
-            let away = if here - range.low > range.high - here { range.low } else { range.high };
-            for share in [1e-3, 0.5, 0.9] {
-                let mut point = worst.point.clone();
-                point[p] = here + share * (away - here);
-                if self.value(index, &point)? > worst.value * (1.0 + 1e-13) {
-                    return Ok(true);
-                }
-            }
-        }
-        Ok(false)
     }
 
     /// The best point on the line through the best point so far along `along`: a scan, then golden section around
@@ -228,4 +250,14 @@ impl Study<'_> {
         }
         if reach.0.is_finite() && reach.1.is_finite() { reach } else { (0.0, 0.0) }
     }
+}
+
+fn bits(point: &[f64]) -> Vec<u64> {
+    point.iter().map(|x| x.to_bits()).collect()
+}
+
+/// The best points of all figures, each once.
+fn distinct(best: &[Worst]) -> Vec<Vec<f64>> {
+    let mut seen = HashSet::new();
+    best.iter().filter(|w| seen.insert(bits(&w.point))).map(|w| w.point.clone()).collect()
 }

@@ -74,7 +74,8 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
     let resistors = ResistorChecks { bank, model: &model };
     let capacitors = CapacitorCheck { bank, model: &model };
 
-    let figures = [waits.figures(), stored.figures(), limits.figures(), capacitors.figures()].concat();
+    let figures =
+        [waits.figures(), stored.figures(), limits.figures(), capacitors.figures(), resistors.figures()].concat();
     let healthy = Answers::healthy(bank, &model, figures)?;
     let fault_figures: Vec<Figure> = [
         waits.fault_figures(),
@@ -90,7 +91,7 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
     plan.waits = waits.conclude(&healthy, &under_faults, findings);
     remaining_energy(bank, &model, &plan.waits, findings)?;
     plan.limits = limits.conclude(&healthy, &under_faults, findings);
-    plan.resistors = resistors.conclude(&under_faults, findings)?;
+    plan.resistors = resistors.conclude(&healthy, &under_faults, findings)?;
     plan.capacitors = capacitors.conclude(&healthy, &under_faults, findings);
     notes(bank, &model, &plan.resistors, &plan.capacitors, findings);
     plan.worst_case_search = search_used(model.parameters.len());

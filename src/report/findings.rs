@@ -32,16 +32,19 @@ fn summary(findings: &[&Finding]) -> String {
 
 fn one(finding: &Finding, width: usize) -> Vec<String> {
     let word = finding.severity.word();
-    let mut lines = match &finding.place {
-        Some(place) => wrap(&format!("{word} in {}:{}:{}", clean(&place.file), place.line, place.column), width),
-        None => vec![word.to_string()],
-    };
+    let text = format!("{} [{}]", finding.text, finding.code);
     let indented = |text: &str| -> Vec<String> {
         wrap(text, width - INDENT.len()).iter().map(|line| format!("{INDENT}{line}")).collect()
     };
-    lines.extend(indented(&format!("{} [{}]", finding.text, finding.code)));
-    if let Some(place) = &finding.place {
-        lines.extend(excerpt(place, width));
+    let mut lines = Vec::new();
+    match &finding.place {
+        Some(place) => {
+            let Place { file, line, column, .. } = place;
+            lines.extend(wrap(&format!("{word} in {}:{line}:{column}", clean(file)), width));
+            lines.extend(indented(&text));
+            lines.extend(excerpt(place, width));
+        }
+        None => lines.extend(wrap(&format!("{word}: {text}"), width)),
     }
     if let Some(help) = &finding.help {
         lines.extend(indented(&format!("Instead: {help}")));
@@ -59,7 +62,8 @@ fn excerpt(place: &Place, width: usize) -> Vec<String> {
     let head = format!("{INDENT}{:>5} : ", place.line);
     let room = width - head.len();
     let characters: Vec<char> = shown.chars().collect();
-    let at = (place.column.max(1) - 1).min(characters.len());
+    // The source may be the part of a very long line around the place.
+    let at = place.column.saturating_sub(place.source_column.max(1)).min(characters.len());
     let columns = |part: &[char]| part.iter().map(|c| c.width().unwrap_or(0)).sum::<usize>();
     // Keep what stands before the place as long as there is room for the place itself.
     let mut from = 0;
@@ -81,7 +85,7 @@ mod tests {
     use super::*;
 
     fn at(line: usize, column: usize, length: usize, source: &str) -> Place {
-        Place { file: "bank.yaml".into(), line, column, length, source: source.into() }
+        Place { file: "bank.yaml".into(), line, column, length, source: source.into(), source_column: 1 }
     }
 
     #[test]

@@ -36,8 +36,13 @@ fn document(limits: &[PublishedLimit]) -> Vec<Block> {
 }
 
 fn entry(limit: &PublishedLimit) -> Vec<Labelled> {
-    let edition = limit.edition.as_ref().map_or_else(|| "edition not known".to_string(), |e| format!("edition {e}"));
-    let document = format!("{}, {}; {edition}; seen: {}; {CHECK}", limit.document, limit.clause, limit.seen);
+    // Some documents carry their edition in their number.
+    let edition = match &limit.edition {
+        Some(edition) if limit.document.contains(edition.as_str()) => String::new(),
+        Some(edition) => format!("; edition {edition}"),
+        None => "; edition not known".into(),
+    };
+    let document = format!("{}, {}{edition}; seen: {}; {CHECK}", limit.document, limit.clause, limit.seen);
     let within = within(limit).map_or_else(|| "no time is named".to_string(), whole);
     [
         ("rule", limit.rule.clone()),

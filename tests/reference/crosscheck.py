@@ -5,11 +5,12 @@ refining each change of side; so it shares neither matrices nor root finding wit
 """
 import numpy as np
 from scipy.linalg import expm
-from scipy.optimize import brentq
+from scipy.optimize import brentq, minimize_scalar
 
 from network import Scenario, Topology
 
-STIFF = 1e5
+STIFF = 1e5        # of the rates
+WIDE = 1e6         # of the resistances, and of the capacitances
 STEPS = 4000       # on the grid; a pair of crossings closer than this is not seen, nor needed for a cross check
 
 
@@ -17,6 +18,10 @@ def nominal_waits(bank, rates):
     """A wait for each test point (None: never), or None for a bank too stiff for this."""
     if not rates or rates[-1] > STIFF * rates[0]:
         return None
+    for kind in 'RC':
+        values = [p.value for p in bank.parts if p.kind == kind]
+        if values and max(values) > WIDE * min(values):
+            return None
     t = Topology(bank, Scenario())
     g = np.zeros((t.n, t.n))
     a = np.zeros((len(t.capacitors), t.n))            # capacitor voltages from node potentials
@@ -77,13 +82,27 @@ def nominal_waits(bank, rates):
         i, j = t.pair(names)
         row = potential[i] - potential[j]
         at = lambda x: abs(row @ (expm(m * x) @ z0)) - touch
-        inside = np.abs(path @ row) <= touch
-        if not inside[-1]:
+        seen = np.abs(path @ row)
+        if seen[-1] > touch:
             out.append(None)
             continue
-        if inside.all():
-            out.append(0.0)
-            continue
-        k = np.nonzero(~inside)[0][-1]
-        out.append(float(brentq(at, k * step, (k + 1) * step, xtol=1e-300, rtol=1e-13)))
+        # Past the last moment above on the grid, a peak between two of its moments may still be.
+        above = np.nonzero(seen > touch)[0]
+        k = above[-1] if len(above) else -1
+        low, high = k * step, (k + 1) * step
+        for p in range(STEPS - 1, max(k, 0), -1):
+            if seen[p] >= seen[p - 1] and seen[p] >= seen[p + 1] and seen[p] > 0.99 * touch:
+                peak = minimize_scalar(lambda x: -at(x), bounds=((p - 1) * step, (p + 1) * step), method='bounded',
+                                       options={'xatol': 1e-12 * end})
+                if -peak.fun > 0:
+                    low, high, k = peak.x, (p + 1) * step, p
+                    break
+        out.append(0.0 if k < 0 else float(brentq(at, low, high, xtol=1e-300, rtol=1e-13)))
     return out
+
+
+def agrees(word, value, rates):
+    """Within 1e-7, and within the shortest time constant times that near zero."""
+    if word is None or value is None:
+        return word is None and value is None
+    return abs(word - float(value)) <= 1e-7 * (float(value) + 1 / float(rates[-1]))

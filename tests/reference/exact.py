@@ -16,6 +16,7 @@ from fractions import Fraction
 import mpmath as mp
 
 from bank import Refused
+from eigen import symmetric
 from network import Holding
 
 DIGITS = 120
@@ -165,7 +166,7 @@ class Exact:
 
         half = [forward([schur[i][k] for i in range(m)]) for k in range(m)]       # columns of L^-1 S
         a = [forward([half[k][i] for k in range(m)]) for i in range(m)]           # rows of L^-1 S L^-T
-        rates, q = mp.eigsy(mp.matrix([[(a[i][j] + a[j][i]) / 2 for j in range(m)] for i in range(m)]))
+        rates, q = symmetric([[(a[i][j] + a[j][i]) / 2 for j in range(m)] for i in range(m)])
         order = sorted(range(m), key=lambda k: abs(rates[k]))
         # the graph says how many do not decay; the numbers have to agree, by far
         fastest = max(g[i][i] / self.c[i][i] for i in s)
@@ -173,7 +174,7 @@ class Exact:
             assert abs(rates[k]) <= fastest / mp.mpf(10)**NOISE, 'a trapped mode that decays'
         kept = order[t.trapped:]
         assert all(rates[k] > fastest / mp.mpf(10)**(NOISE - 10) for k in kept), 'a mode that should decay does not'
-        vectors = [[q[i, k] for i in range(m)] for k in kept]
+        vectors = [q[k] for k in kept]
         start = [mp.fsum(low[j][i] * self.y0[j] for j in range(i, m)) for i in range(m)]   # L' y0
         self.rates = [rates[k] for k in kept]
         self.b = [mp.fsum(x * y for x, y in zip(v, start)) for v in vectors]
@@ -218,10 +219,16 @@ class Exact:
         z = self._response(pair)
         cz = [mp.fsum(x * y for x, y in zip(row, z)) for row in self.c]
         rest = mp.fsum(x * y for x, y in zip(cz, self.v_inf))
-        size = mp.fsum(abs(x) for x in cz) * self.scale
-        if abs(rest) < size / mp.mpf(10)**NOISE:
+        if abs(rest) < self.size('charge', pair) / mp.mpf(10)**NOISE:
             rest = mp.mpf(0)
         return self._terms([cz[k] for k in self.t.state], rest)
+
+    def size(self, kind, pair):
+        """What a voltage or charge of this pair could come to: the yardstick for zero."""
+        if kind == 'voltage' or pair[0] == pair[1]:
+            return self.scale
+        z = self._response(pair)
+        return self.scale * mp.fsum(abs(mp.fsum(x * y for x, y in zip(row, z))) for row in self.c)
 
     def charge_by_balance(self, pair):
         """The charge at isolation once more, straight from its definition: with the short in place, the integrals W of
@@ -311,10 +318,28 @@ def _last_above(rest, terms):
     if end == 0:
         return mp.mpf(0)
 
+    # First in doubles, with a margin for their rounding in every comparison; what they can't decide, at all digits.
+    fast = [(float(a), float(rate)) for a, rate in terms]
+    size = abs(float(rest)) + sum(abs(a) for a, _ in fast)
+    push = sum(abs(a * rate) for a, rate in fast)
+    found = _bracket(float(rest), fast, float(end) * (1 + 1e-9), math.exp, 1e-12 * size, 1e-12 * push, 1e-12)
+    if found == UNSURE:
+        found = _bracket(rest, terms, end * (1 + mp.mpf(10)**-20), mp.exp, 0, 0, mp.mpf(10)**(-mp.mp.dps // 2))
+    if found is None:
+        return mp.mpf(0)
+    low, high = (mp.mpf(x) for x in found)
+    return high if low == high else _root(rest, terms, low, high)
+
+
+UNSURE = 'unsure'
+
+
+def _bracket(rest, terms, end, exp, margin, slope_margin, narrow):
+    """An interval that holds the last zero, and in which g is monotone; None if g <= 0 throughout."""
     def look(t):
-        up = down = dup = ddown = mp.mpf(0)
+        up = down = dup = ddown = 0 * rest
         for a, rate in terms:
-            x = a * mp.exp(-rate * t)
+            x = a * exp(-rate * t)
             if a > 0:
                 up += x
                 dup += rate * x
@@ -324,26 +349,30 @@ def _last_above(rest, terms):
         return t, up, down, dup, ddown
 
     g = lambda at: rest + at[1] + at[2]
-    stack = [(look(mp.mpf(0)), look(end * (1 + mp.mpf(10)**-20)))]
+    stack = [(look(0 * rest), look(end))]
     while stack:
         left, right = stack.pop()
-        if rest + left[1] + right[2] <= 0:              # greatest rising part, least falling part
+        if rest + left[1] + right[2] <= -margin:        # greatest rising part, least falling part
             continue
-        falls = -right[3] - left[4] <= 0                # greatest possible slope
-        rises = -left[3] - right[4] >= 0                # least possible slope
+        falls = -right[3] - left[4] <= -slope_margin    # greatest possible slope
+        rises = -left[3] - right[4] >= slope_margin     # least possible slope
         if falls or rises:
+            if margin and (abs(g(left)) <= margin or abs(g(right)) <= margin):
+                return UNSURE
             if g(right) > 0:
-                return right[0]                         # only at an end already proven to be a crossing
+                return right[0], right[0]               # only at an end already proven to be a crossing
             if g(left) > 0:
-                return _root(rest, terms, left[0], right[0])
+                return left[0], right[0]
             continue
-        if right[0] - left[0] < right[0] * mp.mpf(10)**(-mp.mp.dps // 2):
+        if right[0] - left[0] < right[0] * narrow:
+            if margin:
+                return UNSURE
             if g(left) > 0 or g(right) > 0:             # a graze too fine to resolve: the later end counts
-                return right[0]
+                return right[0], right[0]
             continue
         middle = look((left[0] + right[0]) / 2)
         stack += [(left, middle), (middle, right)]
-    return mp.mpf(0)
+    return None
 
 
 def _root(rest, terms, low, high):
@@ -377,7 +406,7 @@ def _close_in(rest, terms, low, high, t, tiny):
         else:
             high = t
         step = t - x / slope if slope else low
-        new = step if low < step < high else (low + high) / 2
+        new = step if low <= step <= high else (low + high) / 2
         if abs(new - t) <= abs(t) * tiny or high - low <= abs(high) * tiny:
             return new
         t = new

@@ -19,6 +19,8 @@ from fast import Fast
 from network import Topology
 
 STIFF = 1e9        # fastest over slowest rate past which doubles are not trusted to rank the points
+FLOOR = mp.mpf(10)**-15    # a figure at a moment under this share of what the bank could show at isolation is given as 0
+SMALL = mp.mpf(10)**-5     # under this share the ranking of corners by doubles is checked exactly, end by end
 CORNERS = 10       # up to so many loose parameters all corners are tried
 
 
@@ -36,6 +38,7 @@ def figure_value(circuit, figure, with_slope=False):
     level = number(level)
     if kind == 'energy':
         x = circuit.energy(level, None if names is None else circuit.t.pair(names))
+        x = x if x > FLOOR * circuit.stored() else mp.mpf(0)
         return (x, None) if with_slope else x
     pair = circuit.t.pair(names)
     terms = circuit.charge(pair) if kind.startswith('charge') else circuit.voltage(pair)
@@ -48,6 +51,7 @@ def figure_value(circuit, figure, with_slope=False):
         x = abs(terms[0])
     else:
         x = abs(value_at(terms, level))
+        x = x if x > FLOOR * circuit.size(kind, pair) else mp.mpf(0)
     return (x, slope) if with_slope else x
 
 
@@ -163,7 +167,8 @@ def worst(bank, scenario, figures, volt, topology=None):
 
 
 def _climb(ask, points, values, corners, stiff):
-    """Pattern search for all figures together; a list of (point, value, flat parameters) for each figure."""
+    """Pattern search for all figures together; for each figure a list of (point, value, greatest relative change seen
+    along each parameter)."""
     d = points.shape[1]
     starts = []                                   # (figure, point, value)
     for f in range(values.shape[1]):
@@ -213,7 +218,7 @@ def _climb(ask, points, values, corners, stiff):
             else:
                 step[k] /= 2 if not stiff else 4
     for k in range(n):
-        found[which[k]].append((x[k], best[k], swing[k] < 1e-11))
+        found[which[k]].append((x[k], best[k], swing[k]))
     return found
 
 
@@ -225,29 +230,55 @@ def _at(bank, box, u):
 def _exact_best(bank, box, circuit_at, figure, corners, corner_values, found, near):
     """Exact figures at the candidates, those inside polished; the greatest counts."""
     top = max([f[1] for f in found] + [corner_values.max()])
+    swing = max((f for f in found), key=lambda f: f[1])[2]
     candidates = []
     for k in np.argsort(-corner_values, kind='stable')[:4]:
         if corner_values[k] >= top * (1 - near):
-            candidates.append((corners[k], np.zeros(len(box.loose), bool), False))
-    for x, value, flat in sorted(found, key=lambda f: -f[1]):
-        # starts that climbed to one peak count once
-        if value >= top * (1 - 1e-6) and not any(np.abs(x - c[0])[~flat].max(initial=0) < 2e-3 and c[2] for c in candidates):
-            candidates.append((x, flat, True))
+            candidates.append((corners[k], []))
+    peaks = []
+    for x, value, moves in sorted(found, key=lambda f: -f[1]):
+        # starts that climbed to one peak count once; a parameter that does not matter goes to its nearest end
+        flat = moves < 1e-11
+        x = np.where(flat, np.round(x), x)
+        if value >= top * (1 - 1e-6) and not any(np.abs(x - y)[~flat].max(initial=0) < 2e-3 for y in peaks):
+            peaks.append(x)
+            candidates.append((x, [i for i, v in enumerate(x) if 0 < v < 1]))
     best = None
-    for x, flat, _ in candidates:
-        u = [mp.mpf(float(v)) for v in x]
-        free = [i for i, v in enumerate(x) if 0 < v < 1 and not flat[i]]
-        # a flat parameter does not matter: its nearest end
-        u = [mp.mpf(round(float(v))) if flat[i] and not free else v for i, v in enumerate(u)]
-        value = lambda w: figure_value(circuit_at(tuple(w)), figure)
-        if free:
-            u = _newton(value, u, free)
+    value = lambda w: figure_value(circuit_at(tuple(w)), figure)
+
+    def consider(u, free):
+        nonlocal best
         got, slope = figure_value(circuit_at(tuple(u)), figure, True)
         if got is None:
-            return Worst(None, _at(bank, box, u), bool(free))
-        if best is None or got > best.value * (1 + mp.mpf(10)**-40):
-            inside = any(0 < v < 1 for i, v in enumerate(u) if i in free)
-            best = Worst(got, _at(bank, box, u), inside, slope)
+            best = Worst(None, _at(bank, box, u), bool(free))
+        elif best is None or got > best.value * (1 + mp.mpf(10)**-40):
+            best = Worst(got, _at(bank, box, u), any(0 < u[i] < 1 for i in free), slope)
+            return True
+        return False
+
+    chosen = None
+    for x, free in candidates:
+        u = [mp.mpf(float(v)) for v in x]
+        if free:
+            u = _newton(value, u, free)
+        if consider(u, free):
+            chosen = u, free
+        if best.value is None:
+            return best
+    # Parameters whose effect drowns in the rounding of doubles: their better end, exactly.
+    u, free = chosen
+    kind, names, level = figure
+    small = kind in ('voltage', 'charge', 'energy') and level and best.value
+    if small:
+        circuit = circuit_at(tuple(u))
+        small = best.value < SMALL * (circuit.stored() if kind == 'energy' else circuit.size(kind, circuit.t.pair(names)))
+    for i in [i for i in range(len(u)) if (small or swing[i] < 1e-8) and i not in free]:
+        other = list(u)
+        other[i] = 1 - u[i]
+        if consider(other, free):
+            u = other
+        if best.value is None:
+            return best
     return best
 
 

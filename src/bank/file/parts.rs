@@ -144,7 +144,7 @@ fn resistor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &[Str
     }
     r.value = reader.need(&group, "value", "22 kohm").and_then(|spot| reader.quantity(&spot)).unwrap_or(r.value);
     r.tolerance = reader.may(&group, "tolerance").and_then(|spot| reader.tolerance(&spot));
-    let (phases, across) = place(reader, &group, terminals, false);
+    let (phases, across) = place(reader, &group, terminals, true);
     r.phases = phases;
     r.across = across.unwrap_or(r.across);
     (r.series, r.parallel) = counts(reader, &group, "array");

@@ -50,8 +50,10 @@ fn single_fault(limit: &LimitResult) -> Option<String> {
 }
 
 fn source(source: &LimitSource) -> String {
-    let edition = source.edition.as_ref().map_or_else(String::new, |e| format!(" ({e})"));
-    let LimitSource { document, clause, seen, .. } = source;
+    let LimitSource { document, clause, edition, seen } = source;
+    // Some documents carry their edition in their number.
+    let edition = edition.as_ref().filter(|e| !document.contains(e.as_str()));
+    let edition = edition.map_or_else(String::new, |e| format!(" ({e})"));
     format!("{document}{edition}, {clause}; seen: {seen}; check the edition in force.")
 }
 

@@ -1,7 +1,7 @@
 //! Ratings: what was found, what is allowed and the margin between them; and what the resistors bear.
 
 use super::super::block::{Block, Grid, Side};
-use super::super::words::{down, glued, typed, up};
+use super::super::words::{down, glued, list, typed, up};
 use crate::plan::{CapacitorResult, Check, Plan, ResistorResult, Verdict};
 use crate::quantity::{CELSIUS_ZERO_K, Direction, Energy, Power, Quantity, Ratio, Temperature, Voltage, show};
 
@@ -14,13 +14,17 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
     if !remarks.is_empty() {
         blocks.push(Block::List(remarks));
     }
-    if !plan.resistors.is_empty() {
-        blocks.push(Block::Section("Resistors, one element each"));
+    if plan.resistors.iter().any(|r| is_loaded(&r)) {
+        blocks.push(Block::Section("Resistors, figures of one element"));
         blocks.push(Block::Table(loads(plan)));
         blocks.push(Block::Paragraph(format!(
             "Air at the resistors: {}. Peaks and energy count from isolation on.",
             up(plan.ambient)
         )));
+    }
+    let idle: Vec<String> = plan.resistors.iter().filter(|r| !is_loaded(r)).map(|r| r.id.clone()).collect();
+    if !idle.is_empty() {
+        blocks.push(Block::Paragraph(format!("Connected by a step only, so without figures here: {}.", list(&idle))));
     }
     blocks
 }
@@ -104,29 +108,38 @@ fn remarks(plan: &Plan) -> Vec<String> {
     plan.resistors.iter().flat_map(|r| r.checks.iter().filter_map(move |c| of(r, c))).collect()
 }
 
+/// True for a part that figures are there for; a tool, a strap or a meter has some only within a procedure.
+fn is_loaded(r: &&ResistorResult) -> bool {
+    r.continuous_power.is_some() || r.peak_power.is_some() || r.energy.is_some()
+}
+
 fn loads(plan: &Plan) -> Grid {
-    let mut grid = Grid::new(&[
+    let body = plan.resistors.iter().any(|r| r.body_temperature.is_some());
+    let mut columns = vec![
         ("Part", Side::Left),
         ("Role", Side::Left),
+        ("Elements", Side::Right),
         ("Value", Side::Right),
         ("Steady power", Side::Right),
         ("Peak power", Side::Right),
         ("Peak current", Side::Right),
         ("Energy", Side::Right),
-        ("Body", Side::Right),
-    ]);
-    for r in &plan.resistors {
-        let elements = if r.elements > 1 { format!(" (one of {})", r.elements) } else { String::new() };
-        grid.row([
+    ];
+    columns.extend(body.then_some(("Body", Side::Right)));
+    let mut grid = Grid::new(&columns);
+    for r in plan.resistors.iter().filter(is_loaded) {
+        let mut cells = vec![
             r.id.clone(),
-            format!("{}{elements}", r.role),
+            r.role.into(),
+            r.elements.to_string(),
             typed(r.value),
             given(r.continuous_power),
             given(r.peak_power),
             given(r.peak_current),
             given(r.energy),
-            given(r.body_temperature),
-        ]);
+        ];
+        cells.extend(body.then(|| given(r.body_temperature)));
+        grid.rows.push(cells);
     }
     grid
 }

@@ -56,7 +56,8 @@ fn holds(plan: &Plan) -> Vec<String> {
     let Some(stored) = &plan.stored else {
         return vec![format!("{first}. Stored energy: not computed by this version.")];
     };
-    if stored.voltage_highest.si() > highest.si() {
+    // Compared as shown: a difference in the 13th digit is no second voltage.
+    if stored.voltage_highest.si() > highest.si() && up(stored.voltage_highest) != up(highest) {
         first.push_str(&format!("; up to {} at a test point", up(stored.voltage_highest)));
     }
     vec![format!("{first}."), energy(stored)]

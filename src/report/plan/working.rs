@@ -10,8 +10,8 @@ const DIGITS: u32 = 6;
 
 pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
     let Some(working) = &plan.working else { return Vec::new() };
-    let text = "Figures have six digits, rounded away from zero. t counts from isolation; x is the value over the \
-                marked one. A wait ends when |v| stays at or below the voltage waited for.";
+    let text = "Figures have six digits, rounded away from zero. t counts from isolation; x is a value over the marked \
+                one, where it is not the same. A wait ends when |v| stays at or below the voltage waited for.";
     let mut blocks = vec![Block::Section("Working"), Block::Paragraph(text.into())];
     blocks.extend(working.iter().flat_map(worked));
     blocks
@@ -20,6 +20,12 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
 fn six<Q: Quantity>(quantity: Q) -> String {
     let direction = if quantity.si() < 0.0 { Direction::Down } else { Direction::Up };
     glued(&show_digits(quantity, DIGITS, direction))
+}
+
+/// An amplitude; far below a millivolt in powers of ten, since what is left by rounding is no hundredth of one.
+fn amplitude(amplitude: Voltage) -> String {
+    let volt = amplitude.si();
+    if volt.abs() < 1e-3 && volt.abs() > 0.0 { glued(&format!("{volt:.5e} V")) } else { six(amplitude) }
 }
 
 fn worked(working: &Working) -> Vec<Block> {
@@ -42,7 +48,10 @@ fn value(value: &WorkingValue) -> String {
         (None, Some(capacitance)) => six(capacitance),
         (None, None) => "not given".into(),
     };
-    format!("{} = {figure} (x {:.6})", clean(&value.id), value.factor)
+    let factor = format!("{:.6}", value.factor);
+    let factor = factor.trim_end_matches('0').trim_end_matches('.');
+    let factor = if factor == "1" { String::new() } else { glued(&format!(" (x {factor})")) };
+    format!("{} = {figure}{factor}", clean(&value.id))
 }
 
 /// tau = R C and t = tau ln(V0/V) with their numbers.
@@ -71,7 +80,7 @@ fn hand(working: &Working, single: &WorkingSingle) -> Vec<Block> {
 fn network(working: &Working) -> Vec<Block> {
     let mut grid = Grid::new(&[("k", Side::Right), ("tau_k", Side::Right), ("a_k", Side::Right)]);
     for (k, mode) in working.modes.iter().enumerate() {
-        grid.row([(k + 1).to_string(), six(mode.tau), six(mode.amplitude)]);
+        grid.row([(k + 1).to_string(), six(mode.tau), amplitude(mode.amplitude)]);
     }
     let settles: Voltage = working.settles_at;
     let wait = working.wait.map_or_else(|| "t: never".into(), |t| format!("last crossing: t = {}", six(t)));

@@ -1,0 +1,313 @@
+//! `plan --format json`, read back with unknown fields denied: a key that is added, lost or renamed shows here.
+
+use crate::run::{MET, Run, demo_banks, run, run_with};
+use approx::assert_relative_eq;
+use serde::Deserialize;
+
+type Pair = [String; 2];
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Plan {
+    ebbvolt: Stamp,
+    bank: Identity,
+    verdict: String,
+    not_computed: Vec<String>,
+    touch_voltage_v: f64,
+    hold_energy_j: Option<f64>,
+    ambient_c: f64,
+    terminals: Vec<String>,
+    charged_to: ChargedTo,
+    stored: Option<Stored>,
+    time_constants_s: Vec<f64>,
+    waits: Vec<Wait>,
+    limits: Vec<Limit>,
+    resistors: Vec<Resistor>,
+    capacitors: Vec<Capacitor>,
+    steps: Vec<serde_json::Value>,
+    recovery: Vec<serde_json::Value>,
+    findings: Vec<Finding>,
+    assumptions: Vec<String>,
+    worst_case_search: String,
+    working: Option<Vec<serde_json::Value>>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Stamp {
+    version: String,
+    format: u32,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Identity {
+    tag: String,
+    title: Option<String>,
+    #[serde(rename = "location")]
+    _location: Option<String>,
+    #[serde(rename = "prepared_by")]
+    _prepared_by: Option<String>,
+    #[serde(rename = "revision")]
+    _revision: Option<String>,
+    #[serde(rename = "notes")]
+    _notes: Option<String>,
+    input_sha256: String,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct ChargedTo {
+    nominal_v: f64,
+    highest_v: f64,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Stored {
+    energy_nominal_j: f64,
+    energy_highest_j: f64,
+    charge_highest_c: f64,
+    capacitance_f: Option<f64>,
+    voltage_highest_v: f64,
+    bands: Vec<Band>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Band {
+    hazard: String,
+    source: String,
+    seen: String,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Wait {
+    across: Pair,
+    nominal_s: Option<f64>,
+    slowest_s: Option<f64>,
+    settles_at_v: f64,
+    at_isolation_v: f64,
+    worst_point: Vec<Worst>,
+    faults: Vec<Fault>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Worst {
+    id: String,
+    factor: f64,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Fault {
+    fault: String,
+    wait_s: Option<f64>,
+    settles_at_v: f64,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Limit {
+    id: String,
+    rule: String,
+    source: Option<serde_json::Value>,
+    across: Pair,
+    within_s: Option<f64>,
+    met: Option<bool>,
+    single_fault_met: Option<bool>,
+    single_fault_asked: bool,
+    single_fault_missed_by: Option<String>,
+    voltage_v: f64,
+    charge_c: f64,
+    energy_j: f64,
+    holds_from_s: Option<f64>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Resistor {
+    id: String,
+    role: String,
+    value_ohm: f64,
+    elements: u32,
+    continuous_power_w: Option<f64>,
+    allowed_power_w: Option<f64>,
+    element_voltage_v: Option<f64>,
+    peak_current_a: Option<f64>,
+    peak_power_w: Option<f64>,
+    energy_j: Option<f64>,
+    body_temperature_c: Option<f64>,
+    checks: Vec<Check>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Check {
+    check: String,
+    unit: String,
+    found: Option<f64>,
+    allowed: Option<f64>,
+    verdict: String,
+    remark: Option<String>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Capacitor {
+    id: String,
+    voltage_highest_v: f64,
+    rated_v: Option<f64>,
+    voltage_fault_v: f64,
+    #[serde(rename = "worst_fault")]
+    _worst_fault: Option<String>,
+    verdict: String,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Finding {
+    severity: String,
+    code: String,
+    text: String,
+    #[serde(rename = "help")]
+    _help: Option<String>,
+    place: Option<Place>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Place {
+    line: usize,
+    column: usize,
+    length: usize,
+}
+
+fn read(run: &Run) -> Plan {
+    assert!(run.out.ends_with("}\n"), "{}", run.err);
+    serde_json::from_str(&run.out).unwrap_or_else(|e| panic!("{e}: {}", run.out))
+}
+
+/// The exit status that belongs to a verdict.
+fn status(verdict: &str) -> i32 {
+    match verdict {
+        "met" => 0,
+        "not met" => 1,
+        "incomplete" => 3,
+        other => panic!("{other} is no verdict of a plan"),
+    }
+}
+
+#[test]
+fn every_example_bank_has_the_documented_keys_and_finite_numbers() {
+    for bank in demo_banks() {
+        let run = run(&["plan", bank.to_str().expect("UTF-8"), "--format", "json", "--working"]);
+        let plan = read(&run);
+        assert_eq!(run.status, status(&plan.verdict));
+        assert_eq!(plan.ebbvolt.version, env!("CARGO_PKG_VERSION"));
+        assert_eq!(plan.ebbvolt.format, 1);
+        assert!(!plan.bank.tag.is_empty() && plan.bank.title.is_some());
+        assert!(plan.bank.input_sha256.len() == 64 && plan.bank.input_sha256.chars().all(|c| c.is_ascii_hexdigit()));
+        assert!(
+            plan.terminals.len() >= 2 && plan.ambient_c > 0.0 && plan.charged_to.highest_v >= plan.charged_to.nominal_v
+        );
+        assert!(plan.not_computed.is_empty() && plan.steps.is_empty() && plan.recovery.is_empty());
+        assert!(plan.time_constants_s.windows(2).all(|pair| pair[0] >= pair[1]), "slowest first");
+        assert!(!plan.worst_case_search.is_empty() && !plan.assumptions.is_empty());
+        assert!(plan.working.is_some_and(|working| !working.is_empty()));
+        let stored = plan.stored.expect("stored energy");
+        assert!(stored.energy_highest_j >= stored.energy_nominal_j && stored.charge_highest_c > 0.0);
+        assert!(stored.capacitance_f.is_some() && stored.voltage_highest_v > 0.0);
+        for band in stored.bands {
+            assert!(![band.hazard, band.source, band.seen].contains(&String::new()));
+        }
+        for wait in &plan.waits {
+            assert!(wait.slowest_s.is_none() || wait.slowest_s >= wait.nominal_s);
+            assert!(wait.settles_at_v >= 0.0 && wait.at_isolation_v >= 0.0);
+            assert!(wait.slowest_s.is_some() || wait.settles_at_v > plan.touch_voltage_v);
+            assert!(wait.worst_point.iter().all(|worst| !worst.id.is_empty() && worst.factor > 0.0));
+            assert!(
+                wait.faults
+                    .iter()
+                    .all(|f| f.settles_at_v >= 0.0 && f.fault.contains(' ') && f.wait_s.is_none_or(|wait| wait >= 0.0))
+            );
+        }
+        check_parts(&plan.resistors, &plan.capacitors);
+        check_findings(&plan.findings);
+    }
+}
+
+fn check_parts(resistors: &[Resistor], capacitors: &[Capacitor]) {
+    for r in resistors {
+        assert!(!r.id.is_empty() && !r.role.is_empty() && r.value_ohm > 0.0 && r.elements >= 1);
+        let figures = [r.continuous_power_w, r.allowed_power_w, r.element_voltage_v, r.peak_current_a, r.peak_power_w];
+        assert!(figures.iter().chain(&[r.energy_j, r.body_temperature_c]).flatten().all(|&figure| figure >= 0.0));
+        for c in &r.checks {
+            assert!(!c.check.is_empty() && ["W", "V", "J", "C"].contains(&c.unit.as_str()));
+            let holds = c.found.zip(c.allowed).map(|(found, allowed)| found <= allowed);
+            match c.verdict.as_str() {
+                "met" => assert!(holds != Some(false)),
+                "not met" => assert!(holds != Some(true)),
+                verdict => assert!(verdict == "not checked" && (holds.is_none() || c.remark.is_some()), "{verdict}"),
+            }
+        }
+    }
+    for c in capacitors {
+        let expected = match c.rated_v {
+            Some(rated) if c.voltage_highest_v <= rated => "met",
+            Some(_) => "not met",
+            None => "not checked",
+        };
+        assert_eq!(c.verdict, expected, "{}", c.id);
+        assert!(c.voltage_fault_v >= 0.0);
+    }
+}
+
+fn check_findings(findings: &[Finding]) {
+    let grave =
+        |finding: &Finding| ["danger", "warning", "caution", "note"].iter().position(|s| *s == finding.severity);
+    assert!(findings.iter().all(|finding| grave(finding).is_some()));
+    assert!(findings.windows(2).all(|pair| grave(&pair[0]) <= grave(&pair[1])), "the gravest first");
+    for finding in findings {
+        let kebab = |c: char| c.is_ascii_lowercase() || c.is_ascii_digit() || c == '-';
+        assert!(finding.code.chars().all(kebab) && !finding.text.is_empty(), "{}", finding.code);
+        assert!(finding.place.as_ref().is_none_or(|p| p.line >= 1 && p.column >= 1 && p.length >= 1));
+    }
+}
+
+#[test]
+fn one_capacitance_and_one_bleeder_have_the_figures_of_the_closed_form() {
+    let plan = read(&run_with(&["plan", "-", "--format", "json"], MET.as_bytes()));
+    let (c, r) = (3300e-6, 22e3);
+    let close = |found: f64, expected: f64| assert_relative_eq!(found, expected, max_relative = 1e-9);
+    close(plan.time_constants_s[0], r * c);
+    let stored = plan.stored.expect("stored energy");
+    close(stored.energy_nominal_j, 0.5 * c * 565.0 * 565.0);
+    close(stored.energy_highest_j, 0.5 * 1.2 * c * 750.0 * 750.0);
+    close(stored.charge_highest_c, 1.2 * c * 750.0);
+    close(stored.capacitance_f.expect("a capacitance"), c);
+    let wait = &plan.waits[0];
+    assert_eq!(wait.across, ["P", "N"].map(String::from));
+    close(wait.nominal_s.expect("a wait"), r * c * (565.0f64 / 50.0).ln());
+    close(wait.slowest_s.expect("a wait"), 1.05 * r * 1.2 * c * (750.0f64 / 50.0).ln());
+    let open = &wait.faults[0];
+    assert_eq!((open.fault.as_str(), open.wait_s), ("R1 open", None));
+    close(open.settles_at_v, 750.0);
+    let limit = &plan.limits[0];
+    assert_eq!((limit.id.as_str(), limit.met, limit.single_fault_met), ("site-rule", Some(true), Some(false)));
+    assert!(!limit.single_fault_asked && limit.source.is_none() && limit.rule.contains("50 V"));
+    assert_eq!(limit.single_fault_missed_by.as_deref(), Some("R1 open"));
+    assert_eq!((limit.across.clone(), limit.within_s), (wait.across.clone(), Some(300.0)));
+    let tau = 1.05 * r * 1.2 * c;
+    let left = 750.0 * (-300.0f64 / tau).exp();
+    close(limit.voltage_v, left);
+    close(limit.charge_c, 1.2 * c * left);
+    close(limit.energy_j, 0.5 * 1.2 * c * left * left);
+    close(limit.holds_from_s.expect("it holds"), tau * 15.0f64.ln());
+    close(plan.resistors[0].continuous_power_w.expect("a power"), 750.0 * 750.0 / (0.95 * r));
+    close(plan.resistors[0].energy_j.expect("an energy"), 0.5 * 1.2 * c * 750.0 * 750.0);
+    assert_eq!((plan.hold_energy_j, plan.working.is_none()), (None, true));
+    close(plan.charged_to.nominal_v, 565.0);
+}

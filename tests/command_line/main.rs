@@ -1,0 +1,8 @@
+//! The command line as a person or a script meets it: the built program, its streams and its exit status.
+
+mod help;
+mod input;
+mod json;
+mod run;
+mod text;
+mod verdict;

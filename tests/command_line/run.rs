@@ -1,0 +1,90 @@
+//! Runs the program that cargo built, and banks (invented) to run it on.
+
+use std::io::Write;
+use std::path::PathBuf;
+use std::process::{Command, Stdio};
+use std::sync::atomic::{AtomicU32, Ordering};
+
+/// What one run left behind.
+pub struct Run {
+    pub status: i32,
+    pub out: String,
+    pub err: String,
+}
+
+/// The program with these words, its environment without anything that changes colours.
+pub fn program(words: &[&str]) -> Command {
+    let mut command = Command::new(env!("CARGO_BIN_EXE_ebbvolt"));
+    command.args(words).env_remove("NO_COLOR").env_remove("COLUMNS").current_dir(env!("CARGO_TARGET_TMPDIR"));
+    command
+}
+
+/// Runs it with nothing on standard input.
+pub fn run(words: &[&str]) -> Run {
+    run_with(words, b"")
+}
+
+/// Runs it with these bytes on standard input.
+pub fn run_with(words: &[&str], stdin: &[u8]) -> Run {
+    let mut command = program(words);
+    command.stdin(Stdio::piped()).stdout(Stdio::piped()).stderr(Stdio::piped());
+    let mut child = command.spawn().expect("the program starts");
+    let mut pipe = child.stdin.take().expect("standard input is a pipe");
+    // A program that refuses its input need not read it all.
+    let bytes = stdin.to_vec();
+    let writer = std::thread::spawn(move || {
+        let _ = pipe.write_all(&bytes);
+    });
+    let output = child.wait_with_output().expect("the program ends");
+    writer.join().expect("the writer ends");
+    let text = |bytes: Vec<u8>| String::from_utf8(bytes).expect("output is UTF-8");
+    Run {
+        status: output.status.code().expect("the program ends by itself"),
+        out: text(output.stdout),
+        err: text(output.stderr),
+    }
+}
+
+/// A name for a file that no other test uses; nothing is there yet.
+pub fn unused_file() -> PathBuf {
+    static NEXT: AtomicU32 = AtomicU32::new(0);
+    let number = NEXT.fetch_add(1, Ordering::Relaxed);
+    let path = PathBuf::from(env!("CARGO_TARGET_TMPDIR")).join(format!("cli-{}-{number}.yaml", std::process::id()));
+    let _ = std::fs::remove_file(&path);
+    path
+}
+
+/// The example banks of the data folder, by file name.
+pub fn demo_banks() -> Vec<PathBuf> {
+    let folder = concat!(env!("CARGO_MANIFEST_DIR"), "/data/banks");
+    let entries = std::fs::read_dir(folder).expect("the data folder is there").map(|e| e.expect("an entry").path());
+    let mut banks: Vec<PathBuf> = entries.filter(|path| path.extension().is_some_and(|e| e == "yaml")).collect();
+    banks.sort();
+    banks
+}
+
+/// One capacitance and one bleeder, everything given, everything met.
+pub const MET: &str = "\
+ebbvolt: 1
+tag: PU-09
+ambient: 40 °C
+touch_voltage: 50 V
+charged_to: {nominal: 565 V, highest: 750 V}
+capacitors:
+  - {id: C1, value: 3300 uF, tolerance: 20 %, across: [P, N], rated: 800 V}
+resistors:
+  - id: R1
+    role: bleeder
+    value: 22 kohm
+    tolerance: 5 %
+    across: [P, N]
+    rating: {power: 50 W, full_to: 70 °C, zero_at: 155 °C, voltage: 1 kV}
+limits:
+  - {id: site-rule, voltage: 50 V, within: 5 min}
+";
+
+/// `MET` with one text replaced by another.
+pub fn met_but(old: &str, new: &str) -> String {
+    assert!(MET.contains(old), "{old}");
+    MET.replace(old, new)
+}

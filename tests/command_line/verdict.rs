@@ -1,0 +1,94 @@
+//! The exit status is the verdict.
+
+use crate::run::{MET, met_but, program, run, run_with};
+use std::io::Write;
+use std::process::Stdio;
+
+fn status(bank: &str) -> i32 {
+    let run = run_with(&["plan", "-"], bank.as_bytes());
+    assert_eq!(run.err, "", "{bank}");
+    assert!(!run.out.is_empty());
+    run.status
+}
+
+#[test]
+fn all_limits_met_and_no_rating_exceeded_is_status_0() {
+    assert_eq!(status(MET), 0);
+}
+
+#[test]
+fn a_limit_that_is_not_met_is_status_1() {
+    assert_eq!(status(&met_but("within: 5 min", "within: 4 min")), 1);
+}
+
+#[test]
+fn a_limit_that_a_single_fault_breaks_decides_only_where_it_asks_for_it() {
+    assert_eq!(status(&met_but("within: 5 min", "within: 5 min, single_fault: true")), 1);
+    assert_eq!(status(&met_but("within: 5 min", "within: 5 min, single_fault: false")), 0);
+}
+
+#[test]
+fn a_rating_that_is_exceeded_is_status_1_and_one_that_is_absent_is_not() {
+    assert_eq!(status(&met_but("power: 50 W", "power: 25 W")), 1);
+    assert_eq!(status(&met_but("voltage: 1 kV", "voltage: 700 V")), 1);
+    assert_eq!(status(&met_but("rated: 800 V", "rated: 700 V")), 1);
+    assert_eq!(status(&met_but(", rated: 800 V", "")), 0);
+}
+
+#[test]
+fn a_wait_of_never_with_every_part_healthy_is_status_1() {
+    let start = MET.find("resistors:").expect("resistors");
+    let run = run_with(&["plan", "-"], &MET.as_bytes()[..start]);
+    assert_eq!(run.status, 1, "{}", run.err);
+    assert!(run.out.contains("NEVER"), "{}", run.out);
+    assert!(run.out.contains("750 V"), "{}", run.out);
+}
+
+#[test]
+fn a_part_that_is_not_computed_is_status_3_under_a_heading_that_says_so() {
+    for part in [
+        "procedure:\n  - {step: Lock out and isolate, for: 0 s}\n",
+        "sinks:\n  - {id: K1, kind: constant-current, value: 40 mA, across: [P, N], stops_below: 30 V}\n",
+        "hold_energy: 10 J\n",
+    ] {
+        let run = run_with(&["plan", "-"], format!("{MET}{part}").as_bytes());
+        assert_eq!(run.status, 3, "{part}: {}", run.err);
+        assert!(run.out.starts_with("*** INCOMPLETE ***\n"), "{}", run.out);
+        assert!(run.out.contains("NOT TO BE RELIED ON"), "{}", run.out);
+    }
+}
+
+#[test]
+fn the_example_and_the_draft_give_plans() {
+    assert!(run(&["plan", "--example"]).status <= 1);
+    let draft = run(&["draft"]);
+    assert_eq!((draft.status, draft.err.as_str()), (0, ""));
+    assert_eq!(status(&draft.out), 0);
+}
+
+#[test]
+fn a_broken_pipe_keeps_the_verdict() {
+    for (bank, verdict) in [(MET.to_string(), 0), (met_but("within: 5 min", "within: 4 min"), 1)] {
+        let mut child = program(&["plan", "-"])
+            .stdin(Stdio::piped())
+            .stdout(Stdio::piped())
+            .stderr(Stdio::piped())
+            .spawn()
+            .expect("the program starts");
+        // The reader is gone before there is anything to read.
+        drop(child.stdout.take());
+        child.stdin.take().expect("a pipe").write_all(bank.as_bytes()).expect("the bank is read");
+        let output = child.wait_with_output().expect("the program ends");
+        assert_eq!(output.status.code(), Some(verdict));
+        assert!(output.stderr.is_empty());
+    }
+}
+
+#[cfg(target_os = "linux")]
+#[test]
+fn a_full_disk_is_status_2() {
+    let full = std::fs::OpenOptions::new().write(true).open("/dev/full").expect("Linux has /dev/full");
+    let output = program(&["draft"]).stdout(full).stderr(Stdio::piped()).output().expect("the program runs");
+    assert_eq!(output.status.code(), Some(2));
+    assert!(String::from_utf8_lossy(&output.stderr).contains("can't be written"));
+}
