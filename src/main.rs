@@ -6,11 +6,6 @@ use std::process::ExitCode;
 
 fn main() -> ExitCode {
     let mut out = BufWriter::new(stdout().lock());
-    ExitCode::from(run(
-        std::env::args_os(),
-        &mut stdin().lock(),
-        &mut out,
-        &mut stderr().lock(),
-        Terminal::of_process(),
-    ))
+    // Standard error stays unlocked: a thread of the engine that panics has to be able to say so.
+    ExitCode::from(run(std::env::args_os(), &mut stdin().lock(), &mut out, &mut stderr(), Terminal::of_process()))
 }

@@ -51,7 +51,8 @@ impl Descriptor {
 
     /// States whose capacitor voltages are those of the node potentials `v`.
     fn states(&self, v: &DVector<f64>) -> DVector<f64> {
-        let inner = (self.range.transpose() * &self.capacitance * &self.range).try_inverse().expect("positive definite");
+        let inner =
+            (self.range.transpose() * &self.capacitance * &self.range).try_inverse().expect("positive definite");
         inner * self.range.transpose() * &self.capacitance * v
     }
 
@@ -164,7 +165,14 @@ fn a_ladder_with_a_floating_stage_follows_the_runge_kutta_method() {
     let network = Network {
         nodes: 6,
         reference: 0,
-        resistors: vec![edge(1, 2, 2.0), edge(2, 3, 1.0), edge(3, 0, 5.0), edge(3, 4, 3.0), edge(5, 0, 4.0), edge(1, 0, 9.0)],
+        resistors: vec![
+            edge(1, 2, 2.0),
+            edge(2, 3, 1.0),
+            edge(3, 0, 5.0),
+            edge(3, 4, 3.0),
+            edge(5, 0, 4.0),
+            edge(1, 0, 9.0),
+        ],
         capacitors: vec![edge(1, 0, 1.0), edge(2, 0, 0.5), edge(4, 5, 0.7), edge(1, 2, 0.2)],
     };
     let start = [0.0, 100.0, 40.0, 0.0, 90.0, 10.0];
@@ -172,9 +180,8 @@ fn a_ladder_with_a_floating_stage_follows_the_runge_kutta_method() {
     let y0 = reference.states(&DVector::from_vec(start[1..].to_vec()));
     let voltages = engine(&network, &start);
     let end = 12.0;
-    let mut stepper = Dopri5::new(
-        Ode(reference.rate.clone()), 0.0, end, 0.5, State::from_vec(y0.as_slice().to_vec()), 1e-10, 1e-10,
-    );
+    let mut stepper =
+        Dopri5::new(Ode(reference.rate.clone()), 0.0, end, 0.5, State::from_vec(y0.as_slice().to_vec()), 1e-10, 1e-10);
     stepper.integrate().expect("integrates");
     for (t, y) in stepper.x_out().iter().zip(stepper.y_out()) {
         let expected = reference.potentials(&DVector::from_vec(y.as_slice().to_vec()));

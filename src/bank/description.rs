@@ -302,7 +302,7 @@ pub enum Rule {
     Own {
         /// At least one of these has to hold.
         any_of: Vec<Bound>,
-        /// From this time after isolation on.
+        /// From this time after isolation on; zero only where every bound is on the charge at isolation.
         within: Time,
     },
 }
@@ -318,6 +318,13 @@ pub enum Bound {
     InitialCharge(Charge),
     /// Energy stored in all capacitors connected to the pair.
     Energy(Energy),
+}
+
+impl Bound {
+    /// True for a bound on the state at isolation, which needs no time.
+    pub fn is_of_isolation(&self) -> bool {
+        matches!(self, Bound::InitialCharge(_))
+    }
 }
 
 /// One step of a procedure.

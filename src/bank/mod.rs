@@ -29,7 +29,7 @@ impl Bank {
     /// Checks a description.
     ///
     /// # Errors
-    /// All that is wrong with it (the first thousand problems), each with its path in the bank file's own keys.
+    /// All that is wrong with it (the first two hundred problems), each with its path in the bank file's own keys.
     pub fn new(description: Description) -> Result<Self, Vec<Problem>> {
         let (problems, _) = validate::check(&description, &validate::Doubt::default());
         if problems.is_empty() { Ok(Bank(description)) } else { Err(problems) }

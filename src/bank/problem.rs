@@ -67,6 +67,8 @@ pub struct Problem {
     pub code: &'static str,
     /// Where in the description.
     pub path: Path,
+    /// The other place that it is about, where there is one: the first of two that collide.
+    pub other: Option<Path>,
     /// What is wrong.
     pub text: String,
     /// What to write instead.
@@ -76,6 +78,9 @@ pub struct Problem {
 impl fmt::Display for Problem {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         write!(f, "{}: {}", self.path, self.text)?;
+        if let Some(other) = &self.other {
+            write!(f, " (see {other})")?;
+        }
         self.help.as_ref().map_or(Ok(()), |help| write!(f, "; {help}"))
     }
 }
@@ -83,7 +88,7 @@ impl fmt::Display for Problem {
 impl std::error::Error for Problem {}
 
 /// More problems than this are counted only: nobody reads them, and a hostile file could make millions.
-const KEPT: usize = 1000;
+const KEPT: usize = 200;
 
 /// Where the checks put what they find.
 #[derive(Debug, Default)]
@@ -93,6 +98,21 @@ pub(super) struct Sink {
 }
 
 impl Sink {
+    /// Adds a problem that is about a second place as well.
+    pub(super) fn push_pair<H: Into<Option<String>>>(
+        &mut self,
+        code: &'static str,
+        path: Path,
+        other: Path,
+        words: impl FnOnce() -> (String, H),
+    ) {
+        let before = self.problems.len();
+        self.push(code, path, words);
+        if let Some(problem) = self.problems.get_mut(before) {
+            problem.other = Some(other);
+        }
+    }
+
     /// Adds a problem; text and help are made only where it is kept.
     pub(super) fn push<H: Into<Option<String>>>(
         &mut self,
@@ -105,7 +125,7 @@ impl Sink {
             return;
         }
         let (text, help) = words();
-        self.problems.push(Problem { code, path, text, help: help.into() });
+        self.problems.push(Problem { code, path, other: None, text, help: help.into() });
     }
 
     /// The problems that were kept, and how many more there were.

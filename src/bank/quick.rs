@@ -142,9 +142,9 @@ mod tests {
         assert_eq!(notes, Findings::new());
         let d = bank.description();
         assert_eq!(d.tag, "QUICK");
-        assert_eq!((d.charged_to.nominal.si(), d.charged_to.highest.si()), (565.0, 750.0));
+        assert!((d.charged_to.nominal.si() - 565.0).abs() < 1e-9 && (d.charged_to.highest.si() - 750.0).abs() < 1e-9);
         assert_eq!(d.capacitors[0].tolerance.map(|t| t.highest_factor()), Some(1.2));
-        assert_eq!(d.resistors[0].value.si(), 22e3);
+        assert!((d.resistors[0].value.si() - 22e3).abs() < 1e-9);
         assert!(!d.charged_to.margin_given || form.highest.is_some());
     }
 
@@ -161,7 +161,15 @@ mod tests {
         };
         let findings = quick_text(&bad).expect_err("all are bad");
         let texts: Vec<_> = findings.as_slice().iter().map(|f| f.text.as_str()).collect();
-        for flag in ["charged-to", "highest", "capacitance", "capacitance-tolerance", "bleeder", "bleeder-tolerance", "touch-voltage"] {
+        for flag in [
+            "charged-to",
+            "highest",
+            "capacitance",
+            "capacitance-tolerance",
+            "bleeder",
+            "bleeder-tolerance",
+            "touch-voltage",
+        ] {
             assert!(texts.iter().any(|text| text.starts_with(&format!("`--{flag}`"))), "{flag}: {texts:?}");
         }
         let bad = QuickForm { highest: Some("500 V".into()), ..form() };

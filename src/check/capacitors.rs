@@ -2,7 +2,7 @@
 
 use super::{Answers, FaultAnswers, Verdict, si, si_or_null};
 use crate::bank::Bank;
-use crate::bank::description::{Capacitor};
+use crate::bank::description::Capacitor;
 use crate::discharge::{Figure, Model};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{Direction, Quantity, Tolerance, Voltage, exact, show};

@@ -3,7 +3,7 @@
 use super::waits::listed;
 use super::{CapacitorResult, ResistorResult, Verdict};
 use crate::bank::Bank;
-use crate::bank::description::{Role};
+use crate::bank::description::Role;
 use crate::circuit::Network;
 use crate::discharge::Model;
 use crate::finding::{Findings, Severity};

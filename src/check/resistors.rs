@@ -215,7 +215,9 @@ impl ResistorChecks<'_> {
             fault.worst(Figure::StandingPower { resistor: index }) / f64::from(elements)
         };
         let worst = faults.iter().max_by(|x, y| per_element(x).total_cmp(&per_element(y)));
-        let Some(fault) = worst.filter(|f| Verdict::at_most(per_element(f), allowed.si()) != Verdict::Met) else { return };
+        let Some(fault) = worst.filter(|f| Verdict::at_most(per_element(f), allowed.si()) != Verdict::Met) else {
+            return;
+        };
         if result.checks.iter().all(|c| c.verdict != Verdict::NotMet) {
             findings.add(
                 Severity::Warning,

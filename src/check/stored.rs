@@ -74,9 +74,10 @@ impl StoredCheck<'_> {
     /// What the bank holds.
     pub fn conclude(&self, healthy: &Answers, findings: &mut Findings) -> Stored {
         let charged = &self.bank.description().charged_to;
-        let starts = self.figures().into_iter().filter(|f| {
-            matches!(f, Figure::Start { .. } | Figure::CapacitorVoltageAt { .. })
-        });
+        let starts = self
+            .figures()
+            .into_iter()
+            .filter(|f| matches!(f, Figure::Start { .. } | Figure::CapacitorVoltageAt { .. }));
         let greatest = starts.map(|f| healthy.worst(f)).fold(charged.highest.si(), f64::max);
         let energy_highest = Energy::from_si(healthy.worst(Figure::StoredAt { t: 0.0 }));
         let voltage_highest = Voltage::from_si(greatest);

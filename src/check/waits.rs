@@ -1,8 +1,8 @@
 //! How long to wait at each test point.
 
 use super::{Answers, FaultAnswers, Pair, si, si_or_null};
-use crate::bank::description::Role;
 use crate::bank::Bank;
+use crate::bank::description::Role;
 use crate::discharge::{Figure, Model};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{Direction, Quantity, Time, Voltage, duration, exact, show};

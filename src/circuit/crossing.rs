@@ -28,7 +28,7 @@ impl LastExit {
 }
 
 /// Relative width to which a crossing is bracketed.
-const BRACKET: f64 = 1e-12;
+const BRACKET: f64 = 2e-13;
 
 /// Values that differ by less than this share of the largest term are equal: a few roundings of a double.
 const ROUNDING: f64 = 8.0 * f64::EPSILON;

@@ -62,7 +62,8 @@ impl WeightedGraph {
         let mut done = Vec::with_capacity(nodes.len());
         while !nodes.is_empty() {
             let degree = |n: usize| self.neighbours(n).len();
-            let at = if nodes.len() == 1 { 0 } else { (0..nodes.len()).min_by_key(|at| degree(nodes[*at])).unwrap_or(0) };
+            let at =
+                if nodes.len() == 1 { 0 } else { (0..nodes.len()).min_by_key(|at| degree(nodes[*at])).unwrap_or(0) };
             done.push(self.eliminate(nodes.remove(at)));
         }
         done

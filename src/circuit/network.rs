@@ -91,21 +91,10 @@ impl Network {
         (0..self.nodes).map(|n| by_capacitance[joined(n)].unwrap_or(0.0)).collect()
     }
 
-    /// Capacitor voltages in volt right after charge could flow freely between capacitors that form loops: the
-    /// charge of every node is kept (an ideal switch has just closed). Given voltages that agree stay as they are.
-    pub(super) fn redistributed(&self, voltages: &[f64]) -> Vec<f64> {
-        let same: Vec<usize> = (0..self.nodes).collect();
-        self.voltages_of_equal_charge(voltages, &same)
-    }
-
     /// Capacitor voltages in volt at infinite time: resistors have made their nodes equal, and each such part has
     /// kept its charge. Exactly zero where nothing is trapped.
     pub(super) fn settled(&self, voltages: &[f64]) -> Vec<f64> {
-        self.voltages_of_equal_charge(voltages, &self.resistive_parts())
-    }
-
-    /// Capacitor voltages after all nodes with the same `label` were joined, each joint keeping its charge.
-    fn voltages_of_equal_charge(&self, voltages: &[f64], label: &[usize]) -> Vec<f64> {
+        let label = self.resistive_parts();
         let mut charge = vec![0.0; self.nodes];
         let mut sets = Sets::new(self.nodes);
         for (c, u) in self.capacitors.iter().zip(voltages) {

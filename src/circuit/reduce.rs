@@ -66,8 +66,7 @@ pub(super) fn reduce(network: &Network) -> Reduced {
             let conductance = mesh.weight(a, b);
             if conductance > 0.0 && !is_bare(a) && !is_bare(b) {
                 let root = conductance.sqrt();
-                let mut row =
-                    Row { states: difference(&paths[a], &paths[b]), groups: vec![0.0; floating.len()] };
+                let mut row = Row { states: difference(&paths[a], &paths[b]), groups: vec![0.0; floating.len()] };
                 if group[a] != group[b] {
                     number(a).into_iter().for_each(|k| row.groups[k] = 1.0);
                     number(b).into_iter().for_each(|k| row.groups[k] = -1.0);

@@ -29,8 +29,7 @@ impl Modes {
             network.check_loops(voltages)?;
         }
         let nothing_trapped = self.rates.len() == self.tree.len();
-        let settled_all =
-            if nothing_trapped { vec![0.0; voltages.len()] } else { network.settled(voltages) };
+        let settled_all = if nothing_trapped { vec![0.0; voltages.len()] } else { network.settled(voltages) };
         let settled: Vec<f64> = self.tree.iter().map(|c| settled_all[*c]).collect();
         let falling: Vec<f64> = self.tree.iter().zip(&settled).map(|(c, s)| voltages[*c] - s).collect();
         let amplitudes = self.weights.iter().map(|w| w.iter().zip(&falling).map(|(x, u)| x * u).sum()).collect();

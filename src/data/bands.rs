@@ -48,7 +48,8 @@ impl EnergyBand {
     pub fn holds(&self, voltage: Voltage, energy: Energy) -> bool {
         let over = self.above_voltage.is_none_or(|v| voltage > v || (self.includes_lower && voltage >= v));
         // The band below 100 V ends where the one from 100 V on begins.
-        let under = self.up_to_voltage.is_none_or(|v| if self.above_voltage.is_none() { voltage < v } else { voltage <= v });
+        let under =
+            self.up_to_voltage.is_none_or(|v| if self.above_voltage.is_none() { voltage < v } else { voltage <= v });
         over && under && energy > self.energy_over
     }
 }

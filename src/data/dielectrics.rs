@@ -12,6 +12,8 @@ pub struct Range<Q> {
     pub low: Q,
     /// Upper end.
     pub high: Option<Q>,
+    /// What is usual, where a source says so.
+    pub typical: Option<Q>,
 }
 
 /// What is typical of a dielectric. A typical value never stands in for a given one without being listed as an
@@ -34,6 +36,8 @@ pub struct Dielectric {
     pub slow_branches: bool,
     /// How the values were checked: `text`, `quoted`, `memory`, `common practice`.
     pub seen: String,
+    /// What else to know of the values, such as sources that disagree.
+    pub note: Option<String>,
 }
 
 #[derive(Deserialize)]
@@ -41,6 +45,7 @@ pub struct Dielectric {
 struct RawRange {
     low: String,
     high: Option<String>,
+    typical: Option<String>,
 }
 
 #[derive(Deserialize)]
@@ -55,10 +60,18 @@ struct Raw {
     #[serde(default)]
     slow_branches: bool,
     seen: String,
+    note: Option<String>,
 }
 
 fn range<Q: Quantity>(entry: &str, raw: Option<RawRange>) -> Result<Option<Range<Q>>, String> {
-    raw.map(|raw| Ok(Range { low: quantity(entry, &raw.low)?, high: optional(entry, raw.high.as_deref())? })).transpose()
+    let read = |raw: RawRange| {
+        Ok(Range {
+            low: quantity(entry, &raw.low)?,
+            high: optional(entry, raw.high.as_deref())?,
+            typical: optional(entry, raw.typical.as_deref())?,
+        })
+    };
+    raw.map(read).transpose()
 }
 
 fn make(raw: Raw) -> Result<Dielectric, String> {
@@ -71,6 +84,7 @@ fn make(raw: Raw) -> Result<Dielectric, String> {
         tolerance: raw.tolerance,
         slow_branches: raw.slow_branches,
         seen: raw.seen,
+        note: raw.note,
     })
 }
 
@@ -94,6 +108,11 @@ pub fn dielectric(id: &str) -> Option<&'static Dielectric> {
 mod tests {
     use super::*;
 
+    fn ordered<Q: Quantity>(range: Range<Q>) -> bool {
+        let steps = [Some(range.low), range.typical, range.high];
+        steps.iter().flatten().map(|q| q.si()).is_sorted()
+    }
+
     #[test]
     fn every_dielectric_is_read_and_says_how_it_was_checked() {
         let all = read().unwrap_or_else(|e| panic!("{e}"));
@@ -102,10 +121,9 @@ mod tests {
         for (i, d) in all.iter().enumerate() {
             assert!(!d.seen.is_empty() && !d.name.is_empty(), "{d:?}");
             assert!(all[..i].iter().all(|e| e.id != d.id), "{} stands twice", d.id);
-            let ordered = |low: f64, high: Option<f64>| high.is_none_or(|high| low <= high);
-            assert!(d.absorption.is_none_or(|r| ordered(r.low.si(), r.high.map(Quantity::si))), "{d:?}");
+            assert!(d.absorption.is_none_or(ordered), "{d:?}");
             assert!(d.absorption.is_none_or(|r| r.high.unwrap_or(r.low).si() < 1.0), "{d:?}");
-            assert!(d.insulation.is_none_or(|r| ordered(r.low.si(), r.high.map(Quantity::si))), "{d:?}");
+            assert!(d.insulation.is_none_or(ordered), "{d:?}");
         }
     }
 

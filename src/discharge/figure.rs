@@ -61,8 +61,8 @@ impl Figure {
             Figure::Settles { pair: p } => pair(p).constant().abs(),
             Figure::Start { pair: p } => pair(p).value(0.0).abs(),
             Figure::VoltageAt { pair: p, t } => pair(p).value(t).abs(),
-            Figure::ChargeAt { pair: p, t } => charge(p)?.value(t).abs(),
-            Figure::ChargeWait { pair: p, level } => charge(p)?.last_outside(level, floor.max(0.0))?.seconds(),
+            Figure::ChargeAt { pair: p, t } => charge(p).value(t).abs(),
+            Figure::ChargeWait { pair: p, level } => charge(p).last_outside(level, floor.max(0.0))?.seconds(),
             Figure::EnergyAt { pair: p, t } => energy(p).value(t),
             Figure::EnergyWait { pair: p, level } => energy(p).last_outside(level, floor.max(0.0))?.seconds(),
             Figure::StoredAt { t } => {
@@ -74,7 +74,7 @@ impl Figure {
             }
             Figure::Capacitance { pair: p } => {
                 let volts = pair(p).value(0.0);
-                if volts == 0.0 { 0.0 } else { (charge(p)?.value(0.0) / volts).abs() }
+                if volts == 0.0 { 0.0 } else { (charge(p).value(0.0) / volts).abs() }
             }
             Figure::StandingPower { resistor: r } => standing_power(model, case, r),
             Figure::ResistorVoltage { resistor: r } => {
@@ -95,7 +95,8 @@ impl Figure {
             Figure::BodyRise { resistor: r, body } => {
                 let start = body.kelvin_per_watt * standing_power(model, case, r);
                 let ohms = case.after_ohms[r];
-                let power = if ohms.is_finite() { resistor(r).squared().times(ohms.recip()) } else { ExpSum::default() };
+                let power =
+                    if ohms.is_finite() { resistor(r).squared().times(ohms.recip()) } else { ExpSum::default() };
                 body.rise(start, &power).greatest_magnitude_over(floor)?.0
             }
             Figure::CapacitorVoltage { capacitor } => {

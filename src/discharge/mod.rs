@@ -15,9 +15,9 @@ mod model;
 mod scenario;
 mod worst;
 
+pub(crate) use case::Case;
 pub(crate) use element::element_model;
 pub(crate) use figure::{Body, Figure};
 pub(crate) use model::Model;
-pub(crate) use case::Case;
 pub(crate) use scenario::{Fault, Scenario, faults};
 pub(crate) use worst::{MOST_CORNERS, Study, Worst};

@@ -162,11 +162,8 @@ impl Model {
     /// The network at a point of the box; parts whose nodes are one are left out.
     pub fn network(&self, variation: &Variation, point: &[f64]) -> Network {
         let map = self.merged(variation);
-        let edge = |part: &Part, factor: f64| Edge {
-            a: map[part.a],
-            b: map[part.b],
-            value: part.value(point) * factor,
-        };
+        let edge =
+            |part: &Part, factor: f64| Edge { a: map[part.a], b: map[part.b], value: part.value(point) * factor };
         let factor = |of: Option<(usize, f64)>, index: usize| of.filter(|(i, _)| *i == index).map_or(1.0, |(_, f)| f);
         let edges = |parts: &[Part], of: Option<(usize, f64)>| -> Vec<Edge> {
             let all = parts.iter().enumerate().map(|(i, p)| edge(p, factor(of, i)));

@@ -2,7 +2,7 @@
 
 use super::model::{Model, Variation};
 use crate::bank::Bank;
-use crate::bank::description::{Role};
+use crate::bank::description::Role;
 
 /// A bank with every part healthy, or with one part failed: what stood before isolation, and what stands after.
 #[derive(Debug, Clone, Default)]
@@ -42,11 +42,12 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
         let factor = if resistor.role == Role::Leakage { f64::INFINITY } else { factor };
         let lost = Variation { resistor: Some((index, factor)), ..Variation::default() };
         let at_isolation = Scenario { after: lost.clone(), ..Scenario::default() };
-        faults.push(Fault {
-            name: format!("{} {word}", resistor.id),
-            id: resistor.id.clone(),
-            scenarios: vec![Scenario::settled(lost), at_isolation],
-        });
+        let mut scenarios = vec![Scenario::settled(lost)];
+        if resistor.role != Role::Leakage {
+            // A part breaks at a moment; leakage that is absent was never there.
+            scenarios.push(at_isolation);
+        }
+        faults.push(Fault { name: format!("{} {word}", resistor.id), id: resistor.id.clone(), scenarios });
     }
     for (index, capacitor) in bank.description().capacitors.iter().enumerate() {
         let part = &model.capacitors[index];

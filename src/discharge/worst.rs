@@ -16,7 +16,10 @@ use std::collections::HashSet;
 pub(crate) const MOST_CORNERS: usize = 12;
 
 /// Starts of the search beyond that, besides the two extreme corners and the middle.
-const RANDOM_STARTS: usize = 24;
+const RANDOM_STARTS: usize = 8;
+
+/// A gain below this share is not worth another round: a crossing is bracketed to little less.
+const NOTABLE: f64 = 1e-12;
 
 /// The greatest value of a figure and where it was found.
 #[derive(Debug, Clone)]
@@ -140,7 +143,7 @@ impl Study<'_> {
                 }
                 let case = self.case(&point)?;
                 for i in here.iter().copied().filter(|i| !rising[*i]).collect::<Vec<_>>() {
-                    let bar = best[i].value * (1.0 + 1e-13);
+                    let bar = best[i].value * (1.0 + NOTABLE);
                     rising[i] = self.figures[i].of(self.model, &case, bar.max(0.0))? > bar;
                 }
             }
@@ -182,7 +185,7 @@ impl Study<'_> {
             if count > 1 && along.iter().any(|x| *x != 0.0) {
                 self.climb(index, worst, &along)?;
             }
-            if worst.value.is_infinite() || worst.value <= start.value * (1.0 + 1e-14) {
+            if worst.value.is_infinite() || worst.value <= start.value * (1.0 + NOTABLE) {
                 break;
             }
         }
@@ -225,7 +228,7 @@ impl Study<'_> {
         let golden = 0.5 * (5f64.sqrt() - 1.0);
         let (mut x, mut y) = (b - golden * (b - a), a + golden * (b - a));
         let (mut fx, mut fy) = (tried(x)?, tried(y)?);
-        while b - a > 1e-8 * (high - low) {
+        while b - a > 1e-6 * (high - low) {
             if fx > fy {
                 (b, y, fy) = (y, x, fx);
                 x = b - golden * (b - a);

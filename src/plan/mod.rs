@@ -77,13 +77,8 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
     let figures =
         [waits.figures(), stored.figures(), limits.figures(), capacitors.figures(), resistors.figures()].concat();
     let healthy = Answers::healthy(bank, &model, figures)?;
-    let fault_figures: Vec<Figure> = [
-        waits.fault_figures(),
-        limits.fault_figures(),
-        capacitors.figures(),
-        resistors.fault_figures(),
-    ]
-    .concat();
+    let fault_figures: Vec<Figure> =
+        [waits.fault_figures(), limits.fault_figures(), capacitors.figures(), resistors.fault_figures()].concat();
     let under_faults = FaultAnswers::all(bank, &model, faults(bank, &model), &fault_figures)?;
 
     plan.time_constants = working::time_constants(bank, &model)?.into_iter().map(Time::from_si).collect();
@@ -172,9 +167,8 @@ impl Plan {
         if !self.not_computed.is_empty() {
             return Verdict::Incomplete;
         }
-        let limit_missed = |l: &LimitResult| {
-            l.met == Some(false) || (l.single_fault_asked && l.single_fault_met == Some(false))
-        };
+        let limit_missed =
+            |l: &LimitResult| l.met == Some(false) || (l.single_fault_asked && l.single_fault_met == Some(false));
         let missed = self.waits.iter().any(|w| w.slowest.is_none() || w.nominal.is_none())
             || self.limits.iter().any(limit_missed)
             || self.resistors.iter().flat_map(|r| &r.checks).any(|c| c.verdict == Verdict::NotMet)

@@ -3,8 +3,8 @@
 //! Quantities stay typed here. They serialise in SI base units under keys that name the unit, unrounded; `null`
 //! stands for "never" in a time and for "not given" in a rating.
 
-use crate::finding::Finding;
 use crate::check::{degrees, si, si_list, si_or_null};
+use crate::finding::Finding;
 use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltage};
 use serde::Serialize;
 

@@ -33,7 +33,7 @@ def nominal_waits(bank, rates):
         d[i], d[j] = 1, -1
         g += np.outer(d, d) / float(bank.parts[k].value)
     volt = float(bank.nominal)
-    # Held potentials: a tiny capacitance everywhere would be the textbook trick; least squares on the two laws instead.
+    # The operating point by least squares on two laws at once:
     fixed = [t.top, t.ref]
     rest = [i for i in range(t.n) if i not in fixed]
     lap = a.T @ c @ a

@@ -17,10 +17,11 @@ import mpmath as mp
 
 from bank import Refused
 from eigen import symmetric
-from network import Holding
+from network import Holding, Pieces
 
 DIGITS = 120
 NOISE = 70          # a figure under 1e-NOISE of its own scale is zero by structure
+UNSURE = 'unsure'   # what doubles say where their rounding leaves a comparison open
 
 
 def number(x):
@@ -79,7 +80,7 @@ def held(holding, n, resistors, capacitors):
 
 
 class Exact:
-    """One circuit with given factors on its parts' values, charged to `volt`: its modes and what can be asked of them."""
+    """One circuit with given factors on its parts' values, charged to `volt`: its modes and what can be asked."""
 
     def __init__(self, topology, factors, volt):
         t = self.t = topology
@@ -134,7 +135,8 @@ class Exact:
         groups = [t.groups.members[k] for k in free]
         # W, one column per state: what the free groups' potentials are for a unit of it.
         columns = [[-mp.fsum(g[i][j] for i in p) for p in groups] for j in s]
-        w = solve([[mp.fsum(g[i][j] for i in p for j in q) for q in groups] for p in groups], columns) if groups else [[] for _ in s]
+        between = [[mp.fsum(g[i][j] for i in p for j in q) for q in groups] for p in groups]
+        w = solve(between, columns) if groups else [[] for _ in s]
         # node potentials for a unit of each state
         self.unit = []
         for k, j in enumerate(s):
@@ -183,7 +185,7 @@ class Exact:
     # -- functionals of the state ------------------------------------------------------------------------------------
 
     def _terms(self, row, at_rest):
-        """(value at rest, [(amplitude, rate)]) of the figure row.y; amplitudes that are zero by structure are dropped."""
+        """(value at rest, [(amplitude, rate)]) of the figure row.y, without amplitudes that are zero by structure."""
         terms = [(b * mp.fsum(r * x for r, x in zip(row, shape)), rate)
                  for b, shape, rate in zip(self.b, self.shapes, self.rates)]
         weight = mp.fsum(abs(r * y) for r, y in zip(row, self.y0)) + abs(at_rest)
@@ -237,7 +239,6 @@ class Exact:
         t = self.t
         if i == j:
             return mp.mpf(0)
-        from network import Pieces
         shorted = Pieces(t.n, [(a, b) for _, a, b, _ in t.run_r] + [(i, j)])
         islands = Pieces(t.n, [(a, b) for a, b, _ in self.run_c] + [(a, b) for a, b, _ in self.run_r] + [(i, j)])
         grounds = {min(shorted.of[k] for k in m) for m in islands.members}
@@ -329,9 +330,6 @@ def _last_above(rest, terms):
         return mp.mpf(0)
     low, high = (mp.mpf(x) for x in found)
     return high if low == high else _root(rest, terms, low, high)
-
-
-UNSURE = 'unsure'
 
 
 def _bracket(rest, terms, end, exp, margin, slope_margin, narrow):

@@ -62,7 +62,7 @@ def _draw(rng, number, seed):
     loose = 0 if wide else rng.randint(2, 6)
     tight = set(rng.sample(range(len(edges)), max(0, len(edges) - loose)))
     highest = rng.choice([120, 325, 565, 900, 2000])
-    lines = [f'ebbvolt: 1', f'tag: SM-{seed}-{number:02}', 'location: Saltmarsh pumping station (invented)',
+    lines = ['ebbvolt: 1', f'tag: SM-{seed}-{number:02}', 'location: Saltmarsh pumping station (invented)',
              f'notes: drawn at random, seed {seed}, number {number}', f'touch_voltage: {rng.choice([50, 60, 34])} V',
              f'charged_to: {{nominal: {round(highest * rng.uniform(0.6, 1))} V, highest: {highest} V}}']
     caps, resistors = [], []
@@ -93,8 +93,9 @@ def _draw(rng, number, seed):
         lines.append('test_points: [' + ', '.join(f'[{a}, {b}]' for a, b in pairs) + ']')
     if rng.random() < 0.5:
         lines += ['limits:',
-                  f'  - {{id: site-rule, voltage: {rng.choice([50, 60, 75])} V, within: {rng.choice([1, 5])} min, single_fault: true}}',
-                  f'  - {{id: exempt, any_of: {{voltage: 60 V, charge: 50 uC, energy: 0.2 J}}, within: 5 s, at: [P, N]}}']
+                  f'  - {{id: site-rule, voltage: {rng.choice([50, 60, 75])} V, '
+                  f'within: {rng.choice([1, 5])} min, single_fault: true}}',
+                  '  - {id: exempt, any_of: {voltage: 60 V, charge: 50 uC, energy: 0.2 J}, within: 5 s, at: [P, N]}']
     return '\n'.join(lines) + '\n'
 
 

@@ -37,7 +37,8 @@ def scenarios(bank):
             found.append(Scenario(f'{part.id} absent', 'before', ((k, None),), ((k, None),)))
         elif part.kind == 'C':
             if {part.a, part.b} != set(bank.terminals):
-                found.append(Scenario(f'{part.id} shorted', 'before', ((k, None),), ((k, None),), (part.a, part.b), False))
+                gone = ((k, None),)
+                found.append(Scenario(f'{part.id} shorted', 'before', gone, gone, (part.a, part.b), False))
             if part.series > 1:
                 # The voltages at isolation are the healthy ones, as if the unit failed at that moment and the others
                 # took over its share of voltage; only the capacitance is other from then on.
@@ -153,6 +154,21 @@ class Topology:
                 elif j in paths and i not in paths:
                     paths[i] = paths[j] + [(c, 1)]
         return paths, [c for c in order if c not in tree_edges]
+
+    def loop_ratio(self):
+        """The greatest over the least capacitance within a mesh of capacitor loops; 1 without loops. (The accuracy
+        that the tool promises depends on it.)"""
+        meshes = []
+        for c in self.chords:
+            _, i, j, _ = self.capacitors[c]
+            up, down = ({k for k, _ in self.tree[n]} for n in (i, j))
+            mesh = {c} | (up ^ down)
+            for other in [m for m in meshes if m & mesh]:
+                meshes.remove(other)
+                mesh |= other
+            meshes.append(mesh)
+        value = lambda c: self.bank.parts[self.capacitors[c][0]].value * self.capacitors[c][3]
+        return max([max(map(value, m)) / min(map(value, m)) for m in meshes], default=Fraction(1))
 
     def pair(self, names):
         return self.index[names[0]], self.index[names[1]]

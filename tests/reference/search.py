@@ -89,8 +89,8 @@ class Doubles:
         return self.fast.values(self.figures, self.box.fast_factors(points))
 
     def one(self, points, which):
-        return np.concatenate([self.fast.values(self.figures, self.box.fast_factors(points[k:k + 4096]), which[k:k + 4096])
-                               for k in range(0, len(points), 4096)])
+        blocks = [slice(k, k + 4096) for k in range(0, len(points), 4096)]
+        return np.concatenate([self.fast.values(self.figures, self.box.fast_factors(points[b]), which[b]) for b in blocks])
 
 
 class Slow:
@@ -152,7 +152,8 @@ def worst(bank, scenario, figures, volt, topology=None):
     ask = Slow(circuit_at, todo) if stiff else Doubles(t, box, volt, todo)
     count = 3 * d if stiff else 200 + 40 * d
     inner = rng.random((count, d))
-    inner[count // 2:] = np.where(rng.random((count - count // 2, d)) < 0.6, np.round(inner[count // 2:]), inner[count // 2:])
+    half = inner[count // 2:]                              # of these, most parameters go to an end
+    half[:] = np.where(rng.random(half.shape) < 0.6, np.round(half), half)
     points = np.vstack([corners, [box.middle()], inner])
     values = ask.all(points)
     found = _climb(ask, points, values, len(corners), stiff)
@@ -161,7 +162,7 @@ def worst(bank, scenario, figures, volt, topology=None):
             u = points[np.nonzero(np.isinf(values[:, f]))[0][0]]
             out[figure] = Worst(None, _at(bank, box, u), not set(u) <= {0.0, 1.0})
             continue
-        out[figure] = _exact_best(bank, box, circuit_at, figure, points[:len(corners)], values[:len(corners), f], found[f],
+        out[figure] = _exact_best(bank, box, circuit_at, figure, corners, values[:len(corners), f], found[f],
                                   1e-6 if not stiff else 1e-12)
     return out
 
@@ -271,7 +272,8 @@ def _exact_best(bank, box, circuit_at, figure, corners, corner_values, found, ne
     small = kind in ('voltage', 'charge', 'energy') and level and best.value
     if small:
         circuit = circuit_at(tuple(u))
-        small = best.value < SMALL * (circuit.stored() if kind == 'energy' else circuit.size(kind, circuit.t.pair(names)))
+        size = circuit.stored() if kind == 'energy' else circuit.size(kind, circuit.t.pair(names))
+        small = best.value < SMALL * size
     for i in [i for i in range(len(u)) if (small or swing[i] < 1e-8) and i not in free]:
         other = list(u)
         other[i] = 1 - u[i]

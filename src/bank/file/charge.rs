@@ -83,7 +83,12 @@ pub(super) fn phases(reader: &mut Reader<'_>, group: &Group<'_>) -> Option<()> {
     let spot = reader.may(group, "phases")?;
     let count = reader.count(&spot)?;
     if count != 3 {
-        reader.wrong(&spot, "bad-number", &format!("{count} phases are not possible"), "write `phases: 3`, or leave it out");
+        reader.wrong(
+            &spot,
+            "bad-number",
+            &format!("{count} phases are not possible"),
+            "write `phases: 3`, or leave it out",
+        );
     }
     (count == 3).then_some(())
 }

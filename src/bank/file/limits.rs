@@ -4,6 +4,7 @@ use super::parts::owner;
 use super::reader::{Group, Reader, Spot};
 use super::top::unread;
 use crate::bank::description::{Bound, Limit, Rule};
+use crate::quantity::{Quantity, Time};
 
 const BOUNDS: [&str; 4] = ["voltage", "charge", "initial_charge", "energy"];
 const OWN: [&str; 7] = ["id", "voltage", "charge", "initial_charge", "energy", "any_of", "within"];
@@ -26,7 +27,13 @@ fn limit(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize) -> Limit {
     if group.has("use") {
         for key in group.given(&OWN) {
             let text = format!("a published limit (`use`) brings its own `{key}`");
-            reader.wrong_key(&group, key, "keys-exclude-each-other", text, "leave it out, or write a limit of your own without `use`");
+            reader.wrong_key(
+                &group,
+                key,
+                "keys-exclude-each-other",
+                text,
+                "leave it out, or write a limit of your own without `use`",
+            );
         }
         if let Some(id) = reader.may(&group, "use").and_then(|spot| reader.text(&spot)) {
             limit.rule = Rule::Published(id.clone());
@@ -42,7 +49,13 @@ fn limit(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize) -> Limit {
         limit.id = id;
     }
     let any_of = bounds(reader, &group);
-    let within = reader.need(&group, "within", "5 min").and_then(|spot| reader.quantity(&spot));
+    // The charge at isolation has its time in its name.
+    let timeless = any_of.as_ref().is_some_and(|bounds| bounds.iter().all(Bound::is_of_isolation));
+    let within = if timeless && !group.has("within") {
+        Some(Time::from_si(0.0))
+    } else {
+        reader.need(&group, "within", "5 min").and_then(|spot| reader.quantity(&spot))
+    };
     if let (Some(any_of), Some(within)) = (any_of, within) {
         limit.rule = Rule::Own { any_of, within };
     }

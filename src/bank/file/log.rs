@@ -6,7 +6,7 @@ use crate::finding::{Finding, Findings, Severity};
 pub(super) const REPORTED: usize = 50;
 
 /// So many are kept to be put in order; a hostile file could make millions.
-const KEPT: usize = 2000;
+const KEPT: usize = 1000;
 
 /// Errors as they are found.
 #[derive(Debug, Default)]
@@ -16,11 +16,16 @@ pub(super) struct Log {
 }
 
 impl Log {
-    pub(super) fn push(&mut self, error: Box<Finding>) {
+    pub(super) fn push(&mut self, error: Finding) {
+        self.push_with(|| error);
+    }
+
+    /// Adds an error that is only worded where it is kept.
+    pub(super) fn push_with(&mut self, error: impl FnOnce() -> Finding) {
         if self.is_full() {
             self.dropped += 1;
         } else {
-            self.errors.push(*error);
+            self.errors.push(error());
         }
     }
 

@@ -1,8 +1,9 @@
 //! The bank file: bytes in, a [`Bank`] out, or every problem with its line.
 //!
-//! Text becomes a tree that knows its places ([`tree`]), the tree becomes a description ([`top`] and the files beside
-//! it), and the rules of [`super::validate`] are run on that; their paths are then found in the tree again.
+//! Text becomes a tree that knows its places (`tree`), the tree becomes a description (`top` and the files beside
+//! it), and the rules of `validate` are run on that; their paths are then found in the tree again.
 
+mod brackets;
 mod charge;
 mod limits;
 mod log;
@@ -54,7 +55,7 @@ fn read_into(log: &mut Log, name: &str, bytes: &[u8]) -> Option<(Bank, Findings)
     let source = match Source::new(name, bytes) {
         Ok(source) => source,
         Err(error) => {
-            log.push(error);
+            log.push(*error);
             return None;
         }
     };
@@ -62,7 +63,12 @@ fn read_into(log: &mut Log, name: &str, bytes: &[u8]) -> Option<(Bank, Findings)
     let Some(tree) = tree.filter(|tree| !tree.is_null()) else {
         if log.is_empty() {
             let help = "`ebbvolt draft` prints a file to start from";
-            log.push(source.error("empty-file", Span { line: 1, column: 1, length: 1 }, "the file describes nothing", help));
+            log.push(source.error(
+                "empty-file",
+                Span { line: 1, column: 1, length: 1 },
+                "the file describes nothing",
+                help,
+            ));
         }
         return None;
     };
@@ -70,8 +76,11 @@ fn read_into(log: &mut Log, name: &str, bytes: &[u8]) -> Option<(Bank, Findings)
     let description = top::read(&mut reader, &tree)?;
     let (problems, dropped) = validate::check(&description, &reader.doubt);
     for problem in problems {
-        let help = problem.help.unwrap_or_default();
-        reader.error(problem.code, span_of(&tree, &problem.path), problem.text, help);
+        let mut text = problem.text;
+        if let Some(other) = problem.other {
+            text.push_str(&format!(" (line {})", span_of(&tree, &other).line));
+        }
+        reader.error(problem.code, span_of(&tree, &problem.path), text, problem.help.unwrap_or_default());
     }
     reader.log.drop_more(dropped);
     let mut notes = reader.notes;
@@ -85,7 +94,10 @@ fn read_into(log: &mut Log, name: &str, bytes: &[u8]) -> Option<(Bank, Findings)
 /// Where a path ends in the file; where the file leaves out what the path names, the nearest thing around it.
 fn span_of(tree: &Node, path: &Path) -> Span {
     let mut node = tree;
-    let mut span = tree.span;
+    let mut span = match &tree.content {
+        Content::Mapping(entries) => entries.first().map_or(tree.span, |(key, _)| key.span),
+        _ => tree.span,
+    };
     for segment in path.segments() {
         let next = match (segment, &node.content) {
             (Segment::Key(key), _) => node.get(key).map(|(key, node)| (key.span, node)),

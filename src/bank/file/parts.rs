@@ -8,35 +8,48 @@ use crate::bank::description::{Capacitor, Connection, Draw, Kvar, Pair, Resistor
 use crate::quantity::{Capacitance, Current, Frequency, Power, Quantity, Ratio, Resistance, Voltage};
 
 const CAPACITOR: [&str; 12] = [
-    "id", "value", "kvar", "tolerance", "across", "units", "rated", "dielectric", "absorption", "charged_to", "phases",
+    "id",
+    "value",
+    "kvar",
+    "tolerance",
+    "across",
+    "units",
+    "rated",
+    "dielectric",
+    "absorption",
+    "charged_to",
+    "phases",
     "connection",
 ];
-const RESISTOR: [&str; 9] =
-    ["id", "role", "value", "tolerance", "across", "array", "rating", "phases", "connection"];
+const RESISTOR: [&str; 9] = ["id", "role", "value", "tolerance", "across", "array", "rating", "phases", "connection"];
 const SINK: [&str; 6] = ["id", "kind", "value", "across", "stops_below", "counted"];
 const SUPPLY: [&str; 6] = ["id", "voltage", "series", "tolerance", "across", "rating"];
 
+/// Where a part lies that names no nodes.
+pub(super) struct Terminals<'a> {
+    pub(super) names: &'a [String],
+    pub(super) three_phase: bool,
+}
+
+/// What a capacitance given as such may be as well.
+const PLAUSIBLE_FARAD: std::ops::RangeInclusive<f64> = 1e-15..=1e6;
+
 /// Capacitors, in the order of the file.
-pub(super) fn capacitors(reader: &mut Reader<'_>, top: &Group<'_>, terminals: &[String]) -> Vec<Capacitor> {
+pub(super) fn capacitors(reader: &mut Reader<'_>, top: &Group<'_>, terminals: &Terminals<'_>) -> Vec<Capacitor> {
     let spots = match reader.need(top, "capacitors", "[{id: C1, value: 3300 uF}]") {
         Some(spot) => reader.list(&spot, "entry", "- {id: C1, value: 3300 uF}"),
         None => None,
     };
     let Some(spots) = spots else {
         // Everything else would only echo that there are none.
-        (reader.doubt.nodes, reader.doubt.ids, reader.doubt.voltages) = (true, true, true);
+        (reader.doubt.capacitors, reader.doubt.ids, reader.doubt.voltages) = (true, true, true);
         return vec![];
     };
-    if spots.is_empty() {
-        let text = String::from("`capacitors` lists none, and a bank has at least one");
-        reader.wrong_key(top, "capacitors", "no-capacitors", text, "add `- {id: C1, value: 3300 uF}`");
-        (reader.doubt.nodes, reader.doubt.ids) = (true, true);
-    }
     let each = |(i, spot): (usize, &Spot<'_>)| capacitor(reader, spot, i, terminals);
     spots.iter().enumerate().map(each).collect()
 }
 
-fn capacitor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &[String]) -> Capacitor {
+fn capacitor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &Terminals<'_>) -> Capacitor {
     let mut c = Capacitor {
         id: unread("capacitor", i),
         value: Capacitance::from_si(1.0),
@@ -57,7 +70,7 @@ fn capacitor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &[St
     };
     c.id = id(reader, &group, "C1").unwrap_or(c.id);
     // Connection and nodes come first: reactive power is of the three legs together.
-    let (phases, across) = place(reader, &group, terminals, true);
+    let (phases, across) = place(reader, &group, terminals);
     c.phases = phases;
     c.across = across.unwrap_or(c.across);
     (c.value, c.kvar) = value(reader, &group, c.phases).unwrap_or((c.value, None));
@@ -74,7 +87,11 @@ fn capacitor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &[St
 }
 
 /// The capacitance of one unit, from `value` or from `kvar`.
-fn value(reader: &mut Reader<'_>, group: &Group<'_>, phases: Option<Connection>) -> Option<(Capacitance, Option<Kvar>)> {
+fn value(
+    reader: &mut Reader<'_>,
+    group: &Group<'_>,
+    phases: Option<Connection>,
+) -> Option<(Capacitance, Option<Kvar>)> {
     match (group.has("value"), group.has("kvar")) {
         (true, false) => {
             let spot = reader.may(group, "value")?;
@@ -109,17 +126,22 @@ fn kvar(reader: &mut Reader<'_>, group: &Group<'_>, phases: Option<Connection>) 
     // V/sqrt(3) and a third of the power, and the two threes cancel.
     let legs = if phases == Some(Connection::Delta) { 3.0 } else { 1.0 };
     let farad = power / (legs * std::f64::consts::TAU * frequency.si() * volt * volt);
+    if !PLAUSIBLE_FARAD.contains(&farad) {
+        let text = format!("these values make a capacitance of {farad:e} F");
+        reader.wrong(&spot, "bad-quantity", &text, "check power, voltage and frequency against the plate");
+        return None;
+    }
     Some((Capacitance::from_si(farad), Some(Kvar { power: Power::from_si(power), voltage, frequency })))
 }
 
 /// Resistors, in the order of the file.
-pub(super) fn resistors(reader: &mut Reader<'_>, top: &Group<'_>, terminals: &[String]) -> Vec<Resistor> {
+pub(super) fn resistors(reader: &mut Reader<'_>, top: &Group<'_>, terminals: &Terminals<'_>) -> Vec<Resistor> {
     let spots = entries(reader, top, "resistors", "- {id: R1, role: bleeder, value: 22 kohm, across: [P, N]}");
     let each = |(i, spot): (usize, &Spot<'_>)| resistor(reader, spot, i, terminals);
     spots.iter().enumerate().map(each).collect()
 }
 
-fn resistor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &[String]) -> Resistor {
+fn resistor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &Terminals<'_>) -> Resistor {
     let mut r = Resistor {
         id: unread("resistor", i),
         role: Role::Bleeder,
@@ -137,14 +159,13 @@ fn resistor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &[Str
     match reader.need(&group, "role", "bleeder").and_then(|spot| reader.word(&spot, &words)) {
         Some(role) => r.role = role,
         None => {
-            // Whether a step may connect it, and what it connects at isolation, is not known.
+            // Taken as always connected: rules on nodes then find too little rather than too much.
             reader.doubt.roles.insert(r.id.clone());
-            reader.doubt.nodes = true;
         }
     }
     r.value = reader.need(&group, "value", "22 kohm").and_then(|spot| reader.quantity(&spot)).unwrap_or(r.value);
     r.tolerance = reader.may(&group, "tolerance").and_then(|spot| reader.tolerance(&spot));
-    let (phases, across) = place(reader, &group, terminals, true);
+    let (phases, across) = place(reader, &group, terminals);
     r.phases = phases;
     r.across = across.unwrap_or(r.across);
     (r.series, r.parallel) = counts(reader, &group, "array");
@@ -250,24 +271,26 @@ fn across(reader: &mut Reader<'_>, group: &Group<'_>) -> Option<Pair> {
     pair
 }
 
-/// Where a capacitor or a resistor lies: between the terminals in three phases, or across two nodes.
-fn place(
-    reader: &mut Reader<'_>,
-    group: &Group<'_>,
-    terminals: &[String],
-    terminals_by_default: bool,
-) -> (Option<Connection>, Option<Pair>) {
+/// Where a capacitor or a resistor lies: between the terminals in three phases, across the two nodes that it names, or
+/// across the two terminals where it names none.
+fn place(reader: &mut Reader<'_>, group: &Group<'_>, terminals: &Terminals<'_>) -> (Option<Connection>, Option<Pair>) {
     let words = [("delta", Connection::Delta), ("star", Connection::Star), ("open-delta", Connection::OpenDelta)];
     if group.has("phases") {
         let three = phases(reader, group);
         let connection = reader.need(group, "connection", "delta").and_then(|spot| reader.word(&spot, &words));
         if group.has("across") {
             let text = format!("{} is a three-phase part and lies between the terminals", group.owner);
-            reader.wrong_key(group, "across", "keys-exclude-each-other", text, "leave `across` out, or leave `phases` out");
+            reader.wrong_key(
+                group,
+                "across",
+                "keys-exclude-each-other",
+                text,
+                "leave `across` out, or leave `phases` out",
+            );
         }
         let connection = three.and(connection);
         reader.doubt.nodes |= connection.is_none();
-        let pair = match terminals {
+        let pair = match terminals.names {
             [first, second, ..] => Some([first.clone(), second.clone()]),
             _ => None,
         };
@@ -277,9 +300,17 @@ fn place(
         let text = format!("{} has a `connection` and no `phases`", group.owner);
         reader.wrong_key(group, "connection", "missing-key", text, "add `phases: 3`, or leave `connection` out");
     }
-    match terminals {
-        [first, last] if terminals_by_default && !group.has("across") => (None, Some([first.clone(), last.clone()])),
-        _ => (None, across(reader, group)),
+    if group.has("across") {
+        return (None, across(reader, group));
+    }
+    match terminals.names {
+        [first, last] => (None, Some([first.clone(), last.clone()])),
+        [_, _, _] if terminals.three_phase => (None, across(reader, group)),
+        _ => {
+            // The number of terminals is wrong, and that is reported.
+            reader.doubt.nodes = true;
+            (None, None)
+        }
     }
 }
 

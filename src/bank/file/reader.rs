@@ -10,6 +10,9 @@ use crate::finding::{Finding, Severity};
 use crate::quantity::{Capacitance, Quantity, QuantityError, Ratio, Reading, Tolerance, parse, parse_kind};
 use std::rc::Rc;
 
+/// How to speak of the whole file; a key of it needs no owner.
+pub(super) const TOP: &str = "the bank file";
+
 /// A value that is due to be read.
 #[derive(Clone)]
 pub(super) struct Spot<'t> {
@@ -40,7 +43,7 @@ pub(super) struct Reader<'s> {
 impl<'t> Spot<'t> {
     /// The whole file.
     pub(super) fn top(node: &'t Node) -> Self {
-        Spot { node, name: "the bank file".into(), span: node.span }
+        Spot { node, name: TOP.into(), span: node.span }
     }
 
     fn is_refused(&self) -> bool {
@@ -64,7 +67,9 @@ impl<'t> Group<'t> {
         let (key, node) = self.node.get(key)?;
         // What is not there, or stands elsewhere behind an alias, is best found by its key.
         let span = if node.is_null() { key.span } else { node.span };
-        Some(Spot { node, name: format!("`{}` of {}", key.text, self.owner), span })
+        let name =
+            if self.owner == TOP { format!("`{}`", key.text) } else { format!("`{}` of {}", key.text, self.owner) };
+        Some(Spot { node, name, span })
     }
 
     /// True where the key is there, with or without a value.
@@ -84,8 +89,7 @@ impl<'s> Reader<'s> {
     }
 
     pub(super) fn error(&mut self, code: &'static str, span: Span, text: impl Into<String>, help: impl Into<String>) {
-        let error = self.source.error(code, span, text, help);
-        self.log.push(error);
+        self.log.push_with(|| self.source.error(code, span, text, help));
     }
 
     /// An error at a value.
@@ -102,9 +106,10 @@ impl<'s> Reader<'s> {
     /// A mapping, after its unknown keys were reported.
     pub(super) fn group<'t>(&mut self, spot: &Spot<'t>, owner: String, keys: &[&'static str]) -> Option<Group<'t>> {
         let Content::Mapping(entries) = &spot.node.content else {
-            if !spot.is_refused() {
+            if !spot.is_refused() && self.has_value(spot) {
                 let example = keys.first().map_or("key", |key| key);
-                let help = format!("write keys with their values, such as `{{{example}: …}}`; keys here: {}", keys.join(", "));
+                let help =
+                    format!("write keys with their values, such as `{{{example}: …}}`; keys here: {}", keys.join(", "));
                 self.wrong(spot, "wrong-shape", "a group of keys is due here", help);
             }
             return None;
@@ -113,7 +118,10 @@ impl<'s> Reader<'s> {
             self.unknown_key(key, value, &owner, keys);
         }
         // A block of keys begins with its first one, a group in braces with the brace.
-        let span = entries.first().map(|(key, _)| key.span).filter(|first| first.line == spot.node.span.line && first.column == spot.node.span.column);
+        let span = entries
+            .first()
+            .map(|(key, _)| key.span)
+            .filter(|first| first.line == spot.node.span.line && first.column == spot.node.span.column);
         Some(Group { node: spot.node, owner, span: span.unwrap_or(spot.node.span) })
     }
 
@@ -124,7 +132,9 @@ impl<'s> Reader<'s> {
         let text = format!("`{}` is no key of {owner}", clip(&key.text));
         let cut_by_comma = value.is_null() && nearest(&key.text, keys.iter().copied()).is_none();
         let help = if cut_by_comma {
-            String::from("inside braces a comma begins a new key: put text with a comma in quotes, and write a decimal point in a number")
+            String::from(
+                "inside braces a comma begins a new key: put text with a comma in quotes, and write a decimal point in a number",
+            )
         } else {
             advice(&key.text, "keys here", keys.iter().copied())
         };
@@ -148,7 +158,12 @@ impl<'s> Reader<'s> {
 
     fn has_value(&mut self, spot: &Spot<'_>) -> bool {
         if spot.node.is_null() {
-            self.error("no-value", spot.span, format!("{} has no value", spot.name), "write a value, or leave the key out where it is optional");
+            self.error(
+                "no-value",
+                spot.span,
+                format!("{} has no value", spot.name),
+                "write a value, or leave the key out where it is optional",
+            );
         }
         !spot.node.is_null()
     }
@@ -167,7 +182,8 @@ impl<'s> Reader<'s> {
 
     /// A name or a sentence.
     pub(super) fn text(&mut self, spot: &Spot<'_>) -> Option<String> {
-        let (text, _) = self.scalar(spot, "a text", "write a text; quotes are needed only around `:`, `#` and commas in braces")?;
+        let (text, _) =
+            self.scalar(spot, "a text", "write a text; quotes are needed only around `:`, `#` and commas in braces")?;
         if let Some(c) = text.chars().find(|c| is_refused(*c)) {
             let problem = format!("the character U+{:04X} can't stand in a text", u32::from(c));
             self.wrong(spot, "unprintable-character", &problem, "remove it");
@@ -266,7 +282,12 @@ impl<'s> Reader<'s> {
         let digits = plain && !text.is_empty() && text.chars().all(|c| c.is_ascii_digit());
         let number = text.parse().ok().filter(|_| digits);
         if number.is_none() {
-            self.wrong(spot, "bad-number", &format!("`{}` is no whole number that can be meant here", clip(text)), help);
+            self.wrong(
+                spot,
+                "bad-number",
+                &format!("`{}` is no whole number that can be meant here", clip(text)),
+                help,
+            );
         }
         number
     }

@@ -8,6 +8,9 @@ pub const MAX_BYTES: usize = 4 * 1024 * 1024;
 /// A longer line is shown in part, around the column in question.
 const SHOWN: usize = 200;
 
+/// A longer message is cut: it could only be so long by a name from the file.
+const LONGEST_MESSAGE: usize = 1500;
+
 /// The text of a file, with `\n` as its only line end.
 pub(super) struct Source {
     name: String,
@@ -32,12 +35,12 @@ impl Source {
     pub(super) fn new(name: &str, bytes: &[u8]) -> Result<Self, Box<Finding>> {
         if bytes.len() > MAX_BYTES {
             let source = Source::of(name, String::new());
-            return Err(source.error(
+            return Err(Box::new(source.error(
                 "file-too-large",
                 Span { line: 1, column: 1, length: 1 },
                 format!("the file is larger than {} MiB, which is more than any bank file", MAX_BYTES >> 20),
                 "give the file that describes the bank",
-            ));
+            )));
         }
         let bytes = bytes.strip_prefix(b"\xef\xbb\xbf").unwrap_or(bytes);
         let text = match std::str::from_utf8(bytes) {
@@ -47,12 +50,12 @@ impl Source {
         let source = Source::of(name, text.replace("\r\n", "\n").replace('\r', "\n"));
         match source.text.char_indices().find(|(_, c)| is_refused(*c)) {
             None => Ok(source),
-            Some((at, c)) => Err(source.error(
+            Some((at, c)) => Err(Box::new(source.error(
                 "unprintable-character",
                 source.span_at(at),
                 format!("the character U+{:04X} can't stand in a bank file", u32::from(c)),
                 "a bank file is plain UTF-8 text; remove the character or give another file",
-            )),
+            ))),
         }
     }
 
@@ -95,11 +98,24 @@ impl Source {
         span: Span,
         text: impl Into<String>,
         help: impl Into<String>,
-    ) -> Box<Finding> {
-        let finding = Finding::new(Severity::Error, code, text).at(self.place(span));
-        let help = help.into();
-        Box::new(if help.is_empty() { finding } else { finding.with_help(help) })
+    ) -> Finding {
+        let finding = Finding::new(Severity::Error, code, printable(&text.into())).at(self.place(span));
+        let help = printable(&help.into());
+        if help.is_empty() { finding } else { finding.with_help(help) }
     }
+}
+
+/// A message with whatever a file put into it made fit to be shown.
+fn printable(text: &str) -> String {
+    let shown = |c: char| match c {
+        c if c.is_control() || is_refused(c) => char::REPLACEMENT_CHARACTER,
+        c => c,
+    };
+    let mut message: String = text.chars().take(LONGEST_MESSAGE).map(shown).collect();
+    if text.chars().nth(LONGEST_MESSAGE).is_some() {
+        message.push('…');
+    }
+    message
 }
 
 /// What of a line is shown, and the column of its first character.
@@ -113,10 +129,12 @@ fn excerpt(line: &str, column: usize) -> (String, usize) {
     (line.chars().skip(first).take(SHOWN).map(shown).collect(), first + 1)
 }
 
-/// Control characters, and those that make text read in another order than it is written.
+/// Control characters, those that nobody sees and that make two names differ, and those that make text read in another
+/// order than it is written.
 pub(super) fn is_refused(c: char) -> bool {
+    let unseen = matches!(c, '\u{200b}' | '\u{2028}' | '\u{2029}' | '\u{feff}');
     let reorders = matches!(c, '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}');
-    reorders || (c.is_control() && !matches!(c, '\n' | '\t'))
+    unseen || reorders || (c.is_control() && !matches!(c, '\n' | '\t'))
 }
 
 fn not_utf8(name: &str, bytes: &[u8], valid: usize) -> Box<Finding> {
@@ -130,12 +148,12 @@ fn not_utf8(name: &str, bytes: &[u8], valid: usize) -> Box<Finding> {
     let source = Source::of(name, text.clone());
     let span = source.span_at(at.map_or(text.len(), |(at, _)| at));
     let byte = rest.first().copied().unwrap_or(0);
-    source.error(
+    Box::new(source.error(
         "not-text",
         span,
         format!("byte {} (0x{byte:02x}) is not UTF-8 text", valid + 1),
         "save the file as UTF-8 text; µ, Ω and ° from an older character set can be written u, ohm and C",
-    )
+    ))
 }
 
 #[cfg(test)]
@@ -168,7 +186,9 @@ mod tests {
 
     #[test]
     fn characters_that_no_printer_shows_are_refused() {
-        for (text, place) in [("tag: a\0", (1, 7)), ("a: 1\nb: \u{7}", (2, 4)), ("tag: \u{202e}x", (1, 6))] {
+        for (text, place) in
+            [("tag: a\0", (1, 7)), ("a: 1\nb: \u{7}", (2, 4)), ("tag: \u{202e}x", (1, 6)), ("a: C1\u{200b}", (1, 6))]
+        {
             let finding = refused(text.as_bytes());
             assert_eq!((finding.code, at(&finding)), ("unprintable-character", place));
         }

@@ -29,7 +29,8 @@ fn step(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize) -> Step {
         reader.doubt.steps = true;
         return step;
     };
-    step.name = reader.need(&group, "step", "Wait for the bleeders").and_then(|spot| reader.text(&spot)).unwrap_or(step.name);
+    step.name =
+        reader.need(&group, "step", "Wait for the bleeders").and_then(|spot| reader.text(&spot)).unwrap_or(step.name);
     step.lasts = lasts(reader, &group).unwrap_or(step.lasts);
     step.connect = ids(reader, &group, "connect");
     step.disconnect = ids(reader, &group, "disconnect");

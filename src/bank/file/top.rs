@@ -1,15 +1,33 @@
 //! The top of a bank file: what is said of the bank as a whole.
 
-use super::reader::{Group, Reader, Spot};
+use super::parts::Terminals;
+use super::reader::{Group, Reader, Spot, TOP};
 use super::tree::Node;
 use super::{charge, limits, parts, steps};
-use crate::bank::description::{Description, StrapLimit};
+use crate::bank::description::{Description, Source, StrapLimit};
 use crate::bank::validate::UNREAD;
 use crate::quantity::{Quantity, Voltage};
 
 const KEYS: [&str; 20] = [
-    "ebbvolt", "tag", "title", "location", "prepared_by", "revision", "notes", "ambient", "touch_voltage", "hold_energy",
-    "strap_limit", "terminals", "charged_to", "capacitors", "resistors", "sinks", "supplies", "test_points", "limits",
+    "ebbvolt",
+    "tag",
+    "title",
+    "location",
+    "prepared_by",
+    "revision",
+    "notes",
+    "ambient",
+    "touch_voltage",
+    "hold_energy",
+    "strap_limit",
+    "terminals",
+    "charged_to",
+    "capacitors",
+    "resistors",
+    "sinks",
+    "supplies",
+    "test_points",
+    "limits",
     "procedure",
 ];
 
@@ -26,18 +44,27 @@ pub(super) fn unread(what: &str, index: usize) -> String {
 pub(super) fn read(reader: &mut Reader<'_>, node: &Node) -> Option<Description> {
     let spot = Spot::top(node);
     if !spot.is_mapping() {
-        reader.error("not-a-mapping", node.span, "a bank file begins with keys and their values", "begin with `ebbvolt: 1` and `tag: …`, each on a line of its own");
+        reader.error(
+            "not-a-mapping",
+            node.span,
+            "a bank file begins with keys and their values",
+            "begin with `ebbvolt: 1` and `tag: …`, each on a line of its own",
+        );
         return None;
     }
-    let top = reader.group(&spot, "the bank file".into(), &KEYS)?;
+    let top = reader.group(&spot, TOP.into(), &KEYS)?;
     format(reader, &top);
     let tag = reader.need(&top, "tag", "PU-07").and_then(|spot| reader.text(&spot));
     let touch_voltage = reader.need(&top, "touch_voltage", "50 V").and_then(|spot| reader.quantity(&spot));
     let terminals = terminals(reader, &top);
     let charged_to = charge::read(reader, &top);
-    let capacitors = parts::capacitors(reader, &top, &terminals);
-    let resistors = parts::resistors(reader, &top, &terminals);
-    if reader.doubt.phases && (capacitors.iter().any(|c| c.phases.is_some()) || resistors.iter().any(|r| r.phases.is_some())) {
+    let three_phase = matches!(charged_to.source, Source::ThreePhase { .. });
+    let fed = Terminals { names: &terminals, three_phase };
+    let capacitors = parts::capacitors(reader, &top, &fed);
+    let resistors = parts::resistors(reader, &top, &fed);
+    if reader.doubt.phases
+        && (capacitors.iter().any(|c| c.phases.is_some()) || resistors.iter().any(|r| r.phases.is_some()))
+    {
         // Where a star is joined depends on how the neutral stands.
         reader.doubt.nodes = true;
     }

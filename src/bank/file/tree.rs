@@ -16,6 +16,9 @@ pub(super) const MAX_DEPTH: usize = 64;
 /// Aliases may stand for this many values together; a few lines of them could otherwise stand for billions.
 const MAX_ALIASED: usize = 20_000;
 
+/// A file with more values is refused: no plant has such a bank, and no page would hold its plan.
+const MAX_VALUES: usize = 500_000;
+
 /// A value and where it stands.
 #[derive(Debug)]
 pub(super) struct Node {
@@ -69,7 +72,7 @@ impl Node {
 pub(super) fn parse(source: &Source, log: &mut Log) -> Option<Rc<Node>> {
     let mut builder = Builder { source, log, open: vec![], root: None, anchors: HashMap::new(), aliased: 0 };
     let mut parser = Parser::new_from_str(&source.text);
-    let mut documents = 0;
+    let (mut documents, mut values) = (0, 0);
     loop {
         let (event, span) = match parser.next_event()? {
             Ok((event, span)) => (event, from_parser(source, span)),
@@ -89,7 +92,15 @@ pub(super) fn parse(source: &Source, log: &mut Log) -> Option<Rc<Node>> {
                     return None;
                 }
             }
-            event => builder.take(event, span)?,
+            event => {
+                values += 1;
+                if values > MAX_VALUES {
+                    let text = format!("the file has more than {MAX_VALUES} values");
+                    builder.log.push(source.error("too-many-values", span, text, "write one bank to a file"));
+                    return None;
+                }
+                builder.take(event, span)?;
+            }
         }
     }
     builder.root.take()
@@ -161,8 +172,7 @@ impl Builder<'_> {
     }
 
     fn refuse(&mut self, code: &'static str, span: Span, text: &str, help: &str) {
-        let error = self.source.error(code, span, text, help);
-        self.log.push(error);
+        self.log.push_with(|| self.source.error(code, span, text, help));
     }
 
     fn no_tag(&mut self, tagged: bool, span: Span) {

@@ -169,7 +169,7 @@ pub(super) fn above_zero<Q: Quantity>(value: Q, key: &'static str, path: &Path, 
     }
 }
 
-fn at_least_zero<Q: Quantity>(value: Q, key: &'static str, path: &Path, sink: &mut Sink) {
+pub(super) fn at_least_zero<Q: Quantity>(value: Q, key: &'static str, path: &Path, sink: &mut Sink) {
     if !(value.si().is_finite() && value.si() >= 0.0) {
         not_a_figure(path.then(key), key, sink);
     }
@@ -213,7 +213,8 @@ mod tests {
             let mut d = plain();
             d.capacitors[0].series = count;
             d.resistors[0].parallel = count;
-            let expected: &[&str] = if passes { &[] } else { &["capacitors[0].units.series", "resistors[0].array.parallel"] };
+            let expected: &[&str] =
+                if passes { &[] } else { &["capacitors[0].units.series", "resistors[0].array.parallel"] };
             assert_eq!(problems(&d).into_iter().map(|(_, path)| path).collect::<Vec<_>>(), expected);
         }
     }
@@ -254,7 +255,8 @@ mod tests {
 
     #[test]
     fn a_constant_power_cannot_run_down_to_zero_and_a_constant_current_can() {
-        let sink = |draw| Draining { id: "K1".into(), draw, across: pair("P", "N"), stops_below: volt(0.0), counted: false };
+        let sink =
+            |draw| Draining { id: "K1".into(), draw, across: pair("P", "N"), stops_below: volt(0.0), counted: false };
         let mut d = plain();
         d.sinks.push(sink(Draw::ConstantCurrent(Current::from_si(0.04))));
         assert_eq!(problems(&d), []);

@@ -3,7 +3,7 @@
 use super::super::description::{Bound, Description, Limit, Rule};
 use super::super::near::advice;
 use super::super::problem::{Path, Sink};
-use super::figures::above_zero;
+use super::figures::{above_zero, at_least_zero};
 use super::is_known;
 use crate::data::{published_limit, published_limits};
 use std::collections::HashMap;
@@ -16,14 +16,20 @@ pub(super) fn check(d: &Description, sink: &mut Sink) {
         // One published limit may be asked for at several pairs; an own one has one name and one pair.
         let at = match &limit.rule {
             Rule::Published(_) => limit.at.as_ref().map(|[a, b]| [a.as_str().min(b), a.as_str().max(b)]),
+            // Its id is refused already.
+            Rule::Own { .. } if published_limit(&limit.id).is_some() => continue,
             Rule::Own { .. } => None,
         };
         let earlier = *taken.entry((&limit.id, at)).or_insert(i);
         if earlier != i && is_known(&limit.id) {
             let key = if matches!(limit.rule, Rule::Published(_)) { "use" } else { "id" };
-            sink.push("duplicate-limit", path.then(key), || {
-                let text = format!("limit `{}` is there already, at limits[{earlier}]", limit.id);
-                (text, String::from("give every limit an id of its own; a published one may be used once for each pair"))
+            let other = Path::of("limits").then(earlier).then(key);
+            sink.push_pair("duplicate-limit", path.then(key), other, || {
+                let text = format!("limit `{}` is there already", limit.id);
+                (
+                    text,
+                    String::from("give every limit an id of its own; a published one may be used once for each pair"),
+                )
             });
         }
     }
@@ -48,10 +54,19 @@ fn rule(limit: &Limit, path: &Path, sink: &mut Sink) {
             if any_of.is_empty() {
                 sink.push("limit-without-bound", path.clone(), || {
                     let text = format!("limit `{}` has no bound", limit.id);
-                    (text, String::from("write `voltage: 50 V`, or `any_of` with voltage, charge, initial_charge or energy"))
+                    (
+                        text,
+                        String::from(
+                            "write `voltage: 50 V`, or `any_of` with voltage, charge, initial_charge or energy",
+                        ),
+                    )
                 });
             }
-            above_zero(*within, "within", path, sink);
+            if any_of.iter().all(Bound::is_of_isolation) {
+                at_least_zero(*within, "within", path, sink);
+            } else {
+                above_zero(*within, "within", path, sink);
+            }
             let bounds = if any_of.len() > 1 { path.then("any_of") } else { path.clone() };
             for bound in any_of {
                 match *bound {
@@ -81,7 +96,12 @@ mod tests {
     }
 
     fn own(id: &str, any_of: Vec<Bound>, within: f64) -> Limit {
-        Limit { id: id.into(), rule: Rule::Own { any_of, within: Time::from_si(within) }, at: None, single_fault: false }
+        Limit {
+            id: id.into(),
+            rule: Rule::Own { any_of, within: Time::from_si(within) },
+            at: None,
+            single_fault: false,
+        }
     }
 
     #[test]
@@ -96,7 +116,15 @@ mod tests {
         assert_eq!(problems(&with(vec![own("x", volts(), 5.0)])), []);
         assert_problem(&with(vec![own("x", vec![], 5.0)]), "limit-without-bound", "limits[0]");
         assert_problem(&with(vec![own("x", volts(), 0.0)]), "not-above-zero", "limits[0].within");
-        assert_problem(&with(vec![own("x", vec![Bound::Voltage(volt(0.0))], 5.0)]), "not-above-zero", "limits[0].voltage");
+        let charge = Bound::InitialCharge(Quantity::from_si(6e-5));
+        assert_eq!(problems(&with(vec![own("x", vec![charge], 0.0)])), []);
+        let mixed = vec![charge, Bound::Voltage(volt(50.0))];
+        assert_problem(&with(vec![own("x", mixed, 0.0)]), "not-above-zero", "limits[0].within");
+        assert_problem(
+            &with(vec![own("x", vec![Bound::Voltage(volt(0.0))], 5.0)]),
+            "not-above-zero",
+            "limits[0].voltage",
+        );
     }
 
     #[test]

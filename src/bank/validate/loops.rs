@@ -186,7 +186,10 @@ mod tests {
     fn parallel_capacitors_of_two_voltages_contradict_each_other() {
         let d = bank(&[("P", "N", Some(400.0)), ("P", "N", Some(401.0))]);
         assert_problem(&d, "capacitor-loop", "capacitors[1].charged_to");
-        assert_eq!(problems(&bank(&[("P", "N", Some(400.0)), ("N", "P", Some(0.0)), ("P", "N", Some(400.0))])).len(), 1);
+        assert_eq!(
+            problems(&bank(&[("P", "N", Some(400.0)), ("N", "P", Some(0.0)), ("P", "N", Some(400.0))])).len(),
+            1
+        );
         assert_eq!(problems(&bank(&[("P", "N", Some(400.0)), ("P", "N", Some(400.0 + 1e-8))])), []);
     }
 
@@ -205,7 +208,8 @@ mod tests {
 
     #[test]
     fn a_series_string_has_to_add_up_to_what_lies_across_it() {
-        let string = |last| bank(&[("P", "A", Some(100.0)), ("A", "B", Some(200.0)), ("N", "B", Some(50.0)), ("P", "N", last)]);
+        let string =
+            |last| bank(&[("P", "A", Some(100.0)), ("A", "B", Some(200.0)), ("N", "B", Some(50.0)), ("P", "N", last)]);
         assert_eq!(problems(&string(Some(250.0))), []);
         assert_problem(&string(Some(350.0)), "capacitor-loop", "capacitors[3].charged_to");
         let mut d = string(None);

@@ -11,7 +11,7 @@ mod three_phase;
 
 use super::description::Description;
 use super::parts::parts;
-use super::problem::{Problem, Sink};
+use super::problem::{Path, Problem, Sink};
 use std::collections::HashSet;
 
 /// What a reader could not make out. It stands in the description as a name that [`is_known`] refuses or as a
@@ -22,6 +22,8 @@ pub(super) struct Doubt {
     pub(super) unread: bool,
     /// Some part may have an id that is not in the description.
     pub(super) ids: bool,
+    /// The list of capacitors could not be read.
+    pub(super) capacitors: bool,
     /// Some part may touch nodes that are not in the description.
     pub(super) nodes: bool,
     /// The voltage across the terminals is made up.
@@ -49,6 +51,11 @@ pub(super) fn check(d: &Description, doubt: &Doubt) -> (Vec<Problem>, usize) {
     let parts = parts(d);
     names::check(d, &parts, doubt, &mut sink);
     figures::check(d, &mut sink);
+    if d.capacitors.is_empty() && !doubt.capacitors {
+        sink.push("no-capacitors", Path::of("capacitors"), || {
+            (String::from("a bank has at least one capacitor"), String::from("add `- {id: C1, value: 3300 uF}`"))
+        });
+    }
     three_phase::check(d, doubt, &mut sink);
     let nodes = nodes::check(d, &parts, doubt, &mut sink);
     if !doubt.voltages {
@@ -177,5 +184,12 @@ mod tests {
     #[test]
     fn a_plain_bank_passes() {
         assert_eq!(problems(&plain()), []);
+    }
+
+    #[test]
+    fn a_bank_has_a_capacitor() {
+        let mut d = plain();
+        d.capacitors.clear();
+        assert_problem(&d, "no-capacitors", "capacitors");
     }
 }

@@ -15,8 +15,7 @@ pub(super) fn check(d: &Description, parts: &[Part<'_>], doubt: &Doubt, sink: &m
     if let Some(revision) = &d.revision {
         name(revision, "the revision", Path::of("revision"), unread, sink);
     }
-    let lines =
-        [("title", &d.title), ("location", &d.location), ("prepared_by", &d.prepared_by)];
+    let lines = [("title", &d.title), ("location", &d.location), ("prepared_by", &d.prepared_by)];
     for (key, text) in lines {
         if let Some(text) = text {
             words(text, key, Path::of(key), false, unread, sink);
@@ -87,8 +86,8 @@ fn no_id_twice(d: &Description, parts: &[Part<'_>], sink: &mut Sink) {
             let earlier = *taken.entry(id.clone()).or_insert(at);
             if earlier != at {
                 let other = parts[earlier];
-                sink.push("duplicate-id", part.path().then("id"), || {
-                    let text = format!("the id `{id}` is taken by a {} ({})", other.noun, other.path());
+                sink.push_pair("duplicate-id", part.path().then("id"), other.path().then("id"), || {
+                    let text = format!("the id `{id}` is taken already, by a {}", other.noun);
                     (text, String::from("give every capacitor, resistor, sink and supply an id of its own"))
                 });
                 break;

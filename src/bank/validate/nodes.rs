@@ -9,14 +9,15 @@ use super::{Doubt, is_known};
 use std::collections::{HashMap, HashSet};
 
 /// The nodes of a bank and how they hang together at isolation.
-pub(super) struct Nodes<'a> {
+pub(super) struct Nodes {
     /// Number of each node, in the order of first mention.
     numbers: HashMap<String, usize>,
     /// Those that a terminal, a capacitor or an always-connected part touches, in that order.
     fixed: Vec<String>,
     /// Which nodes the parts that are always connected join.
     pub(super) joined: Joined,
-    doubt: &'a Doubt,
+    /// Whether there may be nodes and parts beyond those that are known.
+    in_doubt: bool,
 }
 
 /// Sets of nodes that are joined by parts (union-find).
@@ -54,9 +55,12 @@ struct Touch {
     by_fixed: bool,
 }
 
-pub(super) fn check<'a>(d: &Description, parts: &[Part<'_>], doubt: &'a Doubt, sink: &mut Sink) -> Nodes<'a> {
+pub(super) fn check(d: &Description, parts: &[Part<'_>], doubt: &Doubt, sink: &mut Sink) -> Nodes {
+    // Without a capacitor there is no bank whose nodes could be judged.
+    let in_doubt = doubt.nodes || d.capacitors.is_empty();
     let mut touches: HashMap<String, Touch> = HashMap::new();
-    let mut nodes = Nodes { numbers: HashMap::new(), fixed: vec![], joined: Joined::default(), doubt };
+    let mut nodes = Nodes { numbers: HashMap::new(), fixed: vec![], joined: Joined::default(), in_doubt };
+    let terminals: HashSet<&str> = d.terminals.iter().map(String::as_str).collect();
     for terminal in &d.terminals {
         nodes.number(terminal);
         nodes.fixed.push(terminal.clone());
@@ -78,21 +82,21 @@ pub(super) fn check<'a>(d: &Description, parts: &[Part<'_>], doubt: &'a Doubt, s
                 touch.times += 1;
                 if part.fixed && !touch.by_fixed {
                     touch.by_fixed = true;
-                    if !d.terminals.contains(&node) {
+                    if !terminals.contains(node.as_str()) {
                         nodes.fixed.push(node);
                     }
                 }
             }
         }
     }
-    if doubt.nodes {
-        return nodes;
+    if !in_doubt {
+        untouched_terminals(d, &touches, sink);
+        for part in parts.iter().filter(|part| part.phases.is_none()) {
+            ends(part, &terminals, &touches, &nodes, sink);
+        }
+        terminals_joined(d, &nodes, sink);
     }
-    untouched_terminals(d, &touches, sink);
-    for part in parts.iter().filter(|part| part.phases.is_none()) {
-        ends(d, part, &touches, &nodes, sink);
-    }
-    test_points(d, &mut nodes, sink);
+    test_points(d, &nodes, sink);
     nodes
 }
 
@@ -102,7 +106,9 @@ fn untouched_terminals(d: &Description, touches: &HashMap<String, Touch>, sink: 
             sink.push("untouched-terminal", Path::of("terminals").then(i), || {
                 (
                     format!("no capacitor and no always-connected part touches terminal `{terminal}`"),
-                    String::from("the terminals are where the bank was fed: name two nodes that parts lie across"),
+                    String::from(
+                        "`terminals` names where the bank was fed (P and N where it is left out): nodes that parts lie across",
+                    ),
                 )
             });
         }
@@ -110,10 +116,10 @@ fn untouched_terminals(d: &Description, touches: &HashMap<String, Touch>, sink: 
 }
 
 /// A node at the end of a part has to be touched by something else.
-fn ends(d: &Description, part: &Part<'_>, touches: &HashMap<String, Touch>, nodes: &Nodes<'_>, sink: &mut Sink) {
+fn ends(part: &Part<'_>, terminals: &HashSet<&str>, touches: &HashMap<String, Touch>, nodes: &Nodes, sink: &mut Sink) {
     for (end, node) in part.across.iter().enumerate() {
         let Some(touch) = touches.get(node) else { continue };
-        if d.terminals.contains(node) {
+        if terminals.contains(node.as_str()) {
             continue;
         }
         let path = part.path().then("across").then(end);
@@ -134,7 +140,7 @@ fn ends(d: &Description, part: &Part<'_>, touches: &HashMap<String, Touch>, node
     }
 }
 
-fn test_points(d: &Description, nodes: &mut Nodes<'_>, sink: &mut Sink) {
+fn terminals_joined(d: &Description, nodes: &Nodes, sink: &mut Sink) {
     let mut joined = nodes.joined.clone();
     if let [first, rest @ ..] = d.terminals.as_slice() {
         for (i, terminal) in rest.iter().enumerate().filter(|(_, t)| *t != first) {
@@ -142,12 +148,18 @@ fn test_points(d: &Description, nodes: &mut Nodes<'_>, sink: &mut Sink) {
                 sink.push("unconnected-pair", Path::of("terminals").then(i + 1), || {
                     (
                         format!("nothing connects terminals `{first}` and `{terminal}`"),
-                        String::from("their voltage would not be defined after isolation; check the nodes of the parts"),
+                        String::from(
+                            "their voltage would not be defined after isolation; check the nodes of the parts",
+                        ),
                     )
                 });
             }
         }
     }
+}
+
+fn test_points(d: &Description, nodes: &Nodes, sink: &mut Sink) {
+    let mut joined = nodes.joined.clone();
     let Some(pairs) = &d.test_points else { return };
     let path = Path::of("test_points");
     if pairs.is_empty() {
@@ -168,7 +180,7 @@ fn test_points(d: &Description, nodes: &mut Nodes<'_>, sink: &mut Sink) {
     }
 }
 
-impl Nodes<'_> {
+impl Nodes {
     /// The number of a node, a new one where it has none yet.
     pub(super) fn number(&mut self, node: &str) -> usize {
         let next = self.numbers.len();
@@ -195,7 +207,7 @@ impl Nodes<'_> {
             return false;
         }
         let [a, b] = pair;
-        let passes = self.in_doubt(pair) || self.are_joined(joined, a, b);
+        let passes = self.pair_in_doubt(pair) || self.are_joined(joined, a, b);
         if !passes {
             sink.push("unconnected-pair", path.clone(), || {
                 (
@@ -210,14 +222,14 @@ impl Nodes<'_> {
     /// Checks a pair as [`Nodes::pair`] does, but for what connects it.
     pub(super) fn pair_of_nodes(&self, pair: &Pair, path: &Path, sink: &mut Sink) -> bool {
         let [a, b] = pair;
-        if self.in_doubt(pair) {
-            return true;
-        }
-        if a == b {
+        if a == b && is_known(a) {
             sink.push("pair-of-one-node", path.clone(), || {
                 (format!("both points are node `{a}`"), String::from("a voltage is between two different nodes"))
             });
             return false;
+        }
+        if self.pair_in_doubt(pair) {
+            return true;
         }
         let unknown = |node: &&String| self.find(node).is_none();
         for (end, node) in pair.iter().enumerate().filter(|(_, node)| unknown(node)) {
@@ -226,8 +238,8 @@ impl Nodes<'_> {
         !pair.iter().any(|node| unknown(&node))
     }
 
-    fn in_doubt(&self, pair: &Pair) -> bool {
-        self.doubt.nodes || pair.iter().any(|node| !is_known(node))
+    fn pair_in_doubt(&self, pair: &Pair) -> bool {
+        self.in_doubt || pair.iter().any(|node| !is_known(node))
     }
 
     fn advice(&self, node: &str) -> String {

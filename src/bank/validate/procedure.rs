@@ -1,55 +1,82 @@
 //! The procedure, walked through as people would: what is connected at each step, and what is read there.
 
-use super::super::description::{Description, Hold, Lasts, Step};
-use super::super::near::advice;
+use super::super::description::{Description, Hold, Lasts, Pair, Step};
+use super::super::near::{advice, listed};
 use super::super::parts::{Part, legs};
 use super::super::problem::{Path, Sink};
 use super::figures::above_zero;
 use super::nodes::{Joined, Nodes};
 use super::{Doubt, is_known};
 use crate::quantity::Quantity;
-use std::collections::{BTreeMap, HashMap};
+use std::collections::{BTreeMap, HashMap, HashSet};
 
-pub(super) fn check(d: &Description, parts: &[Part<'_>], nodes: &Nodes<'_>, doubt: &Doubt, sink: &mut Sink) {
+pub(super) fn check<'a>(
+    d: &'a Description,
+    parts: &'a [Part<'a>],
+    nodes: &'a Nodes,
+    doubt: &'a Doubt,
+    sink: &mut Sink,
+) {
     let mut joined = nodes.joined.clone();
     for (i, limit) in d.limits.iter().enumerate() {
         if let Some(pair) = &limit.at {
             nodes.pair(pair, &Path::of("limits").then(i).then("at"), &mut joined, sink);
         }
     }
-    let mut walk = Walk { d, by_id: parts.iter().map(|p| (p.id, p)).collect(), connected: BTreeMap::new(), doubt };
+    let mut walk = Walk {
+        parts,
+        by_id: parts.iter().map(|p| (p.id, p)).collect(),
+        joins: parts.iter().filter(|p| !p.fixed).map(|p| (p.id, joins(d, p, nodes))).collect(),
+        connected: BTreeMap::new(),
+        joined: None,
+        nodes,
+        doubt,
+    };
     for (i, step) in d.procedure.iter().enumerate() {
         let path = Path::of("procedure").then(i);
-        if walk.change(i, step, &path, sink) {
-            joined = walk.joined(nodes);
-        }
+        walk.change(i, step, &path, sink);
         match &step.lasts {
             Lasts::For(time) if !(time.si() >= 0.0 && time.si().is_finite()) => {
                 sink.push("bad-figure", path.then("for"), || ("`for` is negative or not finite".into(), None));
             }
             Lasts::For(_) => {}
-            Lasts::Until(until) => walk.hold(until, &path.then("until"), nodes, &mut joined, sink),
+            Lasts::Until(until) => walk.hold(until, &path.then("until"), sink),
         }
         for (k, pair) in step.measure.iter().enumerate() {
-            walk.pair(pair, &path.then("measure").then(k), nodes, &mut joined, sink);
+            walk.pair(pair, &path.then("measure").then(k), sink);
         }
         if let Some(hold) = &step.hold {
-            walk.hold(hold, &path.then("hold"), nodes, &mut joined, sink);
+            walk.hold(hold, &path.then("hold"), sink);
         }
     }
 }
 
+/// The nodes that a part joins, by their numbers.
+fn joins(d: &Description, part: &Part<'_>, nodes: &Nodes) -> Vec<(usize, usize)> {
+    let legs = legs(d, part.id, part.across, part.phases);
+    legs.iter().filter_map(|(_, [a, b])| nodes.find(a).zip(nodes.find(b))).collect()
+}
+
 struct Walk<'a> {
-    d: &'a Description,
+    parts: &'a [Part<'a>],
     by_id: HashMap<&'a str, &'a Part<'a>>,
+    /// What each part joins that a step may connect.
+    joins: HashMap<&'a str, Vec<(usize, usize)>>,
     /// Parts that steps have connected, and the step that did.
     connected: BTreeMap<&'a str, usize>,
+    /// How the nodes hang together with what is connected now; `None` where nobody has asked since a part was taken
+    /// off, which can't be undone in it.
+    joined: Option<Joined>,
+    nodes: &'a Nodes,
     doubt: &'a Doubt,
 }
 
 impl<'a> Walk<'a> {
-    /// Carries out what a step connects and disconnects at its start. True where anything changed.
-    fn change(&mut self, at: usize, step: &'a Step, path: &Path, sink: &mut Sink) -> bool {
+    /// Carries out what a step connects and disconnects at its start.
+    fn change(&mut self, at: usize, step: &'a Step, path: &Path, sink: &mut Sink) {
+        if !step.disconnect.is_empty() {
+            self.joined = None;
+        }
         // Taken off before put on: a part in both lists would be an exchange with itself.
         for (k, id) in step.disconnect.iter().enumerate() {
             let path = path.then("disconnect").then(k);
@@ -58,7 +85,7 @@ impl<'a> Walk<'a> {
             }
             if self.connected.remove(id.as_str()).is_none() && !self.doubt.steps {
                 sink.push("not-connected", path, || {
-                    let now = super::super::near::listed(self.connected.keys().copied());
+                    let now = listed(self.connected.keys().copied());
                     let now = if now.is_empty() { String::from("no part") } else { now };
                     (
                         format!("`{id}` is not connected when step {} begins, and can't be disconnected", at + 1),
@@ -67,12 +94,16 @@ impl<'a> Walk<'a> {
                 });
             }
         }
+        let taken_off: HashSet<&str> = step.disconnect.iter().map(String::as_str).collect();
         for (k, id) in step.connect.iter().enumerate() {
             let path = path.then("connect").then(k);
             if !self.step_connects(id, &path, sink) {
                 continue;
             }
-            if step.disconnect.contains(id) {
+            if let Some(joined) = &mut self.joined {
+                self.joins.get(id.as_str()).into_iter().flatten().for_each(|&(a, b)| joined.join(a, b));
+            }
+            if taken_off.contains(id.as_str()) {
                 sink.push("connected-and-disconnected", path, || {
                     let text = format!("step {} both connects and disconnects `{id}`", at + 1);
                     (text, String::from("make two steps of it"))
@@ -86,7 +117,6 @@ impl<'a> Walk<'a> {
                 });
             }
         }
-        !step.connect.is_empty() || !step.disconnect.is_empty()
     }
 
     /// True where `id` is a part that a step may connect; reports it otherwise.
@@ -97,7 +127,8 @@ impl<'a> Walk<'a> {
         match self.by_id.get(id) {
             Some(part) if part.fixed => {
                 sink.push("always-connected", path.clone(), || {
-                    let text = format!("{} `{id}` is always connected, and no step connects or disconnects it", part.noun);
+                    let text =
+                        format!("{} `{id}` is always connected, and no step connects or disconnects it", part.noun);
                     (text, String::from("steps connect resistors of role tool, strap or meter, and supplies"))
                 });
                 false
@@ -106,9 +137,7 @@ impl<'a> Walk<'a> {
             None => {
                 if !self.doubt.ids {
                     sink.push("unknown-part", path.clone(), || {
-                        let mut known: Vec<&str> = self.by_id.values().filter(|p| !p.fixed).map(|p| p.id).collect();
-                        known.retain(|id| is_known(id));
-                        known.sort_unstable();
+                        let known = self.parts.iter().filter(|p| !p.fixed && is_known(p.id)).map(|p| p.id);
                         (format!("there is no part `{id}`"), advice(id, "parts that a step connects", known))
                     });
                 }
@@ -117,33 +146,27 @@ impl<'a> Walk<'a> {
         }
     }
 
-    /// How the nodes hang together with what is connected now.
-    fn joined(&self, nodes: &Nodes<'_>) -> Joined {
-        let mut joined = nodes.joined.clone();
-        for part in self.connected.keys().filter_map(|id| self.by_id.get(id)) {
-            for (_, [a, b]) in legs(self.d, part.id, part.across, part.phases) {
-                if let (Some(a), Some(b)) = (nodes.find(&a), nodes.find(&b)) {
-                    joined.join(a, b);
-                }
-            }
-        }
-        joined
-    }
-
-    fn hold(&self, hold: &Hold, path: &Path, nodes: &Nodes<'_>, joined: &mut Joined, sink: &mut Sink) {
+    fn hold(&mut self, hold: &Hold, path: &Path, sink: &mut Sink) {
         above_zero(hold.below, "below", path, sink);
         if let Some(pair) = &hold.at {
-            self.pair(pair, &path.then("at"), nodes, joined, sink);
+            self.pair(pair, &path.then("at"), sink);
         }
     }
 
-    fn pair(&self, pair: &[String; 2], path: &Path, nodes: &Nodes<'_>, joined: &mut Joined, sink: &mut Sink) {
+    fn pair(&mut self, pair: &Pair, path: &Path, sink: &mut Sink) {
         if self.doubt.steps || self.doubt.ids {
             // Which parts are connected here is not known; that the nodes exist still has to hold.
-            nodes.pair_of_nodes(pair, path, sink);
-        } else {
-            nodes.pair(pair, path, joined, sink);
+            self.nodes.pair_of_nodes(pair, path, sink);
+            return;
         }
+        let joined = self.joined.get_or_insert_with(|| {
+            let mut joined = self.nodes.joined.clone();
+            for &(a, b) in self.connected.keys().filter_map(|id| self.joins.get(id)).flatten() {
+                joined.join(a, b);
+            }
+            joined
+        });
+        self.nodes.pair(pair, path, joined, sink);
     }
 }
 
@@ -169,7 +192,10 @@ mod tests {
 
     #[test]
     fn a_procedure_that_people_can_carry_out_passes() {
-        assert_eq!(problems(&with(vec![change(&["T1"], &[]), change(&["ST1"], &["T1"]), change(&["T1"], &["ST1"])])), []);
+        assert_eq!(
+            problems(&with(vec![change(&["T1"], &[]), change(&["ST1"], &["T1"]), change(&["T1"], &["ST1"])])),
+            []
+        );
     }
 
     #[test]

@@ -13,7 +13,12 @@ pub(super) fn check(d: &Description, doubt: &Doubt, sink: &mut Sink) {
             if !three_phase {
                 sink.push("phases-without-supply", Path::of(list).then(i).then("phases"), || {
                     let text = format!("`{id}` is a three-phase part, and the bank was not charged from three phases");
-                    (text, String::from("write `charged_to: {ac_rms: 400 V, phases: 3, neutral: isolated}`, or leave `phases` out"))
+                    (
+                        text,
+                        String::from(
+                            "write `charged_to: {ac_rms: 400 V, phases: 3, neutral: isolated}`, or leave `phases` out",
+                        ),
+                    )
                 });
             } else if list == "capacitors" && connection == Connection::OpenDelta {
                 sink.push("open-delta-capacitor", Path::of(list).then(i).then("connection"), || {
@@ -31,6 +36,9 @@ pub(super) fn check(d: &Description, doubt: &Doubt, sink: &mut Sink) {
     }
 }
 
+/// Of a list of terminals that is far too long, each is compared with the first few only.
+const MOST_COMPARED: usize = 10;
+
 fn terminals(d: &Description, three_phase: bool, sink: &mut Sink) {
     let path = Path::of("terminals");
     let due = if three_phase { 3 } else { 2 };
@@ -45,14 +53,15 @@ fn terminals(d: &Description, three_phase: bool, sink: &mut Sink) {
         });
     }
     for (i, terminal) in d.terminals.iter().enumerate().filter(|(_, t)| is_known(t)) {
-        if d.terminals[..i].contains(terminal) {
+        if d.terminals.iter().take(i.min(MOST_COMPARED)).any(|other| other == terminal) {
             sink.push("duplicate-terminal", path.then(i), || {
                 (format!("terminal `{terminal}` is named twice"), String::from("the terminals are different nodes"))
             });
         }
         if three_phase && terminal == GROUND {
             sink.push("terminal-is-ground", path.then(i), || {
-                let text = format!("`{GROUND}` is the node of the grounded neutral, and can't be a terminal of three phases");
+                let text =
+                    format!("`{GROUND}` is the node of the grounded neutral, and can't be a terminal of three phases");
                 (text, String::from("give the terminal another name"))
             });
         }
