@@ -2,7 +2,7 @@
 
 use crate::bank::Bank;
 use crate::circuit::CircuitError;
-use crate::discharge::{Fault, Figure, Model, Scenario, Study, Worst};
+use crate::discharge::{self, Fault, Figure, Model, Scenario, Study, Worst};
 use crate::quantity::Quantity;
 use rayon::prelude::*;
 use std::fmt;
@@ -47,8 +47,8 @@ impl Answers {
         let scenario = Scenario::default();
         let study = |volts| Study { model, scenario: &scenario, volts, figures: &figures };
         let failed = |cause| EngineError { scenario: "healthy".into(), cause };
-        let nominal = study(charged.nominal.si()).nominal().map_err(failed)?;
-        let worst = study(charged.highest.si()).worst().map_err(failed)?;
+        let nominal = discharge::nominal(&study(charged.nominal.si())).map_err(failed)?;
+        let worst = discharge::worst(&study(charged.highest.si())).map_err(failed)?;
         Ok(Answers { nominal, worst, figures })
     }
 
@@ -59,7 +59,7 @@ impl Answers {
         let failed = |cause| EngineError { scenario: fault.name.clone(), cause };
         let mut worst: Vec<Worst> = Vec::new();
         for scenario in &fault.scenarios {
-            let found = Study { model, scenario, volts, figures: &figures }.worst().map_err(failed)?;
+            let found = discharge::worst(&Study { model, scenario, volts, figures: &figures }).map_err(failed)?;
             if worst.is_empty() {
                 worst = found;
             } else {

@@ -82,9 +82,9 @@ impl ExpSum {
         self.constant.abs() + self.terms.iter().map(|(a, _)| a.abs()).sum::<f64>()
     }
 
-    /// Integral of the decaying part from 0 to infinity: the sum of `amplitude / rate`.
-    pub fn integral_of_decay(&self) -> f64 {
-        self.terms.iter().map(|(a, r)| a / r).sum()
+    /// Integral from 0 to `t` seconds.
+    pub fn integral(&self, t: f64) -> f64 {
+        self.constant * t + self.terms.iter().map(|(a, r)| -a * (-r * t).exp_m1() / r).sum::<f64>()
     }
 
     /// Integral of `v^2` from 0 to `t` seconds, in closed form over pairs of rates; `t` may be infinite, and the

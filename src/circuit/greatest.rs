@@ -4,7 +4,7 @@ use super::crossing::{Bounds, split};
 use super::{CircuitError, ExpSum};
 
 /// Relative accuracy of a greatest value.
-const ACCURACY: f64 = 1e-13;
+const ACCURACY: f64 = 1e-11;
 
 const MOST_INTERVALS: usize = 200_000;
 
@@ -26,6 +26,14 @@ impl ExpSum {
     /// # Errors
     /// As [`ExpSum::greatest_magnitude`].
     pub fn greatest_magnitude_over(&self, floor: f64) -> Result<(f64, f64), CircuitError> {
+        self.greatest_magnitude_within(floor, f64::INFINITY)
+    }
+
+    /// As [`ExpSum::greatest_magnitude_over`], but from 0 to `until` seconds only.
+    ///
+    /// # Errors
+    /// As [`ExpSum::greatest_magnitude`].
+    pub fn greatest_magnitude_within(&self, floor: f64, until: f64) -> Result<(f64, f64), CircuitError> {
         let mut best = (floor, 0.0);
         let mut offer = |value: f64, t: f64| {
             if value > best.0 {
@@ -39,12 +47,16 @@ impl ExpSum {
         if offer(self.value(0.0).abs(), 0.0) >= limit * (1.0 - ACCURACY) {
             return Ok(best);
         }
-        offer(self.constant().abs(), f64::INFINITY);
+        if until.is_infinite() {
+            offer(self.constant().abs(), f64::INFINITY);
+        }
         // Past `end` every term is below rounding of the envelope.
         let count = self.terms().len().max(1) as f64;
         let small = limit * f64::EPSILON / count;
         let end = self.terms().iter().map(|(a, r)| (a.abs() / small).ln().max(0.0) / r).fold(0.0, f64::max);
+        let end = end.min(until);
         let mut open = vec![(0.0, end)];
+        offer(self.value(end).abs(), end);
         for _ in 0..MOST_INTERVALS {
             let Some((low, high)) = open.pop() else {
                 return Ok(best);

@@ -18,7 +18,9 @@ pub struct Modes {
     pub(super) shapes: Vec<Vec<f64>>,
     /// For every mode the weights that take initial states to its amplitude.
     pub(super) weights: Vec<Vec<f64>>,
-    /// For every node its potential over the states, against its anchor.
+    /// For every mode the amplitude per second that the sources drive it with, over its rate: where it settles.
+    pub(super) driven: Vec<f64>,
+    /// For every node its potential over the states and the sources, against its anchor.
     pub(super) potentials: Vec<Vec<f64>>,
     /// For every node the node whose potential stays constant and to which its own refers.
     pub(super) anchor: Vec<usize>,
@@ -38,6 +40,7 @@ impl Modes {
     pub fn new(network: Network) -> Result<Self, CircuitError> {
         let Reduced { tree, rows, potentials, anchor, decaying } = reduce(&network);
         let states = tree.len();
+        let volts: Vec<f64> = network.sources.iter().map(|s| s.value).collect();
         let scale: Vec<f64> = tree.iter().map(|c| network.capacitors[*c].value.sqrt().recip()).collect();
         let factor = loop_factor(&network, &tree, &potentials, &scale);
 
@@ -50,13 +53,24 @@ impl Modes {
             };
             matrix.row_mut(i).copy_from_slice(&row);
         }
+        let scaled_rows = matrix.clone();
         let found = singular(matrix, decaying)?;
+        // The sources' part of every row: B y + e = 0 in the steady state, so a mode settles at -(B v).e / rate.
+        let pushed: Vec<f64> =
+            rows.iter().map(|row| row[states..].iter().zip(&volts).map(|(x, v)| x * v).sum()).collect();
+        let settles = |vector: &[f64], rate: f64| -> f64 {
+            let along = |i: usize| scaled_rows.row(i).iter().zip(vector).map(|(x, v)| x * v).sum::<f64>();
+            let rows = pushed.iter().enumerate().filter(|(_, e)| **e != 0.0);
+            -rows.map(|(i, e)| along(i) * e).sum::<f64>() / rate
+        };
 
         let mut rates = Vec::with_capacity(decaying);
+        let mut driven = Vec::with_capacity(decaying);
         let mut shapes = Vec::with_capacity(decaying);
         let mut weights = Vec::with_capacity(decaying);
         for mode in found {
             rates.push(mode.value * mode.value);
+            driven.push(settles(&mode.vector, mode.value * mode.value));
             let (shape, weight) = match &factor {
                 Some(l) => (solve_upper(l, &mode.vector), multiply_lower(l, &mode.vector)),
                 None => (mode.vector.clone(), mode.vector),
@@ -65,7 +79,7 @@ impl Modes {
             weights.push(weight.iter().zip(&scale).map(|(x, s)| x / s).collect());
         }
         let resistive = network.resistive_parts();
-        Ok(Modes { network, tree, rates, shapes, weights, potentials, anchor, resistive })
+        Ok(Modes { network, tree, rates, shapes, weights, driven, potentials, anchor, resistive })
     }
 
     /// Time constants in second, the slowest first; what is trapped for ever is left out.

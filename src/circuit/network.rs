@@ -15,8 +15,8 @@ pub struct Edge {
     pub value: f64,
 }
 
-/// Any network of capacitors and resistors.
-#[derive(Debug, Clone, PartialEq)]
+/// Any network of capacitors, resistors and ideal voltage sources.
+#[derive(Debug, Clone, PartialEq, Default)]
 pub struct Network {
     /// How many nodes there are; they are numbered from 0.
     pub nodes: usize,
@@ -26,6 +26,9 @@ pub struct Network {
     pub resistors: Vec<Edge>,
     /// Capacitors.
     pub capacitors: Vec<Edge>,
+    /// Ideal voltage sources: `a` is `value` volt above `b`. Each reaches the rest through a resistor, so that one
+    /// of its nodes is its own.
+    pub sources: Vec<Edge>,
 }
 
 impl Network {
@@ -37,19 +40,20 @@ impl Network {
         self.capacitors.iter().map(|c| (c.a, c.b, c.value))
     }
 
-    /// For every node the smallest node that resistors tie it to.
+    /// For every node the smallest node that resistors tie it to; a source is no resistance at all.
     pub(super) fn resistive_parts(&self) -> Vec<usize> {
         let mut sets = Sets::new(self.nodes);
-        for r in &self.resistors {
+        for r in self.resistors.iter().chain(&self.sources) {
             sets.join(r.a, r.b);
         }
         sets.labels()
     }
 
-    /// For every node the smallest node that capacitors tie it to.
+    /// For every node the smallest node that capacitors or sources tie it to: potentials that differ by voltages
+    /// which can't jump.
     pub(super) fn capacitive_parts(&self) -> Vec<usize> {
         let mut sets = Sets::new(self.nodes);
-        for c in &self.capacitors {
+        for c in self.capacitors.iter().chain(&self.sources) {
             sets.join(c.a, c.b);
         }
         sets.labels()
@@ -58,7 +62,7 @@ impl Network {
     /// For every node the smallest node that any parts tie it to.
     pub fn connected_parts(&self) -> Vec<usize> {
         let mut sets = Sets::new(self.nodes);
-        for e in self.resistors.iter().chain(&self.capacitors) {
+        for e in self.resistors.iter().chain(&self.capacitors).chain(&self.sources) {
             sets.join(e.a, e.b);
         }
         sets.labels()

@@ -15,15 +15,16 @@
 
 use super::graph::Sets;
 use super::laplacian::WeightedGraph;
-use super::network::Network;
+use super::network::{Edge, Network};
 
-/// A network reduced to its states.
+/// A network reduced to its states. Voltages of sources are columns after those of the states: they take part in
+/// every potential, but are known.
 pub(super) struct Reduced {
     /// For every state, the capacitor whose voltage it is.
     pub tree: Vec<usize>,
-    /// Rows `sqrt(conductance) * coefficients`, in sqrt(siemens), over the states.
+    /// Rows `sqrt(conductance) * coefficients`, in sqrt(siemens), over the states and the sources.
     pub rows: Vec<Vec<f64>>,
-    /// For every node, its potential over the states, against the anchor of its part.
+    /// For every node, its potential over the states and the sources, against the anchor of its part.
     pub potentials: Vec<Vec<f64>>,
     /// For every node, the node whose constant potential its own refers to: the reference, or a node of a part
     /// that nothing ties to it.
@@ -42,12 +43,15 @@ struct Row {
 pub(super) fn reduce(network: &Network) -> Reduced {
     let nodes = network.nodes;
     let tree = spanning_forest(network);
+    let branches: Vec<Edge> = tree.iter().map(|c| network.capacitors[*c]).chain(network.sources.clone()).collect();
+    let columns = branches.len();
     let group = network.capacitive_parts();
-    let paths = paths(network, &tree, &group);
+    let paths = paths(network, &branches, &group);
     let anchor = anchors(network, &group);
     let touched: Vec<bool> = {
         let mut touched = vec![false; nodes];
-        network.capacitors.iter().for_each(|c| (touched[c.a], touched[c.b]) = (true, true));
+        let edges = network.capacitors.iter().chain(&network.sources);
+        edges.for_each(|c| (touched[c.a], touched[c.b]) = (true, true));
         touched
     };
 
@@ -76,7 +80,7 @@ pub(super) fn reduce(network: &Network) -> Reduced {
             }
         }
     }
-    let (rows, common) = eliminate_groups(rows, floating.len(), tree.len());
+    let (rows, common) = eliminate_groups(rows, floating.len(), columns);
 
     let mut potentials: Vec<Vec<f64>> = (0..nodes)
         .map(|n| match number(n) {
@@ -85,7 +89,7 @@ pub(super) fn reduce(network: &Network) -> Reduced {
         })
         .collect();
     for e in meshed.iter().rev() {
-        let mut mean = vec![0.0; tree.len()];
+        let mut mean = vec![0.0; columns];
         for (j, w) in &e.neighbours {
             mean.iter_mut().zip(&potentials[*j]).for_each(|(m, x)| *m += w / e.total * x);
         }
@@ -106,7 +110,7 @@ fn spanning_forest(network: &Network) -> Vec<usize> {
 
 /// For every node, its potential over the states against a root of its capacitive group (the reference, where the
 /// group has it).
-fn paths(network: &Network, tree: &[usize], group: &[usize]) -> Vec<Vec<f64>> {
+fn paths(network: &Network, branches: &[Edge], group: &[usize]) -> Vec<Vec<f64>> {
     let mut paths: Vec<Option<Vec<f64>>> = vec![None; network.nodes];
     let roots = std::iter::once(network.reference).chain(0..network.nodes);
     for root in roots {
@@ -116,11 +120,10 @@ fn paths(network: &Network, tree: &[usize], group: &[usize]) -> Vec<Vec<f64>> {
         if group[root] == group[network.reference] && root != network.reference {
             continue;
         }
-        paths[root] = Some(vec![0.0; tree.len()]);
+        paths[root] = Some(vec![0.0; branches.len()]);
         let mut todo = vec![root];
         while let Some(node) = todo.pop() {
-            for (state, index) in tree.iter().enumerate() {
-                let c = network.capacitors[*index];
+            for (state, c) in branches.iter().enumerate() {
                 let (next, sign) = match node {
                     n if n == c.a => (c.b, -1.0),
                     n if n == c.b => (c.a, 1.0),
@@ -144,7 +147,7 @@ fn anchors(network: &Network, group: &[usize]) -> Vec<usize> {
     let part = network.connected_parts();
     let mut anchor: Vec<Option<usize>> = vec![None; network.nodes];
     anchor[part[network.reference]] = Some(network.reference);
-    for c in &network.capacitors {
+    for c in network.capacitors.iter().chain(&network.sources) {
         anchor[part[c.a]].get_or_insert(group[c.a]);
     }
     (0..network.nodes).map(|n| anchor[part[n]].unwrap_or(part[n])).collect()

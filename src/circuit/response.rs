@@ -9,12 +9,12 @@ pub struct Response {
     modes: Arc<Modes>,
     /// Amplitude of every mode.
     amplitudes: Vec<f64>,
-    /// States at infinite time, in volt.
+    /// States at infinite time in volt, then the voltages of the sources.
     settled: Vec<f64>,
     /// Potentials at the start: a part that nothing ties to the reference keeps that of its anchor.
     start: Vec<f64>,
-    initial_energy: f64,
-    settled_energy: f64,
+    /// Voltages of all capacitors at the start.
+    voltages: Vec<f64>,
 }
 
 impl Modes {
@@ -28,19 +28,29 @@ impl Modes {
         if self.tree.len() < network.capacitors.len() {
             network.check_loops(voltages)?;
         }
+        // Where the sources drive the states, and what is trapped of the difference to it.
+        let mut settled = vec![0.0; self.tree.len()];
+        for (shape, driven) in self.shapes.iter().zip(&self.driven).filter(|(_, d)| **d != 0.0) {
+            settled.iter_mut().zip(shape).for_each(|(s, x)| *s += driven * x);
+        }
         let nothing_trapped = self.rates.len() == self.tree.len();
-        let settled_all = if nothing_trapped { vec![0.0; voltages.len()] } else { network.settled(voltages) };
-        let settled: Vec<f64> = self.tree.iter().map(|c| settled_all[*c]).collect();
+        if !nothing_trapped {
+            let driven = self.all_voltages(&settled);
+            let rest: Vec<f64> = voltages.iter().zip(driven).map(|(u, d)| u - d).collect();
+            let trapped = network.settled(&rest);
+            settled.iter_mut().zip(&self.tree).for_each(|(s, c)| *s += trapped[*c]);
+        }
         let falling: Vec<f64> = self.tree.iter().zip(&settled).map(|(c, s)| voltages[*c] - s).collect();
         let amplitudes = self.weights.iter().map(|w| w.iter().zip(&falling).map(|(x, u)| x * u).sum()).collect();
-        Ok(Response {
-            modes: Arc::clone(self),
-            amplitudes,
-            settled,
-            start: potentials.to_vec(),
-            initial_energy: network.stored_energy(voltages),
-            settled_energy: network.stored_energy(&settled_all),
-        })
+        settled.extend(network.sources.iter().map(|s| s.value));
+        let (voltages, start) = (voltages.to_vec(), potentials.to_vec());
+        Ok(Response { modes: Arc::clone(self), amplitudes, settled, start, voltages })
+    }
+
+    /// Voltages of all capacitors from those of the states.
+    fn all_voltages(&self, states: &[f64]) -> Vec<f64> {
+        let dot = |node: usize| self.potentials[node].iter().zip(states).map(|(x, u)| x * u).sum::<f64>();
+        self.network().capacitors.iter().map(|c| dot(c.a) - dot(c.b)).collect()
     }
 }
 
@@ -62,7 +72,8 @@ impl Response {
         let difference: Vec<f64> = pa.iter().zip(pb).map(|(x, y)| x - y).collect();
         let dot = |other: &[f64]| difference.iter().zip(other).map(|(x, y)| x * y).sum::<f64>();
         // Nodes that resistors join end at one potential: exactly, not to rounding.
-        let constant = if modes.resistive[a] == modes.resistive[b] {
+        let no_source = self.network().sources.is_empty();
+        let constant = if no_source && modes.resistive[a] == modes.resistive[b] {
             0.0
         } else {
             let anchors = self.start[modes.anchor[a]] - self.start[modes.anchor[b]];
@@ -83,23 +94,56 @@ impl Response {
 
     /// Energy in joule in all capacitors at the start.
     pub fn initial_energy(&self) -> f64 {
-        self.initial_energy
+        self.network().stored_energy(&self.voltages)
     }
 
-    /// Checks that what the capacitors lose is what the resistors take, to 1e-9 of the energy at the start.
+    /// Voltages in volt of all capacitors after `t` seconds.
+    pub fn voltages_at(&self, t: f64) -> Vec<f64> {
+        if t <= 0.0 {
+            return self.voltages.clone();
+        }
+        self.network().capacitors.iter().map(|c| self.across(c.a, c.b).value(t)).collect()
+    }
+
+    /// Potentials in volt of all nodes after `t` seconds, each against the reference or against the anchor of its
+    /// part at the start.
+    pub fn potentials_at(&self, t: f64) -> Vec<f64> {
+        let reference = self.network().reference;
+        (0..self.network().nodes).map(|node| self.across(node, reference).value(t)).collect()
+    }
+
+    /// Charge in coulomb that a source gives within `t` seconds (its current flows out of its node `a`), in all
+    /// resistors at that node.
+    fn source_energy(&self, source: usize, t: f64) -> f64 {
+        let source = &self.network().sources[source];
+        let out = |node: usize| if node == source.a { 1.0 } else { -1.0 };
+        let at = self.network().resistors.iter().filter(|r| (r.a == source.a) != (r.b == source.a));
+        at.map(|r| out(r.a) * self.across(r.a, r.b).integral(t) / r.value).sum::<f64>() * source.value
+    }
+
+    /// Checks over `t` seconds (infinite for ever; finite where there are sources) that what was stored at the
+    /// start and what the sources gave is what is stored at the end and what the resistors took, to 1e-9 of the
+    /// former.
     ///
     /// # Errors
     /// [`CircuitError::Unbalanced`] where it is not.
-    pub fn check_balance(&self) -> Result<(), CircuitError> {
-        let taken: f64 = self
-            .network()
+    pub fn check_balance(&self, t: f64) -> Result<(), CircuitError> {
+        let network = self.network();
+        let taken: f64 = network
             .resistors
             .iter()
             .filter(|r| r.a != r.b)
-            .map(|r| self.across(r.a, r.b).integral_of_square(f64::INFINITY) / r.value)
+            .map(|r| self.across(r.a, r.b).integral_of_square(t) / r.value)
             .sum();
-        let (before, after) = (self.initial_energy, self.settled_energy + taken);
-        let holds = (before - after).abs() <= 1e-9 * before;
+        let given: f64 = (0..network.sources.len()).map(|s| self.source_energy(s, t)).sum();
+        let end: Vec<f64> = if t.is_infinite() {
+            network.capacitors.iter().map(|c| self.across(c.a, c.b).constant()).collect()
+        } else {
+            self.voltages_at(t)
+        };
+        let start = self.initial_energy();
+        let (before, after) = (start + given, network.stored_energy(&end) + taken);
+        let holds = (before - after).abs() <= 1e-9 * start.max(given.abs());
         if holds { Ok(()) } else { Err(CircuitError::Unbalanced { before, after }) }
     }
 }

@@ -35,6 +35,7 @@ impl ShortCharge {
             reference: network.reference,
             resistors: network.resistors.iter().map(join).collect(),
             capacitors: network.capacitors.iter().map(join).collect(),
+            sources: Vec::new(),
         };
         let mut unit = vec![0.0; per_volt.len()];
         let weights = (0..per_volt.len())
@@ -64,7 +65,7 @@ mod tests {
 
     #[test]
     fn a_short_passes_c_v_of_one_capacitance_and_all_of_a_section_behind_a_resistor() {
-        let mut network = Network { nodes: 3, reference: 0, resistors: vec![], capacitors: vec![edge(1, 0, 2.0)] };
+        let mut network = Network { nodes: 3, capacitors: vec![edge(1, 0, 2.0)], ..Network::default() };
         assert_eq!(ShortCharge::new(&network, 1, 0).weights(), [2.0]);
         // A second section behind a series resistor discharges through the short as well.
         network.resistors.push(edge(1, 2, 5.0));
@@ -79,8 +80,8 @@ mod tests {
     fn what_a_floating_joint_traps_does_not_pass_the_short() {
         // 1 F on top of 3 F, charged unequally: the joint keeps its charge, the ends come to one potential.
         // With u1 = 1 V, u2 = 0 the joint holds -1 C; after the short u1 = -u2 = 1/4 V, so 3/4 C passed.
-        let network =
-            Network { nodes: 3, reference: 0, resistors: vec![], capacitors: vec![edge(1, 2, 1.0), edge(2, 0, 3.0)] };
+        let capacitors = vec![edge(1, 2, 1.0), edge(2, 0, 3.0)];
+        let network = Network { nodes: 3, capacitors, ..Network::default() };
         let weights = ShortCharge::new(&network, 1, 0).weights().to_vec();
         approx::assert_relative_eq!(weights[0], 0.75, max_relative = 1e-15);
         approx::assert_relative_eq!(weights[1], 0.75, max_relative = 1e-15);

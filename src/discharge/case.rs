@@ -41,7 +41,7 @@ impl Case {
             })
             .collect();
         let response = Arc::new(Modes::new(after)?).response(&voltages, &potentials)?;
-        response.check_balance()?;
+        response.check_balance(f64::INFINITY)?;
         let ohms = |variation| {
             let scaled = |i: usize| match variation {
                 Some((index, factor)) if index == i => factor,

@@ -13,6 +13,7 @@ mod element;
 mod figure;
 mod model;
 mod scenario;
+mod study;
 mod worst;
 
 pub(crate) use case::Case;
@@ -20,4 +21,5 @@ pub(crate) use element::element_model;
 pub(crate) use figure::{Body, Figure};
 pub(crate) use model::Model;
 pub(crate) use scenario::{Fault, Scenario, faults};
-pub(crate) use worst::{MOST_CORNERS, Study, Worst};
+pub(crate) use study::Study;
+pub(crate) use worst::{MOST_CORNERS, Worst, nominal, worst};

@@ -174,6 +174,7 @@ impl Model {
             reference: self.reference(),
             resistors: edges(&self.resistors, variation.resistor),
             capacitors: edges(&self.capacitors, variation.capacitor),
+            sources: Vec::new(),
         }
     }
 

@@ -5,10 +5,7 @@
 //! one section lends to another. With more loose values the corners are searched by flipping one value at a time
 //! from several starts, which is a search and no proof; a plan says which of the two it used.
 
-use super::case::Case;
-use super::figure::Figure;
-use super::model::Model;
-use super::scenario::Scenario;
+use super::model::Parameter;
 use crate::circuit::CircuitError;
 use std::collections::HashSet;
 
@@ -28,27 +25,45 @@ pub(crate) struct Worst {
     pub point: Vec<f64>,
 }
 
-/// Figures of one scenario at one voltage, to be maximised over the box.
-pub(crate) struct Study<'a> {
-    pub model: &'a Model,
-    pub scenario: &'a Scenario,
-    /// Voltage across the terminals before isolation, in volt.
-    pub volts: f64,
-    pub figures: &'a [Figure],
+/// Figures to be maximised over a box: a point is solved once and then asked for any of them.
+pub(crate) trait Objective {
+    /// A solved point.
+    type Case;
+
+    /// The loose values that span the box.
+    fn parameters(&self) -> &[Parameter];
+
+    /// How many figures there are.
+    fn count(&self) -> usize;
+
+    /// Solves one point.
+    fn case(&self, point: &[f64]) -> Result<Self::Case, CircuitError>;
+
+    /// One figure of a solved point. A value that is proven not to exceed `floor` may be given as `floor`.
+    fn figure(&self, index: usize, case: &Self::Case, floor: f64) -> Result<f64, CircuitError>;
 }
 
-impl Study<'_> {
-    /// The figures with every value nominal.
-    pub fn nominal(&self) -> Result<Vec<f64>, CircuitError> {
-        let case = self.case(&self.model.nominal_point())?;
-        self.figures.iter().map(|f| f.of(self.model, &case, 0.0)).collect()
-    }
+/// All figures with every value nominal.
+pub(crate) fn nominal<O: Objective>(objective: &O) -> Result<Vec<f64>, CircuitError> {
+    let case = objective.case(&vec![1.0; objective.parameters().len()])?;
+    (0..objective.count()).map(|i| objective.figure(i, &case, 0.0)).collect()
+}
 
-    /// The greatest value of each figure over the box.
-    pub fn worst(&self) -> Result<Vec<Worst>, CircuitError> {
-        let mut best = vec![Worst { value: f64::NEG_INFINITY, point: self.model.nominal_point() }; self.figures.len()];
-        self.offer(&self.model.nominal_point(), &mut best)?;
-        let count = self.model.parameters.len();
+/// The greatest value of each figure over the box.
+pub(crate) fn worst<O: Objective>(objective: &O) -> Result<Vec<Worst>, CircuitError> {
+    Search { objective }.worst()
+}
+
+struct Search<'a, O> {
+    objective: &'a O,
+}
+
+impl<O: Objective> Search<'_, O> {
+    fn worst(&self) -> Result<Vec<Worst>, CircuitError> {
+        let count = self.parameters().len();
+        let middle = vec![1.0; count];
+        let mut best = vec![Worst { value: f64::NEG_INFINITY, point: middle.clone() }; self.objective.count()];
+        self.offer(&middle, &mut best)?;
         if count == 0 {
             return Ok(best);
         }
@@ -64,28 +79,28 @@ impl Study<'_> {
         Ok(best)
     }
 
-    fn case(&self, point: &[f64]) -> Result<Case, CircuitError> {
-        Case::solve(self.model, self.scenario, point, self.volts)
+    fn parameters(&self) -> &[Parameter] {
+        self.objective.parameters()
     }
 
     /// The value of one figure, exact.
     fn value(&self, index: usize, point: &[f64]) -> Result<f64, CircuitError> {
-        self.figures[index].of(self.model, &self.case(point)?, 0.0)
+        self.objective.figure(index, &self.objective.case(point)?, 0.0)
     }
 
     fn corner(&self, high: impl Fn(usize) -> bool) -> Vec<f64> {
-        let parameters = self.model.parameters.iter().enumerate();
+        let parameters = self.parameters().iter().enumerate();
         parameters.map(|(p, range)| if high(p) { range.high } else { range.low }).collect()
     }
 
     /// Tries a point for every figure.
     fn offer(&self, point: &[f64], best: &mut [Worst]) -> Result<(), CircuitError> {
-        let case = self.case(point)?;
-        for (figure, worst) in self.figures.iter().zip(best) {
+        let case = self.objective.case(point)?;
+        for (index, worst) in best.iter_mut().enumerate() {
             if worst.value.is_infinite() && worst.value > 0.0 {
                 continue;
             }
-            let value = figure.of(self.model, &case, worst.value.max(0.0))?;
+            let value = self.objective.figure(index, &case, worst.value.max(0.0))?;
             if value > worst.value {
                 *worst = Worst { value, point: point.to_vec() };
             }
@@ -95,7 +110,7 @@ impl Study<'_> {
 
     /// Beyond [`MOST_CORNERS`]: from each start flip single values for as long as a figure grows.
     fn flip_from_many_starts(&self, best: &mut [Worst]) -> Result<(), CircuitError> {
-        let count = self.model.parameters.len();
+        let count = self.parameters().len();
         self.offer(&self.corner(|_| true), best)?;
         self.offer(&self.corner(|_| false), best)?;
         // A fixed sequence (xorshift; Marsaglia 2003), so that the same input gives the same plan.
@@ -121,7 +136,7 @@ impl Study<'_> {
             for corner in fresh {
                 tried.insert(bits(&corner));
                 for p in 0..count {
-                    let range = &self.model.parameters[p];
+                    let range = &self.parameters()[p];
                     let mut flipped = corner.clone();
                     flipped[p] = if flipped[p] < range.high { range.high } else { range.low };
                     self.offer(&flipped, best)?;
@@ -141,10 +156,10 @@ impl Study<'_> {
                 if here.iter().all(|i| rising[*i]) {
                     break;
                 }
-                let case = self.case(&point)?;
+                let case = self.objective.case(&point)?;
                 for i in here.iter().copied().filter(|i| !rising[*i]).collect::<Vec<_>>() {
                     let bar = best[i].value * (1.0 + NOTABLE);
-                    rising[i] = self.figures[i].of(self.model, &case, bar.max(0.0))? > bar;
+                    rising[i] = self.objective.figure(i, &case, bar.max(0.0))? > bar;
                 }
             }
             for i in here.into_iter().filter(|i| rising[*i]) {
@@ -157,7 +172,7 @@ impl Study<'_> {
     /// Points on the way from a corner into the box along each value: short, half way, long.
     fn inwards(&self, corner: &[f64]) -> Vec<Vec<f64>> {
         let mut points = Vec::with_capacity(3 * corner.len());
-        for (p, range) in self.model.parameters.iter().enumerate() {
+        for (p, range) in self.parameters().iter().enumerate() {
             let here = corner[p];
             let away = if here - range.low > range.high - here { range.low } else { range.high };
             for share in [1e-3, 0.5, 0.9] {
@@ -177,7 +192,7 @@ impl Study<'_> {
             let start = worst.clone();
             for p in 0..count {
                 let mut along = vec![0.0; count];
-                along[p] = self.model.parameters[p].high - self.model.parameters[p].low;
+                along[p] = self.parameters()[p].high - self.parameters()[p].low;
                 self.climb(index, worst, &along)?;
             }
             // Along a ridge single values creep; the way of the whole round leads on (Powell 1964).
@@ -202,7 +217,7 @@ impl Study<'_> {
         let origin = worst.point.clone();
         let at = |s: f64| -> Vec<f64> {
             let moved = origin.iter().zip(along).map(|(x, d)| x + s * d);
-            moved.zip(&self.model.parameters).map(|(x, r)| x.clamp(r.low, r.high)).collect()
+            moved.zip(self.parameters()).map(|(x, r)| x.clamp(r.low, r.high)).collect()
         };
         let mut tried = |s: f64| -> Result<f64, CircuitError> {
             let point = at(s);
@@ -245,7 +260,7 @@ impl Study<'_> {
     /// How far a point may move along a direction, backwards and forwards, inside the box.
     fn reach(&self, point: &[f64], along: &[f64]) -> (f64, f64) {
         let mut reach = (f64::NEG_INFINITY, f64::INFINITY);
-        for ((x, d), range) in point.iter().zip(along).zip(&self.model.parameters) {
+        for ((x, d), range) in point.iter().zip(along).zip(self.parameters()) {
             if *d != 0.0 {
                 let (s, t) = ((range.low - x) / d, (range.high - x) / d);
                 reach = (reach.0.max(s.min(t)), reach.1.min(s.max(t)));

@@ -90,7 +90,8 @@ class Doubles:
 
     def one(self, points, which):
         blocks = [slice(k, k + 4096) for k in range(0, len(points), 4096)]
-        return np.concatenate([self.fast.values(self.figures, self.box.fast_factors(points[b]), which[b]) for b in blocks])
+        factors = self.box.fast_factors(points)
+        return np.concatenate([self.fast.values(self.figures, factors[b], which[b]) for b in blocks])
 
 
 class Slow:
