@@ -9,8 +9,8 @@ use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltag
 use serde::Serialize;
 
 pub use crate::check::{
-    Band, CapacitorResult, Check, FaultWait, LimitResult, LimitSource, Pair, ResistorResult, Stored, Verdict, Wait,
-    WorstValue,
+    Band, CapacitorResult, Check, FaultPoint, FaultWait, LimitResult, LimitSource, Pair, Recovery, ResistorResult,
+    StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
 };
 
 /// Everything that a plan says about one bank.
@@ -96,47 +96,6 @@ pub struct ChargedTo {
     /// Worst credible.
     #[serde(rename = "highest_v", serialize_with = "si")]
     pub highest: Voltage,
-}
-
-/// One step of the procedure.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct StepResult {
-    /// What is done.
-    pub step: String,
-    /// When it starts, from isolation.
-    #[serde(rename = "start_s", serialize_with = "si")]
-    pub start: Time,
-    /// When it ends.
-    #[serde(rename = "end_s", serialize_with = "si")]
-    pub end: Time,
-    /// Voltages at its end.
-    pub test_points: Vec<StepPoint>,
-}
-
-/// Voltage at a test point at a step's end.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct StepPoint {
-    /// The test point.
-    pub across: Pair,
-    /// Every value nominal.
-    #[serde(rename = "nominal_v", serialize_with = "si")]
-    pub nominal: Voltage,
-    /// Greatest over the box.
-    #[serde(rename = "highest_v", serialize_with = "si")]
-    pub highest: Voltage,
-}
-
-/// What comes back at a test point after the last step.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct Recovery {
-    /// The test point.
-    pub across: Pair,
-    /// The greatest voltage.
-    #[serde(rename = "voltage_v", serialize_with = "si")]
-    pub voltage: Voltage,
-    /// When it comes, from isolation.
-    #[serde(rename = "at_s", serialize_with = "si")]
-    pub at: Time,
 }
 
 /// One wait worked out for a reviewer: v(t) = v_inf + sum of a_k exp(-t/tau_k).
