@@ -24,6 +24,13 @@ impl fmt::Display for EngineError {
 
 impl std::error::Error for EngineError {}
 
+impl EngineError {
+    /// The same for a circuit error in a named scenario.
+    pub(crate) fn of(scenario: &str) -> impl Fn(CircuitError) -> EngineError + '_ {
+        move |cause| EngineError { scenario: scenario.to_string(), cause }
+    }
+}
+
 /// Figures of the healthy bank: nominal, and greatest over the tolerance box at the highest voltage.
 #[derive(Debug, Clone, Default)]
 pub(crate) struct Answers {

@@ -3,7 +3,7 @@
 use super::{Answers, FaultAnswers, Verdict, si, si_or_null};
 use crate::bank::Bank;
 use crate::bank::description::Capacitor;
-use crate::discharge::{Figure, Model};
+use crate::discharge::Figure;
 use crate::finding::{Findings, Severity};
 use crate::quantity::{Direction, Quantity, Tolerance, Voltage, exact, show};
 use serde::Serialize;
@@ -31,7 +31,6 @@ pub struct CapacitorResult {
 /// Capacitor voltages.
 pub(crate) struct CapacitorCheck<'a> {
     pub bank: &'a Bank,
-    pub model: &'a Model,
 }
 
 /// The greatest share of a string's voltage that one of its groups can take: it at its lowest capacitance, the
@@ -45,7 +44,7 @@ fn greatest_share(capacitor: &Capacitor, groups: u32) -> f64 {
 impl CapacitorCheck<'_> {
     /// What has to be known of the healthy bank and under every fault.
     pub fn figures(&self) -> Vec<Figure> {
-        (0..self.model.capacitors.len()).map(|capacitor| Figure::CapacitorVoltage { capacitor }).collect()
+        (0..self.bank.description().capacitors.len()).map(|capacitor| Figure::CapacitorVoltage { capacitor }).collect()
     }
 
     /// The capacitors, in the order of the file.

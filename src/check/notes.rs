@@ -5,9 +5,9 @@ use super::{CapacitorResult, ResistorResult, Verdict};
 use crate::bank::Bank;
 use crate::bank::description::Role;
 use crate::circuit::Network;
-use crate::discharge::Model;
+use crate::discharge::{Model, PartKind, absorption};
 use crate::finding::{Findings, Severity};
-use crate::quantity::{celsius, exact};
+use crate::quantity::{Quantity, Ratio, celsius, exact};
 
 /// Findings on what the description leaves open.
 pub(crate) fn notes(
@@ -77,12 +77,13 @@ fn unchecked(resistors: &[ResistorResult], capacitors: &[CapacitorResult], findi
 
 /// Capacitors whose inner node no resistor ties down divide by capacitance in the model, by leakage in truth.
 fn floating(model: &Model, findings: &mut Findings) {
-    let network: Network = model.network(&Default::default(), &model.nominal_point());
+    let network: Network = model.network(&Default::default(), &model.nominal_point(), &[]);
     let held = network.parts_held_by_resistors(&model.terminals);
     let names: Vec<String> = model
         .capacitors
         .iter()
         .zip(&model.own_voltages)
+        .filter(|(c, _)| c.kind == PartKind::Fixed)
         .filter(|(c, own)| own.is_none() && !(held[c.a] && held[c.b]))
         .map(|(c, _)| c.id.clone())
         .collect();
@@ -116,6 +117,17 @@ pub(crate) fn assumptions(bank: &Bank) -> Vec<String> {
     }
     if !description.charged_to.margin_given {
         list.push(format!("Highest voltage: {}, the nominal one.", exact(description.charged_to.highest)));
+    }
+    for capacitor in &description.capacitors {
+        let typical = capacitor.absorption.is_none();
+        if let Some((share, _)) = absorption(capacitor).filter(|_| typical) {
+            list.push(format!(
+                "{}: dielectric absorption of {}, the high end of what is typical of {}.",
+                capacitor.id,
+                exact(Ratio::from_si(share)),
+                capacitor.dielectric.as_deref().unwrap_or("its dielectric")
+            ));
+        }
     }
     let own: Vec<String> =
         description.capacitors.iter().filter(|c| c.charged_to.is_some()).map(|c| c.id.clone()).collect();

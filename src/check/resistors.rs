@@ -1,9 +1,9 @@
 //! What resistors bear: standing load, voltage, the discharge itself.
 
-use super::{Answers, EngineError, FaultAnswers, Verdict, celsius_or_null, si, si_or_null};
+use super::{Answers, EngineError, FaultAnswers, Procedure, Verdict, celsius_or_null, si, si_or_null};
 use crate::bank::Bank;
-use crate::bank::description::{Rating, Resistor};
-use crate::discharge::{Body, Figure, Model, element_model};
+use crate::bank::description::{Rating, Resistor, Role};
+use crate::discharge::{Body, Figure, Model, StepFigure, element_model};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{
     Current, Direction, Energy, Power, Quantity, Resistance, Temperature, Voltage, celsius, exact, show,
@@ -128,6 +128,28 @@ impl Load {
     }
 }
 
+/// What a resistor bears over a procedure.
+fn through(procedure: &Procedure, model: &Model, resistor: usize, rating: &Rating) -> Result<Load, EngineError> {
+    let mut figures = vec![
+        StepFigure::StandingPower { resistor },
+        StepFigure::PartVoltage { resistor },
+        StepFigure::PartCurrent { resistor },
+        StepFigure::PartPower { resistor },
+        StepFigure::PartEnergy { resistor },
+    ];
+    figures.extend(body(rating).map(|body| StepFigure::BodyRise { resistor, body }));
+    let answers = procedure.healthy(model, figures.clone())?;
+    let worst: Vec<f64> = figures.iter().map(|f| answers.worst(*f)).collect();
+    Ok(Load {
+        standing: worst[0],
+        voltage: worst[1],
+        current: worst[2],
+        power: worst[3],
+        energy: worst[4],
+        rise: worst.get(5).copied(),
+    })
+}
+
 /// The resistors of a bank.
 pub(crate) struct ResistorChecks<'a> {
     pub bank: &'a Bank,
@@ -137,13 +159,15 @@ pub(crate) struct ResistorChecks<'a> {
 impl ResistorChecks<'_> {
     /// What has to be known of the healthy bank: the load of every resistor that is no array.
     pub fn figures(&self) -> Vec<Figure> {
-        let single = self.bank.description().resistors.iter().filter(|r| is_single(r));
+        let single = self.bank.description().resistors.iter().filter(|r| is_single(r) && r.role.always_connected());
         single.filter_map(|r| Some(load_figures(self.model.find_resistor(&r.id)?, &r.rating))).flatten().collect()
     }
 
     /// What has to be known under every fault: the standing power of every resistor.
     pub fn fault_figures(&self) -> Vec<Figure> {
-        (0..self.model.resistors.len()).map(|resistor| Figure::StandingPower { resistor }).collect()
+        let resistors = self.bank.description().resistors.iter().filter(|r| r.role.always_connected());
+        let numbers = resistors.filter_map(|r| self.model.find_resistor(&r.id));
+        numbers.map(|resistor| Figure::StandingPower { resistor }).collect()
     }
 
     /// The resistors, in the order of the file. Elements of arrays are opened up, each in a study of its own.
@@ -153,12 +177,16 @@ impl ResistorChecks<'_> {
     pub fn conclude(
         &self,
         healthy: &Answers,
+        procedure: Option<&Procedure>,
         faults: &[FaultAnswers],
         findings: &mut Findings,
     ) -> Result<Vec<ResistorResult>, EngineError> {
         let resistors = &self.bank.description().resistors;
-        let loads: Vec<Option<Load>> =
-            resistors.par_iter().map(|r| self.load(r, healthy)).collect::<Result<_, EngineError>>()?;
+        let load = |r: &Resistor| match procedure {
+            Some(procedure) => self.load_through(r, procedure),
+            None => self.load(r, healthy),
+        };
+        let loads: Vec<Option<Load>> = resistors.par_iter().map(load).collect::<Result<_, EngineError>>()?;
         let mut results = Vec::new();
         for (resistor, load) in resistors.iter().zip(loads) {
             let result = self.result(resistor, load.as_ref());
@@ -166,19 +194,62 @@ impl ResistorChecks<'_> {
             self.fault_findings(resistor, &result, faults, findings);
             results.push(result);
         }
+        for result in self.supplies(procedure)? {
+            rating_findings(&result, findings);
+            results.push(result);
+        }
         Ok(results)
     }
 
-    /// What one element bears. A single element stands in the healthy bank's own study; an array is opened up.
+    /// What one element bears over the passive discharge. A single element stands in the healthy bank's own study; an array is opened up.
     fn load(&self, resistor: &Resistor, healthy: &Answers) -> Result<Option<Load>, EngineError> {
-        let Some(index) = self.model.find_resistor(&resistor.id) else { return Ok(None) };
+        let Some(index) = self.model.find_resistor(&resistor.id).filter(|_| resistor.role.always_connected()) else {
+            return Ok(None);
+        };
         if is_single(resistor) {
             return Ok(Some(Load::from(&load_figures(index, &resistor.rating), healthy)));
         }
-        let Some((model, element)) = element_model(self.model, resistor) else { return Ok(None) };
+        let Some((model, element)) = element_model(&self.model.passive_only(), resistor) else { return Ok(None) };
         let figures = load_figures(element, &resistor.rating);
         let answers = Answers::healthy(self.bank, &model, figures.clone())?;
         Ok(Some(Load::from(&figures, &answers)))
+    }
+
+    /// What one element bears until the end of the procedure; `None` for a part that no step connects.
+    fn load_through(&self, resistor: &Resistor, procedure: &Procedure) -> Result<Option<Load>, EngineError> {
+        let always = resistor.role.always_connected();
+        let there = |i: &usize| always || procedure.ever_connects(*i);
+        let Some(index) = self.model.find_resistor(&resistor.id).filter(there) else { return Ok(None) };
+        let Some((model, element)) = element_model(self.model, resistor) else { return Ok(None) };
+        debug_assert_eq!(index, element);
+        Ok(Some(through(procedure, &model, element, &resistor.rating)?))
+    }
+
+    /// The series resistances of supplies that a step connects.
+    fn supplies(&self, procedure: Option<&Procedure>) -> Result<Vec<ResistorResult>, EngineError> {
+        let mut results = Vec::new();
+        for supply in &self.bank.description().supplies {
+            let there = |(i, p): &(usize, &Procedure)| p.ever_connects(*i);
+            let index = self.model.find_resistor(&supply.id).zip(procedure).filter(there);
+            let load = match index {
+                Some((index, procedure)) => Some(through(procedure, self.model, index, &supply.rating)?),
+                None => None,
+            };
+            let part = Resistor {
+                id: supply.id.clone(),
+                role: Role::Series,
+                value: supply.series,
+                tolerance: supply.tolerance,
+                across: supply.across.clone(),
+                series: 1,
+                parallel: 1,
+                rating: supply.rating,
+                phases: None,
+            };
+            let result = self.result(&part, load.as_ref());
+            results.push(ResistorResult { role: "supply", continuous_power: None, ..result });
+        }
+        Ok(results)
     }
 
     fn result(&self, resistor: &Resistor, load: Option<&Load>) -> ResistorResult {
@@ -189,14 +260,15 @@ impl ResistorChecks<'_> {
             role: resistor.role.word(),
             value: resistor.value,
             elements: resistor.series * resistor.parallel,
-            continuous_power: load.map(|l| Power::from_si(l.standing)),
+            continuous_power: load.filter(|_| resistor.role.always_connected()).map(|l| Power::from_si(l.standing)),
             allowed_power: derated(&resistor.rating, ambient),
             element_voltage: load.map(|l| Voltage::from_si(l.voltage)),
             peak_current: load.map(|l| Current::from_si(l.current)),
             peak_power: load.map(|l| Power::from_si(l.power)),
             energy: load.map(|l| Energy::from_si(l.energy)),
             body_temperature: temperature,
-            checks: load.map_or_else(Vec::new, |l| checks(&resistor.rating, l, ambient)),
+            checks: load
+                .map_or_else(Vec::new, |l| checks(&resistor.rating, l, ambient, resistor.role.always_connected())),
         }
     }
 
@@ -208,7 +280,8 @@ impl ResistorChecks<'_> {
         faults: &[FaultAnswers],
         findings: &mut Findings,
     ) {
-        let Some((index, allowed)) = self.model.find_resistor(&resistor.id).zip(result.allowed_power) else { return };
+        let index = self.model.find_resistor(&resistor.id).filter(|_| resistor.role.always_connected());
+        let Some((index, allowed)) = index.zip(result.allowed_power) else { return };
         let per_element = |fault: &FaultAnswers| {
             let own = fault.fault.id == resistor.id && resistor.parallel > 1;
             let elements = resistor.series * (resistor.parallel - u32::from(own));
@@ -236,7 +309,7 @@ impl ResistorChecks<'_> {
 }
 
 /// The checks that apply to a load.
-fn checks(rating: &Rating, load: &Load, ambient: Temperature) -> Vec<Check> {
+fn checks(rating: &Rating, load: &Load, ambient: Temperature, always: bool) -> Vec<Check> {
     let compare = |check, unit, found: f64, allowed: Option<f64>| Check {
         check,
         unit,
@@ -246,12 +319,15 @@ fn checks(rating: &Rating, load: &Load, ambient: Temperature) -> Vec<Check> {
         remark: None,
     };
     let allowed = derated(rating, ambient).map(Quantity::si);
-    let mut checks = vec![compare("continuous power", "W", load.standing, allowed)];
-    if allowed.is_none() {
-        checks[0].remark = Some(match rating.power {
-            None => "no power rating given".into(),
-            Some(power) => format!("{} rated, but not up to which temperature", exact(power)),
-        });
+    let mut checks = Vec::new();
+    if always {
+        let mut standing = compare("continuous power", "W", load.standing, allowed);
+        standing.remark = match (allowed, rating.power) {
+            (Some(_), _) => None,
+            (None, None) => Some("no power rating given".into()),
+            (None, Some(power)) => Some(format!("{} rated, but not up to which temperature", exact(power))),
+        };
+        checks.push(standing);
     }
     checks.push(compare("element voltage", "V", load.voltage, rating.voltage.map(Quantity::si)));
     // A pulse is what exceeds the continuous power; a slow bleeder passes many times its pulse energy and stays cool.

@@ -70,7 +70,7 @@ impl WaitCheck<'_> {
     }
 
     fn wait(&self, pair: usize) -> Figure {
-        Figure::VoltageWait { pair, level: self.level() }
+        Figure::TouchWait { pair, level: self.level(), energy: self.bank.description().hold_energy.map(Quantity::si) }
     }
 
     fn pairs(&self) -> std::ops::Range<usize> {

@@ -5,10 +5,42 @@ use super::scenario::Scenario;
 use crate::circuit::{CircuitError, ExpSum, Modes, Response, ShortCharge};
 use std::sync::Arc;
 
+/// The moment of isolation under a scenario, at one point of the box.
+#[derive(Debug, Clone)]
+pub(crate) struct Start {
+    /// For every node of the model, its node in the network (a shorted capacitor makes two one).
+    pub map: Vec<usize>,
+    /// Potentials in volt of the network's nodes before isolation.
+    pub potentials: Vec<f64>,
+    /// Voltages in volt of the capacitors of the network after isolation.
+    pub voltages: Vec<f64>,
+}
+
+impl Start {
+    /// The operating point with `volts` held across the terminals; capacitors with a voltage of their own take it.
+    pub fn at_isolation(model: &Model, scenario: &Scenario, point: &[f64], volts: f64) -> Self {
+        let map = model.merged(&scenario.after);
+        let before = model.network(&scenario.before, point, &[]);
+        let held: Vec<(usize, f64)> = match model.terminals.as_slice() {
+            [top, reference] => vec![(map[*top], volts), (map[*reference], 0.0)],
+            _ => Vec::new(),
+        };
+        let potentials = before.operating_point(&held);
+        let there = model.capacitors.iter().zip(&model.own_voltages).filter(|(c, _)| map[c.a] != map[c.b]);
+        let voltages = there
+            .map(|(c, own)| {
+                let settled = potentials[map[c.a]] - potentials[map[c.b]];
+                own.filter(|_| !scenario.drops_own_voltages).unwrap_or(settled)
+            })
+            .collect();
+        Start { map, potentials, voltages }
+    }
+}
+
 /// A solved scenario: the state before isolation and every voltage after it.
 #[derive(Debug)]
 pub(crate) struct Case {
-    /// For every node of the model, its node in the network (a shorted capacitor makes two one).
+    /// For every node of the model, its node in the network.
     pub map: Vec<usize>,
     /// Potentials in volt of the network's nodes before isolation.
     pub potentials: Vec<f64>,
@@ -22,35 +54,12 @@ impl Case {
     /// Solves `scenario` at `point` with `volts` across the terminals before isolation, and checks its energy
     /// balance.
     pub fn solve(model: &Model, scenario: &Scenario, point: &[f64], volts: f64) -> Result<Self, CircuitError> {
-        let map = model.merged(&scenario.after);
-        let before = model.network(&scenario.before, point);
-        let after = model.network(&scenario.after, point);
-        let held: Vec<(usize, f64)> = match model.terminals.as_slice() {
-            [top, reference] => vec![(map[*top], volts), (map[*reference], 0.0)],
-            _ => Vec::new(),
-        };
-        let potentials = before.operating_point(&held);
-        let own = model.capacitors.iter().zip(&model.own_voltages).filter(|(c, _)| map[c.a] != map[c.b]);
-        let voltages: Vec<f64> = after
-            .capacitors
-            .iter()
-            .zip(own)
-            .map(|(c, (_, own))| {
-                let settled = potentials[c.a] - potentials[c.b];
-                own.filter(|_| !scenario.drops_own_voltages).unwrap_or(settled)
-            })
-            .collect();
+        let Start { map, potentials, voltages } = Start::at_isolation(model, scenario, point, volts);
+        let after = model.network(&scenario.after, point, &[]);
         let response = Arc::new(Modes::new(after)?).response(&voltages, &potentials)?;
         response.check_balance(f64::INFINITY)?;
-        let ohms = |variation| {
-            let scaled = |i: usize| match variation {
-                Some((index, factor)) if index == i => factor,
-                _ => 1.0,
-            };
-            let parts = model.resistors.iter().enumerate();
-            parts.map(|(i, r)| r.nominal * r.parameter.map_or(1.0, |p| point[p]) * scaled(i)).collect()
-        };
-        let (before_ohms, after_ohms) = (ohms(scenario.before.resistor), ohms(scenario.after.resistor));
+        let before_ohms = model.ohms(&scenario.before, point, &[]);
+        let after_ohms = model.ohms(&scenario.after, point, &[]);
         Ok(Case { map, potentials, before_ohms, after_ohms, response })
     }
 

@@ -13,13 +13,15 @@ use crate::quantity::Quantity;
 pub(crate) fn element_model(model: &Model, resistor: &Resistor) -> Option<(Model, usize)> {
     let index = model.find_resistor(&resistor.id)?;
     let mut opened = model.clone();
+    let loose_before = opened.parameters.len();
     if resistor.series == 1 && resistor.parallel == 1 {
         return Some((opened, index));
     }
-    let whole = opened.resistors.remove(index);
+    // Other resistors keep their numbers: the array's own place becomes the element at the end.
+    let whole = opened.resistors[index].clone();
     let unit = resistor.value.si();
     let add = |opened: &mut Model, a, b, nominal, parameter| {
-        opened.resistors.push(Part { id: whole.id.clone(), a, b, nominal, parameter });
+        opened.resistors.push(Part { id: whole.id.clone(), a, b, nominal, parameter, kind: whole.kind });
         opened.resistors.len() - 1
     };
     // The lumped array's own loose value now stands for the other strings; it is used by nothing else.
@@ -34,6 +36,9 @@ pub(crate) fn element_model(model: &Model, resistor: &Resistor) -> Option<(Model
         add(&mut opened, middle, whole.b, unit * f64::from(resistor.series - 1), parameter);
     }
     let parameter = opened.parameter(&resistor.id, resistor.tolerance);
-    let element = add(&mut opened, whole.a, middle, unit, parameter);
-    Some((opened, element))
+    opened.resistors[index] = Part { b: middle, nominal: unit, parameter, ..whole };
+    if model.passive == loose_before {
+        opened.passive = opened.parameters.len();
+    }
+    Some((opened, index))
 }

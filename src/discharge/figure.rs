@@ -3,7 +3,7 @@
 use super::body::Thermal;
 use super::case::Case;
 use super::model::Model;
-use crate::circuit::{CircuitError, ExpSum};
+use crate::circuit::{CircuitError, ExpSum, LastExit};
 
 /// Thermal data and standing power for a body temperature.
 pub(crate) type Body = Thermal;
@@ -13,6 +13,8 @@ pub(crate) type Body = Thermal;
 pub(crate) enum Figure {
     /// Last time at which the voltage is over `level`, in second.
     VoltageWait { pair: usize, level: f64 },
+    /// Last time at which the voltage is over `level` or the energy connected to the pair over `energy`.
+    TouchWait { pair: usize, level: f64, energy: Option<f64> },
     /// Voltage at infinite time.
     Settles { pair: usize },
     /// Voltage at isolation.
@@ -58,6 +60,13 @@ impl Figure {
         let resistor = |r: usize| case.across(model.resistors[r].a, model.resistors[r].b);
         Ok(match *self {
             Figure::VoltageWait { pair: p, level } => pair(p).last_outside(level, floor.max(0.0))?.seconds(),
+            Figure::TouchWait { pair: p, level, energy: most } => {
+                let from = floor.max(0.0);
+                match (pair(p).last_outside(level, from)?, most) {
+                    (LastExit::At(from), Some(most)) => energy(p).last_outside(most, from)?.seconds(),
+                    (exit, _) => exit.seconds(),
+                }
+            }
             Figure::Settles { pair: p } => pair(p).constant().abs(),
             Figure::Start { pair: p } => pair(p).value(0.0).abs(),
             Figure::VoltageAt { pair: p, t } => pair(p).value(t).abs(),

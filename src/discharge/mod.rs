@@ -7,6 +7,7 @@
 //! Inside this room figures are `f64` in SI base units, as they come from `circuit`; the rooms above see them as
 //! typed quantities only.
 
+mod absorption;
 mod body;
 mod case;
 mod element;
@@ -14,12 +15,14 @@ mod figure;
 mod model;
 mod scenario;
 mod study;
+mod timeline;
 mod worst;
 
 pub(crate) use case::Case;
 pub(crate) use element::element_model;
 pub(crate) use figure::{Body, Figure};
-pub(crate) use model::Model;
+pub(crate) use model::{Model, Part, PartKind, absorption};
 pub(crate) use scenario::{Fault, Scenario, faults};
 pub(crate) use study::Study;
+pub(crate) use timeline::{ProcedureStudy, Setting, Stage, StepFigure, Timeline};
 pub(crate) use worst::{MOST_CORNERS, Worst, nominal, worst};

@@ -1,8 +1,10 @@
 //! The bank as numbered nodes and parts.
 
+use super::absorption::Branches;
 use crate::bank::Bank;
-use crate::bank::description::{Capacitor, Resistor};
-use crate::circuit::{Edge, Network};
+use crate::bank::description::{Capacitor, Lasts, Resistor, Supply};
+use crate::circuit::{CircuitError, Edge, Network};
+use crate::data::dielectric;
 use crate::quantity::{Quantity, Tolerance};
 
 /// A loose value: a factor on a part's marked value that may lie anywhere in its range.
@@ -25,32 +27,67 @@ pub(crate) struct Part {
     pub b: usize,
     /// Ohm or farad at the marked value; arrays are lumped into one.
     pub nominal: f64,
-    /// Which loose value multiplies it.
+    /// Which loose value it follows.
     pub parameter: Option<usize>,
+    /// What it is in the model.
+    pub kind: PartKind,
+}
+
+/// What a part is in the model.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(crate) enum PartKind {
+    /// A part of the file that is there at all times.
+    Fixed,
+    /// A part that only a step connects: a tool, a strap, a meter, the series resistance of a supply.
+    Switched,
+    /// The capacitance or resistance of an absorption branch of the capacitor with this number.
+    Absorbing(usize),
 }
 
 impl Part {
-    fn value(&self, point: &[f64]) -> f64 {
-        self.nominal * self.parameter.map_or(1.0, |p| point[p])
+    /// The value at a point of the box. The resistance of an absorption branch goes as 1/C, so that its time
+    /// constant stays.
+    pub fn value(&self, point: &[f64], is_resistor: bool) -> f64 {
+        let factor = self.parameter.and_then(|p| point.get(p)).copied().unwrap_or(1.0);
+        let inverse = is_resistor && matches!(self.kind, PartKind::Absorbing(_));
+        if inverse { self.nominal / factor } else { self.nominal * factor }
     }
 }
 
-/// A bank as a network whose values follow from a point of the tolerance box. Parts that only a step connects are
-/// not in it.
+/// A supply that a step may connect.
 #[derive(Debug, Clone)]
+pub(crate) struct Source {
+    /// The part of the bank file.
+    pub id: String,
+    /// Node between the ideal source and its series resistance.
+    pub inside: usize,
+    pub b: usize,
+    pub volts: f64,
+    /// The number of its series resistance.
+    pub resistor: usize,
+}
+
+/// A bank as a network whose values follow from a point of the tolerance box.
+#[derive(Debug, Clone, Default)]
 pub(crate) struct Model {
     pub node_names: Vec<String>,
     /// Numbers of the terminals, the reference last.
     pub terminals: Vec<usize>,
+    /// Those of the file first, in its order; then series resistances of supplies; then absorption branches.
     pub resistors: Vec<Part>,
+    /// Those of the file first, in its order; then absorption branches.
     pub capacitors: Vec<Part>,
+    pub sources: Vec<Source>,
     /// Own voltage of every capacitor at isolation, in volt.
     pub own_voltages: Vec<Option<f64>>,
     /// Pairs that figures are asked for: the test points, then the terminals and pairs of limits that are none.
     pub pairs: Vec<(usize, usize)>,
     /// How many of the pairs are test points.
     pub test_points: usize,
+    /// Those of parts that are there at all times first.
     pub parameters: Vec<Parameter>,
+    /// How many of the loose values are of parts that are there at all times; a passive discharge has no others.
+    pub passive: usize,
 }
 
 /// What differs from the healthy bank.
@@ -65,40 +102,59 @@ pub(crate) struct Variation {
 }
 
 impl Model {
-    pub fn new(bank: &Bank) -> Self {
+    /// Writes a bank as a model.
+    ///
+    /// # Errors
+    /// Where the absorption of a capacitor can't be calibrated.
+    pub fn new(bank: &Bank) -> Result<Self, CircuitError> {
         let description = bank.description();
-        let mut model = Model {
-            node_names: Vec::new(),
-            terminals: Vec::new(),
-            resistors: Vec::new(),
-            capacitors: Vec::new(),
-            own_voltages: Vec::new(),
-            pairs: Vec::new(),
-            test_points: 0,
-            parameters: Vec::new(),
-        };
+        let mut model = Model::default();
         model.terminals = description.terminals.iter().map(|n| model.node(n)).collect();
         for capacitor in &description.capacitors {
             let part = model.capacitor(capacitor);
             model.capacitors.push(part);
             model.own_voltages.push(capacitor.charged_to.map(Quantity::si));
         }
-        for resistor in description.resistors.iter().filter(|r| r.role.always_connected()) {
+        for resistor in &description.resistors {
             let part = model.resistor(resistor);
             model.resistors.push(part);
+        }
+        for kind in [PartKind::Fixed, PartKind::Switched] {
+            model.passive = model.parameters.len();
+            for (index, resistor) in description.resistors.iter().enumerate() {
+                if model.resistors[index].kind == kind {
+                    model.resistors[index].parameter = model.parameter(&resistor.id, resistor.tolerance);
+                }
+            }
+        }
+        for supply in &description.supplies {
+            model.supply(supply);
+        }
+        for (index, capacitor) in description.capacitors.iter().enumerate() {
+            if let Some((share, slow)) = absorption(capacitor) {
+                let branches = Branches::calibrated(capacitor.value.si(), share, slow)?;
+                model.absorb(index, &branches);
+            }
         }
         model.pairs = bank.test_points().iter().map(|[a, b]| (model.node(a), model.node(b))).collect();
         model.test_points = model.pairs.len();
         let limits = description.limits.iter().filter_map(|l| l.at.clone());
+        let steps = description.procedure.iter().flat_map(|step| {
+            let until = match &step.lasts {
+                Lasts::Until(hold) => hold.at.clone(),
+                Lasts::For(_) => None,
+            };
+            until.into_iter().chain(step.hold.iter().filter_map(|h| h.at.clone())).chain(step.measure.clone())
+        });
         let terminals = [description.terminals.first().cloned(), description.terminals.last().cloned()];
         let terminals = if let [Some(top), Some(reference)] = terminals { Some([top, reference]) } else { None };
-        for [a, b] in terminals.into_iter().chain(limits) {
+        for [a, b] in terminals.into_iter().chain(limits).chain(steps) {
             if model.find_pair(&a, &b).is_none() {
                 let pair = (model.node(&a), model.node(&b));
                 model.pairs.push(pair);
             }
         }
-        model
+        Ok(model)
     }
 
     /// The number of the pair between two nodes by name, whichever way round.
@@ -113,7 +169,7 @@ impl Model {
 
     /// The number of a node; new names get the next one.
     pub fn node(&mut self, name: &str) -> usize {
-        self.node_names.iter().position(|n| n == name).unwrap_or_else(|| {
+        self.find_node(name).unwrap_or_else(|| {
             self.node_names.push(name.to_string());
             self.node_names.len() - 1
         })
@@ -140,13 +196,41 @@ impl Model {
     fn capacitor(&mut self, c: &Capacitor) -> Part {
         let nominal = c.value.si() * f64::from(c.parallel) / f64::from(c.series);
         let (a, b) = (self.node(&c.across[0]), self.node(&c.across[1]));
-        Part { id: c.id.clone(), a, b, nominal, parameter: self.parameter(&c.id, c.tolerance) }
+        let parameter = self.parameter(&c.id, c.tolerance);
+        Part { id: c.id.clone(), a, b, nominal, parameter, kind: PartKind::Fixed }
     }
 
     fn resistor(&mut self, r: &Resistor) -> Part {
         let nominal = r.value.si() * f64::from(r.series) / f64::from(r.parallel);
         let (a, b) = (self.node(&r.across[0]), self.node(&r.across[1]));
-        Part { id: r.id.clone(), a, b, nominal, parameter: self.parameter(&r.id, r.tolerance) }
+        let kind = if r.role.always_connected() { PartKind::Fixed } else { PartKind::Switched };
+        Part { id: r.id.clone(), a, b, nominal, parameter: None, kind }
+    }
+
+    fn supply(&mut self, s: &Supply) {
+        let (a, b) = (self.node(&s.across[0]), self.node(&s.across[1]));
+        let inside = self.node(&format!("{} inside", s.id));
+        let parameter = self.parameter(&s.id, s.tolerance);
+        let nominal = s.series.si();
+        let kind = PartKind::Switched;
+        // From the source's own node towards the bank: a positive current charges.
+        self.resistors.push(Part { id: s.id.clone(), a: inside, b: a, nominal, parameter, kind });
+        let resistor = self.resistors.len() - 1;
+        self.sources.push(Source { id: s.id.clone(), inside, b, volts: s.voltage.si(), resistor });
+    }
+
+    /// Adds the branches of a capacitor's absorption; they follow its own loose value.
+    fn absorb(&mut self, index: usize, branches: &Branches) {
+        let whole = self.capacitors[index].clone();
+        let kind = PartKind::Absorbing(index);
+        for (number, (ohm, farad)) in branches.parts(whole.nominal).enumerate() {
+            let id = format!("{} absorption {}", whole.id, number + 1);
+            let inside = self.node(&id);
+            let (a, b, parameter) = (whole.a, whole.b, whole.parameter);
+            self.resistors.push(Part { id: id.clone(), a, b: inside, nominal: ohm, parameter, kind });
+            self.capacitors.push(Part { id, a: inside, b, nominal: farad, parameter, kind });
+            self.own_voltages.push(self.own_voltages[index]);
+        }
     }
 
     /// For every node the node that it is one with under `variation`: a terminal, where one of the two is.
@@ -159,27 +243,63 @@ impl Model {
         map
     }
 
-    /// The network at a point of the box; parts whose nodes are one are left out.
-    pub fn network(&self, variation: &Variation, point: &[f64]) -> Network {
+    /// Resistances in ohm of all resistors at a point of the box; infinite for one that is open or not connected.
+    pub fn ohms(&self, variation: &Variation, point: &[f64], connected: &[usize]) -> Vec<f64> {
+        let parts = self.resistors.iter().enumerate();
+        parts
+            .map(|(i, r)| {
+                let failed = variation.resistor.filter(|(index, _)| *index == i).map_or(1.0, |(_, factor)| factor);
+                let there = r.kind != PartKind::Switched || connected.contains(&i);
+                if there { r.value(point, true) * failed } else { f64::INFINITY }
+            })
+            .collect()
+    }
+
+    /// The network at a point of the box with the `connected` switched resistors; parts whose nodes are one are left
+    /// out.
+    pub fn network(&self, variation: &Variation, point: &[f64], connected: &[usize]) -> Network {
         let map = self.merged(variation);
-        let edge =
-            |part: &Part, factor: f64| Edge { a: map[part.a], b: map[part.b], value: part.value(point) * factor };
-        let factor = |of: Option<(usize, f64)>, index: usize| of.filter(|(i, _)| *i == index).map_or(1.0, |(_, f)| f);
-        let edges = |parts: &[Part], of: Option<(usize, f64)>| -> Vec<Edge> {
-            let all = parts.iter().enumerate().map(|(i, p)| edge(p, factor(of, i)));
-            all.filter(|e| e.a != e.b && e.value.is_finite()).collect()
+        let edge = |part: &Part, value: f64| Edge { a: map[part.a], b: map[part.b], value };
+        let there = |e: &Edge| e.a != e.b && e.value.is_finite();
+        let ohms = self.ohms(variation, point, connected);
+        let farad = |i: usize, c: &Part| {
+            let (index, factor) = variation.capacitor.unwrap_or((usize::MAX, 1.0));
+            let failed = i == index || c.kind == PartKind::Absorbing(index);
+            c.value(point, false) * if failed { factor } else { 1.0 }
         };
+        let resistors = self.resistors.iter().zip(ohms).map(|(r, ohm)| edge(r, ohm));
+        let capacitors = self.capacitors.iter().enumerate().map(|(i, c)| edge(c, farad(i, c)));
+        let on = self.sources.iter().filter(|s| connected.contains(&s.resistor));
         Network {
             nodes: self.node_names.len(),
             reference: self.reference(),
-            resistors: edges(&self.resistors, variation.resistor),
-            capacitors: edges(&self.capacitors, variation.capacitor),
-            sources: Vec::new(),
+            resistors: resistors.filter(there).collect(),
+            capacitors: capacitors.filter(there).collect(),
+            sources: on.map(|s| Edge { a: s.inside, b: map[s.b], value: s.volts }).collect(),
         }
     }
 
-    /// The middle of the box.
+    /// The middle of the box of a passive discharge.
     pub fn nominal_point(&self) -> Vec<f64> {
-        vec![1.0; self.parameters.len()]
+        vec![1.0; self.passive]
     }
+
+    /// The same model with nothing loose that is not there at all times.
+    pub fn passive_only(&self) -> Model {
+        let mut model = self.clone();
+        model.parameters.truncate(model.passive);
+        let passive = model.passive;
+        model.resistors.iter_mut().for_each(|r| r.parameter = r.parameter.filter(|p| *p < passive));
+        model
+    }
+}
+
+/// The absorption that a capacitor is computed with, and whether its dielectric has slow branches: given, or the
+/// end of the dielectric's typical range that hurts.
+pub(crate) fn absorption(capacitor: &Capacitor) -> Option<(f64, bool)> {
+    let dielectric = capacitor.dielectric.as_deref().and_then(dielectric);
+    let slow = dielectric.is_some_and(|d| d.slow_branches);
+    let typical = || dielectric.and_then(|d| d.absorption).map(|range| range.high.unwrap_or(range.low).si());
+    let share = capacitor.absorption.or_else(typical)?;
+    (share > 0.0).then_some((share, slow))
 }

@@ -33,7 +33,7 @@ impl Scenario {
 /// Every single fault, in the order of the file, resistors first.
 pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
     let mut faults = Vec::new();
-    for resistor in &bank.description().resistors {
+    for resistor in bank.description().resistors.iter().filter(|r| r.role.always_connected()) {
         let Some(index) = model.find_resistor(&resistor.id) else { continue };
         let word = if resistor.role == Role::Leakage { "absent" } else { "open" };
         // One element open: one string of the parallel strings is lost.

@@ -20,7 +20,7 @@ impl Objective for Study<'_> {
     type Case = Case;
 
     fn parameters(&self) -> &[Parameter] {
-        &self.model.parameters
+        &self.model.parameters[..self.model.passive]
     }
 
     fn count(&self) -> usize {

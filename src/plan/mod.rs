@@ -8,8 +8,8 @@ pub use result::*;
 
 use crate::bank::Bank;
 use crate::check::{
-    Answers, CapacitorCheck, FaultAnswers, LimitChecks, ResistorChecks, StoredCheck, WaitCheck, assumptions, notes,
-    remaining_energy,
+    Answers, CapacitorCheck, FaultAnswers, LimitChecks, Procedure, ResistorChecks, StepCheck, StoredCheck, WaitCheck,
+    assumptions, notes, remaining_energy, step_assumptions, step_findings,
 };
 use crate::discharge::{Figure, MOST_CORNERS, Model, faults};
 use crate::finding::{Findings, Severity};
@@ -63,7 +63,7 @@ pub fn plan(bank: &Bank, input_sha256: &str, noticed: Findings, options: Options
 
 /// Fills in everything that is computed.
 fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Options) -> Result<(), EngineError> {
-    let model = Model::new(bank);
+    let model = Model::new(bank).map_err(EngineError::of("absorption"))?;
     let description = bank.description();
     let (first, last) = (description.terminals.first(), description.terminals.last());
     let terminals = first.zip(last).and_then(|(a, b)| model.find_pair(a, b)).unwrap_or(0);
@@ -72,7 +72,7 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
     let stored = StoredCheck { bank, model: &model, terminals };
     let limits = LimitChecks::new(bank, &model)?;
     let resistors = ResistorChecks { bank, model: &model };
-    let capacitors = CapacitorCheck { bank, model: &model };
+    let capacitors = CapacitorCheck { bank };
 
     let figures =
         [waits.figures(), stored.figures(), limits.figures(), capacitors.figures(), resistors.figures()].concat();
@@ -86,10 +86,18 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
     plan.waits = waits.conclude(&healthy, &under_faults, findings);
     remaining_energy(bank, &model, &plan.waits, findings)?;
     plan.limits = limits.conclude(&healthy, &under_faults, findings);
-    plan.resistors = resistors.conclude(&healthy, &under_faults, findings)?;
+    let procedure = Procedure::resolve(bank, &model)?;
+    plan.resistors = resistors.conclude(&healthy, procedure.as_ref(), &under_faults, findings)?;
+    if let Some(procedure) = &procedure {
+        let steps = StepCheck::new(procedure, faults(bank, &model))?;
+        plan.steps = steps.results(&plan.waits);
+        plan.recovery = steps.recovery()?;
+        step_findings(&steps, &plan.steps, &plan.recovery, &plan.resistors, findings);
+        plan.assumptions.extend(step_assumptions(&steps));
+    }
     plan.capacitors = capacitors.conclude(&healthy, &under_faults, findings);
     notes(bank, &model, &plan.resistors, &plan.capacitors, findings);
-    plan.worst_case_search = search_used(model.parameters.len());
+    plan.worst_case_search = search_used(model.passive);
     if options.working {
         plan.working = Some(working::working(bank, &model, &plan.waits)?);
     }
@@ -135,14 +143,9 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
 /// Parts of the description that this version reads but does not compute.
 fn not_computed(bank: &Bank) -> Vec<String> {
     let description = bank.description();
-    let absorbing = description.capacitors.iter().any(|c| c.absorption.is_some() || c.dielectric.is_some());
     let missing = [
         (bank.is_three_phase(), "a three-phase bank: no wait, energy or rating is computed"),
-        (absorbing, "dielectric absorption: waits can be longer and voltage can come back"),
-        (!description.procedure.is_empty(), "the steps of the procedure, and what comes back after the last one"),
         (!description.sinks.is_empty(), "sinks: no wait relies on them"),
-        (!description.supplies.is_empty(), "supplies that a step connects"),
-        (description.hold_energy.is_some(), "hold_energy: the waits are for the touch voltage alone"),
     ];
     missing.into_iter().filter(|(present, _)| *present).map(|(_, text)| text.to_string()).collect()
 }
@@ -169,7 +172,8 @@ impl Plan {
         }
         let limit_missed =
             |l: &LimitResult| l.met == Some(false) || (l.single_fault_asked && l.single_fault_met == Some(false));
-        let missed = self.waits.iter().any(|w| w.slowest.is_none() || w.nominal.is_none())
+        let missed = self.steps.iter().any(|s| s.never)
+            || self.waits.iter().any(|w| w.slowest.is_none() || w.nominal.is_none())
             || self.limits.iter().any(limit_missed)
             || self.resistors.iter().flat_map(|r| &r.checks).any(|c| c.verdict == Verdict::NotMet)
             || self.capacitors.iter().any(|c| c.verdict == Verdict::NotMet);

@@ -3,11 +3,10 @@
 use super::result::{Wait, Working, WorkingMode, WorkingSingle, WorkingValue};
 use crate::bank::Bank;
 use crate::check::EngineError;
-use crate::discharge::{Case, Model, Scenario};
+use crate::discharge::{Case, Model, Part, PartKind, Scenario};
 use crate::quantity::{Capacitance, Quantity, Resistance, Time, Voltage};
 
-fn solve(bank: &Bank, model: &Model, point: &[f64], volts: Voltage) -> Result<Case, EngineError> {
-    debug_assert_eq!(bank.description().capacitors.len(), model.capacitors.len());
+fn solve(model: &Model, point: &[f64], volts: Voltage) -> Result<Case, EngineError> {
     let failed = |cause| EngineError { scenario: "healthy".into(), cause };
     Case::solve(model, &Scenario::default(), point, volts.si()).map_err(failed)
 }
@@ -15,7 +14,7 @@ fn solve(bank: &Bank, model: &Model, point: &[f64], volts: Voltage) -> Result<Ca
 /// Nominal time constants in second, the slowest first.
 pub(super) fn time_constants(bank: &Bank, model: &Model) -> Result<Vec<f64>, EngineError> {
     let nominal = bank.description().charged_to.nominal;
-    Ok(solve(bank, model, &model.nominal_point(), nominal)?.response.modes().time_constants())
+    Ok(solve(model, &model.nominal_point(), nominal)?.response.modes().time_constants())
 }
 
 /// The nominal and the slowest wait at every test point, worked out.
@@ -35,6 +34,11 @@ pub(super) fn working(bank: &Bank, model: &Model, waits: &[Wait]) -> Result<Vec<
     Ok(list)
 }
 
+/// The resistors that are there at all times.
+fn resistors_of(model: &Model) -> impl Iterator<Item = &Part> {
+    model.resistors.iter().filter(|r| r.kind != PartKind::Switched)
+}
+
 fn worked(
     bank: &Bank,
     model: &Model,
@@ -43,20 +47,20 @@ fn worked(
     volts: Voltage,
     wait: Option<Time>,
 ) -> Result<Working, EngineError> {
-    let case = solve(bank, model, point, volts)?;
+    let case = solve(model, point, volts)?;
     let (a, b) = model.pairs[pair];
     let voltage = case.across(a, b);
     let factor = |parameter: Option<usize>| parameter.map_or(1.0, |p| point[p]);
-    let resistors = model.resistors.iter().map(|r| WorkingValue {
+    let resistors = resistors_of(model).map(|r| WorkingValue {
         id: r.id.clone(),
-        resistance: Some(Resistance::from_si(r.nominal * factor(r.parameter))),
+        resistance: Some(Resistance::from_si(r.value(point, true))),
         capacitance: None,
         factor: factor(r.parameter),
     });
     let capacitors = model.capacitors.iter().map(|c| WorkingValue {
         id: c.id.clone(),
         resistance: None,
-        capacitance: Some(Capacitance::from_si(c.nominal * factor(c.parameter))),
+        capacitance: Some(Capacitance::from_si(c.value(point, false))),
         factor: factor(c.parameter),
     });
     let modes = voltage.terms().iter().map(|(amplitude, rate)| WorkingMode {

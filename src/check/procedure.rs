@@ -1,0 +1,168 @@
+//! The procedure with its lengths resolved, and its figures.
+
+use super::EngineError;
+use crate::bank::Bank;
+use crate::bank::description::{Hold, Lasts, Step};
+use crate::discharge::{
+    self, Fault, Model, PartKind, ProcedureStudy, Scenario, Setting, Stage, StepFigure, Timeline, Worst,
+};
+use crate::quantity::{Quantity, Time, keepable};
+
+/// A procedure whose `until` steps have a length.
+pub(crate) struct Procedure<'a> {
+    pub bank: &'a Bank,
+    pub model: &'a Model,
+    pub stages: Vec<Stage>,
+    /// Steps whose `until` never comes.
+    pub never: Vec<bool>,
+    tried_from: [f64; 3],
+}
+
+/// Figures of a procedure: nominal, and greatest over the box at the highest voltage.
+pub(crate) struct StepAnswers {
+    figures: Vec<StepFigure>,
+    nominal: Vec<f64>,
+    worst: Vec<Worst>,
+}
+
+impl StepAnswers {
+    fn index(&self, figure: StepFigure) -> Option<usize> {
+        self.figures.iter().position(|f| *f == figure)
+    }
+
+    /// NaN where it was never asked for, which passes no check.
+    pub fn nominal(&self, figure: StepFigure) -> f64 {
+        self.index(figure).and_then(|i| self.nominal.get(i)).copied().unwrap_or(f64::NAN)
+    }
+
+    /// NaN where it was never asked for, which passes no check.
+    pub fn worst(&self, figure: StepFigure) -> f64 {
+        self.index(figure).and_then(|i| self.worst.get(i)).map_or(f64::NAN, |w| w.value)
+    }
+
+    /// The point of the box at which a figure is greatest.
+    pub fn worst_point(&self, figure: StepFigure) -> &[f64] {
+        self.index(figure).and_then(|i| self.worst.get(i)).map_or(&[], |w| &w.point)
+    }
+}
+
+impl<'a> Procedure<'a> {
+    /// Resolves the steps of `bank`; `None` where it has no procedure. An `until` is found on the slowest case, with
+    /// its step's parts kept for ever, and rounded up to a time that people can keep.
+    pub fn resolve(bank: &'a Bank, model: &'a Model) -> Result<Option<Self>, EngineError> {
+        let description = bank.description();
+        if description.procedure.is_empty() {
+            return Ok(None);
+        }
+        let charged = description.charged_to;
+        let tried_from = [0.0, charged.nominal.si(), charged.highest.si()];
+        let mut procedure = Procedure { bank, model, stages: Vec::new(), never: Vec::new(), tried_from };
+        let mut connected: Vec<usize> = Vec::new();
+        for step in &description.procedure {
+            let number = |id: &String| model.find_resistor(id);
+            connected.retain(|r| !step.disconnect.iter().filter_map(number).any(|gone| gone == *r));
+            let new: Vec<usize> = step.connect.iter().filter_map(number).filter(|r| !connected.contains(r)).collect();
+            connected.extend(&new);
+            let tried = new.iter().any(|r| model.sources.iter().any(|s| s.resistor == *r));
+            procedure.stages.push(Stage { connected: connected.clone(), duration: 0.0, tried });
+            procedure.never.push(false);
+            procedure.fix_length(step)?;
+        }
+        Ok(Some(procedure))
+    }
+
+    fn fix_length(&mut self, step: &Step) -> Result<(), EngineError> {
+        let stage = self.stages.len() - 1;
+        match &step.lasts {
+            Lasts::For(time) => self.stages[stage].duration = time.si(),
+            Lasts::Until(hold) => {
+                let figures: Vec<StepFigure> = self
+                    .pairs(hold)
+                    .into_iter()
+                    .map(|pair| StepFigure::LastOver { stage, pair, level: hold.below.si() })
+                    .collect();
+                let found = self.worst(&Scenario::default(), &figures).map_err(EngineError::of("healthy"))?;
+                let longest = found.iter().map(|w| w.value).fold(0.0, f64::max);
+                self.never[stage] = !longest.is_finite();
+                if longest.is_finite() {
+                    self.stages[stage].duration = keepable(Time::from_si(longest)).si();
+                }
+            }
+        }
+        Ok(())
+    }
+
+    /// The pairs of the model that a hold or an until speaks of.
+    pub fn pairs(&self, hold: &Hold) -> Vec<usize> {
+        match &hold.at {
+            Some([a, b]) => self.model.find_pair(a, b).into_iter().collect(),
+            None => (0..self.model.test_points).collect(),
+        }
+    }
+
+    fn setting<'s>(&'s self, model: &'s Model, scenario: &'s Scenario, volts: f64) -> Setting<'s> {
+        Setting { model, scenario, volts, tried_from: &self.tried_from, stages: &self.stages }
+    }
+
+    fn worst(&self, scenario: &Scenario, figures: &[StepFigure]) -> Result<Vec<Worst>, crate::circuit::CircuitError> {
+        let volts = self.tried_from[2];
+        discharge::worst(&ProcedureStudy { setting: self.setting(self.model, scenario, volts), figures })
+    }
+
+    /// Figures of the healthy bank; `model` may have an array opened up.
+    pub fn healthy(&self, model: &Model, figures: Vec<StepFigure>) -> Result<StepAnswers, EngineError> {
+        let scenario = Scenario::default();
+        let study = |volts| ProcedureStudy { setting: self.setting(model, &scenario, volts), figures: &figures };
+        let failed = EngineError::of("healthy, through the steps");
+        let nominal = discharge::nominal(&study(self.tried_from[1])).map_err(&failed)?;
+        let worst = discharge::worst(&study(self.tried_from[2])).map_err(&failed)?;
+        Ok(StepAnswers { nominal, worst, figures })
+    }
+
+    /// Figures under a fault, the worst of the ways in which it can come about.
+    pub fn under(&self, fault: &Fault, figures: &[StepFigure]) -> Result<StepAnswers, EngineError> {
+        let mut worst: Vec<Worst> = Vec::new();
+        for scenario in &fault.scenarios {
+            let found = self.worst(scenario, figures).map_err(EngineError::of(&fault.name))?;
+            if worst.is_empty() {
+                worst = found;
+            } else {
+                worst.iter_mut().zip(found).filter(|(w, f)| f.value > w.value).for_each(|(w, f)| *w = f);
+            }
+        }
+        Ok(StepAnswers { nominal: Vec::new(), worst, figures: figures.to_vec() })
+    }
+
+    /// The healthy bank through the steps at one point of the box, at the highest voltage.
+    pub fn at(&self, point: &[f64]) -> Result<Timeline, EngineError> {
+        let scenario = Scenario::default();
+        Timeline::run(&self.setting(self.model, &scenario, self.tried_from[2]), point)
+            .map_err(EngineError::of("healthy, through the steps"))
+    }
+
+    /// When a step starts, in second from isolation.
+    pub fn start(&self, stage: usize) -> f64 {
+        self.stages[..stage].iter().map(|s| s.duration).sum()
+    }
+
+    /// When the last step ends.
+    pub fn end(&self) -> f64 {
+        self.start(self.stages.len())
+    }
+
+    /// The resistors of the file and of supplies that are connected during a step.
+    pub fn connected(&self, stage: usize) -> Vec<usize> {
+        let model = self.model;
+        let there = |r: &usize| match model.resistors[*r].kind {
+            PartKind::Fixed => true,
+            PartKind::Switched => self.stages[stage].connected.contains(r),
+            PartKind::Absorbing(_) => false,
+        };
+        (0..model.resistors.len()).filter(there).collect()
+    }
+
+    /// True where a step ever connects this resistor.
+    pub fn ever_connects(&self, resistor: usize) -> bool {
+        self.stages.iter().any(|s| s.connected.contains(&resistor))
+    }
+}

@@ -1,0 +1,317 @@
+//! A bank through the steps of a procedure: the state is carried exactly from step to step.
+//!
+//! Capacitor voltages are continuous where a part is connected or lifted; nodes without a capacitor jump. Between
+//! two steps the network is linear, so every voltage is a sum of exponentials of its own.
+
+use super::body::Thermal;
+use super::case::Start;
+use super::model::{Model, Parameter, PartKind};
+use super::scenario::Scenario;
+use super::worst::Objective;
+use crate::circuit::{CircuitError, ExpSum, Modes, Response};
+use std::sync::Arc;
+
+/// One step: which switched resistors are connected during it, and how long it lasts in second.
+#[derive(Debug, Clone, PartialEq)]
+pub(crate) struct Stage {
+    pub connected: Vec<usize>,
+    pub duration: f64,
+    /// A supply is connected at its start: its currents, powers and energies are those of the worst of several
+    /// voltages that the bank may then have.
+    pub tried: bool,
+}
+
+/// A solved step.
+#[derive(Debug)]
+struct Run {
+    response: Response,
+    ohms: Vec<f64>,
+    duration: f64,
+    /// What follows from each voltage that a connected supply is tried from.
+    tries: Vec<Response>,
+}
+
+/// A solved procedure.
+#[derive(Debug)]
+pub(crate) struct Timeline {
+    map: Vec<usize>,
+    /// Power in watt of every resistor before isolation.
+    standing: Vec<f64>,
+    runs: Vec<Run>,
+}
+
+/// What surrounds a procedure.
+#[derive(Debug, Clone, Copy)]
+pub(crate) struct Setting<'a> {
+    pub model: &'a Model,
+    pub scenario: &'a Scenario,
+    /// Voltage across the terminals before isolation, in volt.
+    pub volts: f64,
+    /// Terminal voltages in volt that a supply is tried from.
+    pub tried_from: &'a [f64],
+    pub stages: &'a [Stage],
+}
+
+impl Timeline {
+    /// Runs a procedure at one point of the box; every step's energy balance is checked.
+    pub fn run(setting: &Setting, point: &[f64]) -> Result<Self, CircuitError> {
+        let Setting { model, scenario, .. } = *setting;
+        let Start { map, potentials, voltages } = Start::at_isolation(model, scenario, point, setting.volts);
+        let before = model.ohms(&scenario.before, point, &[]);
+        let power = |(r, ohm): (&super::model::Part, f64)| {
+            if ohm.is_finite() { (potentials[map[r.a]] - potentials[map[r.b]]).powi(2) / ohm } else { 0.0 }
+        };
+        let standing = model.resistors.iter().zip(before).map(power).collect();
+        let mut timeline = Timeline { map, standing, runs: Vec::with_capacity(setting.stages.len()) };
+        let (mut voltages, mut potentials) = (voltages, potentials);
+        for stage in setting.stages {
+            let modes = Arc::new(Modes::new(model.network(&scenario.after, point, &stage.connected))?);
+            let response = modes.response(&voltages, &potentials)?;
+            response.check_balance(stage.duration)?;
+            let mut tries = Vec::new();
+            if stage.tried {
+                for volts in setting.tried_from {
+                    let from = Scenario { drops_own_voltages: true, ..scenario.clone() };
+                    let start = Start::at_isolation(model, &from, point, *volts);
+                    tries.push(modes.response(&start.voltages, &start.potentials)?);
+                }
+            }
+            voltages = response.voltages_at(stage.duration);
+            potentials = response.potentials_at(stage.duration);
+            let ohms = model.ohms(&scenario.after, point, &stage.connected);
+            timeline.runs.push(Run { response, ohms, duration: stage.duration, tries });
+        }
+        Ok(timeline)
+    }
+
+    /// Voltage between two nodes of the model during a step, from its start.
+    pub fn across(&self, stage: usize, a: usize, b: usize) -> ExpSum {
+        across(&self.runs[stage].response, &self.map, a, b)
+    }
+
+    /// What is to come at a pair after the last step, from its end.
+    pub fn afterwards(&self, a: usize, b: usize) -> ExpSum {
+        self.runs
+            .last()
+            .map_or_else(ExpSum::default, |last| across(&last.response, &self.map, a, b).after(last.duration))
+    }
+}
+
+fn across(response: &Response, map: &[usize], a: usize, b: usize) -> ExpSum {
+    let (a, b) = (map[a], map[b]);
+    if a == b { ExpSum::default() } else { response.across(a, b) }
+}
+
+/// One figure of a procedure. Stages count from 0, pairs are those of the model.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(crate) enum StepFigure {
+    /// Voltage at a step's end.
+    Voltage {
+        stage: usize,
+        pair: usize,
+    },
+    /// Voltage of a capacitor at a step's end.
+    CapacitorVoltage {
+        stage: usize,
+        capacitor: usize,
+    },
+    /// Voltage across a resistor at a step's start.
+    VoltageAtStart {
+        stage: usize,
+        resistor: usize,
+    },
+    /// Last time of a step, kept for ever, at which the voltage is over `level`; infinite for never.
+    LastOver {
+        stage: usize,
+        pair: usize,
+        level: f64,
+    },
+    /// Energy in the capacitors themselves at a step's start, without what their dielectrics give back slowly.
+    ReadyEnergy {
+        stage: usize,
+    },
+    /// Energy in all capacitors at a step's start.
+    StoredEnergy {
+        stage: usize,
+    },
+    /// Greatest current in a resistor during a step.
+    Current {
+        stage: usize,
+        resistor: usize,
+    },
+    /// Greatest power in a resistor during a step.
+    Power {
+        stage: usize,
+        resistor: usize,
+    },
+    /// Energy in a resistor during a step.
+    Energy {
+        stage: usize,
+        resistor: usize,
+    },
+    /// Greatest voltage across a resistor while it is connected; before isolation too, where it is always there.
+    PartVoltage {
+        resistor: usize,
+    },
+    /// Greatest current, power, and energy in a resistor over the whole procedure.
+    PartCurrent {
+        resistor: usize,
+    },
+    PartPower {
+        resistor: usize,
+    },
+    PartEnergy {
+        resistor: usize,
+    },
+    /// Power before isolation.
+    StandingPower {
+        resistor: usize,
+    },
+    /// Greatest rise of a resistor's body over the air during the procedure, in K.
+    BodyRise {
+        resistor: usize,
+        body: Thermal,
+    },
+    /// Greatest voltage from the end of the last step on.
+    Recovery {
+        pair: usize,
+    },
+}
+
+impl Run {
+    /// The voltages that count for a resistor: those of the step itself, or of what a supply is tried from.
+    fn voltages(&self, model: &Model, map: &[usize], resistor: usize) -> Vec<ExpSum> {
+        let part = &model.resistors[resistor];
+        let responses = if self.tries.is_empty() { std::slice::from_ref(&self.response) } else { &self.tries[..] };
+        responses.iter().map(|r| across(r, map, part.a, part.b)).collect()
+    }
+
+    /// Greatest voltage across a resistor that is connected; 0 where it is not.
+    fn peak(&self, model: &Model, map: &[usize], resistor: usize) -> Result<f64, CircuitError> {
+        let mut peak = 0.0;
+        if self.ohms[resistor].is_finite() {
+            for voltage in self.voltages(model, map, resistor) {
+                peak = voltage.greatest_magnitude_within(peak, self.duration)?.0;
+            }
+        }
+        Ok(peak)
+    }
+
+    fn energy(&self, model: &Model, map: &[usize], resistor: usize) -> f64 {
+        let ohms = self.ohms[resistor];
+        if !ohms.is_finite() {
+            return 0.0;
+        }
+        let energies = self.voltages(model, map, resistor).into_iter();
+        energies.map(|v| v.integral_of_square(self.duration) / ohms).fold(0.0, f64::max)
+    }
+
+    /// Power in a resistor over time; of what a supply is tried from, the one that heats most.
+    fn power(&self, model: &Model, map: &[usize], resistor: usize) -> ExpSum {
+        let ohms = self.ohms[resistor];
+        if !ohms.is_finite() {
+            return ExpSum::default();
+        }
+        let heat = |v: &ExpSum| v.integral_of_square(self.duration);
+        let hottest = self.voltages(model, map, resistor).into_iter().max_by(|x, y| heat(x).total_cmp(&heat(y)));
+        hottest.map_or_else(ExpSum::default, |v| v.squared().times(ohms.recip()))
+    }
+}
+
+/// Figures of a procedure, to be maximised over the box.
+pub(crate) struct ProcedureStudy<'a> {
+    pub setting: Setting<'a>,
+    pub figures: &'a [StepFigure],
+}
+
+impl Objective for ProcedureStudy<'_> {
+    type Case = Timeline;
+
+    fn parameters(&self) -> &[Parameter] {
+        &self.setting.model.parameters
+    }
+
+    fn count(&self) -> usize {
+        self.figures.len()
+    }
+
+    fn case(&self, point: &[f64]) -> Result<Timeline, CircuitError> {
+        Timeline::run(&self.setting, point)
+    }
+
+    fn figure(&self, index: usize, case: &Timeline, floor: f64) -> Result<f64, CircuitError> {
+        self.figures[index].of(self.setting.model, case, floor)
+    }
+}
+
+impl StepFigure {
+    fn of(&self, model: &Model, timeline: &Timeline, floor: f64) -> Result<f64, CircuitError> {
+        let Timeline { map, runs, standing } = timeline;
+        let at_pair = |stage: usize, pair: usize| timeline.across(stage, model.pairs[pair].0, model.pairs[pair].1);
+        let all = |of: &dyn Fn(&Run) -> Result<f64, CircuitError>| -> Result<Vec<f64>, CircuitError> {
+            runs.iter().map(of).collect()
+        };
+        let greatest = |list: Vec<f64>| list.into_iter().fold(0.0, f64::max);
+        Ok(match *self {
+            StepFigure::Voltage { stage, pair } => at_pair(stage, pair).value(runs[stage].duration).abs(),
+            StepFigure::CapacitorVoltage { stage, capacitor: c } => {
+                let c = &model.capacitors[c];
+                timeline.across(stage, c.a, c.b).value(runs[stage].duration).abs()
+            }
+            StepFigure::VoltageAtStart { stage, resistor } => {
+                let r = &model.resistors[resistor];
+                timeline.across(stage, r.a, r.b).value(0.0).abs()
+            }
+            StepFigure::LastOver { stage, pair, level } => {
+                at_pair(stage, pair).last_outside(level, floor.max(0.0))?.seconds()
+            }
+            StepFigure::ReadyEnergy { stage } => {
+                let network = runs[stage].response.network();
+                let there = model.capacitors.iter().filter(|c| map[c.a] != map[c.b]);
+                let voltages = runs[stage].response.voltages_at(0.0);
+                let parts = there.zip(&network.capacitors).zip(voltages);
+                parts.filter(|((c, _), _)| c.kind == PartKind::Fixed).map(|((_, e), u)| 0.5 * e.value * u * u).sum()
+            }
+            StepFigure::StoredEnergy { stage } => runs[stage].response.initial_energy(),
+            StepFigure::Current { stage, resistor } => {
+                per_ohm(runs[stage].peak(model, map, resistor)?, runs[stage].ohms[resistor])
+            }
+            StepFigure::Power { stage, resistor } => {
+                per_ohm(runs[stage].peak(model, map, resistor)?.powi(2), runs[stage].ohms[resistor])
+            }
+            StepFigure::Energy { stage, resistor } => runs[stage].energy(model, map, resistor),
+            StepFigure::PartVoltage { resistor } => {
+                let peaks = greatest(all(&|run| run.peak(model, map, resistor))?);
+                let fixed = model.resistors[resistor].kind != PartKind::Switched;
+                let ohms = runs.first().map_or(f64::INFINITY, |run| run.ohms[resistor]);
+                if fixed && ohms.is_finite() { peaks.max((standing[resistor] * ohms).sqrt()) } else { peaks }
+            }
+            StepFigure::PartCurrent { resistor } => {
+                greatest(all(&|run| Ok(per_ohm(run.peak(model, map, resistor)?, run.ohms[resistor])))?)
+            }
+            StepFigure::PartPower { resistor } => {
+                greatest(all(&|run| Ok(per_ohm(run.peak(model, map, resistor)?.powi(2), run.ohms[resistor])))?)
+            }
+            StepFigure::PartEnergy { resistor } => runs.iter().map(|run| run.energy(model, map, resistor)).sum(),
+            StepFigure::StandingPower { resistor } => standing[resistor],
+            StepFigure::BodyRise { resistor, body } => {
+                let mut rise = body.kelvin_per_watt * standing[resistor];
+                let mut greatest = rise;
+                for run in runs {
+                    let course = body.rise(rise, &run.power(model, map, resistor));
+                    greatest = course.greatest_magnitude_within(greatest, run.duration)?.0;
+                    rise = course.value(run.duration);
+                }
+                greatest
+            }
+            StepFigure::Recovery { pair } => {
+                let (a, b) = model.pairs[pair];
+                timeline.afterwards(a, b).greatest_magnitude_over(floor)?.0
+            }
+        })
+    }
+}
+
+fn per_ohm(value: f64, ohms: f64) -> f64 {
+    if ohms.is_finite() { value / ohms } else { 0.0 }
+}
