@@ -21,7 +21,7 @@ pub(crate) use capacitors::CapacitorCheck;
 pub(crate) use energy::remaining_energy;
 pub(crate) use limits::LimitChecks;
 pub(crate) use notes::{assumptions, notes};
-pub(crate) use procedure::Procedure;
+pub(crate) use procedure::{Procedure, StepAnswers};
 pub(crate) use resistors::ResistorChecks;
 pub(crate) use serial::{celsius_or_null, degrees, si, si_list, si_or_null};
 pub(crate) use step_findings::{step_assumptions, step_findings};

@@ -1,8 +1,8 @@
 //! What resistors bear: standing load, voltage, the discharge itself.
 
-use super::{Answers, EngineError, FaultAnswers, Procedure, Verdict, celsius_or_null, si, si_or_null};
+use super::{Answers, EngineError, FaultAnswers, Procedure, StepAnswers, Verdict, celsius_or_null, si, si_or_null};
 use crate::bank::Bank;
-use crate::bank::description::{Rating, Resistor, Role};
+use crate::bank::description::{Rating, Resistor, Role, Supply};
 use crate::discharge::{Body, Figure, Model, StepFigure, element_model};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{
@@ -115,8 +115,15 @@ fn load_figures(resistor: usize, rating: &Rating) -> Vec<Figure> {
 }
 
 impl Load {
+    fn through(figures: &[StepFigure], answers: &StepAnswers) -> Self {
+        Load::of(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>())
+    }
+
     fn from(figures: &[Figure], answers: &Answers) -> Self {
-        let worst: Vec<f64> = figures.iter().map(|f| answers.worst(*f)).collect();
+        Load::of(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>())
+    }
+
+    fn of(worst: &[f64]) -> Self {
         Load {
             standing: worst[0],
             voltage: worst[1],
@@ -128,8 +135,8 @@ impl Load {
     }
 }
 
-/// What a resistor bears over a procedure.
-fn through(procedure: &Procedure, model: &Model, resistor: usize, rating: &Rating) -> Result<Load, EngineError> {
+/// The figures of a load over a procedure, in the order in which [`Load::through`] takes them.
+fn load_figures_through(resistor: usize, rating: &Rating) -> Vec<StepFigure> {
     let mut figures = vec![
         StepFigure::StandingPower { resistor },
         StepFigure::PartVoltage { resistor },
@@ -138,16 +145,7 @@ fn through(procedure: &Procedure, model: &Model, resistor: usize, rating: &Ratin
         StepFigure::PartEnergy { resistor },
     ];
     figures.extend(body(rating).map(|body| StepFigure::BodyRise { resistor, body }));
-    let answers = procedure.healthy(model, figures.clone())?;
-    let worst: Vec<f64> = figures.iter().map(|f| answers.worst(*f)).collect();
-    Ok(Load {
-        standing: worst[0],
-        voltage: worst[1],
-        current: worst[2],
-        power: worst[3],
-        energy: worst[4],
-        rise: worst.get(5).copied(),
-    })
+    figures
 }
 
 /// The resistors of a bank.
@@ -182,8 +180,10 @@ impl ResistorChecks<'_> {
         findings: &mut Findings,
     ) -> Result<Vec<ResistorResult>, EngineError> {
         let resistors = &self.bank.description().resistors;
-        let load = |r: &Resistor| match procedure {
-            Some(procedure) => self.load_through(r, procedure),
+        let single = procedure.map(|p| self.answers_through(p)).transpose()?;
+        let through = procedure.zip(single.as_ref());
+        let load = |r: &Resistor| match through {
+            Some((procedure, single)) => self.load_through(r, procedure, single),
             None => self.load(r, healthy),
         };
         let loads: Vec<Option<Load>> = resistors.par_iter().map(load).collect::<Result<_, EngineError>>()?;
@@ -194,7 +194,7 @@ impl ResistorChecks<'_> {
             self.fault_findings(resistor, &result, faults, findings);
             results.push(result);
         }
-        for result in self.supplies(procedure)? {
+        for result in self.supplies(through) {
             rating_findings(&result, findings);
             results.push(result);
         }
@@ -215,26 +215,41 @@ impl ResistorChecks<'_> {
         Ok(Some(Load::from(&figures, &answers)))
     }
 
+    /// What every single resistor and supply bears until the end of the procedure, answered together.
+    fn answers_through(&self, procedure: &Procedure) -> Result<StepAnswers, EngineError> {
+        let description = self.bank.description();
+        let single = description.resistors.iter().filter(|r| is_single(r)).map(|r| (&r.id, &r.rating));
+        let supplies = description.supplies.iter().map(|s| (&s.id, &s.rating));
+        let figures = single
+            .chain(supplies)
+            .filter_map(|(id, rating)| Some(load_figures_through(self.model.find_resistor(id)?, rating)))
+            .flatten();
+        procedure.healthy(self.model, figures.collect())
+    }
+
     /// What one element bears until the end of the procedure; `None` for a part that no step connects.
-    fn load_through(&self, resistor: &Resistor, procedure: &Procedure) -> Result<Option<Load>, EngineError> {
+    fn load_through(
+        &self,
+        resistor: &Resistor,
+        procedure: &Procedure,
+        single: &StepAnswers,
+    ) -> Result<Option<Load>, EngineError> {
         let always = resistor.role.always_connected();
         let there = |i: &usize| always || procedure.ever_connects(*i);
         let Some(index) = self.model.find_resistor(&resistor.id).filter(there) else { return Ok(None) };
-        let Some((model, element)) = element_model(self.model, resistor) else { return Ok(None) };
-        debug_assert_eq!(index, element);
-        Ok(Some(through(procedure, &model, element, &resistor.rating)?))
+        let figures = load_figures_through(index, &resistor.rating);
+        if is_single(resistor) {
+            return Ok(Some(Load::through(&figures, single)));
+        }
+        let Some((model, _)) = element_model(self.model, resistor) else { return Ok(None) };
+        Ok(Some(Load::through(&figures, &procedure.healthy(&model, figures.clone())?)))
     }
 
     /// The series resistances of supplies that a step connects.
-    fn supplies(&self, procedure: Option<&Procedure>) -> Result<Vec<ResistorResult>, EngineError> {
-        let mut results = Vec::new();
-        for supply in &self.bank.description().supplies {
-            let there = |(i, p): &(usize, &Procedure)| p.ever_connects(*i);
-            let index = self.model.find_resistor(&supply.id).zip(procedure).filter(there);
-            let load = match index {
-                Some((index, procedure)) => Some(through(procedure, self.model, index, &supply.rating)?),
-                None => None,
-            };
+    fn supplies(&self, procedure: Option<(&Procedure, &StepAnswers)>) -> Vec<ResistorResult> {
+        let one = |supply: &Supply| {
+            let index = self.model.find_resistor(&supply.id).zip(procedure).filter(|(i, (p, _))| p.ever_connects(*i));
+            let load = index.map(|(i, (_, single))| Load::through(&load_figures_through(i, &supply.rating), single));
             let part = Resistor {
                 id: supply.id.clone(),
                 role: Role::Series,
@@ -246,10 +261,11 @@ impl ResistorChecks<'_> {
                 rating: supply.rating,
                 phases: None,
             };
-            let result = self.result(&part, load.as_ref());
-            results.push(ResistorResult { role: "supply", continuous_power: None, ..result });
-        }
-        Ok(results)
+            let mut result = self.result(&part, load.as_ref());
+            result.checks.retain(|check| check.check != "continuous power");
+            ResistorResult { role: "supply", continuous_power: None, ..result }
+        };
+        self.bank.description().supplies.iter().map(one).collect()
     }
 
     fn result(&self, resistor: &Resistor, load: Option<&Load>) -> ResistorResult {

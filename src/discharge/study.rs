@@ -31,6 +31,14 @@ impl Objective for Study<'_> {
         Case::solve(self.model, self.scenario, point, self.volts)
     }
 
+    fn negligible(&self, _: usize) -> f64 {
+        0.0
+    }
+
+    fn case_for(&self, _: usize, point: &[f64]) -> Result<Case, CircuitError> {
+        self.case(point)
+    }
+
     fn figure(&self, index: usize, case: &Case, floor: f64) -> Result<f64, CircuitError> {
         self.figures[index].of(self.model, case, floor)
     }

@@ -64,8 +64,14 @@ impl Timeline {
         let standing = model.resistors.iter().zip(before).map(power).collect();
         let mut timeline = Timeline { map, standing, runs: Vec::with_capacity(setting.stages.len()) };
         let (mut voltages, mut potentials) = (voltages, potentials);
+        let mut last: Option<(&[usize], Arc<Modes>)> = None;
         for stage in setting.stages {
-            let modes = Arc::new(Modes::new(model.network(&scenario.after, point, &stage.connected))?);
+            // A step that connects and lifts nothing goes on with the network of the step before.
+            let modes = match last {
+                Some((connected, modes)) if *connected == stage.connected => modes,
+                _ => Arc::new(Modes::new(model.network(&scenario.after, point, &stage.connected))?),
+            };
+            last = Some((&stage.connected, Arc::clone(&modes)));
             let response = modes.response(&voltages, &potentials)?;
             response.check_balance(stage.duration)?;
             let mut tries = Vec::new();
@@ -237,6 +243,48 @@ impl Objective for ProcedureStudy<'_> {
 
     fn case(&self, point: &[f64]) -> Result<Timeline, CircuitError> {
         Timeline::run(&self.setting, point)
+    }
+
+    /// Voltages to 1e-10 of the bank's, and what follows from it: the engine's rounding is a thousandth of that.
+    fn negligible(&self, index: usize) -> f64 {
+        let Setting { model, volts, .. } = self.setting;
+        let small = 1e-10 * volts;
+        let ohms = |resistor: usize| model.resistors[resistor].nominal;
+        match self.figures[index] {
+            StepFigure::Voltage { .. }
+            | StepFigure::CapacitorVoltage { .. }
+            | StepFigure::VoltageAtStart { .. }
+            | StepFigure::PartVoltage { .. }
+            | StepFigure::Recovery { .. } => small,
+            StepFigure::Current { resistor, .. } | StepFigure::PartCurrent { resistor } => small / ohms(resistor),
+            StepFigure::Power { resistor, .. }
+            | StepFigure::PartPower { resistor }
+            | StepFigure::StandingPower { resistor } => small * small / ohms(resistor),
+            StepFigure::Energy { .. }
+            | StepFigure::PartEnergy { .. }
+            | StepFigure::ReadyEnergy { .. }
+            | StepFigure::StoredEnergy { .. } => {
+                1e-10 * model.capacitors.iter().map(|c| 0.5 * c.nominal * small * volts).sum::<f64>()
+            }
+            StepFigure::BodyRise { .. } => 1e-6,
+            StepFigure::LastOver { .. } => 0.0,
+        }
+    }
+
+    fn case_for(&self, index: usize, point: &[f64]) -> Result<Timeline, CircuitError> {
+        let needed = match self.figures[index] {
+            StepFigure::Voltage { stage, .. }
+            | StepFigure::CapacitorVoltage { stage, .. }
+            | StepFigure::VoltageAtStart { stage, .. }
+            | StepFigure::LastOver { stage, .. }
+            | StepFigure::ReadyEnergy { stage }
+            | StepFigure::StoredEnergy { stage }
+            | StepFigure::Current { stage, .. }
+            | StepFigure::Power { stage, .. }
+            | StepFigure::Energy { stage, .. } => stage + 1,
+            _ => self.setting.stages.len(),
+        };
+        Timeline::run(&Setting { stages: &self.setting.stages[..needed], ..self.setting }, point)
     }
 
     fn figure(&self, index: usize, case: &Timeline, floor: f64) -> Result<f64, CircuitError> {

@@ -7,6 +7,7 @@
 
 use super::model::Parameter;
 use crate::circuit::CircuitError;
+use rayon::prelude::*;
 use std::collections::HashSet;
 
 /// Up to this many loose values every corner is tried.
@@ -26,7 +27,7 @@ pub(crate) struct Worst {
 }
 
 /// Figures to be maximised over a box: a point is solved once and then asked for any of them.
-pub(crate) trait Objective {
+pub(crate) trait Objective: Sync {
     /// A solved point.
     type Case;
 
@@ -38,6 +39,12 @@ pub(crate) trait Objective {
 
     /// Solves one point.
     fn case(&self, point: &[f64]) -> Result<Self::Case, CircuitError>;
+
+    /// Below this, a figure is not worth a search inside the box: it is near the rounding of the engine.
+    fn negligible(&self, index: usize) -> f64;
+
+    /// Solves a point as far as one figure needs it.
+    fn case_for(&self, index: usize, point: &[f64]) -> Result<Self::Case, CircuitError>;
 
     /// One figure of a solved point. A value that is proven not to exceed `floor` may be given as `floor`.
     fn figure(&self, index: usize, case: &Self::Case, floor: f64) -> Result<f64, CircuitError>;
@@ -85,7 +92,7 @@ impl<O: Objective> Search<'_, O> {
 
     /// The value of one figure, exact.
     fn value(&self, index: usize, point: &[f64]) -> Result<f64, CircuitError> {
-        self.objective.figure(index, &self.objective.case(point)?, 0.0)
+        self.objective.figure(index, &self.objective.case_for(index, point)?, 0.0)
     }
 
     fn corner(&self, high: impl Fn(usize) -> bool) -> Vec<f64> {
@@ -149,66 +156,83 @@ impl<O: Objective> Search<'_, O> {
     fn refine_all(&self, best: &mut [Worst]) -> Result<(), CircuitError> {
         for corner in distinct(best) {
             // Figures with the same best corner share the solved neighbours.
-            let here: Vec<usize> =
-                (0..best.len()).filter(|i| best[*i].point == corner && best[*i].value.is_finite()).collect();
-            let mut rising = vec![false; best.len()];
-            for point in self.inwards(&corner) {
-                if here.iter().all(|i| rising[*i]) {
-                    break;
-                }
+            let matters = |i: &usize| {
+                let worst = &best[*i];
+                worst.point == corner && worst.value.is_finite() && worst.value > self.objective.negligible(*i)
+            };
+            let here: Vec<usize> = (0..best.len()).filter(matters).collect();
+            if here.is_empty() {
+                continue;
+            }
+            // For every figure, along which values it rises.
+            let mut rises = vec![vec![false; corner.len()]; best.len()];
+            for (p, point) in self.inwards(&corner) {
                 let case = self.objective.case(&point)?;
-                for i in here.iter().copied().filter(|i| !rising[*i]).collect::<Vec<_>>() {
-                    let bar = best[i].value * (1.0 + NOTABLE);
-                    rising[i] = self.objective.figure(i, &case, bar.max(0.0))? > bar;
+                for i in &here {
+                    let bar = best[*i].value * (1.0 + NOTABLE);
+                    rises[*i][p] |= self.objective.figure(*i, &case, bar.max(0.0))? > bar;
                 }
             }
-            for i in here.into_iter().filter(|i| rising[*i]) {
-                self.refine(i, &mut best[i])?;
-            }
+            let rising: Vec<usize> = here.into_iter().filter(|i| rises[*i].contains(&true)).collect();
+            let refined: Vec<Worst> = rising
+                .par_iter()
+                .map(|i| self.refine(*i, best[*i].clone(), rises[*i].clone()))
+                .collect::<Result<_, CircuitError>>()?;
+            rising.into_iter().zip(refined).for_each(|(i, worst)| best[i] = worst);
         }
         Ok(())
     }
 
     /// Points on the way from a corner into the box along each value: short, half way, long.
-    fn inwards(&self, corner: &[f64]) -> Vec<Vec<f64>> {
+    fn inwards(&self, corner: &[f64]) -> Vec<(usize, Vec<f64>)> {
         let mut points = Vec::with_capacity(3 * corner.len());
-        for (p, range) in self.parameters().iter().enumerate() {
-            let here = corner[p];
-            let away = if here - range.low > range.high - here { range.low } else { range.high };
-            for share in [1e-3, 0.5, 0.9] {
-                let mut point = corner.to_vec();
-                point[p] = here + share * (away - here);
-                points.push(point);
-            }
+        for p in 0..corner.len() {
+            points.extend([1e-3, 0.5, 0.9].map(|share| (p, self.moved(corner, p, share))));
         }
         points
     }
 
-    /// Searches inside the box from the best corner of one figure.
-    fn refine(&self, index: usize, worst: &mut Worst) -> Result<(), CircuitError> {
+    /// A point moved along one value by a share of the longer way.
+    fn moved(&self, point: &[f64], p: usize, share: f64) -> Vec<f64> {
+        let range = &self.parameters()[p];
+        let here = point[p];
+        let away = if here - range.low > range.high - here { range.low } else { range.high };
+        let mut moved = point.to_vec();
+        moved[p] = here + share * (away - here);
+        moved
+    }
+
+    /// Searches inside the box from the best corner of one figure, at first along the values that it rises with.
+    fn refine(&self, index: usize, mut worst: Worst, mut along: Vec<bool>) -> Result<Worst, CircuitError> {
         const MOST_ROUNDS: usize = 40;
         let count = worst.point.len();
         for _ in 0..MOST_ROUNDS {
             let start = worst.clone();
-            for p in 0..count {
-                let mut along = vec![0.0; count];
-                along[p] = self.parameters()[p].high - self.parameters()[p].low;
-                self.climb(index, worst, &along)?;
+            for p in (0..count).filter(|p| along[*p]) {
+                let mut direction = vec![0.0; count];
+                direction[p] = self.parameters()[p].high - self.parameters()[p].low;
+                self.climb(index, &mut worst, &direction)?;
             }
             // Along a ridge single values creep; the way of the whole round leads on (Powell 1964).
-            let along: Vec<f64> = worst.point.iter().zip(&start.point).map(|(x, y)| x - y).collect();
-            if count > 1 && along.iter().any(|x| *x != 0.0) {
-                self.climb(index, worst, &along)?;
+            let way: Vec<f64> = worst.point.iter().zip(&start.point).map(|(x, y)| x - y).collect();
+            if way.iter().filter(|x| **x != 0.0).count() > 1 {
+                self.climb(index, &mut worst, &way)?;
+            }
+            // Next round: what lies inside, and what now pays to leave its edge.
+            for p in 0..count {
+                let range = &self.parameters()[p];
+                let inside = worst.point[p] > range.low && worst.point[p] < range.high;
+                along[p] = inside || self.value(index, &self.moved(&worst.point, p, 1e-3))? > worst.value;
             }
             if worst.value.is_infinite() || worst.value <= start.value * (1.0 + NOTABLE) {
                 break;
             }
         }
-        Ok(())
+        Ok(worst)
     }
 
-    /// The best point on the line through the best point so far along `along`: a scan, then golden section around
-    /// the best of it (Kiefer 1953).
+    /// The best point on the line through the best point so far along `along`: a scan, then parabolas and golden
+    /// sections around the best of it (Brent 1973, chapter 5).
     fn climb(&self, index: usize, worst: &mut Worst, along: &[f64]) -> Result<(), CircuitError> {
         let (low, high) = self.reach(&worst.point, along);
         if high - low <= 0.0 {
@@ -227,9 +251,9 @@ impl<O: Objective> Search<'_, O> {
             }
             Ok(value)
         };
-        const SCAN: usize = 8;
+        const SCAN: usize = 6;
         let step = (high - low) / SCAN as f64;
-        let mut top = (f64::NEG_INFINITY, 0.0);
+        let mut top = (tried(0.0)?, 0.0);
         for k in 0..=SCAN {
             let s = if k == SCAN { high } else { low + step * k as f64 };
             let value = tried(s)?;
@@ -237,21 +261,50 @@ impl<O: Objective> Search<'_, O> {
                 top = (value, s);
             }
         }
-        let here = tried(0.0)?;
-        let (mut a, mut b) = if here > top.0 { (-step, step) } else { (top.1 - step, top.1 + step) };
-        (a, b) = (a.max(low), b.min(high));
-        let golden = 0.5 * (5f64.sqrt() - 1.0);
-        let (mut x, mut y) = (b - golden * (b - a), a + golden * (b - a));
-        let (mut fx, mut fy) = (tried(x)?, tried(y)?);
-        while b - a > 1e-6 * (high - low) {
-            if fx > fy {
-                (b, y, fy) = (y, x, fx);
-                x = b - golden * (b - a);
-                fx = tried(x)?;
+        let (mut a, mut b) = ((top.1 - step).max(low), (top.1 + step).min(high));
+        let (mut x, mut w, mut v) = (top.1, top.1, top.1);
+        let (mut fx, mut fw, mut fv) = (top.0, top.0, top.0);
+        let (mut move_before, mut last_move) = (0.0f64, 0.0f64);
+        let golden = 0.5 * (3.0 - 5f64.sqrt());
+        let fine = 1e-7 * (high - low);
+        for _ in 0..60 {
+            let middle = 0.5 * (a + b);
+            if (x - middle).abs() <= 2.0 * fine - 0.5 * (b - a) {
+                break;
+            }
+            // The top of the parabola through the three best points, where it moves less than the last but one.
+            let (r, q) = ((x - w) * (fx - fv), (x - v) * (fx - fw));
+            let (top, bottom) = ((x - v) * q - (x - w) * r, 2.0 * (q - r));
+            let parabolic = if bottom == 0.0 { f64::NAN } else { -top / bottom };
+            let usable = parabolic.abs() < 0.5 * move_before.abs() && x + parabolic > a && x + parabolic < b;
+            let way = if usable {
+                move_before = last_move;
+                parabolic
             } else {
-                (a, x, fx) = (x, y, fy);
-                y = a + golden * (b - a);
-                fy = tried(y)?;
+                move_before = if x >= middle { a - x } else { b - x };
+                golden * move_before
+            };
+            last_move = way;
+            let u = x + if way.abs() >= fine { way } else { fine.copysign(way) };
+            let fu = tried(u)?;
+            if fu >= fx {
+                if u >= x {
+                    a = x
+                } else {
+                    b = x
+                }
+                (v, fv, w, fw, x, fx) = (w, fw, x, fx, u, fu);
+            } else {
+                if u < x {
+                    a = u
+                } else {
+                    b = u
+                }
+                if fu >= fw || w == x {
+                    (v, fv, w, fw) = (w, fw, u, fu);
+                } else if fu >= fv || v == x || v == w {
+                    (v, fv) = (u, fu);
+                }
             }
         }
         Ok(())
