@@ -20,7 +20,10 @@ impl ExpSum {
                 sum.terms.push((amplitude, rate));
             }
         }
-        sum.terms.sort_by(|x, y| x.1.total_cmp(&y.1));
+        // Modes come sorted; only sums and squares of sums have to be put in order.
+        if !sum.terms.is_sorted_by(|x, y| x.1 <= y.1) {
+            sum.terms.sort_by(|x, y| x.1.total_cmp(&y.1));
+        }
         sum
     }
 
@@ -90,11 +93,25 @@ impl ExpSum {
     /// Integral of `v^2` from 0 to `t` seconds, in closed form over pairs of rates; `t` may be infinite, and the
     /// integral then is where a constant is left.
     pub fn integral_of_square(&self, t: f64) -> f64 {
-        let over = |rate: f64| if t.is_infinite() { rate.recip() } else { -(-rate * t).exp_m1() / rate };
+        let left: Vec<f64> = self.terms.iter().map(|(_, r)| (-r * t).exp()).collect();
+        // (1 - exp(-rate t)) / rate; the product of two exponentials serves where it is not close to one.
+        let over = |rate: f64, product: f64| {
+            if t.is_infinite() {
+                rate.recip()
+            } else if product < 0.5 {
+                (1.0 - product) / rate
+            } else {
+                -(-rate * t).exp_m1() / rate
+            }
+        };
         let mut sum = if self.constant == 0.0 { 0.0 } else { self.constant * self.constant * t };
         for (i, (a, r)) in self.terms.iter().enumerate() {
-            sum += a * a * over(2.0 * r) + 2.0 * self.constant * a * over(*r);
-            sum += self.terms[..i].iter().map(|(b, s)| 2.0 * a * b * over(r + s)).sum::<f64>();
+            sum += a * a * over(2.0 * r, left[i] * left[i]);
+            if self.constant != 0.0 {
+                sum += 2.0 * self.constant * a * over(*r, left[i]);
+            }
+            let pairs = self.terms[..i].iter().zip(&left);
+            sum += pairs.map(|((b, s), e)| 2.0 * a * b * over(r + s, left[i] * e)).sum::<f64>();
         }
         sum
     }

@@ -102,14 +102,30 @@ impl Response {
         if t <= 0.0 {
             return self.voltages.clone();
         }
-        self.network().capacitors.iter().map(|c| self.across(c.a, c.b).value(t)).collect()
+        let states = self.states_at(t);
+        let dot = |node: usize| self.modes.potentials[node].iter().zip(&states).map(|(x, u)| x * u).sum::<f64>();
+        let network = self.network();
+        let mut voltages: Vec<f64> = network.capacitors.iter().map(|c| dot(c.a) - dot(c.b)).collect();
+        self.modes.tree.iter().zip(&states).for_each(|(c, u)| voltages[*c] = *u);
+        voltages
     }
 
-    /// Potentials in volt of all nodes after `t` seconds, each against the reference or against the anchor of its
-    /// part at the start.
+    /// States after `t` seconds, then the voltages of the sources.
+    fn states_at(&self, t: f64) -> Vec<f64> {
+        let mut states = self.settled.clone();
+        for ((shape, rate), amplitude) in self.modes.shapes.iter().zip(&self.modes.rates).zip(&self.amplitudes) {
+            let left = amplitude * (-rate * t).exp();
+            states.iter_mut().zip(shape).for_each(|(s, x)| *s += left * x);
+        }
+        states
+    }
+
+    /// Potentials in volt of all nodes after `t` seconds. Only parts that nothing ties to the reference need them in
+    /// what follows; they keep the potential of their anchor.
     pub fn potentials_at(&self, t: f64) -> Vec<f64> {
-        let reference = self.network().reference;
-        (0..self.network().nodes).map(|node| self.across(node, reference).value(t)).collect()
+        let states = self.states_at(t);
+        let dot = |node: usize| self.modes.potentials[node].iter().zip(&states).map(|(x, u)| x * u).sum::<f64>();
+        (0..self.network().nodes).map(|node| self.start[self.modes.anchor[node]] + dot(node)).collect()
     }
 
     /// Charge in coulomb that a source gives within `t` seconds (its current flows out of its node `a`), in all

@@ -46,6 +46,9 @@ pub(crate) trait Objective: Sync {
     /// Solves a point as far as one figure needs it.
     fn case_for(&self, index: usize, point: &[f64]) -> Result<Self::Case, CircuitError>;
 
+    /// Checks the energy balance of a solved point, so that no figure comes from one that it fails for.
+    fn certify(&self, case: &Self::Case) -> Result<(), CircuitError>;
+
     /// One figure of a solved point. A value that is proven not to exceed `floor` may be given as `floor`.
     fn figure(&self, index: usize, case: &Self::Case, floor: f64) -> Result<f64, CircuitError>;
 }
@@ -53,12 +56,17 @@ pub(crate) trait Objective: Sync {
 /// All figures with every value nominal.
 pub(crate) fn nominal<O: Objective>(objective: &O) -> Result<Vec<f64>, CircuitError> {
     let case = objective.case(&vec![1.0; objective.parameters().len()])?;
+    objective.certify(&case)?;
     (0..objective.count()).map(|i| objective.figure(i, &case, 0.0)).collect()
 }
 
 /// The greatest value of each figure over the box.
 pub(crate) fn worst<O: Objective>(objective: &O) -> Result<Vec<Worst>, CircuitError> {
-    Search { objective }.worst()
+    let best = Search { objective }.worst()?;
+    for point in distinct(&best) {
+        objective.certify(&objective.case(&point)?)?;
+    }
+    Ok(best)
 }
 
 struct Search<'a, O> {
