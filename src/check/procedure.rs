@@ -3,10 +3,15 @@
 use super::EngineError;
 use crate::bank::Bank;
 use crate::bank::description::{Hold, Lasts, Step};
+use crate::circuit::CircuitError;
 use crate::discharge::{
-    self, Fault, Model, PartKind, ProcedureStudy, Scenario, Setting, Stage, StepFigure, Timeline, Worst,
+    self, Fault, MOST_CORNERS, Model, PartKind, ProcedureStudy, Scenario, Setting, Stage, StepFigure, Timeline, Worst,
 };
 use crate::quantity::{Quantity, Time, keepable};
+
+/// Beside the healthy bank itself, every corner is tried for up to this many loose values: faults and the elements of
+/// arrays multiply the work, and their figures through the steps are mostly those of one extreme corner.
+const CORNERS_ASIDE: usize = 7;
 
 /// A procedure whose `until` steps have a length.
 pub(crate) struct Procedure<'a> {
@@ -81,7 +86,8 @@ impl<'a> Procedure<'a> {
                     .into_iter()
                     .map(|pair| StepFigure::LastOver { stage, pair, level: hold.below.si() })
                     .collect();
-                let found = self.worst(&Scenario::default(), &figures).map_err(EngineError::of("healthy"))?;
+                let found =
+                    self.worst(&Scenario::default(), &figures, MOST_CORNERS).map_err(EngineError::of("healthy"))?;
                 let longest = found.iter().map(|w| w.value).fold(0.0, f64::max);
                 self.never[stage] = !longest.is_finite();
                 if longest.is_finite() {
@@ -104,15 +110,24 @@ impl<'a> Procedure<'a> {
         Setting { model, scenario, volts, tried_from: &self.tried_from, stages: &self.stages }
     }
 
-    fn worst(&self, scenario: &Scenario, figures: &[StepFigure]) -> Result<Vec<Worst>, crate::circuit::CircuitError> {
-        let volts = self.tried_from[2];
-        discharge::worst(&ProcedureStudy { setting: self.setting(self.model, scenario, volts), figures })
+    fn worst(
+        &self,
+        scenario: &Scenario,
+        figures: &[StepFigure],
+        most_corners: usize,
+    ) -> Result<Vec<Worst>, CircuitError> {
+        let setting = self.setting(self.model, scenario, self.tried_from[2]);
+        discharge::worst(&ProcedureStudy { setting, most_corners, figures })
     }
 
     /// Figures of the healthy bank; `model` may have an array opened up.
     pub fn healthy(&self, model: &Model, figures: Vec<StepFigure>) -> Result<StepAnswers, EngineError> {
         let scenario = Scenario::default();
-        let study = |volts| ProcedureStudy { setting: self.setting(model, &scenario, volts), figures: &figures };
+        let most_corners = if std::ptr::eq(model, self.model) { MOST_CORNERS } else { CORNERS_ASIDE };
+        let study = |volts| {
+            let setting = self.setting(model, &scenario, volts);
+            ProcedureStudy { setting, most_corners, figures: &figures }
+        };
         let failed = EngineError::of("healthy, through the steps");
         let nominal = discharge::nominal(&study(self.tried_from[1])).map_err(&failed)?;
         let worst = discharge::worst(&study(self.tried_from[2])).map_err(&failed)?;
@@ -123,7 +138,7 @@ impl<'a> Procedure<'a> {
     pub fn under(&self, fault: &Fault, figures: &[StepFigure]) -> Result<StepAnswers, EngineError> {
         let mut worst: Vec<Worst> = Vec::new();
         for scenario in &fault.scenarios {
-            let found = self.worst(scenario, figures).map_err(EngineError::of(&fault.name))?;
+            let found = self.worst(scenario, figures, CORNERS_ASIDE).map_err(EngineError::of(&fault.name))?;
             if worst.is_empty() {
                 worst = found;
             } else {

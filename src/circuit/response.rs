@@ -29,10 +29,7 @@ impl Modes {
             network.check_loops(voltages)?;
         }
         // Where the sources drive the states, and what is trapped of the difference to it.
-        let mut settled = vec![0.0; self.tree.len()];
-        for (shape, driven) in self.shapes.iter().zip(&self.driven).filter(|(_, d)| **d != 0.0) {
-            settled.iter_mut().zip(shape).for_each(|(s, x)| *s += driven * x);
-        }
+        let mut settled = self.driven_states();
         let nothing_trapped = self.rates.len() == self.tree.len();
         if !nothing_trapped {
             let driven = self.all_voltages(&settled);
@@ -45,6 +42,26 @@ impl Modes {
         settled.extend(network.sources.iter().map(|s| s.value));
         let (voltages, start) = (voltages.to_vec(), potentials.to_vec());
         Ok(Response { modes: Arc::clone(self), amplitudes, settled, start, voltages })
+    }
+
+    /// A steady state under the sources, in volt. Where they stand on the reference it is an operating point, free of
+    /// subtraction; else it is put together from the modes.
+    fn driven_states(&self) -> Vec<f64> {
+        let network = self.network();
+        let mut settled = vec![0.0; self.tree.len()];
+        if network.sources.is_empty() {
+            return settled;
+        }
+        if network.sources.iter().all(|s| s.b == network.reference) {
+            let held = network.sources.iter().map(|s| (s.a, s.value)).chain([(network.reference, 0.0)]);
+            let potential = network.operating_point(&held.collect::<Vec<_>>());
+            let voltage = |c: &usize| potential[network.capacitors[*c].a] - potential[network.capacitors[*c].b];
+            return self.tree.iter().map(voltage).collect();
+        }
+        for (shape, driven) in self.shapes.iter().zip(&self.driven).filter(|(_, d)| **d != 0.0) {
+            settled.iter_mut().zip(shape).for_each(|(s, x)| *s += driven * x);
+        }
+        settled
     }
 
     /// Voltages of all capacitors from those of the states.

@@ -226,6 +226,8 @@ impl Run {
 /// Figures of a procedure, to be maximised over the box.
 pub(crate) struct ProcedureStudy<'a> {
     pub setting: Setting<'a>,
+    /// Up to how many loose values every corner is tried.
+    pub most_corners: usize,
     pub figures: &'a [StepFigure],
 }
 
@@ -238,6 +240,10 @@ impl Objective for ProcedureStudy<'_> {
 
     fn count(&self) -> usize {
         self.figures.len()
+    }
+
+    fn most_corners(&self) -> usize {
+        self.most_corners
     }
 
     fn case(&self, point: &[f64]) -> Result<Timeline, CircuitError> {

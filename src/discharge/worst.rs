@@ -37,6 +37,11 @@ pub(crate) trait Objective: Sync {
     /// How many figures there are.
     fn count(&self) -> usize;
 
+    /// Up to how many loose values every corner is tried; beyond, corners are searched.
+    fn most_corners(&self) -> usize {
+        MOST_CORNERS
+    }
+
     /// Solves one point.
     fn case(&self, point: &[f64]) -> Result<Self::Case, CircuitError>;
 
@@ -82,7 +87,7 @@ impl<O: Objective> Search<'_, O> {
         if count == 0 {
             return Ok(best);
         }
-        if count <= MOST_CORNERS {
+        if count <= self.objective.most_corners() {
             // All high first: it is the worst of most figures, and a high floor ends most searches at once.
             for mask in (0..1usize << count).rev() {
                 self.offer(&self.corner(|p| mask >> p & 1 == 1), &mut best)?;

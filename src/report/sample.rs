@@ -1,5 +1,9 @@
 //! A plan made by hand (invented figures) to develop and test the reports on.
 
+mod procedure;
+
+pub use procedure::with_steps;
+
 use crate::finding::{Finding, Severity};
 use crate::plan::*;
 use crate::quantity::{Capacitance, Charge, Current, Energy, Power, Quantity, Resistance, Temperature, Time, Voltage};

@@ -1,5 +1,7 @@
 //! What every printed plan has to keep to, whatever it says.
 
+mod steps;
+
 use super::sample;
 use super::{plan_markdown, plan_text};
 use crate::plan::{Plan, Verdict};
@@ -10,12 +12,16 @@ use unicode_width::UnicodeWidthStr;
 const FORBIDDEN: [&str; 6] = ["safe", "dead", "de-energised", "deenergised", "harmless", "ok to touch"];
 
 fn first_screen(plan: &Plan) -> String {
-    plan_text(plan, 80).lines().take(24).collect::<Vec<_>>().join(" ").split_whitespace().collect::<Vec<_>>().join(" ")
+    on_one_line(&plan_text(plan, 80).lines().take(24).collect::<Vec<_>>().join(" "))
+}
+
+fn on_one_line(text: &str) -> String {
+    text.split_whitespace().collect::<Vec<_>>().join(" ")
 }
 
 /// A plan with names that are long, wide and hostile, 40 test points, and figures of every size.
 fn unruly() -> Plan {
-    let mut plan = sample::plan();
+    let mut plan = sample::with_steps();
     plan.bank.tag = "T".repeat(200);
     plan.bank.title = Some("泵站电容器组 ".repeat(20) + "\u{1b}[31m|**x**");
     plan.bank.notes = Some("line\nline\u{202e}".repeat(30));
@@ -35,12 +41,28 @@ fn unruly() -> Plan {
         resistor.elements = 4_000_000_000;
         resistor.value = crate::quantity::Resistance::from_si(123_456.789_012_345);
     }
+    let ids: Vec<String> = plan.resistors.iter().map(|r| r.id.clone()).collect();
+    let pairs: Vec<_> = plan.waits.iter().map(|wait| wait.across.clone()).collect();
+    for step in &mut plan.steps {
+        step.step = "\u{1b}[2J泵 step | `x`\n\u{202e}".repeat(12);
+        step.connect = ids.clone();
+        step.measure = pairs.clone();
+        for (i, part) in step.parts.iter_mut().enumerate() {
+            part.id = ids[i % ids.len()].clone();
+        }
+        step.faults.iter_mut().for_each(|fault| fault.fault = format!("{} open", "F".repeat(90)));
+        if let Some(hold) = &mut step.hold {
+            hold.at = pairs.clone();
+            hold.shown_faults = ids.clone();
+        }
+    }
+    plan.recovery.iter_mut().for_each(|r| r.across = pairs[39].clone());
     plan
 }
 
 #[test]
 fn text_stays_within_its_columns_whatever_the_names_are() {
-    for plan in [sample::plan(), unruly()] {
+    for plan in [sample::plan(), sample::with_steps(), unruly()] {
         for width in [60, 80, 100, 120] {
             let text = plan_text(&plan, width);
             for line in text.lines() {
@@ -60,7 +82,7 @@ fn nothing_from_the_file_reaches_the_terminal_raw() {
 
 #[test]
 fn figures_are_never_broken_over_two_lines_in_80_columns() {
-    for line in plan_text(&sample::plan(), 80).lines() {
+    for line in plan_text(&sample::with_steps(), 80).lines() {
         let last = line.split_whitespace().next_back().unwrap_or_default();
         assert!(line.len() < 60 || last.len() == 64 || last.parse::<f64>().is_err(), "{line}");
     }
@@ -104,11 +126,11 @@ fn a_wait_of_never_says_so_and_to_what_it_settles() {
 fn an_incomplete_plan_says_so_before_anything_else_and_beside_its_wait() {
     let mut plan = sample::plan();
     plan.verdict = Verdict::Incomplete;
-    plan.not_computed = vec!["the procedure (3 steps)".into()];
+    plan.not_computed = vec!["a three-phase bank".into()];
     assert!(plan_text(&plan, 80).starts_with("*** INCOMPLETE ***\n"));
     assert!(plan_markdown(&plan).starts_with("**INCOMPLETE.**"));
     let screen = first_screen(&plan);
-    assert!(screen.contains("Not computed: the procedure (3 steps)."), "{screen}");
+    assert!(screen.contains("Not computed: a three-phase bank."), "{screen}");
     assert!(screen.contains("WAIT NOT TO BE RELIED ON"), "{screen}");
     assert!(plan_text(&plan, 80).contains("Verdict: INCOMPLETE."));
     plan.waits.clear();
@@ -128,7 +150,7 @@ fn no_output_speaks_as_if_a_prediction_were_a_measurement() {
     let mut empty = sample::plan();
     empty.stored.iter_mut().for_each(|stored| stored.bands.clear());
     empty.waits.iter_mut().for_each(|wait| wait.slowest = Some(Time::from_si(0.0)));
-    for plan in [sample::plan(), empty] {
+    for plan in [sample::plan(), sample::with_steps(), steps::charging(), steps::endless(), empty] {
         for text in [plan_text(&plan, 80), plan_markdown(&plan)] {
             let text = text.to_lowercase();
             let words =

@@ -34,6 +34,11 @@ pub(super) fn time(time: Time) -> String {
     glued(&duration(time, Direction::Up))
 }
 
+/// The start of something to beware of, which must not be shown later.
+pub(super) fn early(time: Time) -> String {
+    glued(&duration(time, Direction::Down))
+}
+
 /// A time in whole units, such as one that was typed or that people keep: `5 s` rather than `5.00 s`.
 pub(super) fn whole(time: Time) -> String {
     let text = duration(time, Direction::Up);

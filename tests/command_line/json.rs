@@ -1,6 +1,6 @@
 //! `plan --format json`, read back with unknown fields denied: a key that is added, lost or renamed shows here.
 
-use crate::run::{MET, Run, demo_banks, run, run_with};
+use crate::run::{MET, Run, demo_banks, met_with_procedure, run, run_with};
 use approx::assert_relative_eq;
 use serde::Deserialize;
 
@@ -24,8 +24,8 @@ struct Plan {
     limits: Vec<Limit>,
     resistors: Vec<Resistor>,
     capacitors: Vec<Capacitor>,
-    steps: Vec<serde_json::Value>,
-    recovery: Vec<serde_json::Value>,
+    steps: Vec<Step>,
+    recovery: Vec<Recovery>,
     findings: Vec<Finding>,
     assumptions: Vec<String>,
     worst_case_search: String,
@@ -168,6 +168,74 @@ struct Capacitor {
 
 #[derive(Deserialize)]
 #[serde(deny_unknown_fields)]
+struct Step {
+    step: String,
+    start_s: f64,
+    end_s: f64,
+    until: bool,
+    never: bool,
+    connect: Vec<String>,
+    disconnect: Vec<String>,
+    measure: Vec<Pair>,
+    hold: Option<Hold>,
+    touch: bool,
+    stored_at_start_j: f64,
+    test_points: Vec<StepPoint>,
+    parts: Vec<StepPart>,
+    faults: Vec<StepFault>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct StepPoint {
+    across: Pair,
+    nominal_v: f64,
+    highest_v: f64,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct StepPart {
+    id: String,
+    peak_current_a: f64,
+    peak_power_w: f64,
+    energy_j: f64,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Hold {
+    below_v: f64,
+    at: Vec<Pair>,
+    predicted_v: f64,
+    shown_faults: Vec<String>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct StepFault {
+    fault: String,
+    test_points: Vec<FaultPoint>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct FaultPoint {
+    across: Pair,
+    highest_v: f64,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Recovery {
+    across: Pair,
+    voltage_v: f64,
+    at_s: Option<f64>,
+    passes_touch_at_s: Option<f64>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
 struct Finding {
     severity: String,
     code: String,
@@ -213,7 +281,8 @@ fn every_example_bank_has_the_documented_keys_and_finite_numbers() {
         assert!(
             plan.terminals.len() >= 2 && plan.ambient_c > 0.0 && plan.charged_to.highest_v >= plan.charged_to.nominal_v
         );
-        assert!(plan.not_computed.is_empty() && plan.steps.is_empty() && plan.recovery.is_empty());
+        assert!(plan.not_computed.is_empty());
+        check_steps(&plan);
         assert!(plan.time_constants_s.windows(2).all(|pair| pair[0] >= pair[1]), "slowest first");
         assert!(!plan.worst_case_search.is_empty() && !plan.assumptions.is_empty());
         assert!(plan.working.is_some_and(|working| !working.is_empty()));
@@ -265,6 +334,42 @@ fn check_parts(resistors: &[Resistor], capacitors: &[Capacitor]) {
     }
 }
 
+/// What holds of the steps of any procedure, and of no procedure at all.
+fn check_steps(plan: &Plan) {
+    let points: Vec<&Pair> = plan.waits.iter().map(|wait| &wait.across).collect();
+    assert!(plan.steps.is_empty() || plan.recovery.len() == points.len());
+    assert!(!plan.steps.is_empty() || plan.recovery.is_empty(), "nothing comes back without a procedure");
+    assert!(plan.steps.windows(2).all(|pair| pair[0].end_s <= pair[1].start_s));
+    for step in &plan.steps {
+        assert!(!step.step.is_empty() && step.start_s >= 0.0 && step.end_s >= step.start_s);
+        assert!(step.until || !step.never, "only an `until` can fail to come");
+        assert!(step.stored_at_start_j >= 0.0);
+        assert_eq!(step.test_points.iter().map(|point| &point.across).collect::<Vec<_>>(), points);
+        assert!(step.test_points.iter().all(|point| point.nominal_v >= 0.0 && point.highest_v >= point.nominal_v));
+        let figures = |p: &StepPart| [p.peak_current_a, p.peak_power_w, p.energy_j];
+        assert!(step.parts.iter().all(|p| !p.id.is_empty() && figures(p).iter().all(|&figure| figure >= 0.0)));
+        let here = |id: &String| step.parts.iter().any(|part| part.id == *id);
+        assert!(step.connect.iter().all(here), "what is connected bears something: {}", step.step);
+        assert!(!step.disconnect.iter().any(here), "what was taken off bears nothing: {}", step.step);
+        for fault in &step.faults {
+            assert!(fault.fault.contains(' '));
+            assert_eq!(fault.test_points.iter().map(|point| &point.across).collect::<Vec<_>>(), points);
+            assert!(fault.test_points.iter().all(|point| point.highest_v >= 0.0));
+        }
+        if let Some(hold) = &step.hold {
+            assert!(hold.below_v > 0.0 && hold.predicted_v >= 0.0 && !hold.at.is_empty());
+            let known = |shown: &String| step.faults.iter().any(|fault| fault.fault == *shown);
+            assert!(hold.shown_faults.iter().all(known), "{:?}", hold.shown_faults);
+        }
+    }
+    let end = plan.steps.last().map_or(0.0, |step| step.end_s);
+    for (recovery, across) in plan.recovery.iter().zip(points) {
+        assert_eq!(&recovery.across, across);
+        assert!(recovery.voltage_v >= 0.0 && recovery.at_s.is_none_or(|at| at >= end));
+        assert!(recovery.passes_touch_at_s.is_none_or(|at| at >= end && recovery.voltage_v > plan.touch_voltage_v));
+    }
+}
+
 fn check_findings(findings: &[Finding]) {
     let grave =
         |finding: &Finding| ["danger", "warning", "caution", "note"].iter().position(|s| *s == finding.severity);
@@ -310,4 +415,49 @@ fn one_capacitance_and_one_bleeder_have_the_figures_of_the_closed_form() {
     close(plan.resistors[0].energy_j.expect("an energy"), 0.5 * 1.2 * c * 750.0 * 750.0);
     assert_eq!((plan.hold_energy_j, plan.working.is_none()), (None, true));
     close(plan.charged_to.nominal_v, 565.0);
+}
+
+#[test]
+fn one_capacitance_through_a_procedure_has_the_figures_of_the_closed_form() {
+    let run = run_with(&["plan", "-", "--format", "json"], met_with_procedure().as_bytes());
+    let plan = read(&run);
+    assert_eq!(run.status, status(&plan.verdict));
+    check_steps(&plan);
+    if plan.steps.is_empty() {
+        assert_eq!(plan.verdict, "incomplete", "what is not computed is said to be missing");
+        return;
+    }
+    let close = |found: f64, expected: f64| assert_relative_eq!(found, expected, max_relative = 1e-7);
+    // Slowest: 1.2 * 3300 uF and 1.05 * 22 kohm; 247.722 s to 50 V is kept as 250 s.
+    let (c, r, tool) = (1.2 * 3300e-6, 1.05 * 22e3, 1.05 * 1e3);
+    let times: Vec<f64> = plan.steps.iter().map(|step| step.end_s).collect();
+    assert_eq!(times, [0.0, 250.0, 310.0, 340.0, 400.0, 460.0, 460.0]);
+    assert_eq!(
+        plan.steps.iter().map(|step| step.until).collect::<Vec<_>>(),
+        [false, true, false, false, false, false, false]
+    );
+    let parallel = |a: f64, b: f64| a * b / (a + b);
+    let after_wait = 750.0 * (-250.0f64 / (r * c)).exp();
+    let after_meter = after_wait * (-60.0 / (parallel(r, 1.02 * 10e6) * c)).exp();
+    let after_tool = after_meter * (-30.0 / (parallel(r, tool) * c)).exp();
+    close(plan.steps[0].test_points[0].highest_v, 750.0);
+    close(plan.steps[1].test_points[0].highest_v, after_wait);
+    close(plan.steps[2].test_points[0].highest_v, after_meter);
+    close(plan.steps[3].test_points[0].highest_v, after_tool);
+    close(plan.steps[1].stored_at_start_j, 0.5 * c * 750.0 * 750.0);
+    close(plan.steps[2].stored_at_start_j, 0.5 * c * after_wait * after_wait);
+    let hold = plan.steps[2].hold.as_ref().expect("a hold point");
+    close(hold.below_v, 49.97);
+    close(hold.predicted_v, after_meter);
+    assert!(hold.shown_faults.contains(&"R1 open".to_string()));
+    let open = plan.steps[2].faults.iter().find(|fault| fault.fault == "R1 open").expect("a fault");
+    close(open.test_points[0].highest_v, 750.0 * (-60.0f64 / (1.02 * 10e6 * c)).exp());
+    // The tool's greatest current and power come with its lowest value.
+    let part = plan.steps[3].parts.iter().find(|part| part.id == "T1").expect("the tool bears something");
+    close(part.peak_current_a, after_meter / (0.95 * 1e3));
+    close(part.peak_power_w, after_meter * after_meter / (0.95 * 1e3));
+    assert!(part.energy_j < 0.5 * c * after_meter * after_meter);
+    assert!(plan.steps[6].touch && plan.steps[4].connect == ["ST1"] && plan.steps[5].disconnect == ["T1"]);
+    assert_eq!(plan.steps[2].measure, [["P", "N"].map(String::from)]);
+    assert!(plan.recovery[0].voltage_v < 1e-6 && plan.recovery[0].passes_touch_at_s.is_none());
 }

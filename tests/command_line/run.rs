@@ -88,3 +88,40 @@ pub fn met_but(old: &str, new: &str) -> String {
     assert!(MET.contains(old), "{old}");
     MET.replace(old, new)
 }
+
+/// A bank of three phases (invented), which this version reads and does not compute.
+pub const THREE_PHASES: &str = "\
+ebbvolt: 1
+tag: PF-02
+ambient: 40 °C
+touch_voltage: 50 V
+terminals: [A, B, C]
+charged_to: {ac_rms: 400 V, rise: 10 %, phases: 3, neutral: isolated}
+capacitors:
+  - {id: CB, kvar: {power: 50 kvar, voltage: 400 V, frequency: 50 Hz}, tolerance: 10 %, phases: 3, connection: delta}
+resistors:
+  - {id: RD, role: bleeder, value: 268 kohm, tolerance: 5 %, phases: 3, connection: delta}
+";
+
+/// `MET` with a procedure from locking out to a strap that stays on.
+pub fn met_with_procedure() -> String {
+    let parts = r"  - {id: M1, role: meter, value: 10 Mohm, tolerance: 2 %, across: [P, N], rating: {voltage: 1 kV}}
+  - id: T1
+    role: tool
+    value: 1 kohm
+    tolerance: 5 %
+    across: [P, N]
+    rating: {power: 50 W, full_to: 70 °C, zero_at: 155 °C, voltage: 1 kV}
+  - {id: ST1, role: strap, value: 10 mohm, tolerance: 50 %, across: [P, N]}
+limits:";
+    let procedure = r"procedure:
+  - {step: Lock out and isolate, for: 0 s}
+  - {step: Wait for the bleeder, until: {below: 50 V, at: [P, N]}}
+  - {step: Test the bus, connect: [M1], for: 60 s, measure: [[P, N]], hold: {below: 49.97 V, at: [P, N]}}
+  - {step: Apply the tool, connect: [T1], disconnect: [M1], for: 30 s, measure: [[P, N]], hold: {below: 5 V}}
+  - {step: Put the strap on, connect: [ST1], for: 60 s}
+  - {step: Take the tool off, disconnect: [T1], for: 60 s}
+  - {step: Work begins, touch: true, for: 0 s}
+";
+    met_but("limits:", parts) + procedure
+}

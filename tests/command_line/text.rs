@@ -1,6 +1,6 @@
 //! What every printed plan keeps to.
 
-use crate::run::{MET, demo_banks, program, run, run_with};
+use crate::run::{MET, demo_banks, met_with_procedure, program, run, run_with};
 use unicode_width::UnicodeWidthStr;
 
 /// Words that no output may use of a bank.
@@ -69,5 +69,45 @@ fn markdown_says_what_the_text_says() {
     for part in ["# PU-09", "> **WAIT**: 4 min 10 s after isolation", "| R1 | continuous power |", "**met**: site-rule"]
     {
         assert!(out.contains(part), "{part}: {out}");
+    }
+}
+
+#[test]
+fn a_procedure_is_printed_step_by_step_with_its_cautions_where_the_act_stands() {
+    let run = run_with(&["plan", "-"], met_with_procedure().as_bytes());
+    assert!(run.out.lines().all(|line| line.width() <= 80), "{}", run.out);
+    if run.status == 3 {
+        assert!(run.out.starts_with("*** INCOMPLETE ***\n"), "{}", run.out);
+        return;
+    }
+    assert_eq!((run.status, run.err.as_str()), (0, ""), "{}", run.out);
+    let text = run.out.split_whitespace().collect::<Vec<_>>().join(" ");
+    let mut from = 0;
+    for part in [
+        "Procedure: 7 steps, 7 min 40 s. Verdict: met.",
+        "THE STEPS",
+        "Step 2 of 7, from 0 s, for 4 min 10 s (found from the slowest case, rounded up)",
+        "Step 3 of 7, from 4 min 10 s, for 60 s",
+        "READ P - N: prove the instrument on a known source, test, prove it again.",
+        "Go on only if the reading at P - N is at most 49.9 V",
+        "A higher reading points to R1 open",
+        "WARNING Before T1 goes on",
+        "DO Apply the tool",
+        "WARNING Before ST1 goes on",
+        "DO Put the strap on",
+        "WARNING Hands may come near only after the test",
+        "On by now: ST1",
+        "DO Work begins",
+        "WHAT THE PARTS BEAR IN EACH STEP",
+        "STEPS WITH ONE PART FAILED",
+        "3 R1 open P - N",
+        "WHAT COMES BACK",
+        "Leave ST1 on for as long as anyone works",
+        "LIMITS",
+        "ISOLATION TO END OF PROCEDURE",
+    ] {
+        let at = text[from..].find(part);
+        assert!(at.is_some(), "{part}, in its place: {}", run.out);
+        from += at.unwrap_or(0);
     }
 }

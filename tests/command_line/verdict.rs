@@ -1,6 +1,6 @@
 //! The exit status is the verdict.
 
-use crate::run::{MET, met_but, program, run, run_with};
+use crate::run::{MET, THREE_PHASES, met_but, program, run, run_with};
 use std::io::Write;
 use std::process::Stdio;
 
@@ -46,15 +46,25 @@ fn a_wait_of_never_with_every_part_healthy_is_status_1() {
 
 #[test]
 fn a_part_that_is_not_computed_is_status_3_under_a_heading_that_says_so() {
-    for part in [
-        "procedure:\n  - {step: Lock out and isolate, for: 0 s}\n",
-        "sinks:\n  - {id: K1, kind: constant-current, value: 40 mA, across: [P, N], stops_below: 30 V}\n",
-        "hold_energy: 10 J\n",
+    let run = run_with(&["plan", "-"], THREE_PHASES.as_bytes());
+    assert_eq!((run.status, run.err.as_str()), (3, ""));
+    assert!(run.out.starts_with("*** INCOMPLETE ***\n"), "{}", run.out);
+    for part in ["NOT TO BE RELIED ON", "three-phase bank", "Verdict: INCOMPLETE."] {
+        assert!(run.out.contains(part), "{part}: {}", run.out);
+    }
+}
+
+#[test]
+fn a_part_is_either_computed_or_named_as_not_computed() {
+    for (key, part) in [
+        ("procedure", "procedure:\n  - {step: Lock out and isolate, for: 0 s}\n"),
+        ("sinks", "sinks:\n  - {id: K1, kind: constant-current, value: 1 mA, across: [P, N], stops_below: 30 V}\n"),
+        ("hold_energy", "hold_energy: 10 J\n"),
     ] {
         let run = run_with(&["plan", "-"], format!("{MET}{part}").as_bytes());
-        assert_eq!(run.status, 3, "{part}: {}", run.err);
-        assert!(run.out.starts_with("*** INCOMPLETE ***\n"), "{}", run.out);
-        assert!(run.out.contains("NOT TO BE RELIED ON"), "{}", run.out);
+        let incomplete = run.out.starts_with("*** INCOMPLETE ***\n");
+        assert_eq!(incomplete, run.status == 3, "{key}: {}", run.out);
+        assert!(!incomplete || run.out.contains(key), "{key}: {}", run.out);
     }
 }
 

@@ -1,13 +1,18 @@
 """Reads a bank file: the part of the format that the reference computes, with every number kept as an exact fraction.
 
 Written from the format's description alone; it shares nothing with the tool under test. It is no validator: it refuses
-what it can't compute (three phases, sinks, absorption, published limits by name) and lets other mistakes pass.
+what it can't compute (three phases, sinks, published limits by name) and lets other mistakes pass.
 """
+import json
+import os
 import re
 from dataclasses import dataclass, field
 from fractions import Fraction
 
 import yaml
+
+
+DIELECTRICS = os.path.join(os.path.dirname(os.path.abspath(__file__)), '..', '..', 'data', 'dielectrics.json')
 
 
 class Refused(Exception):
@@ -69,10 +74,23 @@ class Part:
     own: Fraction | None = None   # a capacitor's own voltage at isolation, from a to b
     series: int = 1
     parallel: int = 1
+    absorption: Fraction | None = None   # of a capacitor: the share that the standard test returns
+    slow: bool = False            # does its absorption have the branches of an electrolytic?
+    volt: Fraction | None = None  # of a supply (kind 'S', whose `value` is its series resistance)
 
     @property
     def loose(self):
         return self.low > 0 or self.high > 0
+
+
+@dataclass(frozen=True)
+class Step:
+    name: str
+    connect: tuple
+    disconnect: tuple
+    lasts: Fraction | None        # None: `until`
+    below: Fraction | None = None
+    at: tuple | None = None
 
 
 @dataclass(frozen=True)
@@ -93,6 +111,8 @@ class Bank:
     parts: list                   # resistors first, then capacitors, each in the file's order
     pairs: list                   # test points
     limits: list = field(default_factory=list)
+    extra: list = field(default_factory=list)     # what only a step connects: tools, straps, meters, then supplies
+    steps: list = field(default_factory=list)
 
     @property
     def loose(self):
@@ -114,6 +134,18 @@ def _tolerance(given):
 def _counts(given):
     given = given or {}
     return int(given.get('series', 1)), int(given.get('parallel', 1))
+
+
+def _absorption(given):
+    """A capacitor's absorption, by default its dielectric's typical one at the high end; and does it have slow branches?"""
+    kind = given.get('dielectric')
+    typical = None
+    if kind is not None:
+        with open(DIELECTRICS, encoding='utf-8') as file:
+            typical = next((x['absorption']['high'] for x in json.load(file) if x['id'] == kind), None)
+    share = given.get('absorption', typical)
+    share = None if share is None else quantity(share, 'share')
+    return share or None, kind == 'aluminium-electrolytic'
 
 
 def _limit(k, given):
@@ -149,19 +181,22 @@ def read(path):
     else:
         raise Refused(f'charged_to: {charged}: not in the subset')
 
-    parts = []
+    parts, extra = [], []
     for given in doc.get('resistors') or []:
-        if given['role'] in ('tool', 'strap', 'meter'):
-            continue                                      # connected by a step only; no figure here has steps
         if 'phases' in given:
             raise Refused('phases: not in the subset')
         series, parallel = _counts(given.get('array'))
         a, b = given.get('across', terminals)
-        parts.append(Part(given['id'], 'R', given['role'], a, b,
+        by_step = given['role'] in ('tool', 'strap', 'meter')
+        (extra if by_step else parts).append(Part(given['id'], 'R', given['role'], a, b,
                           quantity(given['value'], 'resistance') * series / parallel,
                           *_tolerance(given.get('tolerance')), None, series, parallel))
+    for given in doc.get('supplies') or []:
+        a, b = given.get('across', terminals)
+        extra.append(Part(given['id'], 'S', 'supply', a, b, quantity(given['series'], 'resistance'),
+                          *_tolerance(given.get('tolerance')), volt=quantity(given['voltage'], 'voltage')))
     for given in doc['capacitors']:
-        for key in ('kvar', 'phases', 'dielectric', 'absorption'):
+        for key in ('kvar', 'phases'):
             if key in given:
                 raise Refused(f'{key}: not in the subset')
         series, parallel = _counts(given.get('units'))
@@ -170,7 +205,7 @@ def read(path):
         own = quantity(given['charged_to'], 'voltage') if 'charged_to' in given else None
         parts.append(Part(given['id'], 'C', 'capacitor', a, b,
                           quantity(given['value'], 'capacitance') * parallel / series,
-                          *_tolerance(given.get('tolerance')), own, series, parallel))
+                          *_tolerance(given.get('tolerance')), own, series, parallel, *_absorption(given)))
 
     if 'test_points' in doc:
         pairs = [tuple(p) for p in doc['test_points']]
@@ -187,4 +222,14 @@ def read(path):
     for part in parts:
         if part.a == part.b:
             raise Refused(f'{part.id} is across one node')
-    return Bank(doc['tag'], quantity(doc['touch_voltage'], 'voltage'), terminals, nominal, highest, parts, pairs, limits)
+    steps = []
+    for given in doc.get('procedure') or []:
+        names = [tuple(given.get(key) or ()) for key in ('connect', 'disconnect')]
+        if 'until' in given:
+            until = given['until']
+            steps.append(Step(given['step'], *names, None, quantity(until['below'], 'voltage'),
+                              tuple(until.get('at', terminals))))
+        else:
+            steps.append(Step(given['step'], *names, quantity(given.get('for', '0 s'), 'time')))
+    return Bank(doc['tag'], quantity(doc['touch_voltage'], 'voltage'), terminals, nominal, highest, parts, pairs, limits,
+                extra, steps)

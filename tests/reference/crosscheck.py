@@ -15,8 +15,8 @@ STEPS = 4000       # on the grid; a pair of crossings closer than this is not se
 
 
 def nominal_waits(bank, rates):
-    """A wait for each test point (None: never), or None for a bank too stiff for this."""
-    if not rates or rates[-1] > STIFF * rates[0]:
+    """A wait for each test point (None: never), or None for a bank too stiff for this, or with absorption."""
+    if any(p.absorption for p in bank.parts) or not rates or rates[-1] > STIFF * rates[0]:
         return None
     for kind in 'RC':
         values = [p.value for p in bank.parts if p.kind == kind]

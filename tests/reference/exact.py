@@ -17,7 +17,7 @@ import mpmath as mp
 
 from bank import Refused
 from eigen import symmetric
-from network import Holding, Pieces
+from network import Branch, Holding, Pieces
 
 DIGITS = 120
 NOISE = 70          # a figure under 1e-NOISE of its own scale is zero by structure
@@ -86,18 +86,20 @@ class Exact:
         t = self.t = topology
         bank = t.bank
         value = [number(p.value) * f for p, f in zip(bank.parts, factors)]
-        self.start_c = [(i, j, value[k]) for k, i, j, _ in t.capacitors]
+        self.start_c = [(i, j, value[k]) for k, i, j, _ in t.mains]
         self.run_c = [(i, j, value[k] * number(m)) for k, i, j, m in t.capacitors]
         start_r = [(i, j, 1 / (value[k] * number(m))) for k, i, j, m in t.start_r]
-        self.run_r = [(i, j, 1 / (value[k] * number(m))) for k, i, j, m in t.run_r]
+        self.run_r = [(i, j, value[k] * m.per_value if isinstance(m, Branch) else 1 / (value[k] * number(m)))
+                      for k, i, j, m in t.run_r]
 
         volt = number(volt)
         v = held(t.holding, t.n, start_r, self.start_c)
         self.u0 = [volt * (v[i] - v[j]) for i, j, _ in self.start_c]
         if t.scenario.own:
-            for c, (k, *_) in enumerate(t.capacitors):
+            for c, (k, *_) in enumerate(t.mains):
                 if bank.parts[k].own is not None:
                     self.u0[c] = number(bank.parts[k].own)
+        self.u0 = [self.u0[c] for c in t.main_of]
         self.scale = max([abs(x) for x in self.u0] + [mp.mpf(1) / 10**30])
         start = {i: mp.fsum(s * self.u0[c] for c, s in path) for i, path in t.tree.items()}
         for c in t.chords:

@@ -5,7 +5,7 @@ the fastest rate to the slowest, so search.py goes to the exact route where that
 """
 import numpy as np
 
-from network import Holding
+from network import Branch, Holding
 
 
 def _stamps(n, edges):
@@ -27,7 +27,11 @@ class Fast:
         t = self.t
         value = np.ones((len(factors), len(edges)))
         for c, (k, _, _, m) in enumerate(edges):
-            x = factors[:, k] * float(self.parts[k].value) * (float(m) if with_change else 1.0)
+            x = factors[:, k] * float(self.parts[k].value)
+            if isinstance(m, Branch):
+                value[:, c] = x * float(m.per_value)
+                continue
+            x = x * (float(m) if with_change else 1.0)
             value[:, c] = 1 / x if resistors else x
         return value, np.tensordot(value, _stamps(t.n, edges), 1)
 
@@ -50,12 +54,12 @@ class Fast:
     def circuits(self, factors):
         """`factors`: points by parts. Returns the modes of each, for `terms` and `energy`."""
         t, count = self.t, len(factors)
-        _, c0 = self._laplacian(t.capacitors, factors, False, False)
+        _, c0 = self._laplacian(t.mains, factors, False, False)
         cv, c = self._laplacian(t.capacitors, factors, False, True)
         _, g0 = self._laplacian(t.start_r, factors, True, True)
         _, g = self._laplacian(t.run_r, factors, True, True)
         v = self.volt * self._held(t.holding, g0, c0)
-        u0 = np.array([v[:, i] - v[:, j] for _, i, j, _ in t.capacitors]).T.reshape(count, -1)
+        u0 = np.array([v[:, i] - v[:, j] for _, i, j, _ in t.mains]).T.reshape(count, -1)[:, t.main_of]
         charge = np.zeros((count, t.n))
         for k, (part, i, j, _) in enumerate(t.capacitors):
             if t.scenario.own and self.parts[part].own is not None:

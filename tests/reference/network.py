@@ -10,6 +10,14 @@ from fractions import Fraction
 OPENING = ('bleeder', 'balancing', 'series')
 
 
+class Branch:
+    """Stands where a resistor's factor does: an absorption branch, whose conductance is `per_value` times its
+    capacitor's value."""
+
+    def __init__(self, per_value):
+        self.per_value = per_value
+
+
 @dataclass(frozen=True)
 class Scenario:
     """One circuit before isolation (`start`) and one after (`run`). The maps give a factor on a part's value by its
@@ -102,12 +110,23 @@ class Topology:
         self.n = len(names)
         self.top, self.ref = (self.index[t] for t in bank.terminals)
         start, run = dict(scenario.start), dict(scenario.run)
-        self.capacitors = self._edges('C', run)
+        self.mains = self._edges('C', run)
         self.start_r, self.run_r = self._edges('R', start), self._edges('R', run)
+        # Absorption: an inner node for each branch, r to the capacitor's first node and c to its second.
+        self.outer, self.capacitors, self.main_of = self.n, list(self.mains), list(range(len(self.mains)))
+        for c, (k, i, j, m) in enumerate(self.mains):
+            if bank.parts[k].absorption:
+                import absorption
+                share = absorption.share(bank.parts[k]) * m.numerator / m.denominator
+                for tau in absorption.times(bank.parts[k]):
+                    self.capacitors.append((k, self.n, j, share))
+                    self.run_r.append((k, i, self.n, Branch(share / tau)))
+                    self.main_of.append(c)            # a branch starts at its capacitor's voltage
+                    self.n += 1
         ends = lambda edges: [(i, j) for _, i, j, _ in edges]
 
         # Before isolation.
-        self.holding = Holding(self.n, self.start_r, self.capacitors, self.top, self.ref)
+        self.holding = Holding(self.n, self.start_r, self.mains, self.top, self.ref)
 
         # After it. Capacitive pieces: inside one, potentials relative to its first node are the state; between them,
         # the currents of the resistors balance at every moment (a node without a capacitor is a piece of its own).

@@ -50,12 +50,14 @@ import yaml
 import crosscheck
 import exact
 import laplace
+import steps
 from bank import Refused, read
 from network import Scenario, Topology, scenarios
 from search import Worst, figure_value, worst
 
 HERE = os.path.dirname(os.path.abspath(__file__))
 SHOWN = 25
+PROCEDURE = -2
 mp.mp.dps = exact.DIGITS
 
 
@@ -166,11 +168,13 @@ def nominal_block(bank):
 
 
 def task(job):
-    """One scenario of one bank; -1 is the nominal block. Errors come back as text, so that one bad file names itself."""
+    """One scenario of one bank; -1 is the nominal block, -2 the procedure. Errors come back as text, so that one bad file names itself."""
     path, k = job
     mp.mp.dps = exact.DIGITS
     try:
         bank = read(path)
+        if k == PROCEDURE:
+            return steps.compute(bank, show)
         if k < 0:
             return nominal_block(bank)
         return worst(bank, scenarios(bank)[k], figures_of(bank, k == 0), bank.highest)
@@ -179,7 +183,7 @@ def task(job):
 
 
 def jobs_of(path):
-    return [(path, k) for k in range(-1, len(scenarios(read(path))))]
+    return [(path, k) for k in range(PROCEDURE, len(scenarios(read(path))))]
 
 
 def _side(got, names, bank):
@@ -210,7 +214,7 @@ def assemble(path, results):
     for r in results:
         if isinstance(r, Refused):
             raise Refused(f'{path}: {r}')
-    base, healthy, faults = results[0], results[1], results[2:]
+    procedure, base, healthy, faults = results[0], results[1], results[2], results[3:]
     cases = scenarios(bank)[1:]
     energy, charge = healthy[('energy', None, 0)], healthy[('charge', bank.terminals, 0)]
     out = {
@@ -251,6 +255,7 @@ def assemble(path, results):
                 'id': limit.id, 'across': list(names), 'within_s': show(exact.number(limit.within)),
                 'met': met(limit, names, healthy), 'single_fault_met': all(met(limit, names, got) for got in faults),
                 'voltage_v': show(at['voltage']), 'charge_c': show(at['charge']), 'energy_j': show(at['energy'])})
+    out.update(procedure or {})
     return out
 
 

@@ -37,11 +37,11 @@ pub(super) fn footer(plan: &Plan) -> Vec<Block> {
     let text = "Times run from isolation. Times, voltages, currents, energies and powers are rounded up, allowed values \
                 and margins down. Local electrical codes, the equipment maker's instructions and qualified persons \
                 decide; this plan overrides none of them.";
-    vec![
-        Block::Section("About this plan"),
-        Block::Paragraph(text.into()),
-        Block::Paragraph(format!("Worst cases: {}", plan.worst_case_search)),
-        Block::Paragraph(format!("ebbvolt {}; SHA-256 of the input:", plan.ebbvolt.version)),
-        Block::Formula(plan.bank.input_sha256.clone()),
-    ]
+    let mut blocks = vec![Block::Section("About this plan"), Block::Paragraph(text.into())];
+    if !plan.worst_case_search.is_empty() {
+        blocks.push(Block::Paragraph(format!("Worst cases: {}", plan.worst_case_search)));
+    }
+    blocks.push(Block::Paragraph(format!("ebbvolt {}; SHA-256 of the input:", plan.ebbvolt.version)));
+    blocks.push(Block::Formula(plan.bank.input_sha256.clone()));
+    blocks
 }

@@ -3,6 +3,7 @@
 mod closing;
 mod limits;
 mod ratings;
+mod steps;
 mod summary;
 mod waits;
 mod working;
@@ -14,6 +15,7 @@ use crate::plan::Plan;
 pub(super) fn document(plan: &Plan) -> Vec<Block> {
     let mut blocks = summary::blocks(plan);
     blocks.extend(waits::blocks(plan));
+    blocks.extend(steps::blocks(plan));
     blocks.extend(limits::blocks(plan));
     blocks.extend(ratings::blocks(plan));
     blocks.extend(closing::findings(plan));

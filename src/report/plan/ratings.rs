@@ -1,7 +1,7 @@
 //! Ratings: what was found, what is allowed and the margin between them; and what the resistors bear.
 
 use super::super::block::{Block, Grid, Side};
-use super::super::words::{down, glued, list, typed, up};
+use super::super::words::{down, glued, list, typed, up, whole};
 use crate::plan::{CapacitorResult, Check, Plan, ResistorResult, Verdict};
 use crate::quantity::{CELSIUS_ZERO_K, Direction, Energy, Power, Quantity, Ratio, Temperature, Voltage, show};
 
@@ -15,18 +15,31 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
         blocks.push(Block::List(remarks));
     }
     if plan.resistors.iter().any(|r| is_loaded(&r)) {
-        blocks.push(Block::Section("Resistors, figures of one element"));
+        blocks.push(Block::Section(match plan.steps.last() {
+            Some(_) => "Resistors, one element, isolation to end of procedure",
+            None => "Resistors, one element, isolation to infinite time",
+        }));
         blocks.push(Block::Table(loads(plan)));
-        blocks.push(Block::Paragraph(format!(
-            "Air at the resistors: {}. Peaks and energy count from isolation on.",
-            up(plan.ambient)
-        )));
+        blocks.push(Block::Paragraph(counted(plan)));
     }
     let idle: Vec<String> = plan.resistors.iter().filter(|r| !is_loaded(r)).map(|r| r.id.clone()).collect();
     if !idle.is_empty() {
-        blocks.push(Block::Paragraph(format!("Connected by a step only, so without figures here: {}.", list(&idle))));
+        blocks.push(Block::Paragraph(format!(
+            "{}, so without figures here: {}.",
+            if plan.steps.is_empty() { "Connected by a step only" } else { "Connected by no step" },
+            list(&idle)
+        )));
     }
     blocks
+}
+
+/// From when to when peaks and energies of the resistors count.
+fn counted(plan: &Plan) -> String {
+    let until = plan.steps.last().map_or_else(
+        || "to infinite time, nobody doing anything".into(),
+        |last| format!("to the end of the last step at {}", whole(last.end)),
+    );
+    format!("Air at the resistors: {}. Peaks and energy count from isolation {until}.", up(plan.ambient))
 }
 
 fn checks(plan: &Plan) -> Grid {

@@ -2,6 +2,7 @@
 
 use super::super::block::{Block, Labelled};
 use super::super::words::{count, glued, list, pair, time, typed, up, whole};
+use super::steps;
 use crate::plan::{FaultWait, LimitResult, Plan, Stored, Verdict, Wait};
 use crate::quantity::{Quantity, keepable};
 
@@ -120,7 +121,7 @@ fn wait(plan: &Plan) -> Labelled {
     let never: Vec<&Wait> = plan.waits.iter().filter(|w| w.slowest.is_none()).collect();
     let longest = longest(plan.waits.iter(), |w: &Wait| w.slowest.map(Quantity::si));
     match (never.first(), longest) {
-        (None, None) => text.push("not computed by this version.".into()),
+        (None, None) => text.push("The wait is not computed by this version.".into()),
         (None, Some(governing)) => text.extend(keep(plan, governing)),
         (Some(first), _) => text.extend(stuck(plan, first, &never, longest)),
     }
@@ -229,7 +230,8 @@ fn checks(plan: &Plan) -> String {
     let ratings = if verdicts.is_empty() { String::new() } else { format!(" Ratings: {ratings}.") };
     let never = plan.waits.iter().filter(|w| w.slowest.is_none()).count();
     let never = if never == 0 { String::new() } else { format!(" Waits: {never} NEVER.") };
-    format!("{limits}{ratings}{never} Verdict: {}.", verdict(plan.verdict))
+    let procedure = steps::total(plan).map_or_else(String::new, |total| format!(" Procedure: {total}."));
+    format!("{limits}{ratings}{never}{procedure} Verdict: {}.", verdict(plan.verdict))
 }
 
 /// `2 met, 1 NOT MET`, without what there is none of.
