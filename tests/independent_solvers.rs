@@ -25,7 +25,7 @@ impl Descriptor {
         // Node 0 is the reference; the others are rows 0.. of the matrices.
         let n = network.nodes - 1;
         let (mut c, mut g) = (DMatrix::zeros(n, n), DMatrix::zeros(n, n));
-        let mut stamp = |m: &mut DMatrix<f64>, e: &Edge, value: f64| {
+        let stamp = |m: &mut DMatrix<f64>, e: &Edge, value: f64| {
             for (i, j, sign) in [(e.a, e.a, 1.0), (e.b, e.b, 1.0), (e.a, e.b, -1.0), (e.b, e.a, -1.0)] {
                 if i > 0 && j > 0 {
                     m[(i - 1, j - 1)] += sign * value;

@@ -70,7 +70,7 @@ fn straps(check: &StepCheck, stage: usize, step: &StepResult, findings: &mut Fin
         let energy = check.healthy.worst(StepFigure::ReadyEnergy { stage });
         let current = Current::from_si(check.healthy.worst(StepFigure::Current { stage, resistor }));
         let (allowed, given) = strap_energy(check, across);
-        if across > 0.0 && !(energy <= allowed.si()) {
+        if across > 0.0 && Verdict::at_most(energy, allowed.si()) != Verdict::Met {
             findings.add(
                 Severity::Danger,
                 "strap-on-energy",

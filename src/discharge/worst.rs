@@ -232,10 +232,10 @@ impl<O: Objective> Search<'_, O> {
                 self.climb(index, &mut worst, &way)?;
             }
             // Next round: what lies inside, and what now pays to leave its edge.
-            for p in 0..count {
+            for (p, goes_on) in along.iter_mut().enumerate() {
                 let range = &self.parameters()[p];
                 let inside = worst.point[p] > range.low && worst.point[p] < range.high;
-                along[p] = inside || self.value(index, &self.moved(&worst.point, p, 1e-3))? > worst.value;
+                *goes_on = inside || self.value(index, &self.moved(&worst.point, p, 1e-3))? > worst.value;
             }
             if worst.value.is_infinite() || worst.value <= start.value * (1.0 + NOTABLE) {
                 break;
@@ -246,6 +246,7 @@ impl<O: Objective> Search<'_, O> {
 
     /// The best point on the line through the best point so far along `along`: a scan, then parabolas and golden
     /// sections around the best of it (Brent 1973, chapter 5).
+    #[allow(clippy::float_cmp)] // Whether two of the points are the very same one.
     fn climb(&self, index: usize, worst: &mut Worst, along: &[f64]) -> Result<(), CircuitError> {
         let (low, high) = self.reach(&worst.point, along);
         if high - low <= 0.0 {

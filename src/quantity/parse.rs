@@ -384,7 +384,7 @@ fn split_number(text: &str) -> Option<(&str, &str)> {
 /// point and the multiplier, as in `4k7`, `R47`, `100R`, `4n7`. The unit may follow.
 fn letter_code(text: &str, kind: Kind) -> Option<f64> {
     let (letters, units): (&[Scale], &[&str]) = match kind {
-        Kind::Resistance => (&[("R", 0), ("k", 3), ("K", 3), ("M", 6), ("G", 9), ("T", 12), ("L", -3)], &OHM[..]),
+        Kind::Resistance => (&[("R", 0), ("k", 3), ("K", 3), ("M", 6), ("G", 9), ("T", 12), ("L", -3)], OHM),
         Kind::Capacitance => {
             (&[("p", -12), ("n", -9), ("u", -6), ("\u{b5}", -6), ("\u{3bc}", -6), ("m", -3), ("F", 0)], &["F"])
         }

@@ -41,7 +41,7 @@ impl Rounded {
         let away = (direction == Direction::Up) != negative;
         let drop = u32::try_from(last - exponent).unwrap_or(u32::MAX);
         let unit = 10u128.checked_pow(drop).unwrap_or(u128::MAX);
-        let kept = digits / unit + u128::from(away && digits % unit != 0);
+        let kept = digits / unit + u128::from(away && !digits.is_multiple_of(unit));
         Rounded { negative: negative && kept != 0, digits: kept, exponent: last }
     }
 
@@ -49,7 +49,8 @@ impl Rounded {
     fn significant(value: f64, count: i32, direction: Direction) -> Self {
         let rounded = Self::at(value, leading_exponent(value) - count + 1, direction);
         // 999.1 rounded up to three digits is 1000: one digit too many.
-        let carried = rounded.digits.checked_ilog10().is_some_and(|n| n as i32 >= count) && rounded.digits % 10 == 0;
+        let carried =
+            rounded.digits.checked_ilog10().is_some_and(|n| n as i32 >= count) && rounded.digits.is_multiple_of(10);
         if carried {
             Rounded { digits: rounded.digits / 10, exponent: rounded.exponent + 1, ..rounded }
         } else {
@@ -167,11 +168,11 @@ pub fn duration(time: Time, direction: Direction) -> String {
     if s < 120.0 {
         return show(time, direction);
     }
-    // (up to this many seconds, coarse unit, fine unit)
-    let steps: [(f64, (&str, u32), (&str, u32)); 2] =
-        [(7200.0, ("min", 60), ("s", 1)), (172_800.0, ("h", 3600), ("min", 60))];
-    let (coarse, fine) =
-        steps.iter().find(|(up_to, ..)| s < *up_to).map_or((("d", 86_400), ("h", 3600)), |(_, c, f)| (*c, *f));
+    let (coarse, fine) = match s {
+        s if s < 7200.0 => (("min", 60u32), ("s", 1u32)),
+        s if s < 172_800.0 => (("h", 3600), ("min", 60)),
+        _ => (("d", 86_400), ("h", 3600)),
+    };
     let count = units(s / f64::from(fine.1), direction);
     let per = u128::from(coarse.1 / fine.1);
     let (whole, rest) = (count / per, count % per);

@@ -93,7 +93,7 @@ class Exact:
                       for k, i, j, m in t.run_r]
 
         volt = number(volt)
-        v = held(t.holding, t.n, start_r, self.start_c)
+        v = held(t.holding, t.n, start_r, [(i, j, x * y) for (i, j, x), y in zip(self.start_c, t.whole)])
         self.u0 = [volt * (v[i] - v[j]) for i, j, _ in self.start_c]
         if t.scenario.own:
             for c, (k, *_) in enumerate(t.mains):

@@ -54,7 +54,7 @@ class Fast:
     def circuits(self, factors):
         """`factors`: points by parts. Returns the modes of each, for `terms` and `energy`."""
         t, count = self.t, len(factors)
-        _, c0 = self._laplacian(t.mains, factors, False, False)
+        _, c0 = self._laplacian([(*e[:3], x) for e, x in zip(t.mains, t.whole)], factors, False, True)
         cv, c = self._laplacian(t.capacitors, factors, False, True)
         _, g0 = self._laplacian(t.start_r, factors, True, True)
         _, g = self._laplacian(t.run_r, factors, True, True)

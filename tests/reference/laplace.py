@@ -21,7 +21,7 @@ def gap(bank, names, time):
     c_edges = [(i, j, value[k] * number(m)) for k, i, j, m in t.capacitors]
     r_edges = [(i, j, 1 / value[k]) for k, i, j, _ in t.start_r]
     with mp.workdps(2 * TINY + 20):
-        g, c = laplacian(t.outer, r_edges), laplacian(t.outer, c_edges[:len(t.mains)])
+        g, c = laplacian(t.outer, r_edges), laplacian(t.outer, [(i, j, x * w) for (i, j, x), w in zip(c_edges, t.whole)])
         a = [[x + y / mp.mpf(10)**TINY for x, y in zip(*rows)] for rows in zip(g, c)]
         others = [i for i in range(t.outer) if i not in (t.top, t.ref)]
         v = [mp.mpf(0)] * t.outer

@@ -113,11 +113,15 @@ class Topology:
         self.mains = self._edges('C', run)
         self.start_r, self.run_r = self._edges('R', start), self._edges('R', run)
         # Absorption: an inner node for each branch, r to the capacitor's first node and c to its second.
+        # Charged long enough, a floating piece divides by all of its capacitance, the branches' too: its charge is zero.
         self.outer, self.capacitors, self.main_of = self.n, list(self.mains), list(range(len(self.mains)))
+        self.whole = [1] * len(self.mains)
         for c, (k, i, j, m) in enumerate(self.mains):
             if bank.parts[k].absorption:
                 import absorption
-                share = absorption.share(bank.parts[k]) * m.numerator / m.denominator
+                share = absorption.share(bank.parts[k])
+                self.whole[c] = 1 + len(absorption.times(bank.parts[k])) * share
+                share = share * m.numerator / m.denominator
                 for tau in absorption.times(bank.parts[k]):
                     self.capacitors.append((k, self.n, j, share))
                     self.run_r.append((k, i, self.n, Branch(share / tau)))

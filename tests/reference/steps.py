@@ -4,7 +4,8 @@ Readings of the bank file's description, where its words leave room:
 - A step that connects a supply: each of the three trials starts as if isolated from that voltage across the terminals,
   own voltages of capacitors dropped, absorption fully charged; the step's actual start is not among them.
 - A supply's figures are its `series` resistance's: that current, the power and energy in that resistance.
-- A capacitive group that no resistor joins to a terminal divides by the main capacitances; absorption is charged to that.
+- A capacitive group that no resistor joins to a terminal divides by capacitance with all absorption branches in it, as
+  long charging from empty would leave it: its net charge is zero.
 - A step's times are found on the healthy bank; the voltage of a test point at a step's end is with that step's parts.
 """
 import itertools
@@ -18,6 +19,8 @@ from bank import Refused
 from exact import held, last_crossing, number
 from network import Holding, Pieces, Scenario, Topology
 from phase import Graph, Phase, at, peak, squared
+from search import _newton
+from steps_fast import Quick
 
 FLOOR = mp.mpf(10)**-15      # a figure under this share of what the bank could show at isolation is given as 0
 
@@ -44,11 +47,13 @@ class Plan:
         self.outer = len(names)                     # nodes from here on are inside capacitors
         ends = lambda k: (self.index[self.parts[k].a], self.index[self.parts[k].b])
         self.main = [(k, *ends(k)) for k, p in enumerate(self.parts) if p.kind == 'C']
+        self.whole = [1] * len(self.main)           # C with all its branches, over C
         self.branches = []                          # (capacitor, its node, inner node, other node, share, tau)
         n = self.outer
         for c, (k, i, j) in enumerate(self.main):
             if self.parts[k].absorption:
                 x = absorption.share(self.parts[k])
+                self.whole[c] = 1 + len(absorption.times(self.parts[k])) * x
                 for tau in absorption.times(self.parts[k]):
                     self.branches.append((c, i, n, j, x, tau))
                     n += 1
@@ -113,7 +118,8 @@ class Point:
         self.caps += [(x, j, v[plan.main[c][0]] * s) for c, _, x, j, s, _ in plan.branches]
         self.inner = [(i, x, v[plan.main[c][0]] * s / tau, mp.mpf(0)) for c, i, x, _, s, tau in plan.branches]
         links = [(plan.index[plan.parts[k].a], plan.index[plan.parts[k].b], 1 / v[k]) for k in plan.always]
-        self.hold = held(plan.holding, plan.outer, links, self.caps[:len(plan.main)])
+        whole = [(i, j, v[k] * plan.whole[c]) for c, (k, i, j) in enumerate(plan.main)]
+        self.hold = held(plan.holding, plan.outer, links, whole)
         self.start = self.charged(self.volt, True)
         self.scale = max(abs(x) for x in self.u0)
         self.runs, self.states, self.lasts = [], [self.start], []
@@ -209,7 +215,7 @@ class Box:
     def __init__(self, plan):
         self.plan, self.d = plan, len(plan.loose)
         self.corners = list(itertools.product((0, 1), repeat=self.d))
-        self.points, self.lasts = {}, []
+        self.points, self.lasts, self.volt = {}, [], number(plan.bank.highest)
 
     def point(self, u):
         u = tuple(u)
@@ -220,16 +226,83 @@ class Box:
             p.finish(k, x)
         return p
 
-    def worst(self, what):
-        """(value, extra)"""
-        best = None
-        for u in self.corners:
-            got = figure(self.point(u), what)
-            if best is None or (got[0] is not None and got[0] > best[0]):
-                best = got
-            if got[0] is None:
-                return got
-        return best
+    def worst(self, whats):
+        """{figure: (value, extra, inside)}: all corners exactly; in doubles a search of the inside from the best corner
+        and the best of random points; what it finds above the corners is polished exactly. Last, the exact slopes at a
+        corner that won have to point out of the box."""
+        best, values = {}, {}
+        for what in whats:
+            got = [figure(self.point(u), what) for u in self.corners]
+            values[what] = [x for x, _ in got]
+            k = next((i for i, (x, _) in enumerate(got) if x is None),
+                     None if not got else max(range(len(got)), key=lambda i: mp.mpf(-1) if got[i][0] is None else got[i][0]))
+            best[what] = (*got[k], None, self.corners[k])
+        if not self.d:
+            return {w: b[:3] for w, b in best.items()}
+        quick = Quick(self.plan, self.lasts)
+        rng = np.random.default_rng(20261201)
+        cloud = rng.random((20 * self.d + 20, self.d))
+        half = cloud[len(cloud) // 2:]                   # of these, most parameters go to an end
+        half[:] = np.where(rng.random(half.shape) < 0.6, np.round(half), half)
+        known = {}
+
+        def ask(u, what):
+            u = tuple(float(x) for x in u)
+            if u not in known:
+                known[u] = quick.point(u)
+            return known[u].value_of(what)
+
+        todo = [w for w in whats if best[w][0] is not None and best[w][0] > self.tiny(w)]
+        found = {}
+        with np.errstate(all='ignore'):
+            for what in todo:
+                top = best[what][3]
+                seen = [(ask(u, what), tuple(u)) for u in cloud]
+                for value, u in [(ask(top, what), top), max(seen)]:
+                    step = 0.5
+                    while step >= 2.0**-10:
+                        near = [tuple(min(1.0, max(0.0, x + s * step)) if i == k else x for i, x in enumerate(u))
+                                for k in range(self.d) for s in (-1, 1)]
+                        new = max((ask(w, what), w) for w in near)
+                        if new[0] > value * (1 + 1e-12):
+                            value, u = new
+                        else:
+                            step /= 2
+                    found.setdefault(what, []).append((value, u))
+                known_corner = ask(top, what)
+                for value, u in found[what]:
+                    free = [i for i, x in enumerate(u) if 0 < x < 1]
+                    if not free or value <= known_corner * (1 + 1e-13):
+                        if not free and value > known_corner * (1 - 1e-6):
+                            continue                     # a corner: all were tried exactly
+                        continue
+                    w = _newton(lambda v: figure(self.point(v), what)[0], [mp.mpf(x) for x in u], free)
+                    got = figure(self.point(w), what)
+                    if got[0] > best[what][0] * (1 + mp.mpf(10)**-40):
+                        best[what] = (*got, [mp.nstr(x, 17) for x in w], tuple(w))
+        h = mp.mpf(10)**-24
+        for what in todo:
+            value, _, inside, u = best[what]
+            if inside is None:
+                for k in range(self.d):
+                    w = [mp.mpf(x) for x in u]
+                    w[k] += h if w[k] == 0 else -h
+                    if figure(self.point(w), what)[0] > value * (1 + h * mp.mpf(10)**-12):
+                        raise ArithmeticError(f'{what}: greater inside the box than at its best corner {u}')
+        self.points = {u: p for u, p in self.points.items() if u in self.corners}
+        return {w: b[:3] for w, b in best.items()}
+
+    def tiny(self, what):
+        """Under this the corners alone are searched."""
+        kind, k, which = what
+        if kind == 'until':
+            return mp.mpf(0)
+        part = self.plan.parts[which]
+        v = self.volt / mp.mpf(10)**9
+        if kind in ('voltage', 'recovery'):
+            return v
+        r = number(part.value)
+        return v / r if kind == 'current' else v * v / r * (1 if kind == 'power' else number(self.lasts[k]))
 
     def solve(self):
         """Durations of all steps, and (raw until) of those that have one."""
@@ -237,7 +310,8 @@ class Box:
         for k, step in enumerate(self.plan.bank.steps):
             x = None
             if step.lasts is None:
-                x, _ = self.worst(('until', k, None))
+                what = ('until', k, None)
+                x = self.worst([what])[what][0]
                 if x is None:
                     raise Refused(f'step {k + 1}: its until never comes')
             raw.append(x)
@@ -257,7 +331,7 @@ def compute(bank, show):
     v_scale = max([box.point(box.corners[0]).scale, number(bank.highest)] +
                   [number(p.volt) for p in bank.extra if p.kind == 'S'])
     cut = lambda x: x if x is None or x > FLOOR * v_scale else mp.mpf(0)
-    got = {what: box.worst(what) for what in figures_of(plan)}
+    got = box.worst(figures_of(plan))
     out, start = [], Fraction(0)
     for k, step in enumerate(bank.steps):
         end = start + box.lasts[k]
@@ -266,6 +340,10 @@ def compute(bank, show):
             row['until_s'] = show(raw[k])
         row['test_points'] = [{'across': list(names), 'nominal_v': show(cut(figure(middle, ('voltage', k, p))[0])),
                                'highest_v': show(cut(got[('voltage', k, p)][0]))} for p, names in enumerate(bank.pairs)]
+        inside = [w[0] + ' ' + (plan.parts[w[2]].id if w[0] != 'voltage' else '-'.join(bank.pairs[w[2]]))
+                  for w, (_, _, u) in got.items() if u and w[1] == k and w[0] != 'recovery']
+        if inside:
+            row['inside'] = inside
         row['parts'] = [{'id': plan.parts[x].id, 'peak_current_a': show(got[('current', k, x)][0]),
                          'peak_power_w': show(got[('power', k, x)][0]),
                          'energy_j': show(got[('energy', k, x)][0])} for x in plan.connected[k]]
@@ -273,6 +351,6 @@ def compute(bank, show):
         start = end
     recovery = []
     for p, names in enumerate(bank.pairs):
-        x, t = got[('recovery', 0, p)]
+        x, t, _ = got[('recovery', 0, p)]
         recovery.append({'across': list(names), 'voltage_v': show(cut(x)), 'at_s': show(t)})
     return {'steps': out, 'recovery': recovery}
