@@ -284,7 +284,7 @@ fn short(voltage: Voltage) -> String {
 }
 
 fn limit_findings(result: &LimitResult, findings: &mut Findings) {
-    let pair = result.across.join("-");
+    let pair = result.across.join(" - ");
     let holds = result.holds_from.map_or_else(
         || "it never does by itself".to_string(),
         |t| format!("it does from {} on", duration(t, Direction::Up)),

@@ -171,7 +171,7 @@ impl<'a> Procedure<'a> {
         let there = |r: &usize| match model.resistors[*r].kind {
             PartKind::Fixed => true,
             PartKind::Switched => self.stages[stage].connected.contains(r),
-            PartKind::Absorbing(_) => false,
+            PartKind::Absorbing(_) | PartKind::With(_) => false,
         };
         (0..model.resistors.len()).filter(there).collect()
     }

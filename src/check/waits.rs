@@ -19,6 +19,9 @@ pub struct Wait {
     /// The longest over the tolerance box at the highest voltage; `None` is never.
     #[serde(rename = "slowest_s", serialize_with = "si_or_null")]
     pub slowest: Option<Time>,
+    /// The wait to keep: the longer of the two; `None` is never.
+    #[serde(rename = "keep_s", serialize_with = "si_or_null")]
+    pub keep: Option<Time>,
     /// Greatest voltage at infinite time over the box, every part healthy.
     #[serde(rename = "settles_at_v", serialize_with = "si")]
     pub settles_at: Voltage,
@@ -92,6 +95,7 @@ impl WaitCheck<'_> {
         let waits: Vec<Wait> = self.pairs().map(|pair| self.wait_at(pair, healthy, faults)).collect();
         for wait in &waits {
             self.healthy_findings(wait, findings);
+            Self::nominal_findings(wait, findings);
         }
         for (index, fault) in faults.iter().enumerate() {
             self.fault_findings(fault, index, &waits, findings);
@@ -110,6 +114,7 @@ impl WaitCheck<'_> {
         Wait {
             across: [self.model.node_names[a].clone(), self.model.node_names[b].clone()],
             nominal: finite(healthy.nominal(self.wait(pair))),
+            keep: finite(healthy.nominal(self.wait(pair)).max(healthy.worst(self.wait(pair)))),
             slowest: finite(healthy.worst(self.wait(pair))),
             settles_at: Voltage::from_si(healthy.worst(Figure::Settles { pair })),
             at_isolation: Voltage::from_si(healthy.worst(Figure::Start { pair })),
@@ -125,7 +130,7 @@ impl WaitCheck<'_> {
     }
 
     fn healthy_findings(&self, wait: &Wait, findings: &mut Findings) {
-        let pair = wait.across.join("-");
+        let pair = wait.across.join(" - ");
         let touch = exact(self.bank.description().touch_voltage);
         match wait.slowest {
             None => findings.add(
@@ -149,6 +154,25 @@ impl WaitCheck<'_> {
         }
     }
 
+    /// The worst case is taken at the highest voltage. Where a capacitor has a voltage of its own against it, the
+    /// nominal voltage can take longer.
+    fn nominal_findings(wait: &Wait, findings: &mut Findings) {
+        let Some((nominal, slowest)) = wait.nominal.zip(wait.slowest) else { return };
+        if nominal.si() > slowest.si() * (1.0 + 1e-9) {
+            findings.add(
+                Severity::Warning,
+                "nominal-wait-longer",
+                format!(
+                    "{}: the wait is longer from the nominal voltage ({}) than in the slowest case from the highest \
+                     ({}): a capacitor has a voltage of its own. The longer one is the wait to keep.",
+                    wait.across.join(" - "),
+                    duration(nominal, Direction::Up),
+                    duration(slowest, Direction::Up)
+                ),
+            );
+        }
+    }
+
     fn fault_findings(&self, fault: &FaultAnswers, index: usize, waits: &[Wait], findings: &mut Findings) {
         let never: Vec<&Wait> = waits.iter().filter(|w| w.faults[index].wait.is_none()).collect();
         let Some(worst) = never.iter().max_by(|x, y| {
@@ -164,7 +188,7 @@ impl WaitCheck<'_> {
             Some(_) => ("resistor-open-never", "with this resistor open"),
             None => ("capacitor-fault-never", "with this capacitor failed"),
         };
-        let pairs: Vec<String> = never.iter().map(|w| w.across.join("-")).collect();
+        let pairs: Vec<String> = never.iter().map(|w| w.across.join(" - ")).collect();
         findings.add(
             Severity::Danger,
             code,
@@ -173,7 +197,7 @@ impl WaitCheck<'_> {
                  touch, and discharge by tool and strap.",
                 fault.fault.name,
                 listed(&pairs),
-                worst.across.join("-"),
+                worst.across.join(" - "),
                 show(worst.faults[index].settles_at, Direction::Up)
             ),
         );

@@ -113,7 +113,8 @@ fn reflect(a: &mut Matrix, k: usize, order: &[usize]) {
 fn orthogonalise(vectors: &mut [Vec<f64>]) -> Result<(), CircuitError> {
     const MOST_SWEEPS: usize = 100;
     let count = vectors.len();
-    let tolerance = f64::EPSILON * vectors.first().map_or(1.0, |v| (v.len() as f64).sqrt());
+    // What two equal columns can still be told apart by: a dot product is only good to its number of roundings.
+    let tolerance = f64::EPSILON * vectors.first().map_or(1.0, |v| v.len().max(8) as f64);
     for _ in 0..MOST_SWEEPS {
         let mut rotated = false;
         for p in 0..count {

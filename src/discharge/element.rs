@@ -4,7 +4,7 @@
 //! lie at different ends (of three and more in series, one high and the rest low is worse than all low). So the
 //! array is written as the element, the rest of its string, and the other strings, each with a value of its own.
 
-use super::model::{Model, Part};
+use super::model::{Model, Part, PartKind};
 use crate::bank::description::Resistor;
 use crate::quantity::Quantity;
 
@@ -20,8 +20,9 @@ pub(crate) fn element_model(model: &Model, resistor: &Resistor) -> Option<(Model
     // Other resistors keep their numbers: the array's own place becomes the element at the end.
     let whole = opened.resistors[index].clone();
     let unit = resistor.value.si();
+    let kind = if whole.kind == PartKind::Switched { PartKind::With(index) } else { whole.kind };
     let add = |opened: &mut Model, a, b, nominal, parameter| {
-        opened.resistors.push(Part { id: whole.id.clone(), a, b, nominal, parameter, kind: whole.kind });
+        opened.resistors.push(Part { id: whole.id.clone(), a, b, nominal, parameter, kind });
         opened.resistors.len() - 1
     };
     // The lumped array's own loose value now stands for the other strings; it is used by nothing else.

@@ -40,6 +40,8 @@ pub(crate) enum PartKind {
     Fixed,
     /// A part that only a step connects: a tool, a strap, a meter, the series resistance of a supply.
     Switched,
+    /// A piece of an opened array, connected together with the resistor of this number.
+    With(usize),
     /// The capacitance or resistance of an absorption branch of the capacitor with this number.
     Absorbing(usize),
 }
@@ -249,7 +251,11 @@ impl Model {
         parts
             .map(|(i, r)| {
                 let failed = variation.resistor.filter(|(index, _)| *index == i).map_or(1.0, |(_, factor)| factor);
-                let there = r.kind != PartKind::Switched || connected.contains(&i);
+                let there = match r.kind {
+                    PartKind::Fixed | PartKind::Absorbing(_) => true,
+                    PartKind::Switched => connected.contains(&i),
+                    PartKind::With(of) => connected.contains(&of),
+                };
                 if there { r.value(point, true) * failed } else { f64::INFINITY }
             })
             .collect()

@@ -111,7 +111,7 @@ const fn grammar(kind: Kind) -> Grammar {
         Kind::Charge => Grammar {
             name: "a charge",
             units: &["C"],
-            prefixes: &[("n", -9), ("u", -6), ("m", -3), ("", 0)],
+            prefixes: &[("n", -9), ("u", -6), ("m", -3), ("", 0), ("k", 3)],
             example: "50 uC",
             least: 0.0,
             greatest: 1e12,
@@ -127,7 +127,7 @@ const fn grammar(kind: Kind) -> Grammar {
         Kind::Energy => Grammar {
             name: "an energy",
             units: &["J", "Wh"],
-            prefixes: &[("u", -6), ("m", -3), ("", 0), ("k", 3), ("M", 6)],
+            prefixes: &[("u", -6), ("m", -3), ("", 0), ("k", 3), ("M", 6), ("G", 9)],
             example: "10 J",
             least: 0.0,
             greatest: 1e15,
@@ -143,7 +143,7 @@ const fn grammar(kind: Kind) -> Grammar {
         Kind::Power => Grammar {
             name: "a power",
             units: &["W"],
-            prefixes: &[("u", -6), ("m", -3), ("", 0), ("k", 3), ("M", 6)],
+            prefixes: &[("u", -6), ("m", -3), ("", 0), ("k", 3), ("M", 6), ("G", 9)],
             example: "25 W",
             least: 0.0,
             greatest: 1e15,

@@ -29,6 +29,7 @@ fn wait(across: Pair, at: f64, nominal: f64, slowest: f64, faults: Vec<FaultWait
         across,
         nominal: Some(s(nominal)),
         slowest: Some(s(slowest)),
+        keep: Some(s(slowest)),
         settles_at: v(0.0),
         at_isolation: v(at),
         worst_point: vec![WorstValue { id: "R1".into(), factor: 1.05 }],

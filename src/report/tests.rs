@@ -31,6 +31,8 @@ fn unruly() -> Plan {
             let mut wait = wait.clone();
             wait.across = [format!("node-{}-{i}", "é".repeat(i)), "N".repeat(40)];
             wait.slowest = Some(Time::from_si(1e-9 * 10f64.powi(i as i32)));
+            wait.keep = Some(Time::from_si(1e-9 * 10f64.powi(i as i32)));
+            wait.keep = Some(Time::from_si(1e-9 * 10f64.powi(i as i32)));
             wait.at_isolation = Voltage::from_si(1e-4 * 10f64.powi(i as i32 / 4));
             wait.faults[0].fault = format!("{} open", "R".repeat(i + 1));
             wait
@@ -113,8 +115,12 @@ fn the_first_screen_has_the_answer() {
 fn a_wait_of_never_says_so_and_to_what_it_settles() {
     let mut plan = sample::plan();
     plan.waits[1].slowest = None;
+    plan.waits[1].keep = None;
+    plan.waits[1].keep = None;
     plan.waits[1].settles_at = Voltage::from_si(375.01);
     plan.waits[2].slowest = None;
+    plan.waits[2].keep = None;
+    plan.waits[2].keep = None;
     let screen = first_screen(&plan);
     assert!(screen.contains("WAIT NEVER. No wait brings every test point below 50 V."), "{screen}");
     assert!(screen.contains("P - M stays at up to 376 V (1 test point more never comes below)."), "{screen}");
@@ -149,7 +155,10 @@ fn an_energy_that_is_waited_for_stands_beside_the_voltage() {
 fn no_output_speaks_as_if_a_prediction_were_a_measurement() {
     let mut empty = sample::plan();
     empty.stored.iter_mut().for_each(|stored| stored.bands.clear());
-    empty.waits.iter_mut().for_each(|wait| wait.slowest = Some(Time::from_si(0.0)));
+    for wait in &mut empty.waits {
+        wait.slowest = Some(Time::from_si(0.0));
+        wait.keep = wait.slowest;
+    }
     for plan in [sample::plan(), sample::with_steps(), steps::charging(), steps::endless(), empty] {
         for text in [plan_text(&plan, 80), plan_markdown(&plan)] {
             let text = text.to_lowercase();

@@ -87,6 +87,7 @@ struct Wait {
     across: Pair,
     nominal_s: Option<f64>,
     slowest_s: Option<f64>,
+    keep_s: Option<f64>,
     settles_at_v: f64,
     at_isolation_v: f64,
     worst_point: Vec<Worst>,

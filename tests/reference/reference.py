@@ -7,7 +7,9 @@
   reference.py random SEED N FOLDER  N random bank files
 
 Numbers are decimal strings of 25 significant digits, null is "never". A voltage, charge or energy at a moment that is
-under 1e-15 of what the bank could show at isolation is given as 0. `slope_v_per_s` is d|v|/dt where the wait ends,
+under 1e-15 of what the bank could show at isolation is given as 0. In "steps" `until_s` is
+an `until` before it is rounded up, `inside` lists the figures whose worst is off the corners; "recovery" is over the box
+too. `slope_v_per_s` is d|v|/dt where the wait ends,
 `inside` the factors on the parts where a worst case lies off the corners of the tolerance box. Of a fault's two times
 (long before isolation, at isolation) the worse is given, and both under `variants` where they differ.
 
@@ -28,6 +30,8 @@ Readings of the bank file's description, where its words leave room:
   in both its times. The energy of a limit is all that is stored in what any always-connected part joins to the pair.
 - A limit without `within` holds from isolation. `use:` is passed over.
 - `capacitance_f` is over `charged_to`, also where a capacitor's own voltage makes the terminals' voltage another.
+- Absorption: a floating group divides by capacitance with all branches in it; a shorted capacitor loses its own branches,
+  one unit shorted scales them with the value. More readings, for procedures, stand in steps.py.
 - Between two nodes that nothing joins a voltage is undefined; the figures say so, and no bank here has it.
 Needs requirements.txt.
 """
@@ -261,11 +265,12 @@ def assemble(path, results):
 
 def compute(paths):
     jobs = [job for path in paths for job in jobs_of(path)]
+    order = sorted(jobs, key=lambda job: job[1] != PROCEDURE)      # the longest first
     with multiprocessing.Pool() as pool:
-        results = pool.map(task, jobs, chunksize=1)
+        results = dict(zip(order, pool.map(task, order, chunksize=1)))
     by_path = {}
-    for (path, _), result in zip(jobs, results):
-        by_path.setdefault(path, []).append(result)
+    for job in jobs:
+        by_path.setdefault(job[0], []).append(results[job])
     return {os.path.basename(p)[:-5]: assemble(p, r) for p, r in by_path.items()}
 
 

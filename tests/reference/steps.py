@@ -217,22 +217,25 @@ class Box:
         self.corners = list(itertools.product((0, 1), repeat=self.d))
         self.points, self.lasts, self.volt = {}, [], number(plan.bank.highest)
 
-    def point(self, u):
+    def point(self, u, what):
+        """A point, run as far as this figure needs."""
         u = tuple(u)
         if u not in self.points:
             self.points[u] = Point(self.plan, u, self.plan.bank.highest)
         p = self.points[u]
-        for k, x in enumerate(self.lasts):
+        kind, last, _ = what
+        for k, x in enumerate(self.lasts if kind == 'recovery' else self.lasts[:last] if kind == 'until'
+                              else self.lasts[:last + 1]):
             p.finish(k, x)
         return p
 
     def worst(self, whats):
         """{figure: (value, extra, inside)}: all corners exactly; in doubles a search of the inside from the best corner
-        and the best of random points; what it finds above the corners is polished exactly. Last, the exact slopes at a
-        corner that won have to point out of the box."""
+        and the best of random points. Where the exact slopes at the best corner point into the box, or doubles find
+        more than a corner by far, what they found is polished exactly."""
         best, values = {}, {}
         for what in whats:
-            got = [figure(self.point(u), what) for u in self.corners]
+            got = [figure(self.point(u, what), what) for u in self.corners]
             values[what] = [x for x, _ in got]
             k = next((i for i, (x, _) in enumerate(got) if x is None),
                      None if not got else max(range(len(got)), key=lambda i: mp.mpf(-1) if got[i][0] is None else got[i][0]))
@@ -269,28 +272,33 @@ class Box:
                         else:
                             step /= 2
                     found.setdefault(what, []).append((value, u))
-                known_corner = ask(top, what)
-                for value, u in found[what]:
+                low = ask(top, what)
+                best_inside = max(((v, u) for v, u in found[what] if any(0 < x < 1 for x in u)), default=(0, None))
+                rises = self.rises(what, top, best[what][0])
+                if rises and best_inside[0] <= low:
+                    raise ArithmeticError(f'{what}: rises from its best corner {top} into the box, and no way was found')
+                # what doubles call greater where the exact slopes say otherwise is their rounding, unless it is far off
+                if best_inside[0] > low * (1 + (0 if rises else 1e-7)):
+                    u = best_inside[1]
                     free = [i for i, x in enumerate(u) if 0 < x < 1]
-                    if not free or value <= known_corner * (1 + 1e-13):
-                        if not free and value > known_corner * (1 - 1e-6):
-                            continue                     # a corner: all were tried exactly
-                        continue
-                    w = _newton(lambda v: figure(self.point(v), what)[0], [mp.mpf(x) for x in u], free)
-                    got = figure(self.point(w), what)
+                    w = _newton(lambda v: figure(self.point(v, what), what)[0], [mp.mpf(x) for x in u], free)
+                    got = figure(self.point(w, what), what)
                     if got[0] > best[what][0] * (1 + mp.mpf(10)**-40):
                         best[what] = (*got, [mp.nstr(x, 17) for x in w], tuple(w))
-        h = mp.mpf(10)**-24
-        for what in todo:
-            value, _, inside, u = best[what]
-            if inside is None:
-                for k in range(self.d):
-                    w = [mp.mpf(x) for x in u]
-                    w[k] += h if w[k] == 0 else -h
-                    if figure(self.point(w), what)[0] > value * (1 + h * mp.mpf(10)**-12):
-                        raise ArithmeticError(f'{what}: greater inside the box than at its best corner {u}')
+                    elif rises:
+                        raise ArithmeticError(f'{what}: rises from its best corner {top} into the box')
         self.points = {u: p for u, p in self.points.items() if u in self.corners}
         return {w: b[:3] for w, b in best.items()}
+
+    def rises(self, what, corner, value):
+        """Is there, exactly, a way up from this corner into the box along one parameter?"""
+        h = mp.mpf(10)**-24
+        for k in range(self.d):
+            w = [mp.mpf(x) for x in corner]
+            w[k] += h if w[k] == 0 else -h
+            if figure(self.point(w, what), what)[0] > value * (1 + h * mp.mpf(10)**-12):
+                return True
+        return False
 
     def tiny(self, what):
         """Under this the corners alone are searched."""
@@ -319,19 +327,64 @@ class Box:
         return raw
 
 
+def nominal(plan, lasts):
+    middle = Point(plan, [p.low / (p.low + p.high) for p in (plan.parts[k] for k in plan.loose)], plan.bank.nominal)
+    for k, x in enumerate(lasts):
+        middle.finish(k, x)
+    return middle
+
+
+def balance(point):
+    """Energy stored at a step's start and from its sources = stored at its end and turned into heat."""
+    p = point.plan
+
+    def stored(y):
+        v = [mp.mpf(0)] * p.n
+        for i, x in zip(p.graph(tuple(p.always)).state, y):
+            v[i] = x
+        return mp.fsum(c * (v[i] - v[j])**2 for i, j, c in point.caps) / 2
+
+    for k, lasts in enumerate(point.lasts):
+        run, heat, given = point.begin(k), mp.mpf(0), mp.mpf(0)
+        for x in p.connected[k]:
+            rest, terms = currents(point, run, p.parts[x])
+            heat += point.value[x] * squared((rest, terms), lasts)
+            if p.parts[x].kind == 'S':
+                charge = rest * lasts - mp.fsum(a * mp.expm1(-r * lasts) / r for a, r in terms)
+                given += number(p.parts[x].volt) * charge
+        heat += mp.fsum(g * squared(run.voltage((i, x)), lasts) for i, x, g, _ in point.inner)
+        before, after = stored(point.states[k]), stored(point.states[k + 1])
+        assert abs(before + given - after - heat) <= (before + abs(given)) * mp.mpf(10)**-40, 'energy out of balance'
+
+
 def compute(bank, show):
     if not bank.steps:
         return None
     plan = Plan(bank)
     box = Box(plan)
     raw = box.solve()
-    middle = Point(plan, [p.low / (p.low + p.high) for p in (plan.parts[k] for k in plan.loose)], bank.nominal)
-    for k, x in enumerate(box.lasts):
-        middle.finish(k, x)
-    v_scale = max([box.point(box.corners[0]).scale, number(bank.highest)] +
+    got = box.worst(figures_of(plan))
+    middle = nominal(plan, box.lasts)
+    mp.mp.dps += 60
+    try:
+        again = nominal(Plan(bank), box.lasts)
+        for what in figures_of(plan):
+            x, y = figure(middle, what)[0], figure(again, what)[0]
+            assert x is None or abs(x - y) <= y * mp.mpf(10)**-30 or y < box.tiny(what) / 10**12, f'few digits: {what}'
+        balance(again)
+    finally:
+        mp.mp.dps -= 60
+    v_scale = max([next(iter(box.points.values())).scale, number(bank.highest)] +
                   [number(p.volt) for p in bank.extra if p.kind == 'S'])
     cut = lambda x: x if x is None or x > FLOOR * v_scale else mp.mpf(0)
-    got = box.worst(figures_of(plan))
+
+    def shown(kind, k, x):
+        """A part's figure; 0 where the voltage across it would be under FLOOR."""
+        r, least = number(plan.parts[x].value), FLOOR * v_scale
+        floor = {'current': least / r, 'power': least**2 / r, 'energy': least**2 / r * number(box.lasts[k])}[kind]
+        value = got[(kind, k, x)][0]
+        return show(value if value > floor else mp.mpf(0))
+
     out, start = [], Fraction(0)
     for k, step in enumerate(bank.steps):
         end = start + box.lasts[k]
@@ -344,9 +397,9 @@ def compute(bank, show):
                   for w, (_, _, u) in got.items() if u and w[1] == k and w[0] != 'recovery']
         if inside:
             row['inside'] = inside
-        row['parts'] = [{'id': plan.parts[x].id, 'peak_current_a': show(got[('current', k, x)][0]),
-                         'peak_power_w': show(got[('power', k, x)][0]),
-                         'energy_j': show(got[('energy', k, x)][0])} for x in plan.connected[k]]
+        row['parts'] = [{'id': plan.parts[x].id, 'peak_current_a': shown('current', k, x),
+                         'peak_power_w': shown('power', k, x),
+                         'energy_j': shown('energy', k, x)} for x in plan.connected[k]]
         out.append(row)
         start = end
     recovery = []

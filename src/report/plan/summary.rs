@@ -118,8 +118,8 @@ fn wait(plan: &Plan) -> Labelled {
         // The wait may be far too short without what is missing; the figure must not stand alone on a screen.
         text.push("NOT TO BE RELIED ON: parts of the file are not computed.".into());
     }
-    let never: Vec<&Wait> = plan.waits.iter().filter(|w| w.slowest.is_none()).collect();
-    let longest = longest(plan.waits.iter(), |w: &Wait| w.slowest.map(Quantity::si));
+    let never: Vec<&Wait> = plan.waits.iter().filter(|w| w.keep.is_none()).collect();
+    let longest = longest(plan.waits.iter(), |w: &Wait| w.keep.map(Quantity::si));
     match (never.first(), longest) {
         (None, None) => text.push("The wait is not computed by this version.".into()),
         (None, Some(governing)) => text.extend(keep(plan, governing)),
@@ -143,7 +143,7 @@ fn stuck(plan: &Plan, first: &Wait, never: &[&Wait], longest: Option<&Wait>) -> 
         format!("NEVER. No wait brings every test point {}.", target(plan)),
         format!("{} stays at up to {}{others}.", pair(&worst.across), up(worst.settles_at)),
     ];
-    if let Some(time) = longest.and_then(|w| w.slowest) {
+    if let Some(time) = longest.and_then(|w| w.keep) {
         text.push(format!("The other test points: {} after isolation.", whole(keepable(time))));
     }
     text.push("It has to be discharged by other means, then tested.".into());
@@ -151,7 +151,7 @@ fn stuck(plan: &Plan, first: &Wait, never: &[&Wait], longest: Option<&Wait>) -> 
 }
 
 fn keep(plan: &Plan, governing: &Wait) -> Vec<String> {
-    let Some(slowest) = governing.slowest else { return Vec::new() };
+    let Some(slowest) = governing.keep else { return Vec::new() };
     let first = format!("{} after isolation, then TEST.", whole(keepable(slowest)));
     let across = pair(&governing.across);
     let second = match (slowest.si() > 0.0, plan.waits.len()) {
@@ -228,7 +228,7 @@ fn checks(plan: &Plan) -> String {
         (number(Verdict::NotChecked), "not checked"),
     ]);
     let ratings = if verdicts.is_empty() { String::new() } else { format!(" Ratings: {ratings}.") };
-    let never = plan.waits.iter().filter(|w| w.slowest.is_none()).count();
+    let never = plan.waits.iter().filter(|w| w.keep.is_none()).count();
     let never = if never == 0 { String::new() } else { format!(" Waits: {never} NEVER.") };
     let procedure = steps::total(plan).map_or_else(String::new, |total| format!(" Procedure: {total}."));
     format!("{limits}{ratings}{never}{procedure} Verdict: {}.", verdict(plan.verdict))
