@@ -131,7 +131,8 @@ pub(super) fn split(low: f64, high: f64) -> f64 {
     }
 }
 
-/// Bounds of a sum and its slope over an interval; every term is monotone, so its ends bound it.
+/// Bounds of a sum, its slope and its curvature over an interval; slope and curvature in units of half the interval,
+/// since only their signs are asked for.
 pub(super) struct Bounds {
     pub least: f64,
     pub greatest: f64,
@@ -141,33 +142,66 @@ pub(super) struct Bounds {
     pub greatest_curvature: f64,
 }
 
+/// Order of the Taylor form.
+const ORDER: usize = 8;
+
 impl Bounds {
+    /// A term that falls much over the interval is bounded by its ends, it being monotone. All others are added up as
+    /// one Taylor form around the middle (Moore, Kearfott and Cloud 2009, chapter 6): where amplitudes of nearly
+    /// equal rates cancel, their coefficients cancel too, which the ends of single terms would not show.
     pub fn of(f: &ExpSum, low: f64, high: f64) -> Self {
-        let (mut least, mut greatest) = (f.constant(), f.constant());
-        let (mut down, mut up) = (0.0, 0.0);
-        let (mut least_curvature, mut greatest_curvature) = (0.0, 0.0);
-        let (mut middle, half) = (f.constant(), 0.5 * (high - low));
+        let half = 0.5 * (high - low);
+        let middle = low + half;
+        let mut taylor = [0.0; ORDER];
+        let mut rest = 0.0;
+        let mut bounds = Bounds {
+            least: f.constant(),
+            greatest: f.constant(),
+            steepest_down: 0.0,
+            steepest_up: 0.0,
+            least_curvature: 0.0,
+            greatest_curvature: 0.0,
+        };
         for (a, r) in f.terms() {
-            let (first, last) = ((-r * low).exp(), (-r * high).exp());
-            let (most, fewest) = if *a > 0.0 { (a * first, a * last) } else { (a * last, a * first) };
-            least += fewest;
-            greatest += most;
-            down -= r * most;
-            up -= r * fewest;
-            least_curvature += r * r * fewest;
-            greatest_curvature += r * r * most;
-            middle += a * (-r * (low + half)).exp();
+            let x = r * half;
+            if x <= 1.0 {
+                let mut coefficient = a * (-r * middle).exp();
+                // exp(-r t) is at most e times its value in the middle.
+                let mut tail = std::f64::consts::E * coefficient.abs();
+                for (k, sum) in taylor.iter_mut().enumerate() {
+                    *sum += coefficient;
+                    coefficient *= -x / (k + 1) as f64;
+                    tail *= x;
+                }
+                rest += tail;
+            } else {
+                let (first, last) = (a * (-r * low).exp(), a * (-r * high).exp());
+                let (most, fewest) = if *a > 0.0 { (first, last) } else { (last, first) };
+                bounds.least += fewest;
+                bounds.greatest += most;
+                bounds.steepest_down -= x * most;
+                bounds.steepest_up -= x * fewest;
+                bounds.least_curvature += x * x * fewest;
+                bounds.greatest_curvature += x * x * most;
+            }
         }
-        // Mean value form: tighter than the sum of the terms on short intervals.
-        let reach = half * down.abs().max(up.abs());
-        Bounds {
-            least: least.max(middle - reach),
-            greatest: greatest.min(middle + reach),
-            steepest_down: down,
-            steepest_up: up,
-            least_curvature,
-            greatest_curvature,
-        }
+        // Value, slope and curvature of the form: its own term in the middle, all others at their full size.
+        let factorial = |n: usize| (1..=n).map(|k| k as f64).product::<f64>();
+        let form = |derivative: usize| {
+            let weight = |k: usize| factorial(k) / factorial(k - derivative);
+            let reach: f64 = (derivative + 1..ORDER).map(|k| weight(k) * taylor[k].abs()).sum();
+            let reach = reach + rest / factorial(ORDER - derivative);
+            let own = factorial(derivative) * taylor[derivative];
+            (own - reach, own + reach)
+        };
+        let add = |low: &mut f64, high: &mut f64, (least, greatest): (f64, f64)| {
+            *low += least;
+            *high += greatest;
+        };
+        add(&mut bounds.least, &mut bounds.greatest, form(0));
+        add(&mut bounds.steepest_down, &mut bounds.steepest_up, form(1));
+        add(&mut bounds.least_curvature, &mut bounds.greatest_curvature, form(2));
+        bounds
     }
 }
 

@@ -50,6 +50,8 @@ impl ExpSum {
         if until.is_infinite() {
             offer(self.constant().abs(), f64::INFINITY);
         }
+        // Terms that cancel leave no more than this of themselves by rounding.
+        let noise = 32.0 * f64::EPSILON * self.envelope();
         // Past `end` every term is below rounding of the envelope.
         let count = self.terms().len().max(1) as f64;
         let small = limit * f64::EPSILON / count;
@@ -64,7 +66,8 @@ impl ExpSum {
             let bounds = Bounds::of(self, low, high);
             let reachable = bounds.greatest.abs().max(bounds.least.abs());
             let sofar = offer(self.value(high).abs(), high);
-            if reachable <= sofar * (1.0 + ACCURACY) || bounds.steepest_down >= 0.0 || bounds.steepest_up <= 0.0 {
+            if reachable <= sofar * (1.0 + ACCURACY) + noise || bounds.steepest_down >= 0.0 || bounds.steepest_up <= 0.0
+            {
                 continue; // The ends were offered: nothing between them is greater.
             }
             if high - low <= f64::EPSILON * high {
