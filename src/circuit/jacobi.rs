@@ -113,9 +113,11 @@ fn reflect(a: &mut Matrix, k: usize, order: &[usize]) {
 fn orthogonalise(vectors: &mut [Vec<f64>]) -> Result<(), CircuitError> {
     const MOST_SWEEPS: usize = 100;
     let count = vectors.len();
-    // What two equal columns can still be told apart by: a dot product is only good to its number of roundings.
-    let tolerance = f64::EPSILON * vectors.first().map_or(1.0, |v| v.len().max(8) as f64);
-    for _ in 0..MOST_SWEEPS {
+    let strict = f64::EPSILON * vectors.first().map_or(1.0, |v| (v.len() as f64).sqrt());
+    for sweep in 0..MOST_SWEEPS {
+        // Equal columns can go on turning in the rounding of their dot products: a few roundings more are let pass
+        // then, but not before, since stiff networks need the last digits.
+        let tolerance = if sweep < 20 { strict } else { 8.0 * strict };
         let mut rotated = false;
         for p in 0..count {
             for q in p + 1..count {

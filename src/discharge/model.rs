@@ -256,6 +256,9 @@ impl Model {
                     PartKind::Switched => connected.contains(&i),
                     PartKind::With(of) => connected.contains(&of),
                 };
+                // A branch of a failed capacitor scales with it; its time constant stays.
+                let branch = variation.capacitor.filter(|(index, _)| r.kind == PartKind::Absorbing(*index));
+                let failed = failed / branch.map_or(1.0, |(_, factor)| factor);
                 if there { r.value(point, true) * failed } else { f64::INFINITY }
             })
             .collect()
