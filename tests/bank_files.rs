@@ -35,7 +35,7 @@ capacitors:
     dielectric: aluminium-electrolytic
     absorption: 10 %
     charged_to: 400 V
-  - {id: C2, value: 3300 uF, tolerance: {low: 10 %, high: 30 %}, across: [M, N]}
+  - {id: C2, value: 3300 uF, tolerance: {low: 10 %, high: 30 %}, across: [X, N]}
   - {id: CK, kvar: {power: 50 kvar, voltage: 400 V, frequency: 50 Hz}}
 resistors:
   - id: R1
@@ -454,13 +454,13 @@ fn what_contradicts_itself_is_found_by_its_line() {
     assert_broken("zero_at: 155 °C", "zero_at: 55 °C", "derating-order", "55 °C", "above `full_to`");
     assert_broken("  highest: 750 V", "  highest: 500 V", "highest-below-nominal", "500 V", "nominal");
     assert_broken(
-        "across: [M, N]}\n  - {id: CK",
-        "across: [M, M]}\n  - {id: CK",
+        "across: [X, N]}\n  - {id: CK",
+        "across: [X, X]}\n  - {id: CK",
         "part-across-one-node",
         "across",
         "both ends",
     );
-    assert_broken("across: [X, N]", "across: [P, N]", "dangling-node", "X", "nothing but resistor `R4`");
+    assert_broken("across: [M, X]", "across: [M, Q]", "dangling-node", "Q", "nothing but resistor `R4`");
     assert_broken(
         "{id: T1, role: tool, value: 1 kohm, across: [P, N]}",
         "{id: T1, role: tool, value: 1 kohm, across: [P, NN]}",
@@ -580,4 +580,23 @@ fn a_file_in_another_alphabet_is_placed_by_characters() {
         "ebbvolt: 1\ntag: \u{fc}\u{df}\u{3a9}\ntitle: \u{3a9}\u{3a9}\ncapacitors: [{id: \u{3a9}, value: 3 V}]\ntouch_voltage: 5 V\ncharged_to: 1 V\n",
     );
     assert_eq!(place(&found[0]), (4, 29, 3));
+}
+
+#[test]
+fn an_own_voltage_that_contradicts_the_operating_point_beside_it_is_an_error_at_its_place() {
+    // R1 and R2 set the middle to half of 600 V; a second capacitor in parallel says 100 V.
+    let text = "ebbvolt: 1\ntag: LOOP\ntouch_voltage: 50 V\ncharged_to: 600 V\ncapacitors:\n  \
+                - {id: C1, value: 10 uF, across: [P, M]}\n  - {id: C2, value: 10 uF, across: [M, N]}\n  \
+                - {id: C3, value: 1 uF, across: [M, N], charged_to: 100 V}\nresistors:\n  \
+                - {id: R1, role: balancing, value: 10 kohm, across: [P, M]}\n  \
+                - {id: R2, role: balancing, value: 10 kohm, across: [M, N]}\n";
+    let findings = ebbvolt::bank::file::read("loop.yaml", text.as_bytes()).expect_err("a contradiction");
+    let found = findings.as_slice();
+    assert_eq!(found.len(), 1, "{found:?}");
+    assert_eq!(found[0].code, "capacitor-loop");
+    assert_eq!(found[0].place.as_ref().map(|place| place.line), Some(8));
+    assert!(found[0].text.contains("C2") && found[0].text.contains("C3") && found[0].text.contains("200"), "{found:?}");
+    // The voltage that the resistors set is no contradiction.
+    let agreeing = text.replace("charged_to: 100 V}", "charged_to: 300 V}");
+    assert!(ebbvolt::bank::file::read("loop.yaml", agreeing.as_bytes()).is_ok());
 }

@@ -295,6 +295,9 @@ fn every_example_bank_has_the_documented_keys_and_finite_numbers() {
         }
         for wait in &plan.waits {
             assert!(wait.slowest_s.is_none() || wait.slowest_s >= wait.nominal_s);
+            let never = wait.nominal_s.is_none() || wait.slowest_s.is_none();
+            assert_eq!(wait.keep_s.is_none(), never);
+            assert!(never || (wait.keep_s >= wait.slowest_s && wait.keep_s >= wait.nominal_s));
             assert!(wait.settles_at_v >= 0.0 && wait.at_isolation_v >= 0.0);
             assert!(wait.slowest_s.is_some() || wait.settles_at_v > plan.touch_voltage_v);
             assert!(wait.worst_point.iter().all(|worst| !worst.id.is_empty() && worst.factor > 0.0));

@@ -269,3 +269,13 @@ fn parts_that_go_on_together_with_the_same_figures_share_a_line() {
     plan.steps[4].parts.push(second);
     assert!(entry(&plan, 5).contains("ST1 and ST2, each: peak up to 380 A and 722 W; up to 6.00 mJ in this step."));
 }
+
+#[test]
+fn a_failure_that_leaves_voltage_where_hands_come_near_is_told_there() {
+    let mut plan = sample::with_steps();
+    plan.steps[4].faults[1].test_points[2].highest = Voltage::from_si(86.51);
+    assert!(entry(&plan, 6).contains("With R2 open up to 86.6 V is predicted at M - N: only the test can tell."));
+    plan.steps[5].faults[0].test_points[1].highest = Voltage::from_si(140.0);
+    assert!(entry(&plan, 6).contains("With R1 open up to 140 V is predicted at P - M"));
+    assert!(on_one_line(&plan_text(&plan, 80)).contains("6 R1 open P - M 140 V - none"));
+}

@@ -2,6 +2,7 @@
 
 use super::super::super::block::Labelled;
 use super::super::super::words::{list, pair, typed, up};
+use super::tables::{failures, worst};
 use super::{highest_at_start, is_of, role, straps};
 use crate::data::energy_bands;
 use crate::finding::Severity;
@@ -115,6 +116,13 @@ fn hands(plan: &Plan, at: usize, step: &StepResult) -> Labelled {
     if live {
         text.push(format!("A test point is predicted above {} in this step.", typed(plan.touch_voltage)));
     }
+    // Hands come near when the step starts, so what the step before leaves counts as well.
+    let here = plan.steps.iter().skip(at.saturating_sub(1)).take(if at == 0 { 1 } else { 2 });
+    let failed = worst(here.flat_map(failures)).filter(|f| f.point.highest.si() > plan.touch_voltage.si());
+    text.extend(failed.map(|f| {
+        let place = pair(&f.point.across);
+        format!("With {} up to {} is predicted at {place}: only the test can tell.", f.fault, up(f.point.highest))
+    }));
     if plan.steps.iter().take(at).all(|step| step.measure.is_empty()) {
         text.push("No step before this one reads any voltage.".into());
     }

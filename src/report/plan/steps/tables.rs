@@ -3,7 +3,7 @@
 use super::super::super::block::{Block, Grid, Side};
 use super::super::super::words::{down, pair, typed, up};
 use super::NOT_ISOLATED;
-use crate::plan::{FaultPoint, Plan, StepFault, StepResult};
+use crate::plan::{FaultPoint, Plan, StepFault, StepPart, StepResult};
 use crate::quantity::Quantity;
 use std::collections::{HashMap, HashSet};
 
@@ -27,6 +27,7 @@ pub(super) fn loads(plan: &Plan) -> Vec<Block> {
             } else {
                 by_a_step.contains(id) || greatest.get(id).is_some_and(|most| most.iter().any(|m| m.step == at))
             };
+            let is_shown = is_shown && figures(part).iter().any(|figure| *figure > 0.0);
             if is_shown {
                 let number = (at + 1).to_string();
                 grid.row([number, part.id.clone(), up(part.peak_current), up(part.peak_power), up(part.energy)]);
@@ -52,6 +53,10 @@ fn is_momentary(step: &StepResult) -> bool {
     step.end.si() <= step.start.si()
 }
 
+fn figures(part: &StepPart) -> [f64; 3] {
+    [part.peak_current.si(), part.peak_power.si(), part.energy.si()]
+}
+
 /// The greatest of one figure of a part, and the step in which it bears it; the first of several.
 #[derive(Clone, Copy)]
 struct Most {
@@ -66,8 +71,7 @@ fn greatest(plan: &Plan) -> HashMap<&str, [Most; 3]> {
         for part in &step.parts {
             let none = Most { figure: 0.0, step: usize::MAX };
             let most = greatest.entry(&part.id).or_insert([none; 3]);
-            let figures = [part.peak_current.si(), part.peak_power.si(), part.energy.si()];
-            for (most, figure) in most.iter_mut().zip(figures).filter(|(most, figure)| *figure > most.figure) {
+            for (most, figure) in most.iter_mut().zip(figures(part)).filter(|(most, figure)| *figure > most.figure) {
                 *most = Most { figure, step: at };
             }
         }
@@ -75,7 +79,8 @@ fn greatest(plan: &Plan) -> HashMap<&str, [Most; 3]> {
     greatest
 }
 
-/// The worst failure at the end of each step that has people read, and the worst that its hold point lets pass.
+/// The worst failure at the end of each step that has people read, and the worst that its hold point lets pass; where
+/// hands come near, the worst that is above the touch voltage.
 pub(super) fn faults(plan: &Plan) -> Vec<Block> {
     let mut grid = Grid::new(&[
         ("Step", Side::Right),
@@ -86,10 +91,12 @@ pub(super) fn faults(plan: &Plan) -> Vec<Block> {
         ("Hold point", Side::Left),
     ]);
     for (number, step) in (1..).zip(&plan.steps) {
-        if step.hold.is_none() && step.measure.is_empty() {
+        let Some(first) = worst(failures(step)) else { continue };
+        let is_read = step.hold.is_some() || !step.measure.is_empty();
+        let is_touched = step.touch && first.point.highest.si() > plan.touch_voltage.si();
+        if !is_read && !is_touched {
             continue;
         }
-        let Some(first) = worst(failures(step)) else { continue };
         grid.row(row(number, step, &first));
         // A lesser failure that nobody notices can be the one that hurts.
         let hidden = worst(failures(step).filter(|f| !f.is_shown));
@@ -101,21 +108,23 @@ pub(super) fn faults(plan: &Plan) -> Vec<Block> {
         return Vec::new();
     }
     let text = format!(
-        "The failure that leaves the highest voltage at the end of a step with a reading and, above {}, the worst that \
-         its hold point does not show; the JSON output has every failure and step.",
+        "The failure that leaves the highest voltage at the end of a step with a reading and, above {0}, the worst that \
+         its hold point does not show and the worst where hands may come near; the JSON output has every failure and \
+         step.",
         typed(plan.touch_voltage)
     );
     vec![Block::Section("Steps with one part failed"), Block::Table(grid), Block::Paragraph(text)]
 }
 
 /// A failure at a test point at the end of a step.
-struct Failure<'a> {
-    fault: &'a str,
-    point: &'a FaultPoint,
+pub(super) struct Failure<'a> {
+    pub fault: &'a str,
+    pub point: &'a FaultPoint,
     is_shown: bool,
 }
 
-fn failures(step: &StepResult) -> impl Iterator<Item = Failure<'_>> {
+/// All failures of parts at all test points at the end of a step.
+pub(super) fn failures(step: &StepResult) -> impl Iterator<Item = Failure<'_>> {
     // A source that stays on holds every reading, and would hide what the parts do.
     step.faults.iter().filter(|fault| fault.fault != NOT_ISOLATED).flat_map(|StepFault { fault, test_points }| {
         let is_shown = step.hold.as_ref().is_some_and(|hold| hold.shown_faults.contains(fault));
@@ -124,7 +133,7 @@ fn failures(step: &StepResult) -> impl Iterator<Item = Failure<'_>> {
 }
 
 /// The one with the highest voltage; the first of several.
-fn worst<'a>(failures: impl Iterator<Item = Failure<'a>>) -> Option<Failure<'a>> {
+pub(super) fn worst<'a>(failures: impl Iterator<Item = Failure<'a>>) -> Option<Failure<'a>> {
     failures.reduce(|worst, next| if next.point.highest.si() > worst.point.highest.si() { next } else { worst })
 }
 
