@@ -32,7 +32,6 @@ fn unruly() -> Plan {
             wait.across = [format!("node-{}-{i}", "é".repeat(i)), "N".repeat(40)];
             wait.slowest = Some(Time::from_si(1e-9 * 10f64.powi(i as i32)));
             wait.keep = Some(Time::from_si(1e-9 * 10f64.powi(i as i32)));
-            wait.keep = Some(Time::from_si(1e-9 * 10f64.powi(i as i32)));
             wait.at_isolation = Voltage::from_si(1e-4 * 10f64.powi(i as i32 / 4));
             wait.faults[0].fault = format!("{} open", "R".repeat(i + 1));
             wait
@@ -116,10 +115,8 @@ fn a_wait_of_never_says_so_and_to_what_it_settles() {
     let mut plan = sample::plan();
     plan.waits[1].slowest = None;
     plan.waits[1].keep = None;
-    plan.waits[1].keep = None;
     plan.waits[1].settles_at = Voltage::from_si(375.01);
     plan.waits[2].slowest = None;
-    plan.waits[2].keep = None;
     plan.waits[2].keep = None;
     let screen = first_screen(&plan);
     assert!(screen.contains("WAIT NEVER. No wait brings every test point below 50 V."), "{screen}");
