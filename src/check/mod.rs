@@ -6,6 +6,7 @@ mod capacitors;
 mod energy;
 mod limits;
 mod notes;
+mod phases;
 mod procedure;
 mod resistors;
 mod serial;
@@ -21,6 +22,7 @@ pub(crate) use capacitors::CapacitorCheck;
 pub(crate) use energy::remaining_energy;
 pub(crate) use limits::LimitChecks;
 pub(crate) use notes::{assumptions, notes};
+pub(crate) use phases::phase_findings;
 pub(crate) use procedure::{Procedure, StepAnswers};
 pub(crate) use resistors::ResistorChecks;
 pub(crate) use serial::{celsius_or_null, degrees, si, si_list, si_or_null};
@@ -36,7 +38,7 @@ pub use resistors::{Check, ResistorResult};
 pub use step_result::{FaultPoint, Recovery, StepFault, StepHold, StepPart, StepPoint, StepResult};
 pub use stored::{Band, Stored};
 pub use verdict::Verdict;
-pub use waits::{FaultWait, Wait, WorstValue};
+pub use waits::{FaultWait, Interruption, Wait, WorstValue};
 
 /// A pair of nodes by name.
 pub type Pair = [String; 2];

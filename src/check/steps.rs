@@ -143,7 +143,8 @@ impl<'a> StepCheck<'a> {
         let figure = StepFigure::Recovery { pair };
         let (a, b) = self.procedure.model.pairs[pair];
         let end = self.procedure.end();
-        let course = self.procedure.at(self.healthy.worst_point(figure))?.afterwards(a, b);
+        let course =
+            self.procedure.at(self.healthy.worst_point(figure), self.healthy.worst_state(figure))?.afterwards(a, b);
         let (_, at) = course.greatest_magnitude().map_err(EngineError::of("healthy, after the last step"))?;
         let touch = self.procedure.bank.description().touch_voltage.si();
         Ok(Recovery {

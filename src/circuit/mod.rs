@@ -4,6 +4,7 @@
 //! volt, ampere, coulomb, joule, second). The way through the room:
 //!
 //! 1. [`Network`] holds the parts; [`Network::operating_point`] gives the potentials before isolation.
+//!    For three phases, [`Network::interrupted_potentials`] gives what a switch leaves whose poles open one by one.
 //! 2. [`Modes`] turns a network into decay rates and shapes, to high relative accuracy.
 //! 3. [`Response`] is what follows from an initial state: every voltage as an [`ExpSum`],
 //!    `v(t) = v_inf + sum of a_k exp(-lambda_k t)`, with no time step anywhere.
@@ -14,6 +15,7 @@ mod crossing;
 mod expsum;
 mod graph;
 mod greatest;
+mod interruption;
 mod jacobi;
 mod laplacian;
 mod modes;
@@ -24,6 +26,7 @@ mod short;
 
 pub use crossing::LastExit;
 pub use expsum::ExpSum;
+pub use interruption::{Feed, Phasor, three_phases};
 pub use modes::Modes;
 pub use network::{Edge, Network};
 pub use response::Response;

@@ -1,8 +1,11 @@
 //! What may have failed.
 
 use super::model::{Model, Variation};
+use super::worst::Worst;
 use crate::bank::Bank;
 use crate::bank::description::Role;
+use crate::circuit::CircuitError;
+use rayon::prelude::*;
 
 /// A bank with every part healthy, or with one part failed: what stood before isolation, and what stands after.
 #[derive(Debug, Clone, Default)]
@@ -11,12 +14,14 @@ pub(crate) struct Scenario {
     pub after: Variation,
     /// Own voltages of capacitors are dropped: all take the operating point of the failed circuit.
     pub drops_own_voltages: bool,
+    /// Which of the states of [`super::poles::ThreePhase`] a three-phase bank is in at isolation.
+    pub sequence: usize,
 }
 
 /// One part failed, and the scenarios of which the worst counts.
 #[derive(Debug, Clone)]
 pub(crate) struct Fault {
-    /// `R1 open`, `R2 absent`, `C1 shorted`, `C1 one unit shorted`.
+    /// `R1 open`, `R2 absent`, `C1 shorted`, `C1 one unit shorted`; in a three-phase bank `CB.AB open` too.
     pub name: String,
     /// The part.
     pub id: String,
@@ -26,7 +31,7 @@ pub(crate) struct Fault {
 
 impl Scenario {
     fn settled(variation: Variation) -> Self {
-        Scenario { before: variation.clone(), after: variation, drops_own_voltages: false }
+        Scenario { before: variation.clone(), after: variation, ..Scenario::default() }
     }
 }
 
@@ -43,22 +48,33 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
         let lost = Variation { resistor: Some((index, factor)), ..Variation::default() };
         let at_isolation = Scenario { after: lost.clone(), ..Scenario::default() };
         let mut scenarios = vec![Scenario::settled(lost)];
-        if resistor.role != Role::Leakage {
-            // A part breaks at a moment; leakage that is absent was never there.
+        // A part breaks at a moment; leakage that is absent was never there. What no alternating current passes has no
+        // say in the state of a three-phase bank at isolation: both moments are one.
+        if resistor.role != Role::Leakage && (model.three_phase.is_none() || resistor.role == Role::Series) {
             scenarios.push(at_isolation);
         }
         faults.push(Fault { name: format!("{} {word}", resistor.id), id: resistor.id.clone(), scenarios });
     }
     for (index, capacitor) in bank.description().capacitors.iter().enumerate() {
         let part = &model.capacitors[index];
-        let at_terminals = model.terminals.contains(&part.a) && model.terminals.contains(&part.b);
-        if !at_terminals {
+        let earth = model.three_phase.as_ref().and_then(|three| three.earth);
+        let is_held = |node: usize| model.terminals.contains(&node) || earth == Some(node);
+        if !(is_held(part.a) && is_held(part.b)) {
             let variation = Variation { shorted: Some(index), ..Variation::default() };
             let scenario = Scenario { drops_own_voltages: true, ..Scenario::settled(variation) };
             faults.push(Fault {
                 name: format!("{} shorted", capacitor.id),
                 id: capacitor.id.clone(),
                 scenarios: vec![scenario],
+            });
+        }
+        if model.three_phase.is_some() {
+            // A fuse has blown, or the leg has come open: long before isolation, and nobody noticed.
+            let variation = Variation { capacitor: Some((index, 0.0)), ..Variation::default() };
+            faults.push(Fault {
+                name: format!("{} open", capacitor.id),
+                id: capacitor.id.clone(),
+                scenarios: vec![Scenario::settled(variation)],
             });
         }
         if capacitor.series > 1 {
@@ -72,5 +88,41 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
             });
         }
     }
+    for fault in &mut faults {
+        let scenarios = std::mem::take(&mut fault.scenarios).into_iter();
+        fault.scenarios = scenarios.flat_map(|scenario| scenario.with_every_sequence(model)).collect();
+    }
     faults
+}
+
+/// The greatest of every figure over several scenarios, and the number of the scenario that it comes from.
+pub(crate) fn worst_of<'s>(
+    scenarios: &'s [Scenario],
+    solve: impl Fn(&'s Scenario) -> Result<Vec<Worst>, CircuitError> + Sync,
+) -> Result<(Vec<Worst>, Vec<usize>), CircuitError> {
+    let all: Vec<Vec<Worst>> = scenarios.par_iter().map(&solve).collect::<Result<_, CircuitError>>()?;
+    let mut all = all.into_iter();
+    let mut worst = all.next().unwrap_or_default();
+    let mut from = vec![0; worst.len()];
+    for (number, found) in all.enumerate() {
+        let known = worst.iter_mut().zip(&mut from).zip(found);
+        known.filter(|((w, _), f)| f.value > w.value).for_each(|((w, at), f)| (*w, *at) = (f, number + 1));
+    }
+    Ok((worst, from))
+}
+
+/// The greatest of every nominal figure over several scenarios, and the number of the scenario that it comes from; a
+/// figure that is no number stays none.
+pub(crate) fn nominal_of<'s>(
+    scenarios: &'s [Scenario],
+    solve: impl Fn(&'s Scenario) -> Result<Vec<f64>, CircuitError>,
+) -> Result<(Vec<f64>, Vec<usize>), CircuitError> {
+    let mut all = scenarios.iter().map(solve);
+    let mut greatest = all.next().transpose()?.unwrap_or_default();
+    let mut from = vec![0; greatest.len()];
+    for (number, found) in all.enumerate() {
+        let known = greatest.iter_mut().zip(&mut from).zip(found?);
+        known.filter(|((g, _), f)| *f > **g || f.is_nan()).for_each(|((g, at), f)| (*g, *at) = (f, number + 1));
+    }
+    Ok((greatest, from))
 }

@@ -37,6 +37,10 @@ pub(crate) struct Timeline {
     map: Vec<usize>,
     /// Power in watt of every resistor before isolation.
     standing: Vec<f64>,
+    /// Greatest voltage across every resistor before isolation, 0 for one that is not connected.
+    standing_volts: Vec<f64>,
+    /// Which capacitors of the model are in the network.
+    present: Vec<bool>,
     runs: Vec<Run>,
 }
 
@@ -56,13 +60,16 @@ impl Timeline {
     /// Runs a procedure at one point of the box.
     pub fn run(setting: &Setting, point: &[f64]) -> Result<Self, CircuitError> {
         let Setting { model, scenario, .. } = *setting;
-        let Start { map, potentials, voltages } = Start::at_isolation(model, scenario, point, setting.volts);
-        let before = model.ohms(&scenario.before, point, &[]);
-        let power = |(r, ohm): (&super::model::Part, f64)| {
-            if ohm.is_finite() { (potentials[map[r.a]] - potentials[map[r.b]]).powi(2) / ohm } else { 0.0 }
-        };
-        let standing = model.resistors.iter().zip(before).map(power).collect();
-        let mut timeline = Timeline { map, standing, runs: Vec::with_capacity(setting.stages.len()) };
+        let Start { map, before, potentials, voltages } = Start::at_isolation(model, scenario, point, setting.volts);
+        let ohms = model.ohms(&scenario.before, point, &[]);
+        let parts = || model.resistors.iter().zip(&ohms).map(|(r, ohm)| (map[r.a], map[r.b], *ohm));
+        let standing =
+            parts().map(|(a, b, ohm)| if ohm.is_finite() { before.mean_square(a, b) / ohm } else { 0.0 }).collect();
+        let standing_volts =
+            parts().map(|(a, b, ohm)| if ohm.is_finite() { before.greatest(a, b) } else { 0.0 }).collect();
+        let present = (0..model.capacitors.len()).map(|c| model.is_there(&scenario.after, &map, c)).collect();
+        let runs = Vec::with_capacity(setting.stages.len());
+        let mut timeline = Timeline { map, standing, standing_volts, present, runs };
         let (mut voltages, mut potentials) = (voltages, potentials);
         let mut last: Option<(&[usize], Arc<Modes>)> = None;
         for stage in setting.stages {
@@ -307,7 +314,7 @@ impl Objective for ProcedureStudy<'_> {
 
 impl StepFigure {
     fn of(&self, model: &Model, timeline: &Timeline, floor: f64) -> Result<f64, CircuitError> {
-        let Timeline { map, runs, standing } = timeline;
+        let Timeline { map, runs, standing, standing_volts, present } = timeline;
         let at_pair = |stage: usize, pair: usize| timeline.across(stage, model.pairs[pair].0, model.pairs[pair].1);
         let all = |of: &dyn Fn(&Run) -> Result<f64, CircuitError>| -> Result<Vec<f64>, CircuitError> {
             runs.iter().map(of).collect()
@@ -328,7 +335,7 @@ impl StepFigure {
             }
             StepFigure::ReadyEnergy { stage } => {
                 let network = runs[stage].response.network();
-                let there = model.capacitors.iter().filter(|c| map[c.a] != map[c.b]);
+                let there = model.capacitors.iter().zip(present).filter(|(_, there)| **there).map(|(c, _)| c);
                 let voltages = runs[stage].response.voltages_at(0.0);
                 let parts = there.zip(&network.capacitors).zip(voltages);
                 parts.filter(|((c, _), _)| c.kind == PartKind::Fixed).map(|((_, e), u)| 0.5 * e.value * u * u).sum()
@@ -344,8 +351,7 @@ impl StepFigure {
             StepFigure::PartVoltage { resistor } => {
                 let peaks = greatest(all(&|run| run.peak(model, map, resistor))?);
                 let fixed = model.resistors[resistor].kind != PartKind::Switched;
-                let ohms = runs.first().map_or(f64::INFINITY, |run| run.ohms[resistor]);
-                if fixed && ohms.is_finite() { peaks.max((standing[resistor] * ohms).sqrt()) } else { peaks }
+                if fixed { peaks.max(standing_volts[resistor]) } else { peaks }
             }
             StepFigure::PartCurrent { resistor } => {
                 greatest(all(&|run| Ok(per_ohm(run.peak(model, map, resistor)?, run.ohms[resistor])))?)

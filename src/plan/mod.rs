@@ -9,7 +9,7 @@ pub use result::*;
 use crate::bank::Bank;
 use crate::check::{
     Answers, CapacitorCheck, FaultAnswers, LimitChecks, Procedure, ResistorChecks, StepCheck, StoredCheck, WaitCheck,
-    assumptions, notes, remaining_energy, step_assumptions, step_findings,
+    assumptions, notes, phase_findings, remaining_energy, step_assumptions, step_findings,
 };
 use crate::discharge::{Figure, MOST_CORNERS, Model, faults};
 use crate::finding::{Findings, Severity};
@@ -49,10 +49,10 @@ pub struct Options {
 /// ```
 pub fn plan(bank: &Bank, input_sha256: &str, noticed: Findings, options: Options) -> Result<Plan, EngineError> {
     let mut findings = noticed;
+    // From here on every part is a plain one: the plan of a file and that of its expanded form are the same.
+    let bank = &bank.expanded();
     let mut plan = blank(bank, input_sha256);
-    if !bank.is_three_phase() {
-        compute(bank, &mut plan, &mut findings, options)?;
-    }
+    compute(bank, &mut plan, &mut findings, options)?;
     for missing in &plan.not_computed {
         findings.add(Severity::Warning, "not-computed", format!("Not computed by this version: {missing}."));
     }
@@ -96,6 +96,7 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
         plan.assumptions.extend(step_assumptions(&steps));
     }
     plan.capacitors = capacitors.conclude(&healthy, &under_faults, findings);
+    phase_findings(bank, &model, &healthy, &plan.waits, findings);
     notes(bank, &model, &plan.resistors, &plan.capacitors, findings);
     plan.worst_case_search = search_used(model.passive);
     if options.working {
@@ -143,10 +144,7 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
 /// Parts of the description that this version reads but does not compute.
 fn not_computed(bank: &Bank) -> Vec<String> {
     let description = bank.description();
-    let missing = [
-        (bank.is_three_phase(), "a three-phase bank: no wait, energy or rating is computed"),
-        (!description.sinks.is_empty(), "sinks: no wait relies on them"),
-    ];
+    let missing = [(!description.sinks.is_empty(), "sinks: no wait relies on them")];
     missing.into_iter().filter(|(present, _)| *present).map(|(_, text)| text.to_string()).collect()
 }
 

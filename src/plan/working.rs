@@ -6,15 +6,17 @@ use crate::check::EngineError;
 use crate::discharge::{Case, Model, Part, PartKind, Scenario};
 use crate::quantity::{Capacitance, Quantity, Resistance, Time, Voltage};
 
-fn solve(model: &Model, point: &[f64], volts: Voltage) -> Result<Case, EngineError> {
+/// `state` is the one that the poles of a three-phase bank have left.
+fn solve(model: &Model, point: &[f64], volts: Voltage, state: Option<&String>) -> Result<Case, EngineError> {
     let failed = |cause| EngineError { scenario: "healthy".into(), cause };
-    Case::solve(model, &Scenario::default(), point, volts.si()).map_err(failed)
+    let scenario = Scenario { sequence: model.find_state(state.map(String::as_str)), ..Scenario::default() };
+    Case::solve(model, &scenario, point, volts.si()).map_err(failed)
 }
 
 /// Nominal time constants in second, the slowest first.
 pub(super) fn time_constants(bank: &Bank, model: &Model) -> Result<Vec<f64>, EngineError> {
     let nominal = bank.description().charged_to.nominal;
-    Ok(solve(model, &model.nominal_point(), nominal)?.response.modes().time_constants())
+    Ok(solve(model, &model.nominal_point(), nominal, None)?.response.modes().time_constants())
 }
 
 /// The nominal and the slowest wait at every test point, worked out.
@@ -23,12 +25,12 @@ pub(super) fn working(bank: &Bank, model: &Model, waits: &[Wait]) -> Result<Vec<
     let mut list = Vec::with_capacity(2 * waits.len());
     for (pair, wait) in waits.iter().enumerate() {
         let worst: Vec<f64> = wait.worst_point.iter().map(|w| w.factor).collect();
-        let cases = [
-            ("nominal", model.nominal_point(), charged.nominal, wait.nominal),
-            ("slowest", worst, charged.highest, wait.slowest),
-        ];
-        for (name, point, volts, time) in cases {
-            list.push(worked(bank, model, (pair, name), &point, volts, time)?);
+        let states = wait.interruption.as_ref();
+        let nominal = (states.map(|i| &i.nominal), model.nominal_point(), charged.nominal, wait.nominal);
+        let slowest = (states.map(|i| &i.slowest), worst, charged.highest, wait.slowest);
+        for (name, (state, point, volts, time)) in [("nominal", nominal), ("slowest", slowest)] {
+            let name = state.map_or_else(|| name.to_string(), |state| format!("{name}, {state}"));
+            list.push(worked(bank, model, (pair, name, state), &point, volts, time)?);
         }
     }
     Ok(list)
@@ -42,12 +44,12 @@ fn resistors_of(model: &Model) -> impl Iterator<Item = &Part> {
 fn worked(
     bank: &Bank,
     model: &Model,
-    (pair, name): (usize, &str),
+    (pair, name, state): (usize, String, Option<&String>),
     point: &[f64],
     volts: Voltage,
     wait: Option<Time>,
 ) -> Result<Working, EngineError> {
-    let case = solve(model, point, volts)?;
+    let case = solve(model, point, volts, state)?;
     let (a, b) = model.pairs[pair];
     let voltage = case.across(a, b);
     let factor = |parameter: Option<usize>| parameter.map_or(1.0, |p| point[p]);
@@ -82,7 +84,7 @@ fn worked(
     };
     Ok(Working {
         across: [model.node_names[a].clone(), model.node_names[b].clone()],
-        case: name.to_string(),
+        case: name,
         values: resistors.chain(capacitors).collect(),
         charged_to: volts,
         settles_at: Voltage::from_si(voltage.constant()),
