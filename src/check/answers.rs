@@ -2,7 +2,7 @@
 
 use crate::bank::Bank;
 use crate::circuit::CircuitError;
-use crate::discharge::{self, Fault, Figure, Model, Scenario, Study, Worst, nominal_of, worst_of};
+use crate::discharge::{self, Fault, Figure, Model, Scenario, Study, Worst};
 use crate::quantity::Quantity;
 use rayon::prelude::*;
 use std::fmt;
@@ -37,10 +37,6 @@ pub(crate) struct Answers {
     figures: Vec<Figure>,
     nominal: Vec<f64>,
     worst: Vec<Worst>,
-    /// Names of the states at isolation that the worst come from; empty where there is one only.
-    states: Vec<String>,
-    /// The same for the nominal values.
-    nominal_states: Vec<String>,
 }
 
 /// Figures under one fault: the greatest over the box and over the ways in which it can come about.
@@ -55,15 +51,12 @@ impl Answers {
     pub fn healthy(bank: &Bank, model: &Model, mut figures: Vec<Figure>) -> Result<Self, EngineError> {
         without_repeats(&mut figures);
         let charged = &bank.description().charged_to;
-        let scenarios = Scenario::healthy(model);
+        let scenario = Scenario::default();
+        let study = |volts| Study { model, scenario: &scenario, volts, figures: &figures };
         let failed = |cause| EngineError { scenario: "healthy".into(), cause };
-        let study = |scenario, volts| Study { model, scenario, volts, figures: &figures };
-        let (nominal, nominal_from) =
-            nominal_of(&scenarios, |s| discharge::nominal(&study(s, charged.nominal.si()))).map_err(failed)?;
-        let solve = |scenario| discharge::worst(&study(scenario, charged.highest.si()));
-        let (worst, from) = worst_of(&scenarios, solve).map_err(failed)?;
-        let named = |list: Vec<usize>| list.into_iter().filter_map(|number| model.state_name(number)).collect();
-        Ok(Answers { nominal, worst, figures, states: named(from), nominal_states: named(nominal_from) })
+        let nominal = discharge::nominal(&study(charged.nominal.si())).map_err(failed)?;
+        let worst = discharge::worst(&study(charged.highest.si())).map_err(failed)?;
+        Ok(Answers { nominal, worst, figures })
     }
 
     /// Answers `figures` under `fault`.
@@ -71,9 +64,17 @@ impl Answers {
         without_repeats(&mut figures);
         let volts = bank.description().charged_to.highest.si();
         let failed = |cause| EngineError { scenario: fault.name.clone(), cause };
-        let solve = |scenario| discharge::worst(&Study { model, scenario, volts, figures: &figures });
-        let (worst, _) = worst_of(&fault.scenarios, solve).map_err(failed)?;
-        Ok(Answers { worst, figures, ..Answers::default() })
+        let mut worst: Vec<Worst> = Vec::new();
+        for scenario in &fault.scenarios {
+            let found = discharge::worst(&Study { model, scenario, volts, figures: &figures }).map_err(failed)?;
+            if worst.is_empty() {
+                worst = found;
+            } else {
+                let pairs = worst.iter_mut().zip(found);
+                pairs.filter(|(w, f)| f.value > w.value).for_each(|(w, f)| *w = f);
+            }
+        }
+        Ok(Answers { nominal: Vec::new(), worst, figures })
     }
 
     fn index(&self, figure: &Figure) -> Option<usize> {
@@ -93,18 +94,6 @@ impl Answers {
     /// The point of the box at which a figure is greatest.
     pub fn worst_point(&self, figure: Figure) -> &[f64] {
         self.index(&figure).and_then(|i| self.worst.get(i)).map_or(&[], |w| &w.point)
-    }
-}
-
-impl Answers {
-    /// The state at isolation from which a figure is greatest; `None` where there is one only.
-    pub fn worst_state(&self, figure: Figure) -> Option<&str> {
-        self.index(&figure).and_then(|i| self.states.get(i)).map(String::as_str)
-    }
-
-    /// The state at isolation from which the nominal value of a figure is greatest.
-    pub fn nominal_state(&self, figure: Figure) -> Option<&str> {
-        self.index(&figure).and_then(|i| self.nominal_states.get(i)).map(String::as_str)
     }
 }
 

@@ -6,7 +6,6 @@ use crate::bank::description::{Hold, Lasts, Step};
 use crate::circuit::CircuitError;
 use crate::discharge::{
     self, Fault, MOST_CORNERS, Model, PartKind, ProcedureStudy, Scenario, Setting, Stage, StepFigure, Timeline, Worst,
-    nominal_of, worst_of,
 };
 use crate::quantity::{Quantity, Time, keepable};
 
@@ -29,8 +28,6 @@ pub(crate) struct StepAnswers {
     figures: Vec<StepFigure>,
     nominal: Vec<f64>,
     worst: Vec<Worst>,
-    /// The state at isolation (a number of the model's) that each worst comes from.
-    states: Vec<usize>,
 }
 
 impl StepAnswers {
@@ -51,11 +48,6 @@ impl StepAnswers {
     /// The point of the box at which a figure is greatest.
     pub fn worst_point(&self, figure: StepFigure) -> &[f64] {
         self.index(figure).and_then(|i| self.worst.get(i)).map_or(&[], |w| &w.point)
-    }
-
-    /// The state at isolation from which a figure is greatest.
-    pub fn worst_state(&self, figure: StepFigure) -> usize {
-        self.index(figure).and_then(|i| self.states.get(i)).copied().unwrap_or(0)
     }
 }
 
@@ -94,9 +86,8 @@ impl<'a> Procedure<'a> {
                     .into_iter()
                     .map(|pair| StepFigure::LastOver { stage, pair, level: hold.below.si() })
                     .collect();
-                let (found, _) =
-                    worst_of(&Scenario::healthy(self.model), |scenario| self.worst(scenario, &figures, MOST_CORNERS))
-                        .map_err(EngineError::of("healthy"))?;
+                let found =
+                    self.worst(&Scenario::default(), &figures, MOST_CORNERS).map_err(EngineError::of("healthy"))?;
                 let longest = found.iter().map(|w| w.value).fold(0.0, f64::max);
                 self.never[stage] = !longest.is_finite();
                 if longest.is_finite() {
@@ -131,31 +122,35 @@ impl<'a> Procedure<'a> {
 
     /// Figures of the healthy bank; `model` may have an array opened up.
     pub fn healthy(&self, model: &Model, figures: Vec<StepFigure>) -> Result<StepAnswers, EngineError> {
-        let scenarios = Scenario::healthy(model);
+        let scenario = Scenario::default();
         let most_corners = if std::ptr::eq(model, self.model) { MOST_CORNERS } else { CORNERS_ASIDE };
-        let study = |scenario, volts| {
-            let setting = self.setting(model, scenario, volts);
+        let study = |volts| {
+            let setting = self.setting(model, &scenario, volts);
             ProcedureStudy { setting, most_corners, figures: &figures }
         };
         let failed = EngineError::of("healthy, through the steps");
-        let (nominal, _) =
-            nominal_of(&scenarios, |s| discharge::nominal(&study(s, self.tried_from[1]))).map_err(&failed)?;
-        let solve = |scenario| discharge::worst(&study(scenario, self.tried_from[2]));
-        let (worst, states) = worst_of(&scenarios, solve).map_err(&failed)?;
-        Ok(StepAnswers { nominal, worst, figures, states })
+        let nominal = discharge::nominal(&study(self.tried_from[1])).map_err(&failed)?;
+        let worst = discharge::worst(&study(self.tried_from[2])).map_err(&failed)?;
+        Ok(StepAnswers { nominal, worst, figures })
     }
 
     /// Figures under a fault, the worst of the ways in which it can come about.
     pub fn under(&self, fault: &Fault, figures: &[StepFigure]) -> Result<StepAnswers, EngineError> {
-        let solve = |scenario| self.worst(scenario, figures, CORNERS_ASIDE);
-        let (worst, states) = worst_of(&fault.scenarios, solve).map_err(EngineError::of(&fault.name))?;
-        Ok(StepAnswers { nominal: Vec::new(), worst, figures: figures.to_vec(), states })
+        let mut worst: Vec<Worst> = Vec::new();
+        for scenario in &fault.scenarios {
+            let found = self.worst(scenario, figures, CORNERS_ASIDE).map_err(EngineError::of(&fault.name))?;
+            if worst.is_empty() {
+                worst = found;
+            } else {
+                worst.iter_mut().zip(found).filter(|(w, f)| f.value > w.value).for_each(|(w, f)| *w = f);
+            }
+        }
+        Ok(StepAnswers { nominal: Vec::new(), worst, figures: figures.to_vec() })
     }
 
-    /// The healthy bank through the steps at one point of the box, from one of the states that it can have at isolation,
-    /// at the highest voltage.
-    pub fn at(&self, point: &[f64], state: usize) -> Result<Timeline, EngineError> {
-        let scenario = Scenario { sequence: state, ..Scenario::default() };
+    /// The healthy bank through the steps at one point of the box, at the highest voltage.
+    pub fn at(&self, point: &[f64]) -> Result<Timeline, EngineError> {
+        let scenario = Scenario::default();
         Timeline::run(&self.setting(self.model, &scenario, self.tried_from[2]), point)
             .map_err(EngineError::of("healthy, through the steps"))
     }

@@ -1,6 +1,6 @@
-//! One scenario at one point of the tolerance box, solved.
+//! One scenario at one point of the tolerance box, solved: from every state that the bank can have at isolation.
 
-use super::model::Model;
+use super::model::{Model, Part};
 use super::scenario::Scenario;
 use crate::circuit::{CircuitError, ExpSum, Modes, Phasor, Response, ShortCharge};
 use std::sync::Arc;
@@ -40,9 +40,16 @@ pub(crate) struct Start {
     pub map: Vec<usize>,
     /// Potentials of the network's nodes before isolation.
     pub before: Before,
-    /// Potentials in volt of the network's nodes at isolation: with DC those before, else what the poles leave.
+    /// The states that the bank can be in at isolation: one with DC, those that the poles leave with three phases.
+    pub states: Vec<State>,
+}
+
+/// One state at isolation.
+#[derive(Debug, Clone)]
+pub(crate) struct State {
+    /// Potentials in volt of the network's nodes.
     pub potentials: Vec<f64>,
-    /// Voltages in volt of the capacitors of the network after isolation.
+    /// Voltages in volt of the capacitors of the network.
     pub voltages: Vec<f64>,
 }
 
@@ -51,9 +58,9 @@ impl Start {
     /// capacitors with a voltage of their own take it.
     pub fn at_isolation(model: &Model, scenario: &Scenario, point: &[f64], volts: f64) -> Self {
         let map = model.merged(&scenario.after);
-        let (before, potentials) = match &model.three_phase {
+        let (before, all) = match &model.three_phase {
             Some(three_phase) => {
-                let (phasors, left) = three_phase.potentials(model, scenario, point, volts);
+                let (phasors, left) = three_phase.potentials(model, &scenario.before, point, volts);
                 (Before::Alternating(phasors), left)
             }
             None => {
@@ -63,28 +70,31 @@ impl Start {
                     _ => Vec::new(),
                 };
                 let potentials = before.operating_point(&held);
-                (Before::Direct(potentials.clone()), potentials)
+                (Before::Direct(potentials.clone()), vec![potentials])
             }
         };
-        let parts = model.capacitors.iter().zip(&model.own_voltages).enumerate();
-        let voltages = parts
-            .filter(|(i, _)| model.is_there(&scenario.after, &map, *i))
-            .map(|(_, (c, own))| {
+        let state = |potentials: Vec<f64>| {
+            let parts = model.capacitors.iter().zip(&model.own_voltages).enumerate();
+            let there = parts.filter(|(i, _)| model.is_there(&scenario.after, &map, *i));
+            let voltage = |c: &Part, own: &Option<f64>| {
                 let settled = potentials[map[c.a]] - potentials[map[c.b]];
                 own.filter(|_| !scenario.drops_own_voltages).unwrap_or(settled)
-            })
-            .collect();
-        Start { map, before, potentials, voltages }
+            };
+            let voltages = there.map(|(_, (c, own))| voltage(c, own)).collect();
+            State { potentials, voltages }
+        };
+        let states = all.into_iter().map(state).collect();
+        Start { map, before, states }
     }
 }
 
-/// A solved scenario: the state before isolation and every voltage after it.
+/// A solved scenario from one state at isolation: what was before it and every voltage after it.
 #[derive(Debug)]
 pub(crate) struct Case {
     /// For every node of the model, its node in the network.
     pub map: Vec<usize>,
     /// Potentials of the network's nodes before isolation.
-    before: Before,
+    before: Arc<Before>,
     /// Resistances in ohm of all resistors of the model before and after isolation; infinite for open.
     pub before_ohms: Vec<f64>,
     pub after_ohms: Vec<f64>,
@@ -92,14 +102,23 @@ pub(crate) struct Case {
 }
 
 impl Case {
-    /// Solves `scenario` at `point` with `volts` across the terminals before isolation.
-    pub fn solve(model: &Model, scenario: &Scenario, point: &[f64], volts: f64) -> Result<Self, CircuitError> {
-        let Start { map, before, potentials, voltages } = Start::at_isolation(model, scenario, point, volts);
-        let after = model.network(&scenario.after, point, &[]);
-        let response = Arc::new(Modes::new(after)?).response(&voltages, &potentials)?;
+    /// Solves `scenario` at `point` with `volts` across the terminals before isolation, from every state.
+    pub fn solve(model: &Model, scenario: &Scenario, point: &[f64], volts: f64) -> Result<Vec<Self>, CircuitError> {
+        let Start { map, before, states } = Start::at_isolation(model, scenario, point, volts);
+        let after = Arc::new(Modes::new(model.network(&scenario.after, point, &[]))?);
         let before_ohms = model.ohms(&scenario.before, point, &[]);
         let after_ohms = model.ohms(&scenario.after, point, &[]);
-        Ok(Case { map, before, before_ohms, after_ohms, response })
+        let before = Arc::new(before);
+        let case = |state: State| {
+            Ok(Case {
+                map: map.clone(),
+                before: Arc::clone(&before),
+                before_ohms: before_ohms.clone(),
+                after_ohms: after_ohms.clone(),
+                response: after.response(&state.voltages, &state.potentials)?,
+            })
+        };
+        states.into_iter().map(case).collect()
     }
 
     /// Voltage between two nodes of the model after isolation.

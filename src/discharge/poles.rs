@@ -12,7 +12,6 @@
 //! at a current zero too, the state is one of those of three poles with that one last.
 
 use super::model::{Model, Variation};
-use super::scenario::Scenario;
 use crate::bank::Bank;
 use crate::bank::description::{Neutral, Role, Source};
 use crate::circuit::{Feed, Network, Phasor, three_phases};
@@ -92,17 +91,23 @@ impl ThreePhase {
         (model.main_network(variation, point), Feed { poles, earth: self.earth.map(|n| map[n]), joined })
     }
 
-    /// Potentials of all nodes: crest phasors while all poles are closed, and those that `sequence` leaves.
-    pub fn potentials(&self, model: &Model, scenario: &Scenario, point: &[f64], volts: f64) -> (Vec<Phasor>, Vec<f64>) {
-        let (network, feed) = self.fed(model, &scenario.before, point, volts);
-        let order = self.sequences.get(scenario.sequence).map_or(&[][..], |s| &s.order);
+    /// Potentials of all nodes: crest phasors while all poles are closed, and those that each sequence leaves.
+    pub fn potentials(
+        &self,
+        model: &Model,
+        before: &Variation,
+        point: &[f64],
+        volts: f64,
+    ) -> (Vec<Phasor>, Vec<Vec<f64>>) {
+        let (network, feed) = self.fed(model, before, point, volts);
         let mut alternating = network.fed_potentials(&feed);
-        let mut left = network.interrupted_potentials(&feed, order);
+        let mut left: Vec<Vec<f64>> =
+            self.sequences.iter().map(|s| network.interrupted_potentials(&feed, &s.order)).collect();
         // Absorption branches are taken as fully charged: to what the state leaves, the worst that they can hold.
-        let map = model.merged(&scenario.before);
+        let map = model.merged(before);
         for (inside, outside) in model.absorbing_nodes() {
             alternating[inside] = alternating[map[outside]];
-            left[inside] = left[map[outside]];
+            left.iter_mut().for_each(|v| v[inside] = v[map[outside]]);
         }
         (alternating, left)
     }
@@ -159,6 +164,11 @@ fn polarities([a, b, c]: [usize; 3]) -> Vec<Order> {
 }
 
 impl Model {
+    /// How many states the bank can be in at isolation: as many as the poles of a switch can leave, else one.
+    pub fn states(&self) -> usize {
+        self.three_phase.as_ref().map_or(1, |three| three.sequences.len())
+    }
+
     /// The name of a state at isolation, where there are several.
     pub fn state_name(&self, sequence: usize) -> Option<String> {
         self.three_phase.as_ref().and_then(|three| three.sequences.get(sequence)).map(|s| s.name.clone())
@@ -168,18 +178,5 @@ impl Model {
     pub fn find_state(&self, name: Option<&str>) -> usize {
         let sequences = self.three_phase.iter().flat_map(|three| &three.sequences);
         sequences.into_iter().position(|s| Some(s.name.as_str()) == name).unwrap_or(0)
-    }
-}
-
-impl Scenario {
-    /// The same parts with every state that the poles can leave; as it is, where there is one voltage only.
-    pub fn with_every_sequence(self, model: &Model) -> Vec<Scenario> {
-        let count = model.three_phase.as_ref().map_or(1, |three| three.sequences.len());
-        (0..count).map(|sequence| Scenario { sequence, ..self.clone() }).collect()
-    }
-
-    /// The healthy bank, in every state in which it can be at isolation.
-    pub fn healthy(model: &Model) -> Vec<Scenario> {
-        Scenario::default().with_every_sequence(model)
     }
 }

@@ -1,11 +1,8 @@
 //! What may have failed.
 
 use super::model::{Model, Variation};
-use super::worst::Worst;
 use crate::bank::Bank;
 use crate::bank::description::Role;
-use crate::circuit::CircuitError;
-use rayon::prelude::*;
 
 /// A bank with every part healthy, or with one part failed: what stood before isolation, and what stands after.
 #[derive(Debug, Clone, Default)]
@@ -14,8 +11,6 @@ pub(crate) struct Scenario {
     pub after: Variation,
     /// Own voltages of capacitors are dropped: all take the operating point of the failed circuit.
     pub drops_own_voltages: bool,
-    /// Which of the states of [`super::poles::ThreePhase`] a three-phase bank is in at isolation.
-    pub sequence: usize,
 }
 
 /// One part failed, and the scenarios of which the worst counts.
@@ -88,41 +83,5 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
             });
         }
     }
-    for fault in &mut faults {
-        let scenarios = std::mem::take(&mut fault.scenarios).into_iter();
-        fault.scenarios = scenarios.flat_map(|scenario| scenario.with_every_sequence(model)).collect();
-    }
     faults
-}
-
-/// The greatest of every figure over several scenarios, and the number of the scenario that it comes from.
-pub(crate) fn worst_of<'s>(
-    scenarios: &'s [Scenario],
-    solve: impl Fn(&'s Scenario) -> Result<Vec<Worst>, CircuitError> + Sync,
-) -> Result<(Vec<Worst>, Vec<usize>), CircuitError> {
-    let all: Vec<Vec<Worst>> = scenarios.par_iter().map(&solve).collect::<Result<_, CircuitError>>()?;
-    let mut all = all.into_iter();
-    let mut worst = all.next().unwrap_or_default();
-    let mut from = vec![0; worst.len()];
-    for (number, found) in all.enumerate() {
-        let known = worst.iter_mut().zip(&mut from).zip(found);
-        known.filter(|((w, _), f)| f.value > w.value).for_each(|((w, at), f)| (*w, *at) = (f, number + 1));
-    }
-    Ok((worst, from))
-}
-
-/// The greatest of every nominal figure over several scenarios, and the number of the scenario that it comes from; a
-/// figure that is no number stays none.
-pub(crate) fn nominal_of<'s>(
-    scenarios: &'s [Scenario],
-    solve: impl Fn(&'s Scenario) -> Result<Vec<f64>, CircuitError>,
-) -> Result<(Vec<f64>, Vec<usize>), CircuitError> {
-    let mut all = scenarios.iter().map(solve);
-    let mut greatest = all.next().transpose()?.unwrap_or_default();
-    let mut from = vec![0; greatest.len()];
-    for (number, found) in all.enumerate() {
-        let known = greatest.iter_mut().zip(&mut from).zip(found?);
-        known.filter(|((g, _), f)| *f > **g || f.is_nan()).for_each(|((g, at), f)| (*g, *at) = (f, number + 1));
-    }
-    Ok((greatest, from))
 }
