@@ -1,9 +1,10 @@
 //! The figures that the checks ask for, answered together: every corner of the box is solved once for all of them.
 
 use crate::bank::Bank;
+use crate::bank::description::ChargedTo;
 use crate::circuit::CircuitError;
 use crate::discharge::{self, Fault, Figure, Model, Scenario, Study, Worst};
-use crate::quantity::Quantity;
+use crate::quantity::{Quantity, Voltage};
 use rayon::prelude::*;
 use std::fmt;
 
@@ -31,12 +32,48 @@ impl EngineError {
     }
 }
 
-/// Figures of the healthy bank: nominal, and greatest over the tolerance box at the highest voltage.
+/// Figures of the healthy bank: nominal, and greatest over the tolerance box at the highest voltage; the worst of
+/// going with and without the sinks that no wait relies on.
 #[derive(Debug, Clone, Default)]
 pub(crate) struct Answers {
     figures: Vec<Figure>,
     nominal: Vec<f64>,
-    worst: Vec<Worst>,
+    worst: Governed,
+    /// Of a three-phase bank, for every figure the state at isolation that it comes from: nominal, worst.
+    states: Vec<[Option<String>; 2]>,
+}
+
+/// The worst of several scenarios for each figure, and which of them it is.
+#[derive(Debug, Clone, Default)]
+pub(crate) struct Governed {
+    pub worst: Vec<Worst>,
+    pub scenario: Vec<Scenario>,
+}
+
+impl Governed {
+    /// Takes in what was found in one more scenario.
+    pub fn offer(&mut self, scenario: &Scenario, found: Vec<Worst>) {
+        if self.worst.is_empty() {
+            self.scenario = vec![scenario.clone(); found.len()];
+            self.worst = found;
+            return;
+        }
+        for (index, found) in found.into_iter().enumerate() {
+            if found.value > self.worst[index].value {
+                self.worst[index] = found;
+                self.scenario[index] = scenario.clone();
+            }
+        }
+    }
+}
+
+/// The greater of each nominal figure.
+pub(super) fn greater(nominal: &mut Vec<f64>, found: Vec<f64>) {
+    if nominal.is_empty() {
+        *nominal = found;
+    } else {
+        nominal.iter_mut().zip(found).for_each(|(x, y)| *x = x.max(y));
+    }
 }
 
 /// Figures under one fault: the greatest over the box and over the ways in which it can come about.
@@ -51,12 +88,15 @@ impl Answers {
     pub fn healthy(bank: &Bank, model: &Model, mut figures: Vec<Figure>) -> Result<Self, EngineError> {
         without_repeats(&mut figures);
         let charged = &bank.description().charged_to;
-        let scenario = Scenario::default();
-        let study = |volts| Study { model, scenario: &scenario, volts, figures: &figures };
         let failed = |cause| EngineError { scenario: "healthy".into(), cause };
-        let nominal = discharge::nominal(&study(charged.nominal.si())).map_err(failed)?;
-        let worst = discharge::worst(&study(charged.highest.si())).map_err(failed)?;
-        Ok(Answers { nominal, worst, figures })
+        let (mut nominal, mut worst) = (Vec::new(), Governed::default());
+        for scenario in &discharge::healthy(model) {
+            let study = |volts| Study { model, scenario, volts, figures: &figures };
+            greater(&mut nominal, discharge::nominal(&study(charged.nominal.si())).map_err(failed)?);
+            worst.offer(scenario, discharge::worst(&study(charged.highest.si())).map_err(failed)?);
+        }
+        let states = states(model, charged, &figures, &worst).map_err(failed)?;
+        Ok(Answers { nominal, worst, figures, states })
     }
 
     /// Answers `figures` under `fault`.
@@ -64,17 +104,12 @@ impl Answers {
         without_repeats(&mut figures);
         let volts = bank.description().charged_to.highest.si();
         let failed = |cause| EngineError { scenario: fault.name.clone(), cause };
-        let mut worst: Vec<Worst> = Vec::new();
+        let mut worst = Governed::default();
         for scenario in &fault.scenarios {
-            let found = discharge::worst(&Study { model, scenario, volts, figures: &figures }).map_err(failed)?;
-            if worst.is_empty() {
-                worst = found;
-            } else {
-                let pairs = worst.iter_mut().zip(found);
-                pairs.filter(|(w, f)| f.value > w.value).for_each(|(w, f)| *w = f);
-            }
+            let study = Study { model, scenario, volts, figures: &figures };
+            worst.offer(scenario, discharge::worst(&study).map_err(failed)?);
         }
-        Ok(Answers { nominal: Vec::new(), worst, figures })
+        Ok(Answers { worst, figures, ..Answers::default() })
     }
 
     fn index(&self, figure: &Figure) -> Option<usize> {
@@ -88,13 +123,44 @@ impl Answers {
 
     /// The greatest value of a figure; NaN where it was never asked for, which passes no check.
     pub fn worst(&self, figure: Figure) -> f64 {
-        self.index(&figure).and_then(|i| self.worst.get(i)).map_or(f64::NAN, |w| w.value)
+        self.index(&figure).and_then(|i| self.worst.worst.get(i)).map_or(f64::NAN, |w| w.value)
     }
 
     /// The point of the box at which a figure is greatest.
     pub fn worst_point(&self, figure: Figure) -> &[f64] {
-        self.index(&figure).and_then(|i| self.worst.get(i)).map_or(&[], |w| &w.point)
+        self.index(&figure).and_then(|i| self.worst.worst.get(i)).map_or(&[], |w| &w.point)
     }
+
+    /// The states at isolation from which a figure is greatest, nominal and worst; `None` where there is one only.
+    pub fn states(&self, figure: Figure) -> Option<[&str; 2]> {
+        let [nominal, worst] = self.index(&figure).and_then(|i| self.states.get(i))?;
+        Some([nominal.as_deref()?, worst.as_deref()?])
+    }
+
+    /// The scenario in which a figure is greatest.
+    pub fn worst_scenario(&self, figure: Figure) -> Scenario {
+        self.index(&figure).and_then(|i| self.worst.scenario.get(i)).cloned().unwrap_or_default()
+    }
+}
+
+/// From which state at isolation every figure comes, where there are several.
+fn states(
+    model: &Model,
+    charged: &ChargedTo,
+    figures: &[Figure],
+    governed: &Governed,
+) -> Result<Vec<[Option<String>; 2]>, CircuitError> {
+    if model.three_phase.is_none() {
+        return Ok(Vec::new());
+    }
+    let found = governed.scenario.iter().zip(&governed.worst).enumerate();
+    let of = |(index, (scenario, worst)): (usize, (&Scenario, &Worst))| {
+        let study = |volts: Voltage| Study { model, scenario, volts: volts.si(), figures };
+        let nominal = study(charged.nominal).worst_state(index, &model.nominal_point())?;
+        let worst = study(charged.highest).worst_state(index, &worst.point)?;
+        Ok([nominal, worst].map(|state| model.state_name(state)))
+    };
+    found.map(of).collect()
 }
 
 impl FaultAnswers {

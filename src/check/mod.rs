@@ -4,6 +4,7 @@
 mod answers;
 mod capacitors;
 mod energy;
+mod fault_words;
 mod limits;
 mod notes;
 mod phases;
@@ -33,6 +34,7 @@ pub(crate) use waits::WaitCheck;
 
 pub use answers::EngineError;
 pub use capacitors::CapacitorResult;
+pub use fault_words::fault_in_words;
 pub use limits::{LimitResult, LimitSource};
 pub use resistors::{Check, ResistorResult};
 pub use step_result::{FaultPoint, Recovery, StepFault, StepHold, StepPart, StepPoint, StepResult};

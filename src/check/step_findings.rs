@@ -3,7 +3,7 @@
 use super::steps::{NOT_ISOLATED, StepCheck};
 use super::stored::bands;
 use super::waits::listed;
-use super::{Recovery, ResistorResult, StepResult, Verdict};
+use super::{Recovery, ResistorResult, StepResult, Verdict, fault_in_words};
 use crate::bank::description::Role;
 use crate::discharge::StepFigure;
 use crate::finding::{Findings, Severity};
@@ -200,7 +200,7 @@ fn touched(check: &StepCheck, stage: usize, steps: &[StepResult], findings: &mut
             format!(
                 "{}: with {} up to {} is still at {}. {}",
                 named(stage, step),
-                fault.fault,
+                fault_in_words(&fault.fault),
                 show(point.highest, Direction::Up),
                 point.across.join(" - "),
                 shown_at(&steps[..stage], &fault.fault)

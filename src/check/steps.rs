@@ -4,7 +4,7 @@ use super::procedure::{Procedure, StepAnswers};
 use super::step_result::{FaultPoint, Recovery, StepFault, StepHold, StepPart, StepPoint, StepResult};
 use super::{EngineError, Pair, Wait};
 use crate::bank::description::{Lasts, Role, Step};
-use crate::circuit::ExpSum;
+use crate::circuit::Course;
 use crate::discharge::{Fault, StepFigure};
 use crate::quantity::{Current, Energy, Power, Quantity, Time, Voltage};
 use rayon::prelude::*;
@@ -143,9 +143,16 @@ impl<'a> StepCheck<'a> {
         let figure = StepFigure::Recovery { pair };
         let (a, b) = self.procedure.model.pairs[pair];
         let end = self.procedure.end();
-        let course =
-            self.procedure.at(self.healthy.worst_point(figure), self.healthy.worst_state(figure))?.afterwards(a, b);
-        let (_, at) = course.greatest_magnitude().map_err(EngineError::of("healthy, after the last step"))?;
+        let scenario = self.healthy.worst_scenario(figure);
+        let all = self.procedure.at(&scenario, self.healthy.worst_point(figure))?;
+        let (mut course, mut greatest, mut at) = (Course::default(), f64::NEG_INFINITY, 0.0);
+        for timeline in all {
+            let this = timeline.afterwards(a, b);
+            let (voltage, when) = this.greatest_magnitude().map_err(EngineError::of("healthy, after the last step"))?;
+            if voltage > greatest {
+                (course, greatest, at) = (this, voltage, when);
+            }
+        }
         let touch = self.procedure.bank.description().touch_voltage.si();
         Ok(Recovery {
             across: self.pair_name(pair),
@@ -157,13 +164,13 @@ impl<'a> StepCheck<'a> {
 }
 
 /// When a voltage that begins below `level` first reaches it on its way to its greatest value at `peak`.
-fn passes(course: &ExpSum, level: f64, peak: f64) -> Option<f64> {
+fn passes(course: &Course, level: f64, peak: f64) -> Option<f64> {
     let over = |t: f64| course.value(t).abs() > level;
     if over(0.0) {
         return Some(0.0);
     }
-    let slowest = course.terms().first().map_or(1.0, |(_, rate)| rate.recip());
-    let mut high = if peak.is_finite() { peak } else { 40.0 * slowest };
+    let slowest = course.last().terms().first().map_or(1.0, |(_, rate)| rate.recip());
+    let mut high = if peak.is_finite() { peak } else { course.last_start() + 40.0 * slowest };
     if !over(high) {
         return None;
     }

@@ -2,7 +2,7 @@
 
 use super::model::{Model, Part};
 use super::scenario::Scenario;
-use crate::circuit::{CircuitError, ExpSum, Modes, Phasor, Response, ShortCharge};
+use crate::circuit::{CircuitError, Course, Drain, EnergyCourse, Modes, Phasor, ShortCharge};
 use std::sync::Arc;
 
 /// Potentials before isolation.
@@ -83,7 +83,8 @@ impl Start {
             let voltages = there.map(|(_, (c, own))| voltage(c, own)).collect();
             State { potentials, voltages }
         };
-        let states = all.into_iter().map(state).collect();
+        let chosen = all.into_iter().enumerate().filter(|(number, _)| scenario.state.is_none_or(|s| s == *number));
+        let states = chosen.map(|(_, potentials)| state(potentials)).collect();
         Start { map, before, states }
     }
 }
@@ -98,7 +99,7 @@ pub(crate) struct Case {
     /// Resistances in ohm of all resistors of the model before and after isolation; infinite for open.
     pub before_ohms: Vec<f64>,
     pub after_ohms: Vec<f64>,
-    pub response: Response,
+    pub response: Drain,
 }
 
 impl Case {
@@ -108,6 +109,7 @@ impl Case {
         let after = Arc::new(Modes::new(model.network(&scenario.after, point, &[]))?);
         let before_ohms = model.ohms(&scenario.before, point, &[]);
         let after_ohms = model.ohms(&scenario.after, point, &[]);
+        let (sinks, drawing) = (model.sinks(&map), scenario.drawing(model));
         let before = Arc::new(before);
         let case = |state: State| {
             Ok(Case {
@@ -115,16 +117,16 @@ impl Case {
                 before: Arc::clone(&before),
                 before_ohms: before_ohms.clone(),
                 after_ohms: after_ohms.clone(),
-                response: after.response(&state.voltages, &state.potentials)?,
+                response: after.drain(&state.voltages, &state.potentials, &sinks, &drawing)?,
             })
         };
         states.into_iter().map(case).collect()
     }
 
     /// Voltage between two nodes of the model after isolation.
-    pub fn across(&self, a: usize, b: usize) -> ExpSum {
+    pub fn across(&self, a: usize, b: usize) -> Course {
         let (a, b) = (self.map[a], self.map[b]);
-        if a == b { ExpSum::default() } else { self.response.across(a, b) }
+        if a == b { Course::default() } else { self.response.across(a, b) }
     }
 
     /// Greatest voltage in volt between two nodes of the model before isolation.
@@ -138,22 +140,23 @@ impl Case {
     }
 
     /// Charge in coulomb that a short between two nodes would pass, by the moment at which it closes.
-    pub fn charge(&self, a: usize, b: usize) -> ExpSum {
+    pub fn charge(&self, a: usize, b: usize) -> Course {
         let (a, b) = (self.map[a], self.map[b]);
         if a == b {
-            return ExpSum::default();
+            return Course::default();
         }
         let network = self.response.network();
         let short = ShortCharge::new(network, a, b);
         let parts = network.capacitors.iter().zip(short.weights());
-        parts.fold(ExpSum::default(), |sum, (c, w)| sum.plus(&self.response.across(c.a, c.b).times(*w)))
+        let of = |(c, w): (&crate::circuit::Edge, &f64)| self.response.across(c.a, c.b).times(*w);
+        parts.map(of).reduce(|sum, part| sum.plus(&part)).unwrap_or_default()
     }
 
     /// Energy in joule in all capacitors connected to the pair through any parts.
-    pub fn energy(&self, a: usize, b: usize) -> ExpSum {
+    pub fn energy(&self, a: usize, b: usize) -> EnergyCourse {
         let label = self.response.network().connected_parts();
         let (a, b) = (label[self.map[a]], label[self.map[b]]);
-        let at_a = self.response.stored_energy(Some(a));
-        if a == b { at_a } else { at_a.plus(&self.response.stored_energy(Some(b))) }
+        let parts = if a == b { vec![a] } else { vec![a, b] };
+        self.response.stored_energy(Some(&parts))
     }
 }

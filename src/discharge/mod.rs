@@ -23,7 +23,7 @@ pub(crate) use case::Case;
 pub(crate) use element::element_model;
 pub(crate) use figure::{Body, Figure};
 pub(crate) use model::{Model, Part, PartKind, absorption};
-pub(crate) use scenario::{Fault, Scenario, faults};
+pub(crate) use scenario::{Fault, Scenario, faults, healthy};
 pub(crate) use study::Study;
 pub(crate) use timeline::{ProcedureStudy, Setting, Stage, StepFigure, Timeline};
 pub(crate) use worst::{MOST_CORNERS, Worst, nominal, worst};

@@ -164,19 +164,14 @@ fn polarities([a, b, c]: [usize; 3]) -> Vec<Order> {
 }
 
 impl Model {
-    /// How many states the bank can be in at isolation: as many as the poles of a switch can leave, else one.
-    pub fn states(&self) -> usize {
-        self.three_phase.as_ref().map_or(1, |three| three.sequences.len())
-    }
-
     /// The name of a state at isolation, where there are several.
     pub fn state_name(&self, sequence: usize) -> Option<String> {
         self.three_phase.as_ref().and_then(|three| three.sequences.get(sequence)).map(|s| s.name.clone())
     }
 
-    /// The number of a state by its name; the first one where there is no such name.
-    pub fn find_state(&self, name: Option<&str>) -> usize {
+    /// The number of a state by its name.
+    pub fn find_state(&self, name: Option<&str>) -> Option<usize> {
         let sequences = self.three_phase.iter().flat_map(|three| &three.sequences);
-        sequences.into_iter().position(|s| Some(s.name.as_str()) == name).unwrap_or(0)
+        sequences.into_iter().position(|s| Some(s.name.as_str()) == name)
     }
 }

@@ -4,11 +4,12 @@
 //! two steps the network is linear, so every voltage is a sum of exponentials of its own.
 
 use super::body::Thermal;
-use super::case::Start;
+use super::case::{Start, State};
 use super::model::{Model, Parameter, PartKind};
 use super::scenario::Scenario;
+use super::study::greatest;
 use super::worst::Objective;
-use crate::circuit::{CircuitError, ExpSum, Modes, Response};
+use crate::circuit::{CircuitError, Course, Drain, Modes};
 use std::sync::Arc;
 
 /// One step: which switched resistors are connected during it, and how long it lasts in second.
@@ -24,11 +25,11 @@ pub(crate) struct Stage {
 /// A solved step.
 #[derive(Debug)]
 struct Run {
-    response: Response,
+    response: Drain,
     ohms: Vec<f64>,
     duration: f64,
     /// What follows from each voltage that a connected supply is tried from.
-    tries: Vec<Response>,
+    tries: Vec<Drain>,
 }
 
 /// A solved procedure.
@@ -56,62 +57,87 @@ pub(crate) struct Setting<'a> {
     pub stages: &'a [Stage],
 }
 
-impl Timeline {
-    /// Runs a procedure at one point of the box.
-    pub fn run(setting: &Setting, point: &[f64]) -> Result<Self, CircuitError> {
-        let Setting { model, scenario, .. } = *setting;
-        let Start { map, before, potentials, voltages } = Start::at_isolation(model, scenario, point, setting.volts);
-        let ohms = model.ohms(&scenario.before, point, &[]);
-        let parts = || model.resistors.iter().zip(&ohms).map(|(r, ohm)| (map[r.a], map[r.b], *ohm));
-        let standing =
-            parts().map(|(a, b, ohm)| if ohm.is_finite() { before.mean_square(a, b) / ohm } else { 0.0 }).collect();
-        let standing_volts =
-            parts().map(|(a, b, ohm)| if ohm.is_finite() { before.greatest(a, b) } else { 0.0 }).collect();
-        let present = (0..model.capacitors.len()).map(|c| model.is_there(&scenario.after, &map, c)).collect();
-        let runs = Vec::with_capacity(setting.stages.len());
-        let mut timeline = Timeline { map, standing, standing_volts, present, runs };
-        let (mut voltages, mut potentials) = (voltages, potentials);
+/// What a step is before anything is known of the state in which it begins.
+struct Step {
+    modes: Arc<Modes>,
+    ohms: Vec<f64>,
+    /// For each voltage that a connected supply is tried from, the states that it can leave.
+    tried_from: Vec<Vec<State>>,
+}
+
+impl Setting<'_> {
+    fn solved_steps(&self, point: &[f64]) -> Result<Vec<Step>, CircuitError> {
+        let Setting { model, scenario, .. } = *self;
         let mut last: Option<(&[usize], Arc<Modes>)> = None;
-        for stage in setting.stages {
+        let mut steps = Vec::with_capacity(self.stages.len());
+        for stage in self.stages {
             // A step that connects and lifts nothing goes on with the network of the step before.
             let modes = match last {
                 Some((connected, modes)) if *connected == stage.connected => modes,
                 _ => Arc::new(Modes::new(model.network(&scenario.after, point, &stage.connected))?),
             };
             last = Some((&stage.connected, Arc::clone(&modes)));
-            let response = modes.response(&voltages, &potentials)?;
-            let mut tries = Vec::new();
-            if stage.tried {
-                for volts in setting.tried_from {
-                    let from = Scenario { drops_own_voltages: true, ..scenario.clone() };
-                    let start = Start::at_isolation(model, &from, point, *volts);
-                    tries.push(modes.response(&start.voltages, &start.potentials)?);
-                }
-            }
-            voltages = response.voltages_at(stage.duration);
-            potentials = response.potentials_at(stage.duration);
-            let ohms = model.ohms(&scenario.after, point, &stage.connected);
-            timeline.runs.push(Run { response, ohms, duration: stage.duration, tries });
+            let from = Scenario { drops_own_voltages: true, ..scenario.clone() };
+            let volts = if stage.tried { self.tried_from } else { &[] };
+            let tried_from = volts.iter().map(|v| Start::at_isolation(model, &from, point, *v).states).collect();
+            steps.push(Step { modes, ohms: model.ohms(&scenario.after, point, &stage.connected), tried_from });
         }
-        Ok(timeline)
+        Ok(steps)
+    }
+}
+
+impl Timeline {
+    /// Runs a procedure at one point of the box, from every state that the bank can have at isolation.
+    pub fn run(setting: &Setting, point: &[f64]) -> Result<Vec<Self>, CircuitError> {
+        let Setting { model, scenario, .. } = *setting;
+        let Start { map, before, states } = Start::at_isolation(model, scenario, point, setting.volts);
+        let ohms = model.ohms(&scenario.before, point, &[]);
+        let parts = || model.resistors.iter().zip(&ohms).map(|(r, ohm)| (map[r.a], map[r.b], *ohm));
+        let standing: Vec<f64> =
+            parts().map(|(a, b, ohm)| if ohm.is_finite() { before.mean_square(a, b) / ohm } else { 0.0 }).collect();
+        let standing_volts: Vec<f64> =
+            parts().map(|(a, b, ohm)| if ohm.is_finite() { before.greatest(a, b) } else { 0.0 }).collect();
+        let present: Vec<bool> =
+            (0..model.capacitors.len()).map(|c| model.is_there(&scenario.after, &map, c)).collect();
+        let steps = setting.solved_steps(point)?;
+        let sinks = model.sinks(&map);
+        let timeline = |(number, state): (usize, State)| {
+            let mut runs = Vec::with_capacity(steps.len());
+            let mut drawing = scenario.drawing(model);
+            let State { mut voltages, mut potentials } = state;
+            for (Step { modes, ohms, tried_from }, stage) in steps.iter().zip(setting.stages) {
+                let response = modes.drain(&voltages, &potentials, &sinks, &drawing)?;
+                let from = tried_from.iter().filter_map(|states| states.get(number));
+                let tries = from
+                    .map(|start| modes.drain(&start.voltages, &start.potentials, &sinks, &drawing))
+                    .collect::<Result<_, CircuitError>>()?;
+                voltages = response.voltages_at(stage.duration);
+                potentials = response.potentials_at(stage.duration);
+                drawing = response.drawing_at(stage.duration).to_vec();
+                runs.push(Run { response, ohms: ohms.clone(), duration: stage.duration, tries });
+            }
+            let (map, standing, standing_volts) = (map.clone(), standing.clone(), standing_volts.clone());
+            Ok(Timeline { map, standing, standing_volts, present: present.clone(), runs })
+        };
+        states.into_iter().enumerate().map(timeline).collect()
     }
 
     /// Voltage between two nodes of the model during a step, from its start.
-    pub fn across(&self, stage: usize, a: usize, b: usize) -> ExpSum {
+    pub fn across(&self, stage: usize, a: usize, b: usize) -> Course {
         across(&self.runs[stage].response, &self.map, a, b)
     }
 
     /// What is to come at a pair after the last step, from its end.
-    pub fn afterwards(&self, a: usize, b: usize) -> ExpSum {
+    pub fn afterwards(&self, a: usize, b: usize) -> Course {
         self.runs
             .last()
-            .map_or_else(ExpSum::default, |last| across(&last.response, &self.map, a, b).after(last.duration))
+            .map_or_else(Course::default, |last| across(&last.response, &self.map, a, b).after(last.duration))
     }
 }
 
-fn across(response: &Response, map: &[usize], a: usize, b: usize) -> ExpSum {
+fn across(response: &Drain, map: &[usize], a: usize, b: usize) -> Course {
     let (a, b) = (map[a], map[b]);
-    if a == b { ExpSum::default() } else { response.across(a, b) }
+    if a == b { Course::default() } else { response.across(a, b) }
 }
 
 /// One figure of a procedure. Stages count from 0, pairs are those of the model.
@@ -192,7 +218,7 @@ pub(crate) enum StepFigure {
 
 impl Run {
     /// The voltages that count for a resistor: those of the step itself, or of what a supply is tried from.
-    fn voltages(&self, model: &Model, map: &[usize], resistor: usize) -> Vec<ExpSum> {
+    fn voltages(&self, model: &Model, map: &[usize], resistor: usize) -> Vec<Course> {
         let part = &model.resistors[resistor];
         let responses = if self.tries.is_empty() { std::slice::from_ref(&self.response) } else { &self.tries[..] };
         responses.iter().map(|r| across(r, map, part.a, part.b)).collect()
@@ -218,15 +244,15 @@ impl Run {
         energies.map(|v| v.integral_of_square(self.duration) / ohms).fold(0.0, f64::max)
     }
 
-    /// Power in a resistor over time; of what a supply is tried from, the one that heats most.
-    fn power(&self, model: &Model, map: &[usize], resistor: usize) -> ExpSum {
-        let ohms = self.ohms[resistor];
-        if !ohms.is_finite() {
-            return ExpSum::default();
+    /// The voltage that counts for the temperature of a resistor: of what a supply is tried from, the one that heats
+    /// most.
+    fn hottest(&self, model: &Model, map: &[usize], resistor: usize) -> Course {
+        if !self.ohms[resistor].is_finite() {
+            return Course::default();
         }
-        let heat = |v: &ExpSum| v.integral_of_square(self.duration);
+        let heat = |v: &Course| v.integral_of_square(self.duration);
         let hottest = self.voltages(model, map, resistor).into_iter().max_by(|x, y| heat(x).total_cmp(&heat(y)));
-        hottest.map_or_else(ExpSum::default, |v| v.squared().times(ohms.recip()))
+        hottest.unwrap_or_default()
     }
 }
 
@@ -239,7 +265,8 @@ pub(crate) struct ProcedureStudy<'a> {
 }
 
 impl Objective for ProcedureStudy<'_> {
-    type Case = Timeline;
+    /// The procedure from every state that the bank can have at isolation; a figure is the greatest of theirs.
+    type Case = Vec<Timeline>;
 
     fn parameters(&self) -> &[Parameter] {
         &self.setting.model.parameters
@@ -253,7 +280,7 @@ impl Objective for ProcedureStudy<'_> {
         self.most_corners
     }
 
-    fn case(&self, point: &[f64]) -> Result<Timeline, CircuitError> {
+    fn case(&self, point: &[f64]) -> Result<Vec<Timeline>, CircuitError> {
         Timeline::run(&self.setting, point)
     }
 
@@ -283,7 +310,7 @@ impl Objective for ProcedureStudy<'_> {
         }
     }
 
-    fn case_for(&self, index: usize, point: &[f64]) -> Result<Timeline, CircuitError> {
+    fn case_for(&self, index: usize, point: &[f64]) -> Result<Vec<Timeline>, CircuitError> {
         let needed = match self.figures[index] {
             StepFigure::Voltage { stage, .. }
             | StepFigure::CapacitorVoltage { stage, .. }
@@ -299,16 +326,16 @@ impl Objective for ProcedureStudy<'_> {
         Timeline::run(&Setting { stages: &self.setting.stages[..needed], ..self.setting }, point)
     }
 
-    fn certify(&self, case: &Timeline) -> Result<(), CircuitError> {
-        for run in &case.runs {
+    fn certify(&self, cases: &Vec<Timeline>) -> Result<(), CircuitError> {
+        for run in cases.iter().flat_map(|timeline| &timeline.runs) {
             run.response.check_balance(run.duration)?;
             run.tries.iter().try_for_each(|response| response.check_balance(run.duration))?;
         }
         Ok(())
     }
 
-    fn figure(&self, index: usize, case: &Timeline, floor: f64) -> Result<f64, CircuitError> {
-        self.figures[index].of(self.setting.model, case, floor)
+    fn figure(&self, index: usize, cases: &Vec<Timeline>, floor: f64) -> Result<f64, CircuitError> {
+        greatest(cases, floor, |timeline, floor| self.figures[index].of(self.setting.model, timeline, floor))
     }
 }
 
@@ -365,9 +392,10 @@ impl StepFigure {
                 let mut rise = body.kelvin_per_watt * standing[resistor];
                 let mut greatest = rise;
                 for run in runs {
-                    let course = body.rise(rise, &run.power(model, map, resistor));
-                    greatest = course.greatest_magnitude_within(greatest, run.duration)?.0;
-                    rise = course.value(run.duration);
+                    let volts = run.hottest(model, map, resistor);
+                    let heated = body.heated(rise, &volts, run.ohms[resistor], run.duration)?;
+                    greatest = greatest.max(heated.greatest);
+                    rise = heated.end;
                 }
                 greatest
             }

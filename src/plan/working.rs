@@ -3,24 +3,32 @@
 use super::result::{Wait, Working, WorkingMode, WorkingSingle, WorkingValue};
 use crate::bank::Bank;
 use crate::check::EngineError;
+use crate::circuit::CircuitError;
 use crate::discharge::{Case, Model, Part, PartKind, Scenario};
 use crate::quantity::{Capacitance, Quantity, Resistance, Time, Voltage};
 
-/// `state` is the one that the poles of a three-phase bank have left.
-fn solve(model: &Model, point: &[f64], volts: Voltage, state: Option<&String>) -> Result<Case, EngineError> {
+/// One state of a scenario: the first, where it leaves several open.
+fn solve(model: &Model, scenario: &Scenario, point: &[f64], volts: Voltage) -> Result<Case, EngineError> {
     let failed = |cause| EngineError { scenario: "healthy".into(), cause };
-    let scenario = Scenario { sequence: model.find_state(state.map(String::as_str)), ..Scenario::default() };
-    Case::solve(model, &scenario, point, volts.si()).map_err(failed)
+    let mut states = Case::solve(model, scenario, point, volts.si()).map_err(failed)?.into_iter();
+    states.next().ok_or_else(|| failed(CircuitError::SearchNotClosed))
 }
 
 /// Nominal time constants in second, the slowest first.
 pub(super) fn time_constants(bank: &Bank, model: &Model) -> Result<Vec<f64>, EngineError> {
     let nominal = bank.description().charged_to.nominal;
-    Ok(solve(model, &model.nominal_point(), nominal, None)?.response.modes().time_constants())
+    Ok(solve(model, &Scenario::default(), &model.nominal_point(), nominal)?.response.modes().time_constants())
 }
 
 /// The nominal and the slowest wait at every test point, worked out.
-pub(super) fn working(bank: &Bank, model: &Model, waits: &[Wait]) -> Result<Vec<Working>, EngineError> {
+///
+/// `governing` gives the scenario in which the slowest wait was found.
+pub(super) fn working(
+    bank: &Bank,
+    model: &Model,
+    waits: &[Wait],
+    governing: impl Fn(usize) -> Scenario,
+) -> Result<Vec<Working>, EngineError> {
     let charged = bank.description().charged_to;
     let mut list = Vec::with_capacity(2 * waits.len());
     for (pair, wait) in waits.iter().enumerate() {
@@ -29,8 +37,9 @@ pub(super) fn working(bank: &Bank, model: &Model, waits: &[Wait]) -> Result<Vec<
         let nominal = (states.map(|i| &i.nominal), model.nominal_point(), charged.nominal, wait.nominal);
         let slowest = (states.map(|i| &i.slowest), worst, charged.highest, wait.slowest);
         for (name, (state, point, volts, time)) in [("nominal", nominal), ("slowest", slowest)] {
+            let scenario = Scenario { state: model.find_state(state.map(String::as_str)), ..governing(pair) };
             let name = state.map_or_else(|| name.to_string(), |state| format!("{name}, {state}"));
-            list.push(worked(bank, model, (pair, name, state), &point, volts, time)?);
+            list.push(worked(bank, (model, &scenario), (pair, name), &point, volts, time)?);
         }
     }
     Ok(list)
@@ -43,15 +52,16 @@ fn resistors_of(model: &Model) -> impl Iterator<Item = &Part> {
 
 fn worked(
     bank: &Bank,
-    model: &Model,
-    (pair, name, state): (usize, String, Option<&String>),
+    (model, scenario): (&Model, &Scenario),
+    (pair, name): (usize, String),
     point: &[f64],
     volts: Voltage,
     wait: Option<Time>,
 ) -> Result<Working, EngineError> {
-    let case = solve(model, point, volts, state)?;
+    let case = solve(model, scenario, point, volts)?;
     let (a, b) = model.pairs[pair];
-    let voltage = case.across(a, b);
+    let course = case.across(a, b);
+    let voltage = course.last();
     let factor = |parameter: Option<usize>| parameter.map_or(1.0, |p| point[p]);
     let resistors = resistors_of(model).map(|r| WorkingValue {
         id: r.id.clone(),
@@ -71,7 +81,7 @@ fn worked(
     });
     // One capacitor and one mode: tau = R C by hand.
     let single = match (model.capacitors.as_slice(), voltage.terms()) {
-        ([c], [(amplitude, rate)]) if voltage.constant() == 0.0 => {
+        ([c], [(amplitude, rate)]) if voltage.constant() == 0.0 && course.pieces().is_empty() => {
             let farad = c.nominal * factor(c.parameter);
             Some(WorkingSingle {
                 resistance: Resistance::from_si((rate * farad).recip()),
@@ -87,6 +97,7 @@ fn worked(
         case: name,
         values: resistors.chain(capacitors).collect(),
         charged_to: volts,
+        from: (!course.pieces().is_empty()).then(|| Time::from_si(course.last_start())),
         settles_at: Voltage::from_si(voltage.constant()),
         modes: modes.collect(),
         single,

@@ -5,8 +5,8 @@
 
 use crate::bank::Bank;
 use crate::bank::description::{
-    Bound, Capacitor, ChargedTo, Connection, Description, Draw, Hold, Lasts, Neutral, Pair, Rating, Resistor, Rule, Sink,
-    Source, Step, Supply,
+    Bound, Capacitor, ChargedTo, Connection, Description, Draw, Hold, Lasts, Neutral, Pair, Rating, Resistor, Rule,
+    Sink, Source, Step, Supply,
 };
 use crate::quantity::{Quantity, Ratio, Tolerance, Voltage, parse};
 
@@ -242,9 +242,9 @@ fn resistor(r: &Resistor) -> String {
 }
 
 fn rating(rating: &Rating) -> Option<(&'static str, String)> {
-    let overload = rating.overload.map(|o| {
-        mapping([Some(("times", o.times.to_string())), Some(("for", figure(o.duration, &SECOND)))])
-    });
+    let overload = rating
+        .overload
+        .map(|o| mapping([Some(("times", o.times.to_string())), Some(("for", figure(o.duration, &SECOND)))]));
     let text = mapping([
         rating.power.map(|p| ("power", figure(p, &WATT))),
         rating.full_to.map(|t| ("full_to", figure(t, &CELSIUS))),

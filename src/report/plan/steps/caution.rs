@@ -6,7 +6,7 @@ use super::tables::{failures, worst};
 use super::{highest_at_start, is_of, role, straps};
 use crate::data::energy_bands;
 use crate::finding::Severity;
-use crate::plan::{Plan, StepPart, StepPoint, StepResult};
+use crate::plan::{Plan, StepPart, StepPoint, StepResult, fault_in_words};
 use crate::quantity::Quantity;
 
 /// One caution for each kind of part that goes on, and one where hands may come near.
@@ -121,7 +121,11 @@ fn hands(plan: &Plan, at: usize, step: &StepResult) -> Labelled {
     let failed = worst(here.flat_map(failures)).filter(|f| f.point.highest.si() > plan.touch_voltage.si());
     text.extend(failed.map(|f| {
         let place = pair(&f.point.across);
-        format!("With {} up to {} is predicted at {place}: only the test can tell.", f.fault, up(f.point.highest))
+        format!(
+            "With {} up to {} is predicted at {place}: only the test can tell.",
+            fault_in_words(f.fault),
+            up(f.point.highest)
+        )
     }));
     if plan.steps.iter().take(at).all(|step| step.measure.is_empty()) {
         text.push("No step before this one reads any voltage.".into());
