@@ -161,6 +161,22 @@ impl<'a> Procedure<'a> {
             .map_err(EngineError::of("healthy, through the steps"))
     }
 
+    /// Nominal voltages that a step leaves across a part that it connects, with the part and without it.
+    pub fn with_and_without(&self, stage: usize, resistor: usize) -> Result<(f64, f64), EngineError> {
+        let scenario = Scenario::default();
+        let part = &self.model.resistors[resistor];
+        let mut stages = self.stages[..=stage].to_vec();
+        let left = |stages: &[Stage]| {
+            let setting = Setting { stages, ..self.setting(self.model, &scenario, self.tried_from[1]) };
+            let point = vec![1.0; self.model.parameters.len()];
+            let timeline = Timeline::run(&setting, &point).map_err(EngineError::of("a meter's reading"))?;
+            Ok(timeline.across(stage, part.a, part.b).value(stages[stage].duration).abs())
+        };
+        let with = left(&stages)?;
+        stages[stage].connected.retain(|r| *r != resistor);
+        Ok((with, left(&stages)?))
+    }
+
     /// When a step starts, in second from isolation.
     pub fn start(&self, stage: usize) -> f64 {
         self.stages[..stage].iter().map(|s| s.duration).sum()

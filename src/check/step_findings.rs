@@ -245,6 +245,25 @@ fn meters(check: &StepCheck, stage: usize, step: &StepResult, findings: &mut Fin
             );
         }
     }
+    let touch = check.procedure.bank.description().touch_voltage.si();
+    for reading in check.readings.iter().filter(|r| r.stage == stage) {
+        // A reading that the meter pulls down by a tenth, of a voltage that would count.
+        if reading.without > 0.1 * touch && reading.with < 0.9 * reading.without {
+            findings.add(
+                Severity::Danger,
+                "meter-hides-charge",
+                format!(
+                    "{}: {} pulls down what it reads: {} at the step's end, where {} would be without it (nominal). A \
+                     low reading does not tell what is stored behind the point. Read with a meter of higher \
+                     resistance, and short every unit on its own.",
+                    named(stage, step),
+                    reading.id,
+                    volts(reading.with),
+                    volts(reading.without)
+                ),
+            );
+        }
+    }
 }
 
 /// What flows when a supply closes on the voltage that the bank then really has.

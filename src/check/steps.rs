@@ -14,6 +14,15 @@ pub(crate) struct StepCheck<'a> {
     pub procedure: &'a Procedure<'a>,
     pub healthy: StepAnswers,
     pub faults: Vec<(Fault, StepAnswers)>,
+    pub readings: Vec<Reading>,
+}
+
+/// What a meter reads at the end of the step that connects it, and what would be there without it; nominal, in volt.
+pub(crate) struct Reading {
+    pub stage: usize,
+    pub id: String,
+    pub with: f64,
+    pub without: f64,
 }
 
 /// A name for a source that stays connected: the reading does not fall.
@@ -29,7 +38,17 @@ impl<'a> StepCheck<'a> {
             Ok((fault, answers))
         };
         let faults = faults.into_par_iter().map(answered).collect::<Result<_, EngineError>>()?;
-        Ok(StepCheck { procedure, healthy, faults })
+        let mut check = StepCheck { procedure, healthy, faults, readings: Vec::new() };
+        for (stage, step) in check.steps().iter().enumerate() {
+            let meters: Vec<&String> = step.connect.iter().filter(|id| check.role(id) == Some(Role::Meter)).collect();
+            for id in meters {
+                if let Some(resistor) = procedure.model.find_resistor(id) {
+                    let (with, without) = procedure.with_and_without(stage, resistor)?;
+                    check.readings.push(Reading { stage, id: id.clone(), with, without });
+                }
+            }
+        }
+        Ok(check)
     }
 
     pub(super) fn steps(&self) -> &'a [Step] {
@@ -78,6 +97,7 @@ impl<'a> StepCheck<'a> {
             measure: step.measure.clone(),
             hold: self.hold(stage, step),
             touch: step.touch,
+            ready_at_start: Energy::from_si(self.healthy.worst(StepFigure::ReadyEnergy { stage })),
             stored_at_start: Energy::from_si(self.healthy.worst(StepFigure::StoredEnergy { stage })),
             test_points: points.map(point).collect(),
             parts: procedure.connected(stage).into_iter().map(|r| self.part(stage, r)).collect(),
