@@ -170,7 +170,8 @@ impl<'a> Procedure<'a> {
             let setting = Setting { stages, ..self.setting(self.model, &scenario, self.tried_from[1]) };
             let point = vec![1.0; self.model.parameters.len()];
             let all = Timeline::run(&setting, &point).map_err(EngineError::of("a meter's reading"))?;
-            let volts = |timeline: &Timeline| timeline.across(stage, part.a, part.b).value(stages[stage].duration).abs();
+            let volts =
+                |timeline: &Timeline| timeline.across(stage, part.a, part.b).value(stages[stage].duration).abs();
             Ok(all.iter().map(volts).fold(0.0, f64::max))
         };
         let with = left(&stages)?;

@@ -313,3 +313,64 @@ fn step(step: &Step) -> String {
         flag("touch", step.touch),
     ])
 }
+
+#[cfg(test)]
+mod tests {
+    use super::super::read;
+    use super::*;
+
+    /// Reads a text, writes the bank and reads that again.
+    fn there_and_back(name: &str, text: &str) {
+        let (bank, _) = read(name, text.as_bytes()).unwrap_or_else(|e| panic!("{name}: {e:?}"));
+        for bank in [bank.expanded(), bank] {
+            let written = write(&bank);
+            let (again, _) = read("written", written.as_bytes()).unwrap_or_else(|e| panic!("{name}: {written}{e:?}"));
+            assert_eq!(again, bank, "{written}");
+        }
+    }
+
+    #[test]
+    fn every_bank_of_the_data_folder_reads_back_as_it_was() {
+        for (name, text) in crate::data::demo_banks() {
+            there_and_back(name, text);
+        }
+        there_and_back("draft", crate::data::draft());
+    }
+
+    #[test]
+    fn names_that_yaml_would_take_for_something_else_and_odd_figures_read_back() {
+        there_and_back(
+            "odd",
+            r#"
+ebbvolt: 1
+tag: "7"
+title: 'it is "so": #1'
+notes: "two\nlines \t\u00b5"
+ambient: -3.7 °C
+touch_voltage: 0.1 V
+hold_energy: 3.3 mJ
+strap_limit: {energy: 1.1 J, current: 0.7 kA}
+terminals: ["null", "1", "~x"]
+charged_to: {ac_rms: 398.7 V, rise: 7.3 %, phases: 3, neutral: grounded}
+capacitors:
+  - {id: "true", kvar: {power: 12.5 kvar, voltage: 440 V, frequency: 60 Hz}, tolerance: {low: 5 %, high: 10.3 %}, phases: 3, connection: star}
+  - {id: C.2, value: 0.1 uF, across: ["null", "1"], units: {series: 3, parallel: 2}, rated: 1.7 kV, absorption: 0.07 %}
+resistors:
+  - {id: R 1, role: bleeder, value: 4k7, tolerance: 0.3 %, phases: 3, connection: star, array: {series: 2}, rating: {power: 0.3 W, full_to: 70.1 °C, zero_at: 155 °C, voltage: 333 V, pulse: 0.7 J, overload: {times: 2.5, for: 5 s}, thermal_time: 1.1 min}}
+  - {id: T1, role: tool, value: 33 ohm, across: ["1", "~x"]}
+sinks:
+  - {id: K1, kind: constant-power, value: 0.3 W, across: ["null", G], stops_below: 11.1 V, counted: true}
+supplies:
+  - {id: S1, voltage: 565.3 V, series: 0.1 kohm, tolerance: 1.7 %, across: ["null", "1"]}
+test_points: [["null", G], ["1", "~x"]]
+limits:
+  - {use: iec-60831-1, at: ["null", "1"], single_fault: true}
+  - {id: mine, any_of: {voltage: 60.1 V, initial_charge: 60.3 uC, energy: 0.7 J, charge: 1.1 mC}, within: 0.3 min}
+procedure:
+  - {step: "Wait: first", until: {below: 50.7 V, at: ["null", G]}, measure: [["null", G]], hold: {below: 33.3 V}}
+  - {step: Apply, connect: [T1, S1], for: 1.1 min, touch: true}
+  - {step: Off, disconnect: [T1], for: 0 s}
+"#,
+        );
+    }
+}
