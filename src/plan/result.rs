@@ -9,8 +9,8 @@ use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltag
 use serde::Serialize;
 
 pub use crate::check::{
-    Band, CapacitorResult, Check, FaultPoint, FaultWait, LimitResult, LimitSource, Pair, Recovery, ResistorResult,
-    StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
+    Band, CapacitorResult, Charging, ChargingMoment, Check, FaultPoint, FaultWait, LimitResult, LimitSource, Pair,
+    Recovery, ResistorResult, StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
 };
 
 /// Everything that a plan says about one bank.
