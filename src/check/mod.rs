@@ -3,6 +3,7 @@
 
 mod answers;
 mod capacitors;
+mod charging;
 mod energy;
 mod fault_words;
 mod limits;
@@ -34,6 +35,7 @@ pub(crate) use waits::WaitCheck;
 
 pub use answers::EngineError;
 pub use capacitors::CapacitorResult;
+pub use charging::{Charging, ChargingMoment};
 pub use fault_words::fault_in_words;
 pub use limits::{LimitResult, LimitSource};
 pub use resistors::{Check, ResistorResult};

@@ -9,8 +9,9 @@ use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltag
 use serde::Serialize;
 
 pub use crate::check::{
-    Band, CapacitorResult, Check, FaultPoint, FaultWait, Interruption, LimitResult, LimitSource, Pair, Recovery,
-    ResistorResult, StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
+    Band, CapacitorResult, Charging, ChargingMoment, Check, FaultPoint, FaultWait, Interruption, LimitResult,
+    LimitSource, Pair, Recovery, ResistorResult, StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict,
+    Wait, WorstValue,
 };
 
 /// Everything that a plan says about one bank.
