@@ -37,11 +37,11 @@ impl Bank {
         Bank::checked(expanded)
     }
 
-    /// The line-to-line rms voltage of a bank that was charged from three phases, in its own words.
-    pub(crate) fn line_voltage(&self) -> Option<crate::quantity::Voltage> {
+    /// The rms voltage of the alternating supply that the bank was charged from (line to line, of three phases).
+    pub(crate) fn supply_voltage(&self) -> Option<crate::quantity::Voltage> {
         match self.description().charged_to.source {
-            Source::ThreePhase { rms, .. } => Some(rms),
-            Source::Direct | Source::Crest { .. } => None,
+            Source::ThreePhase { rms, .. } | Source::Crest { rms } => Some(rms),
+            Source::Direct => None,
         }
     }
 }

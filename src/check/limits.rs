@@ -226,7 +226,7 @@ fn prepare<'a>(bank: &Bank, model: &'a Model, limit: &'a Limit) -> Result<Prepar
         }
         (_, Some(LimitKind::BeforeSwitchingIn { share })) => {
             // Only a bank on an AC supply is switched in at a crest; its rated voltage is taken to be the supply's.
-            switching_in = bank.line_voltage().map(|rated| (*share, rated));
+            switching_in = bank.supply_voltage().map(|rated| (*share, rated));
             let bounds: Vec<Bound> = switching_in
                 .iter()
                 .map(|(share, rated)| Bound::Voltage(Voltage::from_si(share * rated.si())))
@@ -340,8 +340,8 @@ fn limit_findings(result: &LimitResult, findings: &mut Findings) {
 fn switching_findings(prepared: &Prepared, result: &LimitResult, faults: &[FaultAnswers], findings: &mut Findings) {
     if prepared.switching_in.is_none() {
         let text = format!(
-            "{}: a share of the rated voltage of a bank on three phases, and this one was charged from one voltage; \
-             nothing was checked.",
+            "{}: a share of the rated voltage of a bank on an alternating supply, and this one was charged from a \
+             direct voltage; nothing was checked.",
             result.id
         );
         return findings.add(Severity::Note, "switching-in-not-checked", text);

@@ -306,3 +306,20 @@ fn simulated(farads: [f64; 3], first: usize, skip: usize) -> [f64; 3] {
     let v = with_two(at);
     [v[0] - v[1], v[1] - v[2], v[2] - v[0]].map(f64::abs)
 }
+
+#[test]
+fn a_capacitor_on_one_phase_has_a_time_before_switching_in_again_and_a_bank_on_direct_voltage_has_none() {
+    let limit = |charged_to: &str| {
+        let text = format!(
+            "ebbvolt: 1\ntag: SM-CHECK\ntouch_voltage: 50 V\ncharged_to: {charged_to}\n\
+             capacitors: [{{id: C1, value: 100 uF}}]\nresistors: [{{id: R1, role: bleeder, value: 100 kohm}}]\n\
+             limits: [{{use: iec-60831-1-switching-in}}]\n"
+        );
+        planned(&text).limits.remove(0)
+    };
+    let from = limit("{ac_rms: 230 V, rise: 0 %}").holds_from.expect("it comes").si();
+    let by_hand = 10.0 * (2f64.sqrt() * 10.0).ln();
+    assert!((from / by_hand - 1.0).abs() < 1e-9, "{from} s, by hand {by_hand} s");
+    let none = limit("325 V");
+    assert_eq!((none.met, none.holds_from), (None, None));
+}
