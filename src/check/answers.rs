@@ -31,6 +31,9 @@ impl EngineError {
     }
 }
 
+/// Corners that may be tried under one fault where pins leave few values free: there are many faults.
+const FAULT_CORNERS: usize = 1 << 8;
+
 /// Figures of the healthy bank: nominal, and greatest over the tolerance box at the highest voltage.
 #[derive(Debug, Clone, Default)]
 pub(crate) struct Answers {
@@ -52,7 +55,7 @@ impl Answers {
         without_repeats(&mut figures);
         let charged = &bank.description().charged_to;
         let scenario = Scenario::default();
-        let study = |volts| Study { model, scenario: &scenario, volts, figures: &figures };
+        let study = |volts| Study::new(model, &scenario, volts, &figures, 1 << discharge::MOST_CORNERS);
         let failed = |cause| EngineError { scenario: "healthy".into(), cause };
         let nominal = discharge::nominal(&study(charged.nominal.si())).map_err(failed)?;
         let worst = discharge::worst(&study(charged.highest.si())).map_err(failed)?;
@@ -66,7 +69,7 @@ impl Answers {
         let failed = |cause| EngineError { scenario: fault.name.clone(), cause };
         let mut worst: Vec<Worst> = Vec::new();
         for scenario in &fault.scenarios {
-            let found = discharge::worst(&Study { model, scenario, volts, figures: &figures }).map_err(failed)?;
+            let found = discharge::worst(&Study::new(model, scenario, volts, &figures, FAULT_CORNERS)).map_err(failed)?;
             if worst.is_empty() {
                 worst = found;
             } else {

@@ -20,6 +20,7 @@ mod modes;
 mod network;
 mod reduce;
 mod response;
+mod sensitivity;
 mod short;
 
 pub use crossing::LastExit;
@@ -27,6 +28,7 @@ pub use expsum::ExpSum;
 pub use modes::Modes;
 pub use network::{Edge, Network};
 pub use response::Response;
+pub use sensitivity::{Carried, Sensitivity};
 pub use short::ShortCharge;
 
 use std::fmt;

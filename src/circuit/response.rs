@@ -8,7 +8,7 @@ use std::sync::Arc;
 pub struct Response {
     modes: Arc<Modes>,
     /// Amplitude of every mode.
-    amplitudes: Vec<f64>,
+    pub(super) amplitudes: Vec<f64>,
     /// States at infinite time in volt, then the voltages of the sources.
     settled: Vec<f64>,
     /// Potentials at the start: a part that nothing ties to the reference keeps that of its anchor.

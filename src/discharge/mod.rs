@@ -8,11 +8,14 @@
 //! typed quantities only.
 
 mod absorption;
+mod ascent;
 mod body;
 mod case;
 mod element;
 mod figure;
+mod gradient;
 mod model;
+mod pinned;
 mod scenario;
 mod study;
 mod timeline;
@@ -25,4 +28,4 @@ pub(crate) use model::{Model, Part, PartKind, absorption};
 pub(crate) use scenario::{Fault, Scenario, faults};
 pub(crate) use study::Study;
 pub(crate) use timeline::{ProcedureStudy, Setting, Stage, StepFigure, Timeline};
-pub(crate) use worst::{MOST_CORNERS, Worst, nominal, worst};
+pub(crate) use worst::{MOST_CORNERS, Method, Worst, nominal, worst};

@@ -288,6 +288,11 @@ impl Model {
         }
     }
 
+    /// True where nothing but resistors, capacitors and their absorption drains the bank after isolation.
+    pub fn is_linear(&self) -> bool {
+        true
+    }
+
     /// The middle of the box of a passive discharge.
     pub fn nominal_point(&self) -> Vec<f64> {
         vec![1.0; self.passive]
