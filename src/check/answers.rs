@@ -2,7 +2,7 @@
 
 use crate::bank::Bank;
 use crate::circuit::CircuitError;
-use crate::discharge::{self, Fault, Figure, Model, Scenario, Study, Worst};
+use crate::discharge::{self, Fault, Figure, LaterStudy, Method, Model, Scenario, Study, Worst, asked_later};
 use crate::quantity::Quantity;
 use rayon::prelude::*;
 use std::fmt;
@@ -40,6 +40,18 @@ pub(crate) struct Answers {
     figures: Vec<Figure>,
     nominal: Vec<f64>,
     worst: Vec<Worst>,
+    /// For every figure of a resistor that opens, when it does.
+    moments: Vec<Moment>,
+}
+
+/// When a resistor opens, in the worst case.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(crate) enum Moment {
+    /// So long before isolation that the voltages have settled without it.
+    Before,
+    AtIsolation,
+    /// This many seconds after isolation.
+    After(f64),
 }
 
 /// Figures under one fault: the greatest over the box and over the ways in which it can come about.
@@ -59,7 +71,7 @@ impl Answers {
         let failed = |cause| EngineError { scenario: "healthy".into(), cause };
         let nominal = discharge::nominal(&study(charged.nominal.si())).map_err(failed)?;
         let worst = discharge::worst(&study(charged.highest.si())).map_err(failed)?;
-        Ok(Answers { nominal, worst, figures })
+        Ok(Answers { nominal, worst, figures, moments: Vec::new() })
     }
 
     /// Answers `figures` under `fault`.
@@ -68,16 +80,36 @@ impl Answers {
         let volts = bank.description().charged_to.highest.si();
         let failed = |cause| EngineError { scenario: fault.name.clone(), cause };
         let mut worst: Vec<Worst> = Vec::new();
+        let mut moments = vec![Moment::Before; figures.len()];
         for scenario in &fault.scenarios {
             let found = discharge::worst(&Study::new(model, scenario, volts, &figures, FAULT_CORNERS)).map_err(failed)?;
             if worst.is_empty() {
                 worst = found;
             } else {
-                let pairs = worst.iter_mut().zip(found);
-                pairs.filter(|(w, f)| f.value > w.value).for_each(|(w, f)| *w = f);
+                for ((worst, found), moment) in worst.iter_mut().zip(found).zip(&mut moments) {
+                    // Told apart by more than rounding: the simpler of two equal stories is told.
+                    if found.value > worst.value * (1.0 + 1e-9) {
+                        *moment = Moment::AtIsolation;
+                    }
+                    if found.value > worst.value {
+                        *worst = found;
+                    }
+                }
             }
         }
-        Ok(Answers { nominal: Vec::new(), worst, figures })
+        if let Some(lost) = &fault.later {
+            let later = LaterStudy::new(model, lost, volts, asked_later(model, &figures));
+            let found = discharge::worst(&later).map_err(failed)?;
+            for (asked, (figure, found)) in later.figures().iter().zip(found).enumerate() {
+                let Some(index) = figures.iter().position(|f| f == figure) else { continue };
+                if found.value > worst[index].value * (1.0 + 1e-9) {
+                    moments[index] = Moment::After(later.moment(asked, &found.point).map_err(failed)?);
+                    worst[index] = found;
+                }
+            }
+        }
+        let moments = if fault.later.is_some() { moments } else { Vec::new() };
+        Ok(Answers { nominal: Vec::new(), worst, figures, moments })
     }
 
     fn index(&self, figure: &Figure) -> Option<usize> {
@@ -92,6 +124,11 @@ impl Answers {
     /// The greatest value of a figure; NaN where it was never asked for, which passes no check.
     pub fn worst(&self, figure: Figure) -> f64 {
         self.index(&figure).and_then(|i| self.worst.get(i)).map_or(f64::NAN, |w| w.value)
+    }
+
+    /// How the greatest value of a figure was found.
+    pub fn method(&self, figure: Figure) -> Option<Method> {
+        self.index(&figure).and_then(|i| self.worst.get(i)).map(|w| w.method)
     }
 
     /// The point of the box at which a figure is greatest.
@@ -113,6 +150,11 @@ impl FaultAnswers {
             Ok(FaultAnswers { fault, answers })
         };
         faults.into_par_iter().map(under).collect()
+    }
+
+    /// When the resistor that failed opens, for the greatest value of a figure; `None` for another fault.
+    pub fn moment(&self, figure: Figure) -> Option<Moment> {
+        self.answers.index(&figure).and_then(|i| self.answers.moments.get(i)).copied()
     }
 
     /// The greatest value of a figure under this fault.

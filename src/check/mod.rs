@@ -3,11 +3,13 @@
 
 mod answers;
 mod capacitors;
+mod draws;
 mod energy;
 mod limits;
 mod notes;
 mod procedure;
 mod resistors;
+mod sensitivity;
 mod serial;
 mod step_findings;
 mod step_result;
@@ -16,13 +18,14 @@ mod stored;
 mod verdict;
 mod waits;
 
-pub(crate) use answers::{Answers, FaultAnswers};
+pub(crate) use answers::{Answers, FaultAnswers, Moment};
 pub(crate) use capacitors::CapacitorCheck;
 pub(crate) use energy::remaining_energy;
 pub(crate) use limits::LimitChecks;
 pub(crate) use notes::{assumptions, notes};
 pub(crate) use procedure::{Procedure, StepAnswers};
 pub(crate) use resistors::ResistorChecks;
+pub(crate) use sensitivity::sensitivities;
 pub(crate) use serial::{celsius_or_null, degrees, si, si_list, si_or_null};
 pub(crate) use step_findings::{step_assumptions, step_findings};
 pub(crate) use steps::StepCheck;
@@ -31,12 +34,14 @@ pub(crate) use waits::WaitCheck;
 
 pub use answers::EngineError;
 pub use capacitors::CapacitorResult;
+pub use draws::{DrawFrom, Drawing, DrawnWait, Draws};
 pub use limits::{LimitResult, LimitSource};
 pub use resistors::{Check, ResistorResult};
+pub use sensitivity::{PartSensitivity, Sensitivity};
 pub use step_result::{FaultPoint, Recovery, StepFault, StepHold, StepPart, StepPoint, StepResult};
 pub use stored::{Band, Stored};
 pub use verdict::Verdict;
-pub use waits::{FaultWait, Wait, WorstValue};
+pub use waits::{FaultWait, Opens, Wait, WorstValue};
 
 /// A pair of nodes by name.
 pub type Pair = [String; 2];

@@ -58,6 +58,13 @@ pub enum CircuitError {
         /// The sum, which ought to be zero.
         sum: f64,
     },
+    /// A value somewhere in the tolerances exceeds the greatest one that was found.
+    Exceeded {
+        /// The value, in SI base units.
+        value: f64,
+        /// The greatest one that was found.
+        greatest: f64,
+    },
 }
 
 impl fmt::Display for CircuitError {
@@ -67,6 +74,9 @@ impl fmt::Display for CircuitError {
             CircuitError::SearchNotClosed => write!(f, "the search for a crossing or a greatest value did not close"),
             CircuitError::Unbalanced { before, after } => {
                 write!(f, "the energy balance failed: {before} J before, {after} J after")
+            }
+            CircuitError::Exceeded { value, greatest } => {
+                write!(f, "a value of {value:?} exceeds the worst case that was found, {greatest:?}")
             }
             CircuitError::Contradiction { capacitor, sum } => {
                 write!(f, "the voltages around the loop closed by capacitor {capacitor} add up to {sum} V, not 0 V")

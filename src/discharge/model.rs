@@ -101,6 +101,20 @@ pub(crate) struct Variation {
     pub capacitor: Option<(usize, f64)>,
     /// A capacitor that is a short: its nodes are one.
     pub shorted: Option<usize>,
+    /// What else has failed.
+    pub also: Option<Box<Variation>>,
+}
+
+impl Variation {
+    /// This one and all others at the same time.
+    pub fn all(&self) -> impl Iterator<Item = &Variation> {
+        std::iter::successors(Some(self), |v| v.also.as_deref())
+    }
+
+    /// By how much a capacitor differs.
+    fn of_capacitor(&self, index: usize) -> f64 {
+        self.all().filter_map(|v| v.capacitor).filter(|(i, _)| *i == index).map(|(_, factor)| factor).product()
+    }
 }
 
 impl Model {
@@ -238,9 +252,10 @@ impl Model {
     /// For every node the node that it is one with under `variation`: a terminal, where one of the two is.
     pub fn merged(&self, variation: &Variation) -> Vec<usize> {
         let mut map: Vec<usize> = (0..self.node_names.len()).collect();
-        if let Some(c) = variation.shorted.map(|c| &self.capacitors[c]) {
-            let (gone, stays) = if self.terminals.contains(&c.a) { (c.b, c.a) } else { (c.a, c.b) };
-            map[gone] = stays;
+        for c in variation.all().filter_map(|v| v.shorted).map(|c| &self.capacitors[c]) {
+            let (a, b) = (map[c.a], map[c.b]);
+            let (gone, stays) = if self.terminals.contains(&a) { (b, a) } else { (a, b) };
+            map.iter_mut().filter(|n| **n == gone).for_each(|n| *n = stays);
         }
         map
     }
@@ -250,15 +265,16 @@ impl Model {
         let parts = self.resistors.iter().enumerate();
         parts
             .map(|(i, r)| {
-                let failed = variation.resistor.filter(|(index, _)| *index == i).map_or(1.0, |(_, factor)| factor);
+                let of_this = variation.all().filter_map(|v| v.resistor).filter(|(index, _)| *index == i);
+                let failed: f64 = of_this.map(|(_, factor)| factor).product();
                 let there = match r.kind {
                     PartKind::Fixed | PartKind::Absorbing(_) => true,
                     PartKind::Switched => connected.contains(&i),
                     PartKind::With(of) => connected.contains(&of),
                 };
                 // A branch of a failed capacitor scales with it; its time constant stays.
-                let branch = variation.capacitor.filter(|(index, _)| r.kind == PartKind::Absorbing(*index));
-                let failed = failed / branch.map_or(1.0, |(_, factor)| factor);
+                let branch = if let PartKind::Absorbing(of) = r.kind { variation.of_capacitor(of) } else { 1.0 };
+                let failed = failed / branch;
                 if there { r.value(point, true) * failed } else { f64::INFINITY }
             })
             .collect()
@@ -272,9 +288,8 @@ impl Model {
         let there = |e: &Edge| e.a != e.b && e.value.is_finite();
         let ohms = self.ohms(variation, point, connected);
         let farad = |i: usize, c: &Part| {
-            let (index, factor) = variation.capacitor.unwrap_or((usize::MAX, 1.0));
-            let failed = i == index || c.kind == PartKind::Absorbing(index);
-            c.value(point, false) * if failed { factor } else { 1.0 }
+            let of = if let PartKind::Absorbing(of) = c.kind { of } else { i };
+            c.value(point, false) * variation.of_capacitor(of)
         };
         let resistors = self.resistors.iter().zip(ohms).map(|(r, ohm)| edge(r, ohm));
         let capacitors = self.capacitors.iter().enumerate().map(|(i, c)| edge(c, farad(i, c)));
@@ -296,6 +311,34 @@ impl Model {
     /// The middle of the box of a passive discharge.
     pub fn nominal_point(&self) -> Vec<f64> {
         vec![1.0; self.passive]
+    }
+
+    /// The same model, passive, with every part that is always there loose: parts without a tolerance get a loose
+    /// value of their own after the others, with no range.
+    pub fn all_loose(&self) -> Model {
+        let mut model = self.passive_only();
+        let loose = |model: &mut Model, id: &str| {
+            model.parameters.push(Parameter { id: id.to_string(), low: 1.0, high: 1.0 });
+            Some(model.parameters.len() - 1)
+        };
+        for index in 0..model.resistors.len() {
+            if model.resistors[index].kind == PartKind::Fixed && model.resistors[index].parameter.is_none() {
+                let id = model.resistors[index].id.clone();
+                model.resistors[index].parameter = loose(&mut model, &id);
+            }
+        }
+        for index in 0..model.capacitors.len() {
+            if model.capacitors[index].kind == PartKind::Fixed && model.capacitors[index].parameter.is_none() {
+                let id = model.capacitors[index].id.clone();
+                let parameter = loose(&mut model, &id);
+                model.capacitors[index].parameter = parameter;
+                let branch = |part: &&mut Part| part.kind == PartKind::Absorbing(index);
+                model.capacitors.iter_mut().filter(branch).for_each(|c| c.parameter = parameter);
+                model.resistors.iter_mut().filter(branch).for_each(|r| r.parameter = parameter);
+            }
+        }
+        model.passive = model.parameters.len();
+        model
     }
 
     /// The same model with nothing loose that is not there at all times.

@@ -141,6 +141,11 @@ impl Blocks {
         }
     }
 
+    /// True where it is proven that the voltage between two nodes only falls.
+    pub fn only_falls(&self, pair: (usize, usize)) -> bool {
+        self.voltage(pair).is_some()
+    }
+
     /// What a rule for single elements says of every loose value; one that moves nothing at isolation is idle.
     fn by_kind(&self, rule: impl Fn(&Element) -> Pin) -> Vec<Pin> {
         let mut pins = vec![Pin::Idle; self.loose];

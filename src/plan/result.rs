@@ -9,7 +9,8 @@ use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltag
 use serde::Serialize;
 
 pub use crate::check::{
-    Band, CapacitorResult, Check, FaultPoint, FaultWait, LimitResult, LimitSource, Pair, Recovery, ResistorResult,
+    Band, CapacitorResult, Check, DrawFrom, Drawing, DrawnWait, Draws, FaultPoint, FaultWait, LimitResult, LimitSource,
+    Opens, Pair, PartSensitivity, Recovery, Sensitivity, ResistorResult,
     StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
 };
 
@@ -60,6 +61,12 @@ pub struct Plan {
     pub assumptions: Vec<String>,
     /// How the worst cases were found, in one sentence.
     pub worst_case_search: String,
+    /// Random draws beside the worst case; only where asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub draws: Option<Draws>,
+    /// What the waits depend on; only where asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub sensitivity: Option<Vec<Sensitivity>>,
     /// The calculation in a form that a reviewer can check by hand; only where asked for.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub working: Option<Vec<Working>>,
