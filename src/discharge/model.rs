@@ -1,6 +1,7 @@
 //! The bank as numbered nodes and parts.
 
 use super::absorption::Branches;
+use super::spread::Spreads;
 use crate::bank::Bank;
 use crate::bank::description::{Capacitor, Lasts, Resistor, Supply};
 use crate::circuit::{CircuitError, Edge, Network};
@@ -88,6 +89,8 @@ pub(crate) struct Model {
     pub test_points: usize,
     /// Those of parts that are there at all times first.
     pub parameters: Vec<Parameter>,
+    /// How far values can lie from the marked ones.
+    pub spreads: Spreads,
     /// How many of the loose values are of parts that are there at all times; a passive discharge has no others.
     pub passive: usize,
 }
@@ -124,7 +127,7 @@ impl Model {
     /// Where the absorption of a capacitor can't be calibrated.
     pub fn new(bank: &Bank) -> Result<Self, CircuitError> {
         let description = bank.description();
-        let mut model = Model::default();
+        let mut model = Model { spreads: Spreads::of(bank), ..Model::default() };
         model.terminals = description.terminals.iter().map(|n| model.node(n)).collect();
         for capacitor in &description.capacitors {
             let part = model.capacitor(capacitor);
@@ -139,7 +142,8 @@ impl Model {
             model.passive = model.parameters.len();
             for (index, resistor) in description.resistors.iter().enumerate() {
                 if model.resistors[index].kind == kind {
-                    model.resistors[index].parameter = model.parameter(&resistor.id, resistor.tolerance);
+                    let spread = model.spreads.resistor(resistor).total();
+                    model.resistors[index].parameter = model.parameter(&resistor.id, spread);
                 }
             }
         }
@@ -212,7 +216,7 @@ impl Model {
     fn capacitor(&mut self, c: &Capacitor) -> Part {
         let nominal = c.value.si() * f64::from(c.parallel) / f64::from(c.series);
         let (a, b) = (self.node(&c.across[0]), self.node(&c.across[1]));
-        let parameter = self.parameter(&c.id, c.tolerance);
+        let parameter = self.parameter(&c.id, self.spreads.capacitor(c).total());
         Part { id: c.id.clone(), a, b, nominal, parameter, kind: PartKind::Fixed }
     }
 

@@ -9,7 +9,7 @@ pub use result::*;
 use crate::bank::Bank;
 use crate::check::{
     Answers, CapacitorCheck, FaultAnswers, LimitChecks, Procedure, ResistorChecks, StepCheck, StoredCheck, WaitCheck,
-    assumptions, notes, remaining_energy, sensitivities, step_assumptions, step_findings,
+    assumptions, notes, remaining_energy, sensitivities, spreads, step_assumptions, step_findings,
 };
 use crate::discharge::{Figure, MOST_CORNERS, Model, faults, pairs_of_faults};
 use crate::finding::{Findings, Severity};
@@ -190,6 +190,7 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
         stored: None,
         time_constants: Vec::new(),
         waits: Vec::new(),
+        spreads: spreads(bank),
         limits: Vec::new(),
         resistors: Vec::new(),
         capacitors: Vec::new(),

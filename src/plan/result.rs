@@ -10,7 +10,7 @@ use serde::Serialize;
 
 pub use crate::check::{
     Band, CapacitorResult, Check, DrawFrom, Drawing, DrawnWait, Draws, FaultPoint, FaultWait, LimitResult, LimitSource,
-    Opens, Pair, PartSensitivity, Recovery, Sensitivity, ResistorResult,
+    Opens, Pair, PartSensitivity, Recovery, Sensitivity, SpreadResult, ResistorResult,
     StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
 };
 
@@ -45,6 +45,8 @@ pub struct Plan {
     pub time_constants: Vec<Time>,
     /// Waits, one per test point.
     pub waits: Vec<Wait>,
+    /// What age and temperature add to the purchase tolerances; parts for which neither is given are left out.
+    pub spreads: Vec<SpreadResult>,
     /// Limits, one entry per limit and the pair that governs it.
     pub limits: Vec<LimitResult>,
     /// Resistors: figures of ONE element of an array at its own worst point.

@@ -163,6 +163,7 @@ pub fn plan() -> Plan {
         },
         verdict: Verdict::NotMet,
         not_computed: Vec::new(),
+        spreads: Vec::new(),
         draws: None,
         sensitivity: None,
         touch_voltage: v(50.0),

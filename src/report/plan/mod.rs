@@ -5,6 +5,7 @@ mod draws;
 mod limits;
 mod ratings;
 mod sensitivity;
+mod spreads;
 mod steps;
 mod summary;
 mod waits;
@@ -17,6 +18,7 @@ use crate::plan::Plan;
 pub(super) fn document(plan: &Plan) -> Vec<Block> {
     let mut blocks = summary::blocks(plan);
     blocks.extend(waits::blocks(plan));
+    blocks.extend(spreads::blocks(plan));
     blocks.extend(draws::blocks(plan));
     blocks.extend(sensitivity::blocks(plan));
     blocks.extend(steps::blocks(plan));
