@@ -82,7 +82,8 @@ impl Answers {
         let mut worst: Vec<Worst> = Vec::new();
         let mut moments = vec![Moment::Before; figures.len()];
         for scenario in &fault.scenarios {
-            let found = discharge::worst(&Study::new(model, scenario, volts, &figures, FAULT_CORNERS)).map_err(failed)?;
+            let found =
+                discharge::worst(&Study::new(model, scenario, volts, &figures, FAULT_CORNERS)).map_err(failed)?;
             if worst.is_empty() {
                 worst = found;
             } else {

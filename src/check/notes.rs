@@ -122,7 +122,8 @@ pub(crate) fn assumptions(bank: &Bank) -> Vec<String> {
     let ids = |of: &dyn Fn(&SpreadResult) -> bool| -> Vec<String> {
         moved.iter().filter(|s| of(s)).map(|s| s.id.clone()).collect()
     };
-    let (by_temperature, by_age) = (ids(&|s| s.tempco.is_some()), ids(&|s| s.ageing_low.si() + s.ageing_high.si() > 0.0));
+    let (by_temperature, by_age) =
+        (ids(&|s| s.tempco.is_some()), ids(&|s| s.ageing_low.si() + s.ageing_high.si() > 0.0));
     if !by_temperature.is_empty() {
         list.push(format!(
             "Temperature ({}): marked values hold at 20 °C or 25 °C, whichever is farther off; a capacitor and a \
@@ -132,7 +133,10 @@ pub(crate) fn assumptions(bank: &Bank) -> Vec<String> {
         ));
     }
     if !by_age.is_empty() {
-        list.push(format!("Age ({}): anywhere from new to the end that is given, on top of the tolerance.", listed(&by_age)));
+        list.push(format!(
+            "Age ({}): anywhere from new to the end that is given, on top of the tolerance.",
+            listed(&by_age)
+        ));
     }
     for capacitor in &description.capacitors {
         let typical = capacitor.absorption.is_none();

@@ -61,17 +61,18 @@ pub(crate) fn sensitivities(check: &WaitCheck, model: &Model, waits: &[Wait]) ->
                 // Per percent of the value that the part has there.
                 nominal: at_nominal.as_ref().map(|slopes| Time::from_si(0.01 * slopes[p])),
                 slowest: Time::from_si(0.01 * slope * worst[p]),
-                tolerance_costs: Time::from_si(if loose.parameters[p].low < loose.parameters[p].high { cost } else { 0.0 }),
+                tolerance_costs: Time::from_si(if loose.parameters[p].low < loose.parameters[p].high {
+                    cost
+                } else {
+                    0.0
+                }),
             });
         }
         parts.sort_by(|x, y| y.slowest.si().abs().total_cmp(&x.slowest.si().abs()));
         let costly = |x: &&PartSensitivity| x.tolerance_costs.si() > 0.0;
-        let first = parts.iter().filter(costly).max_by(|x, y| x.tolerance_costs.si().total_cmp(&y.tolerance_costs.si()));
-        list.push(Sensitivity {
-            across: wait.across.clone(),
-            tighten_first: first.map(|part| part.id.clone()),
-            parts,
-        });
+        let first =
+            parts.iter().filter(costly).max_by(|x, y| x.tolerance_costs.si().total_cmp(&y.tolerance_costs.si()));
+        list.push(Sensitivity { across: wait.across.clone(), tighten_first: first.map(|part| part.id.clone()), parts });
     }
     Ok(list)
 }

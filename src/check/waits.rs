@@ -223,8 +223,14 @@ impl WaitCheck<'_> {
 
     /// A resistor that opens after isolation: nobody looks for a part that fails while they wait.
     fn opening_findings(index: usize, waits: &[Wait], findings: &mut Findings) {
+        // Opening as the healthy wait ends leaves that wait: nothing to tell.
+        let longer = |w: &&Wait| {
+            let seconds = |t: Option<Time>| t.map_or(f64::INFINITY, Quantity::si);
+            let (found, healthy) = (seconds(w.faults[index].wait), seconds(w.slowest));
+            found > healthy * (1.0 + 1e-6)
+        };
         let worse: Vec<(&Wait, Time)> =
-            waits.iter().filter_map(|w| w.faults[index].opens_at.map(|opens| (w, opens))).collect();
+            waits.iter().filter(longer).filter_map(|w| w.faults[index].opens_at.map(|opens| (w, opens))).collect();
         let Some((wait, opens)) = worse.iter().max_by(|x, y| {
             let length = |w: &Wait| w.faults[index].wait.map_or(f64::INFINITY, Quantity::si);
             length(x.0).total_cmp(&length(y.0))
@@ -232,7 +238,8 @@ impl WaitCheck<'_> {
             return;
         };
         let fault = &wait.faults[index];
-        let length = fault.wait.map_or_else(|| "never ends".to_string(), |t| format!("is {}", duration(t, Direction::Up)));
+        let length =
+            fault.wait.map_or_else(|| "never ends".to_string(), |t| format!("is {}", duration(t, Direction::Up)));
         findings.add(
             Severity::Warning,
             "opens-later-is-worse",

@@ -161,11 +161,8 @@ impl Network {
         (0..self.nodes).filter(|n| tied[*n] && at(*n) != rest).for_each(|n| current[n] = weights[n]);
         let drawn = charged_potentials(self.nodes, edges(), current, &anchor);
         let pulled = |n: usize| if tied[n] { drawn[at(n)] } else { 0.0 };
-        let per_siemens = self
-            .resistors
-            .iter()
-            .map(|r| -(pulled(r.a) - pulled(r.b)) * (potentials[r.a] - potentials[r.b]))
-            .collect();
+        let per_siemens =
+            self.resistors.iter().map(|r| -(pulled(r.a) - pulled(r.b)) * (potentials[r.a] - potentials[r.b])).collect();
         Sensitivity { per_siemens, per_farad }
     }
 }

@@ -10,9 +10,6 @@ use super::worst::{Objective, Search, Worst};
 use crate::circuit::CircuitError;
 use rayon::prelude::*;
 
-/// Random starts besides the best corner found so far and the middle: half of them corners, half of them inside.
-const RANDOM_STARTS: usize = 6;
-
 /// Steps of one climb, and halvings of one step.
 const MOST_STEPS: usize = 24;
 const MOST_HALVINGS: usize = 5;
@@ -45,7 +42,8 @@ fn climb_figure<O: Objective>(search: &Search<'_, O>, index: usize, mut best: Wo
         ((z ^ (z >> 31)) >> 11) as f64 / (1u64 << 53) as f64
     };
     let mut starts = vec![best.point.clone(), search.pinned_point(&pins, |_, r| 0.5 * (r.low + r.high))];
-    for number in 0..RANDOM_STARTS {
+    // Half of the random starts are corners, half lie inside.
+    for number in 0..search.objective.random_starts() {
         starts.push(search.pinned_point(&pins, |_, range| {
             let share = share();
             let share = if number % 2 == 0 { share.round() } else { share };

@@ -33,8 +33,7 @@ pub(crate) fn element_model(model: &Model, resistor: &Resistor) -> Option<(Model
         add(&mut opened, whole.a, whole.b, unit * f64::from(resistor.series) / strings, whole.parameter);
     }
     if resistor.series > 1 {
-        let parameter =
-            if resistor.parallel > 1 { opened.parameter(&resistor.id, spread) } else { whole.parameter };
+        let parameter = if resistor.parallel > 1 { opened.parameter(&resistor.id, spread) } else { whole.parameter };
         add(&mut opened, middle, whole.b, unit * f64::from(resistor.series - 1), parameter);
     }
     let parameter = opened.parameter(&resistor.id, spread);

@@ -74,9 +74,8 @@ mod tests {
     use crate::discharge::worst::Objective;
 
     fn bank(parts: &str) -> Bank {
-        let text = format!(
-            "ebbvolt: 1\ntag: T\ntouch_voltage: 50 V\ncharged_to: {{nominal: 500 V, highest: 600 V}}\n{parts}"
-        );
+        let text =
+            format!("ebbvolt: 1\ntag: T\ntouch_voltage: 50 V\ncharged_to: {{nominal: 500 V, highest: 600 V}}\n{parts}");
         file::read("t.yaml", text.as_bytes()).unwrap_or_else(|e| panic!("{text}{e:?}")).0
     }
 
@@ -222,7 +221,8 @@ mod tests {
         let two_sections = BANKS[2].replace(", charged_to: 300 V", "");
         let expected = of(&[("C1", Pin::High), ("C2", Pin::High), ("R1", Pin::High), ("R2", Pin::Free)]);
         assert_eq!(pins(&two_sections, "P", "N"), expected);
-        let string = BANKS[3].replace("  - {id: R3, role: bleeder, value: 100 kohm, tolerance: 5 %, across: [P, N]}\n", "");
+        let string =
+            BANKS[3].replace("  - {id: R3, role: bleeder, value: 100 kohm, tolerance: 5 %, across: [P, N]}\n", "");
         let expected = of(&[("C1", Pin::High), ("C2", Pin::Idle), ("R1", Pin::High), ("R2", Pin::Low)]);
         assert_eq!(pins(&string, "P", "X"), expected);
         let expected = of(&[("C1", Pin::High), ("C2", Pin::High), ("R1", Pin::Free), ("R2", Pin::Free)]);

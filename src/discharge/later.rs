@@ -46,9 +46,9 @@ pub(crate) fn asked_later(model: &Model, figures: &[Figure]) -> Vec<Figure> {
         proven.as_ref().is_some_and(|blocks| blocks.only_falls((map[a], map[b])))
     };
     let can_count = |figure: &&Figure| match figure {
-        Figure::VoltageWait { pair, .. }
-        | Figure::TouchWait { pair, energy: None, .. }
-        | Figure::Settles { pair } => !falls(*pair),
+        Figure::VoltageWait { pair, .. } | Figure::TouchWait { pair, energy: None, .. } | Figure::Settles { pair } => {
+            !falls(*pair)
+        }
         _ => false,
     };
     if model.is_linear() { figures.iter().filter(can_count).copied().collect() } else { Vec::new() }
@@ -106,6 +106,10 @@ impl Objective for LaterStudy<'_> {
 
     fn most_corners(&self) -> usize {
         MOST_CORNERS
+    }
+
+    fn random_starts(&self) -> usize {
+        2
     }
 
     fn case(&self, point: &[f64]) -> Result<LaterCase, CircuitError> {

@@ -176,7 +176,8 @@ impl Blocks {
     /// Merges the pins of the blocks that have an element marked in `way` and are in the chain; others are at 0 V.
     fn sum(&self, way: &[bool], pair: impl Fn(usize) -> Option<(usize, usize)>) -> Option<Vec<Pin>> {
         let mut pins = vec![Pin::Idle; self.loose];
-        let mut numbers: Vec<usize> = (0..way.len()).filter(|i| way[*i] && self.chain[*i]).map(|i| self.block[i]).collect();
+        let mut numbers: Vec<usize> =
+            (0..way.len()).filter(|i| way[*i] && self.chain[*i]).map(|i| self.block[i]).collect();
         numbers.sort_unstable();
         numbers.dedup();
         for block in numbers {

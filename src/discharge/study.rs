@@ -6,7 +6,7 @@ use super::gradient::voltage_gradient;
 use super::model::{Model, Parameter};
 use super::pinned::{Blocks, Pin};
 use super::scenario::Scenario;
-use super::worst::Objective;
+use super::worst::{MOST_CORNERS, Objective, RANDOM_STARTS};
 use crate::circuit::CircuitError;
 
 /// Figures of the passive discharge: one scenario, one voltage across the terminals before isolation.
@@ -76,6 +76,11 @@ impl Objective for Study<'_> {
 
     fn corner_budget(&self) -> usize {
         self.corner_budget
+    }
+
+    fn random_starts(&self) -> usize {
+        // Under one of many faults fewer corners are tried too.
+        if self.corner_budget < 1 << MOST_CORNERS { RANDOM_STARTS / 4 } else { RANDOM_STARTS }
     }
 
     fn pins(&self, index: usize) -> Vec<Pin> {

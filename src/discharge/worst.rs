@@ -19,8 +19,8 @@ use std::collections::{BTreeMap, HashSet};
 /// Up to this many loose values every corner is tried.
 pub(crate) const MOST_CORNERS: usize = 12;
 
-/// Starts of the search beyond that, besides the two extreme corners and the middle.
-const RANDOM_STARTS: usize = 8;
+/// Random starts of the search beyond that, besides the two extreme corners and the middle.
+pub(super) const RANDOM_STARTS: usize = 8;
 
 /// A gain below this share is not worth another round: a crossing is bracketed to little less.
 const NOTABLE: f64 = 1e-12;
@@ -63,6 +63,11 @@ pub(crate) trait Objective: Sync {
     /// How many corners may be tried in all for figures that few values are left free for.
     fn corner_budget(&self) -> usize {
         1 << MOST_CORNERS
+    }
+
+    /// Random starts of a search; one of many faults does with fewer.
+    fn random_starts(&self) -> usize {
+        RANDOM_STARTS
     }
 
     /// What is proven of every loose value for one figure.
@@ -182,7 +187,8 @@ impl<O: Objective> Search<'_, O> {
             let pinned = pins.len() - free;
             let corners = if *free < usize::BITS as usize { 1usize << free } else { usize::MAX };
             let all = corners <= budget;
-            let method = if all { Method::Pinned { pinned, free: *free } } else { Method::Searched { pinned, free: *free } };
+            let method =
+                if all { Method::Pinned { pinned, free: *free } } else { Method::Searched { pinned, free: *free } };
             members.iter().for_each(|i| best[*i].method = method);
             if all {
                 budget -= corners;
@@ -274,7 +280,7 @@ impl<O: Objective> Search<'_, O> {
         self.offer_to(figures, &self.corner(|_| false), best)?;
         // A fixed sequence (xorshift; Marsaglia 2003), so that the same input gives the same plan.
         let mut state = 0x9e37_79b9_7f4a_7c15_u64;
-        for _ in 0..RANDOM_STARTS {
+        for _ in 0..self.objective.random_starts() {
             let bits: Vec<bool> = (0..count)
                 .map(|_| {
                     state ^= state << 13;

@@ -10,8 +10,8 @@ use serde::Serialize;
 
 pub use crate::check::{
     Band, CapacitorResult, Check, DrawFrom, Drawing, DrawnWait, Draws, FaultPoint, FaultWait, LimitResult, LimitSource,
-    Opens, Pair, PartSensitivity, Recovery, Sensitivity, SpreadResult, ResistorResult,
-    StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
+    Opens, Pair, PartSensitivity, Recovery, ResistorResult, Sensitivity, SpreadResult, StepFault, StepHold, StepPart,
+    StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
 };
 
 /// Everything that a plan says about one bank.

@@ -30,6 +30,12 @@ struct Plan {
     assumptions: Vec<String>,
     worst_case_search: String,
     working: Option<Vec<serde_json::Value>>,
+    #[serde(rename = "draws")]
+    _draws: Option<serde_json::Value>,
+    #[serde(rename = "sensitivity")]
+    _sensitivity: Option<Vec<serde_json::Value>>,
+    #[serde(rename = "spreads")]
+    _spreads: Vec<serde_json::Value>,
 }
 
 #[derive(Deserialize)]
@@ -91,7 +97,11 @@ struct Wait {
     settles_at_v: f64,
     at_isolation_v: f64,
     worst_point: Vec<Worst>,
+    #[serde(rename = "found_by")]
+    _found_by: String,
     faults: Vec<Fault>,
+    #[serde(default, rename = "fault_pairs")]
+    _fault_pairs: Vec<Fault>,
 }
 
 #[derive(Deserialize)]
@@ -107,6 +117,10 @@ struct Fault {
     fault: String,
     wait_s: Option<f64>,
     settles_at_v: f64,
+    #[serde(rename = "opens")]
+    _opens: Option<String>,
+    #[serde(rename = "opens_s")]
+    _opens_s: Option<f64>,
 }
 
 #[derive(Deserialize)]

@@ -48,7 +48,8 @@ impl Dense<'_> {
             for (p, part) in self.bank.parts.iter().enumerate() {
                 for sign in [1.0, -1.0] {
                     let mut moved = point.clone();
-                    moved[p] = (moved[p] + sign * step * part.tolerance).clamp(1.0 - part.tolerance, 1.0 + part.tolerance);
+                    moved[p] =
+                        (moved[p] + sign * step * part.tolerance).clamp(1.0 - part.tolerance, 1.0 + part.tolerance);
                     let found = self.bank.wait(&moved, across);
                     if found > value {
                         (value, point) = (found, moved);

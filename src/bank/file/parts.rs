@@ -23,19 +23,8 @@ const CAPACITOR: [&str; 14] = [
     "phases",
     "connection",
 ];
-const RESISTOR: [&str; 11] = [
-    "id",
-    "role",
-    "value",
-    "tolerance",
-    "tempco",
-    "ageing",
-    "across",
-    "array",
-    "rating",
-    "phases",
-    "connection",
-];
+const RESISTOR: [&str; 11] =
+    ["id", "role", "value", "tolerance", "tempco", "ageing", "across", "array", "rating", "phases", "connection"];
 const SINK: [&str; 6] = ["id", "kind", "value", "across", "stops_below", "counted"];
 const SUPPLY: [&str; 6] = ["id", "voltage", "series", "tolerance", "across", "rating"];
 

@@ -45,9 +45,10 @@ fn two_failed(plan: &Plan, single: &[Worst]) -> Vec<Block> {
         let names = pair.fault.fault.split_once(" and ");
         let (wait, settles) = pair.badness();
         names.is_none_or(|(first, second)| {
-            [alone(first), alone(second)].into_iter().flatten().all(|(w, s)| {
-                wait > w * (1.0 + 1e-9) || (wait.is_infinite() && settles > s * (1.0 + 1e-9))
-            })
+            [alone(first), alone(second)]
+                .into_iter()
+                .flatten()
+                .all(|(w, s)| wait > w * (1.0 + 1e-9) || (wait.is_infinite() && settles > s * (1.0 + 1e-9)))
         })
     };
     let shown: Vec<&Worst> = pairs.iter().filter(worse).collect();
@@ -123,7 +124,8 @@ fn fault_table<'a>(faults: impl Iterator<Item = &'a Worst<'a>>) -> Grid {
     ]);
     for Worst { at, fault } in faults {
         let wait = fault.wait.map_or_else(|| "NEVER".to_string(), time);
-        let moment = fault.opens_at.map_or_else(String::new, |t| format!(" at {}", glued(&duration(t, Direction::Down))));
+        let moment =
+            fault.opens_at.map_or_else(String::new, |t| format!(" at {}", glued(&duration(t, Direction::Down))));
         grid.row([format!("{}{moment}", fault.fault), pair(&at.across), wait, up(fault.settles_at)]);
     }
     grid
