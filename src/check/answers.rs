@@ -34,12 +34,13 @@ impl EngineError {
 /// Corners that may be tried under one fault where pins leave few values free: there are many faults.
 const FAULT_CORNERS: usize = 1 << 8;
 
-/// Figures of the healthy bank: nominal, and greatest over the tolerance box at the highest voltage.
+/// Figures of the healthy bank: nominal, and greatest over the tolerance box at the highest voltage; the worst of
+/// going with and without the sinks that no wait relies on.
 #[derive(Debug, Clone, Default)]
 pub(crate) struct Answers {
     figures: Vec<Figure>,
     nominal: Vec<f64>,
-    worst: Vec<Worst>,
+    worst: Governed,
     /// For every figure of a resistor that opens, when it does.
     moments: Vec<Moment>,
 }
@@ -54,6 +55,39 @@ pub(crate) enum Moment {
     After(f64),
 }
 
+/// The worst of several scenarios for each figure, and which of them it is.
+#[derive(Debug, Clone, Default)]
+pub(crate) struct Governed {
+    pub worst: Vec<Worst>,
+    pub scenario: Vec<Scenario>,
+}
+
+impl Governed {
+    /// Takes in what was found in one more scenario.
+    pub fn offer(&mut self, scenario: &Scenario, found: Vec<Worst>) {
+        if self.worst.is_empty() {
+            self.scenario = vec![scenario.clone(); found.len()];
+            self.worst = found;
+            return;
+        }
+        for (index, found) in found.into_iter().enumerate() {
+            if found.value > self.worst[index].value {
+                self.worst[index] = found;
+                self.scenario[index] = scenario.clone();
+            }
+        }
+    }
+}
+
+/// The greater of each nominal figure.
+pub(super) fn greater(nominal: &mut Vec<f64>, found: Vec<f64>) {
+    if nominal.is_empty() {
+        *nominal = found;
+    } else {
+        nominal.iter_mut().zip(found).for_each(|(x, y)| *x = x.max(y));
+    }
+}
+
 /// Figures under one fault: the greatest over the box and over the ways in which it can come about.
 #[derive(Debug, Clone)]
 pub(crate) struct FaultAnswers {
@@ -66,11 +100,13 @@ impl Answers {
     pub fn healthy(bank: &Bank, model: &Model, mut figures: Vec<Figure>) -> Result<Self, EngineError> {
         without_repeats(&mut figures);
         let charged = &bank.description().charged_to;
-        let scenario = Scenario::default();
-        let study = |volts| Study::new(model, &scenario, volts, &figures, 1 << discharge::MOST_CORNERS);
         let failed = |cause| EngineError { scenario: "healthy".into(), cause };
-        let nominal = discharge::nominal(&study(charged.nominal.si())).map_err(failed)?;
-        let worst = discharge::worst(&study(charged.highest.si())).map_err(failed)?;
+        let (mut nominal, mut worst) = (Vec::new(), Governed::default());
+        for scenario in &discharge::healthy(model) {
+            let study = |volts| Study::new(model, scenario, volts, &figures, 1 << discharge::MOST_CORNERS);
+            greater(&mut nominal, discharge::nominal(&study(charged.nominal.si())).map_err(failed)?);
+            worst.offer(scenario, discharge::worst(&study(charged.highest.si())).map_err(failed)?);
+        }
         Ok(Answers { nominal, worst, figures, moments: Vec::new() })
     }
 
@@ -79,33 +115,27 @@ impl Answers {
         without_repeats(&mut figures);
         let volts = bank.description().charged_to.highest.si();
         let failed = |cause| EngineError { scenario: fault.name.clone(), cause };
-        let mut worst: Vec<Worst> = Vec::new();
+        let mut worst = Governed::default();
         let mut moments = vec![Moment::Before; figures.len()];
         for scenario in &fault.scenarios {
-            let found =
-                discharge::worst(&Study::new(model, scenario, volts, &figures, FAULT_CORNERS)).map_err(failed)?;
-            if worst.is_empty() {
-                worst = found;
-            } else {
-                for ((worst, found), moment) in worst.iter_mut().zip(found).zip(&mut moments) {
-                    // Told apart by more than rounding: the simpler of two equal stories is told.
-                    if found.value > worst.value * (1.0 + 1e-9) {
-                        *moment = Moment::AtIsolation;
-                    }
-                    if found.value > worst.value {
-                        *worst = found;
-                    }
+            let study = Study::new(model, scenario, volts, &figures, FAULT_CORNERS);
+            let found = discharge::worst(&study).map_err(failed)?;
+            for ((moment, found), known) in moments.iter_mut().zip(&found).zip(&worst.worst) {
+                // Told apart by more than rounding: the simpler of two equal stories is told.
+                if found.value > known.value * (1.0 + 1e-9) {
+                    *moment = if scenario.before == scenario.after { Moment::Before } else { Moment::AtIsolation };
                 }
             }
+            worst.offer(scenario, found);
         }
         if let Some(lost) = &fault.later {
             let later = LaterStudy::new(model, lost, volts, asked_later(model, &figures));
             let found = discharge::worst(&later).map_err(failed)?;
             for (asked, (figure, found)) in later.figures().iter().zip(found).enumerate() {
                 let Some(index) = figures.iter().position(|f| f == figure) else { continue };
-                if found.value > worst[index].value * (1.0 + 1e-9) {
+                if found.value > worst.worst[index].value * (1.0 + 1e-9) {
                     moments[index] = Moment::After(later.moment(asked, &found.point).map_err(failed)?);
-                    worst[index] = found;
+                    worst.worst[index] = found;
                 }
             }
         }
@@ -124,17 +154,22 @@ impl Answers {
 
     /// The greatest value of a figure; NaN where it was never asked for, which passes no check.
     pub fn worst(&self, figure: Figure) -> f64 {
-        self.index(&figure).and_then(|i| self.worst.get(i)).map_or(f64::NAN, |w| w.value)
+        self.index(&figure).and_then(|i| self.worst.worst.get(i)).map_or(f64::NAN, |w| w.value)
     }
 
     /// How the greatest value of a figure was found.
     pub fn method(&self, figure: Figure) -> Option<Method> {
-        self.index(&figure).and_then(|i| self.worst.get(i)).map(|w| w.method)
+        self.index(&figure).and_then(|i| self.worst.worst.get(i)).map(|w| w.method)
     }
 
     /// The point of the box at which a figure is greatest.
     pub fn worst_point(&self, figure: Figure) -> &[f64] {
-        self.index(&figure).and_then(|i| self.worst.get(i)).map_or(&[], |w| &w.point)
+        self.index(&figure).and_then(|i| self.worst.worst.get(i)).map_or(&[], |w| &w.point)
+    }
+
+    /// The scenario in which a figure is greatest.
+    pub fn worst_scenario(&self, figure: Figure) -> Scenario {
+        self.index(&figure).and_then(|i| self.worst.scenario.get(i)).cloned().unwrap_or_default()
     }
 }
 

@@ -1,7 +1,7 @@
 //! What a wait depends on: seconds per percent of each part's value, and what to tighten first.
 
-use super::{EngineError, Pair, Wait, WaitCheck, si, si_or_null};
-use crate::discharge::{Model, Scenario, Study, slopes_at, values_at};
+use super::{Answers, EngineError, Pair, Wait, WaitCheck, si, si_or_null};
+use crate::discharge::{Model, Study, slopes_at, values_at};
 use crate::quantity::{Quantity, Time};
 use serde::Serialize;
 
@@ -35,15 +35,22 @@ pub struct PartSensitivity {
 }
 
 /// Sensitivities at every test point.
-pub(crate) fn sensitivities(check: &WaitCheck, model: &Model, waits: &[Wait]) -> Result<Vec<Sensitivity>, EngineError> {
+pub(crate) fn sensitivities(
+    check: &WaitCheck,
+    model: &Model,
+    waits: &[Wait],
+    healthy: &Answers,
+) -> Result<Vec<Sensitivity>, EngineError> {
     let failed = EngineError::of("sensitivity");
     let charged = check.bank.description().charged_to;
-    let (loose, scenario, figures) = (model.all_loose(), Scenario::default(), check.waits());
-    let study = |volts: f64| Study::new(&loose, &scenario, volts, &figures, 0);
-    let (nominal, highest) = (study(charged.nominal.si()), study(charged.highest.si()));
+    let (loose, figures) = (model.all_loose(), check.waits());
     let marked = loose.nominal_point();
     let mut list = Vec::with_capacity(waits.len());
     for (pair, wait) in waits.iter().enumerate() {
+        // With the sinks that draw in the slowest case.
+        let scenario = healthy.worst_scenario(check.wait(pair));
+        let study = |volts: f64| Study::new(&loose, &scenario, volts, &figures, 0);
+        let (nominal, highest) = (study(charged.nominal.si()), study(charged.highest.si()));
         // The loose values of the plan come first; a part without a tolerance stands at its marked value.
         let mut worst = marked.clone();
         worst.iter_mut().zip(&wait.worst_point).for_each(|(x, w)| *x = w.factor);

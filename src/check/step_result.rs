@@ -32,6 +32,9 @@ pub struct StepResult {
     /// Energy in all capacitors at its start, greatest over the box.
     #[serde(rename = "stored_at_start_j", serialize_with = "si")]
     pub stored_at_start: Energy,
+    /// The part of it that a short would meet at once: without what dielectrics give back slowly.
+    #[serde(rename = "ready_at_start_j", serialize_with = "si")]
+    pub ready_at_start: Energy,
     /// Voltages at its end.
     pub test_points: Vec<StepPoint>,
     /// What every resistor and supply that is connected bears during this step.

@@ -134,8 +134,8 @@ impl Opened {
             return Some(0.0);
         }
         for _ in 0..200 {
-            let left: f64 = self.terms.iter().map(|(a, _)| a.after(at).envelope()).sum();
-            if self.settles.after(at).envelope() + left <= level {
+            let left: f64 = self.terms.iter().map(|(a, _)| a.after(at).envelope(f64::INFINITY)).sum();
+            if self.settles.after(at).envelope(f64::INFINITY) + left <= level {
                 return Some(at);
             }
             at *= 1.5;

@@ -10,7 +10,7 @@ fn in_network(parts: &[Part], map: &[usize], there: impl Fn(usize) -> bool) -> V
 }
 
 /// Derivatives in volt per unit of every loose factor, of the voltage of model node `a` against `b` at `t` seconds
-/// after isolation.
+/// after isolation. `None` where a sink draws: there are no modes of the whole then.
 pub(super) fn voltage_gradient(
     model: &Model,
     scenario: &Scenario,
@@ -18,12 +18,13 @@ pub(super) fn voltage_gradient(
     case: &Case,
     (a, b): (usize, usize),
     t: f64,
-) -> Vec<f64> {
+) -> Option<Vec<f64>> {
+    let response = case.response.undrawn()?;
     let mut gradient = vec![0.0; point.len()];
     let map = &case.map;
     let (a, b) = (map[a], map[b]);
     if a == b {
-        return gradient;
+        return Some(gradient);
     }
     let mut add_parts = |network: &crate::circuit::Network, found: &crate::circuit::Sensitivity, ohms: &[f64]| {
         let resistors = in_network(&model.resistors, map, |i| ohms[i].is_finite());
@@ -42,8 +43,8 @@ pub(super) fn voltage_gradient(
             }
         }
     };
-    let carried = case.response.sensitivity(a, b, t);
-    add_parts(case.response.network(), &carried.kept, &case.after_ohms);
+    let carried = response.sensitivity(a, b, t);
+    add_parts(response.network(), &carried.kept, &case.after_ohms);
 
     // The state at isolation is the operating point before it, but for capacitors with a voltage of their own.
     let before = model.network(&scenario.before, point, &[]);
@@ -56,14 +57,14 @@ pub(super) fn voltage_gradient(
             weights[map[part.b]] -= weight;
         }
     }
-    if let Some((of_a, of_b)) = case.response.apart(a, b) {
+    if let Some((of_a, of_b)) = response.apart(a, b) {
         weights[of_a] += 1.0;
         weights[of_b] -= 1.0;
     }
     let held: Vec<usize> = model.terminals.iter().map(|n| map[*n]).collect();
     let found = before.operating_point_sensitivity(&held, &case.potentials, &weights);
     add_parts(&before, &found, &case.before_ohms);
-    gradient
+    Some(gradient)
 }
 
 #[cfg(test)]
@@ -121,7 +122,7 @@ mod tests {
                 let case = Case::solve(&model, &scenario, &point, 600.0).expect("solves");
                 for (pair, t) in (0..model.pairs.len()).flat_map(|p| [0.0, 0.3, 4.0, 30.0].map(|t| (p, t))) {
                     let (a, b) = model.pairs[pair];
-                    let found = voltage_gradient(&model, &scenario, &point, &case, (a, b), t);
+                    let found = voltage_gradient(&model, &scenario, &point, &case, (a, b), t).expect("no sinks");
                     for p in 0..model.passive {
                         let at = |h: f64| {
                             let mut moved = point.clone();
@@ -184,7 +185,7 @@ mod tests {
                     for (index, t) in (0..figures.len()).flat_map(|i| [0.0, 0.5, 3.0, 20.0, 100.0].map(|t| (i, t))) {
                         let (a, b) = model.pairs[index];
                         let volts = case.across(a, b).value(t);
-                        let slopes = voltage_gradient(&model, &scenario, &point, &case, (a, b), t);
+                        let slopes = voltage_gradient(&model, &scenario, &point, &case, (a, b), t).expect("no sinks");
                         for (p, pin) in study.pins(index).into_iter().enumerate() {
                             let slope = slopes[p] * volts.signum();
                             let right = match pin {

@@ -28,7 +28,7 @@ pub(crate) use element::element_model;
 pub(crate) use figure::{Body, Figure};
 pub(crate) use later::{LaterStudy, asked_later};
 pub(crate) use model::{Model, Parameter, Part, PartKind, absorption};
-pub(crate) use scenario::{Fault, Scenario, faults, pairs_of_faults};
+pub(crate) use scenario::{Fault, Scenario, faults, healthy, pairs_of_faults};
 pub(crate) use spread::{Spread, Spreads};
 pub(crate) use study::Study;
 pub(crate) use timeline::{ProcedureStudy, Setting, Stage, StepFigure, Timeline};

@@ -49,12 +49,13 @@ impl<'a> Study<'a> {
             return None;
         }
         let (a, b) = self.model.pairs[pair];
-        let (volts, slope) = case.across(a, b).value_and_slope(t);
+        let response = case.response.undrawn()?;
+        let (volts, slope) = response.across(case.map[a], case.map[b]).value_and_slope(t);
         let factor = if is_wait { -slope.recip() } else { volts.signum() };
         if !factor.is_finite() {
             return None;
         }
-        let gradient = voltage_gradient(self.model, self.scenario, point, case, (a, b), t);
+        let gradient = voltage_gradient(self.model, self.scenario, point, case, (a, b), t)?;
         Some(gradient.into_iter().map(|d| d * factor).collect())
     }
 }

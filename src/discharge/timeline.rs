@@ -8,7 +8,7 @@ use super::case::Start;
 use super::model::{Model, Parameter, PartKind};
 use super::scenario::Scenario;
 use super::worst::Objective;
-use crate::circuit::{CircuitError, ExpSum, Modes, Response};
+use crate::circuit::{CircuitError, Course, Drain, Modes};
 use std::sync::Arc;
 
 /// One step: which switched resistors are connected during it, and how long it lasts in second.
@@ -24,11 +24,11 @@ pub(crate) struct Stage {
 /// A solved step.
 #[derive(Debug)]
 struct Run {
-    response: Response,
+    response: Drain,
     ohms: Vec<f64>,
     duration: f64,
     /// What follows from each voltage that a connected supply is tried from.
-    tries: Vec<Response>,
+    tries: Vec<Drain>,
 }
 
 /// A solved procedure.
@@ -62,6 +62,8 @@ impl Timeline {
             if ohm.is_finite() { (potentials[map[r.a]] - potentials[map[r.b]]).powi(2) / ohm } else { 0.0 }
         };
         let standing = model.resistors.iter().zip(before).map(power).collect();
+        let sinks = model.sinks(&map);
+        let mut drawing = scenario.drawing(model);
         let mut timeline = Timeline { map, standing, runs: Vec::with_capacity(setting.stages.len()) };
         let (mut voltages, mut potentials) = (voltages, potentials);
         let mut last: Option<(&[usize], Arc<Modes>)> = None;
@@ -72,17 +74,18 @@ impl Timeline {
                 _ => Arc::new(Modes::new(model.network(&scenario.after, point, &stage.connected))?),
             };
             last = Some((&stage.connected, Arc::clone(&modes)));
-            let response = modes.response(&voltages, &potentials)?;
+            let response = modes.drain(&voltages, &potentials, &sinks, &drawing)?;
             let mut tries = Vec::new();
             if stage.tried {
                 for volts in setting.tried_from {
                     let from = Scenario { drops_own_voltages: true, ..scenario.clone() };
                     let start = Start::at_isolation(model, &from, point, *volts);
-                    tries.push(modes.response(&start.voltages, &start.potentials)?);
+                    tries.push(modes.drain(&start.voltages, &start.potentials, &sinks, &drawing)?);
                 }
             }
             voltages = response.voltages_at(stage.duration);
             potentials = response.potentials_at(stage.duration);
+            drawing = response.drawing_at(stage.duration).to_vec();
             let ohms = model.ohms(&scenario.after, point, &stage.connected);
             timeline.runs.push(Run { response, ohms, duration: stage.duration, tries });
         }
@@ -90,21 +93,21 @@ impl Timeline {
     }
 
     /// Voltage between two nodes of the model during a step, from its start.
-    pub fn across(&self, stage: usize, a: usize, b: usize) -> ExpSum {
+    pub fn across(&self, stage: usize, a: usize, b: usize) -> Course {
         across(&self.runs[stage].response, &self.map, a, b)
     }
 
     /// What is to come at a pair after the last step, from its end.
-    pub fn afterwards(&self, a: usize, b: usize) -> ExpSum {
+    pub fn afterwards(&self, a: usize, b: usize) -> Course {
         self.runs
             .last()
-            .map_or_else(ExpSum::default, |last| across(&last.response, &self.map, a, b).after(last.duration))
+            .map_or_else(Course::default, |last| across(&last.response, &self.map, a, b).after(last.duration))
     }
 }
 
-fn across(response: &Response, map: &[usize], a: usize, b: usize) -> ExpSum {
+fn across(response: &Drain, map: &[usize], a: usize, b: usize) -> Course {
     let (a, b) = (map[a], map[b]);
-    if a == b { ExpSum::default() } else { response.across(a, b) }
+    if a == b { Course::default() } else { response.across(a, b) }
 }
 
 /// One figure of a procedure. Stages count from 0, pairs are those of the model.
@@ -185,7 +188,7 @@ pub(crate) enum StepFigure {
 
 impl Run {
     /// The voltages that count for a resistor: those of the step itself, or of what a supply is tried from.
-    fn voltages(&self, model: &Model, map: &[usize], resistor: usize) -> Vec<ExpSum> {
+    fn voltages(&self, model: &Model, map: &[usize], resistor: usize) -> Vec<Course> {
         let part = &model.resistors[resistor];
         let responses = if self.tries.is_empty() { std::slice::from_ref(&self.response) } else { &self.tries[..] };
         responses.iter().map(|r| across(r, map, part.a, part.b)).collect()
@@ -211,15 +214,15 @@ impl Run {
         energies.map(|v| v.integral_of_square(self.duration) / ohms).fold(0.0, f64::max)
     }
 
-    /// Power in a resistor over time; of what a supply is tried from, the one that heats most.
-    fn power(&self, model: &Model, map: &[usize], resistor: usize) -> ExpSum {
-        let ohms = self.ohms[resistor];
-        if !ohms.is_finite() {
-            return ExpSum::default();
+    /// The voltage that counts for the temperature of a resistor: of what a supply is tried from, the one that heats
+    /// most.
+    fn hottest(&self, model: &Model, map: &[usize], resistor: usize) -> Course {
+        if !self.ohms[resistor].is_finite() {
+            return Course::default();
         }
-        let heat = |v: &ExpSum| v.integral_of_square(self.duration);
+        let heat = |v: &Course| v.integral_of_square(self.duration);
         let hottest = self.voltages(model, map, resistor).into_iter().max_by(|x, y| heat(x).total_cmp(&heat(y)));
-        hottest.map_or_else(ExpSum::default, |v| v.squared().times(ohms.recip()))
+        hottest.unwrap_or_default()
     }
 }
 
@@ -359,9 +362,10 @@ impl StepFigure {
                 let mut rise = body.kelvin_per_watt * standing[resistor];
                 let mut greatest = rise;
                 for run in runs {
-                    let course = body.rise(rise, &run.power(model, map, resistor));
-                    greatest = course.greatest_magnitude_within(greatest, run.duration)?.0;
-                    rise = course.value(run.duration);
+                    let volts = run.hottest(model, map, resistor);
+                    let heated = body.heated(rise, &volts, run.ohms[resistor], run.duration)?;
+                    greatest = greatest.max(heated.greatest);
+                    rise = heated.end;
                 }
                 greatest
             }

@@ -3,7 +3,7 @@
 mod result;
 mod working;
 
-pub use crate::check::EngineError;
+pub use crate::check::{EngineError, fault_in_words};
 pub use result::*;
 
 use crate::bank::Bank;
@@ -111,13 +111,14 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
         plan.draws = Some(Draws::make(&waits, &model, &plan.waits, drawing)?);
     }
     if options.sensitivity {
-        plan.sensitivity = Some(sensitivities(&waits, &model, &plan.waits)?);
+        plan.sensitivity = Some(sensitivities(&waits, &model, &plan.waits, &healthy)?);
     }
     if options.two_faults {
         two_faults(bank, &model, &waits, plan, findings)?;
     }
     if options.working {
-        plan.working = Some(working::working(bank, &model, &plan.waits)?);
+        plan.working =
+            Some(working::working(bank, &model, &plan.waits, |pair| healthy.worst_scenario(waits.wait(pair)))?);
     }
     Ok(())
 }
@@ -207,12 +208,8 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
 
 /// Parts of the description that this version reads but does not compute.
 fn not_computed(bank: &Bank) -> Vec<String> {
-    let description = bank.description();
-    let missing = [
-        (bank.is_three_phase(), "a three-phase bank: no wait, energy or rating is computed"),
-        (!description.sinks.is_empty(), "sinks: no wait relies on them"),
-    ];
-    missing.into_iter().filter(|(present, _)| *present).map(|(_, text)| text.to_string()).collect()
+    let three_phase = "a three-phase bank: no wait, energy or rating is computed";
+    bank.is_three_phase().then(|| three_phase.to_string()).into_iter().collect()
 }
 
 /// Which search found the worst cases, in one sentence.

@@ -195,6 +195,7 @@ struct Step {
     hold: Option<Hold>,
     touch: bool,
     stored_at_start_j: f64,
+    ready_at_start_j: f64,
     test_points: Vec<StepPoint>,
     parts: Vec<StepPart>,
     faults: Vec<StepFault>,
@@ -361,7 +362,7 @@ fn check_steps(plan: &Plan) {
     for step in &plan.steps {
         assert!(!step.step.is_empty() && step.start_s >= 0.0 && step.end_s >= step.start_s);
         assert!(step.until || !step.never, "only an `until` can fail to come");
-        assert!(step.stored_at_start_j >= 0.0);
+        assert!(step.ready_at_start_j >= 0.0 && step.ready_at_start_j <= step.stored_at_start_j * (1.0 + 1e-9));
         assert_eq!(step.test_points.iter().map(|point| &point.across).collect::<Vec<_>>(), points);
         assert!(step.test_points.iter().all(|point| point.nominal_v >= 0.0 && point.highest_v >= point.nominal_v));
         let figures = |p: &StepPart| [p.peak_current_a, p.peak_power_w, p.energy_j];

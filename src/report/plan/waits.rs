@@ -2,7 +2,7 @@
 
 use super::super::block::{Block, Grid, Side};
 use super::super::words::{glued, pair, time, up, wait};
-use crate::plan::{FaultWait, Plan, Wait};
+use crate::plan::{FaultWait, Plan, Wait, fault_in_words};
 use crate::quantity::{Direction, Quantity, duration};
 
 pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
@@ -126,7 +126,7 @@ fn fault_table<'a>(faults: impl Iterator<Item = &'a Worst<'a>>) -> Grid {
         let wait = fault.wait.map_or_else(|| "NEVER".to_string(), time);
         let moment =
             fault.opens_at.map_or_else(String::new, |t| format!(" at {}", glued(&duration(t, Direction::Down))));
-        grid.row([format!("{}{moment}", fault.fault), pair(&at.across), wait, up(fault.settles_at)]);
+        grid.row([format!("{}{moment}", fault_in_words(&fault.fault)), pair(&at.across), wait, up(fault.settles_at)]);
     }
     grid
 }

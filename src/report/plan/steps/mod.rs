@@ -7,7 +7,7 @@ mod tables;
 
 use super::super::block::{Block, Labelled};
 use super::super::words::{count, down, list, pair, up, whole};
-use crate::plan::{Pair, Plan, StepHold, StepResult};
+use crate::plan::{Pair, Plan, StepHold, StepResult, fault_in_words};
 use crate::quantity::{Quantity, Time, Voltage};
 
 /// Failures that a hold point names; the JSON output has every one.
@@ -195,7 +195,7 @@ fn held(step: &StepResult, hold: &StepHold) -> Vec<String> {
 
 fn pointed_to(faults: &[String]) -> String {
     let (parts, source): (Vec<&String>, Vec<&String>) = faults.iter().partition(|fault| *fault != NOT_ISOLATED);
-    let mut names: Vec<String> = parts.iter().take(NAMED_FAULTS).map(|part| (*part).clone()).collect();
+    let mut names: Vec<String> = parts.iter().take(NAMED_FAULTS).map(|part| fault_in_words(part)).collect();
     if parts.len() > NAMED_FAULTS {
         names.push(format!("{} more", parts.len() - NAMED_FAULTS));
     }
