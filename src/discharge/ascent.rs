@@ -17,7 +17,7 @@ const MOST_HALVINGS: usize = 5;
 /// A gain below this share ends a climb.
 const NOTABLE: f64 = 1e-9;
 
-/// Climbs for every one of `figures` that has a gradient.
+/// Climbs for every one of `figures`, which have gradients.
 pub(super) fn climb_from_many_starts<O: Objective>(
     search: &Search<'_, O>,
     figures: &[usize],

@@ -20,6 +20,9 @@ pub(super) fn voltage_gradient(
     t: f64,
 ) -> Option<Vec<f64>> {
     let response = case.response.undrawn()?;
+    if model.terminals.len() != 2 {
+        return None; // What stands at isolation is no operating point of two terminals.
+    }
     let mut gradient = vec![0.0; point.len()];
     let map = &case.map;
     let (a, b) = (map[a], map[b]);

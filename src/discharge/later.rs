@@ -52,7 +52,11 @@ pub(crate) fn asked_later(model: &Model, figures: &[Figure]) -> Vec<Figure> {
         _ => false,
     };
     // A sink makes the voltage by moment no sum of exponentials: with sinks a part opens at isolation or before only.
-    if model.loads.is_empty() { figures.iter().filter(can_count).copied().collect() } else { Vec::new() }
+    if model.loads.is_empty() && model.terminals.len() == 2 {
+        figures.iter().filter(can_count).copied().collect()
+    } else {
+        Vec::new()
+    }
 }
 
 impl<'a> LaterStudy<'a> {

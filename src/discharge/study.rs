@@ -89,6 +89,16 @@ impl Objective for Study<'_> {
         self.blocks.as_ref().map_or_else(free, |blocks| blocks.pins(self.model, &self.map, &self.figures[index]))
     }
 
+    fn has_gradient(&self, index: usize) -> bool {
+        matches!(
+            self.figures[index],
+            Figure::VoltageWait { .. }
+                | Figure::TouchWait { energy: None, .. }
+                | Figure::VoltageAt { .. }
+                | Figure::Start { .. }
+        )
+    }
+
     fn gradient(&self, index: usize, case: &Case, point: &[f64], value: f64) -> Option<Vec<f64>> {
         self.slopes(index, case, point, value)
     }

@@ -62,7 +62,7 @@ pub(crate) trait Objective: Sync {
 
     /// How many corners may be tried in all for figures that few values are left free for.
     fn corner_budget(&self) -> usize {
-        1 << MOST_CORNERS
+        1 << self.most_corners()
     }
 
     /// Random starts of a search; one of many faults does with fewer.
@@ -73,6 +73,11 @@ pub(crate) trait Objective: Sync {
     /// What is proven of every loose value for one figure.
     fn pins(&self, _index: usize) -> Vec<Pin> {
         vec![Pin::Free; self.parameters().len()]
+    }
+
+    /// Whether one figure has derivatives in closed form at all.
+    fn has_gradient(&self, _index: usize) -> bool {
+        false
     }
 
     /// Derivatives of one figure by every loose value, in closed form; `None` where there is none, or where the figure
@@ -202,6 +207,7 @@ impl<O: Objective> Search<'_, O> {
         }
         searched.sort_unstable();
         self.flip_from_many_starts(&searched, best)?;
+        searched.retain(|index| self.objective.has_gradient(*index));
         ascent::climb_from_many_starts(self, &searched, best)
     }
 

@@ -203,7 +203,7 @@ fn a_coefficient_or_an_age_that_is_none_is_refused_with_its_place() {
         ("tempco: 100 ppm", "not a unit of temperature coefficient"),
         ("ageing: {}", "neither `low` nor `high`"),
         ("ageing: {low: 100 %}", "under 100 %"),
-        ("ageing: {lo: 10 %}", "did you mean `low`"),
+        ("ageing: {lo: 10 %}", "`lo` is no key of"),
         ("ageing: 10", "no unit"),
     ] {
         let bank = format!(
