@@ -110,8 +110,14 @@ impl Answers {
         Ok(Answers { nominal, worst, figures, moments: Vec::new() })
     }
 
-    /// Answers `figures` under `fault`.
-    pub fn under(bank: &Bank, model: &Model, fault: &Fault, mut figures: Vec<Figure>) -> Result<Self, EngineError> {
+    /// Answers `figures` under `fault`; `healthy` are those of the bank without it.
+    pub fn under(
+        bank: &Bank,
+        model: &Model,
+        fault: &Fault,
+        mut figures: Vec<Figure>,
+        healthy: &Answers,
+    ) -> Result<Self, EngineError> {
         without_repeats(&mut figures);
         let volts = bank.description().charged_to.highest.si();
         let failed = |cause| EngineError { scenario: fault.name.clone(), cause };
@@ -133,7 +139,9 @@ impl Answers {
             let found = discharge::worst(&later).map_err(failed)?;
             for (asked, (figure, found)) in later.figures().iter().zip(found).enumerate() {
                 let Some(index) = figures.iter().position(|f| f == figure) else { continue };
-                if found.value > worst.worst[index].value * (1.0 + 1e-9) {
+                // Opening as the healthy wait ends leaves that wait: it counts only where it makes something worse.
+                let at_best = worst.worst[index].value.max(healthy.worst(*figure));
+                if found.value > at_best * (1.0 + 1e-9) {
                     moments[index] = Moment::After(later.moment(asked, &found.point).map_err(failed)?);
                     worst.worst[index] = found;
                 }
@@ -180,9 +188,10 @@ impl FaultAnswers {
         model: &Model,
         faults: Vec<Fault>,
         figures: &[Figure],
+        healthy: &Answers,
     ) -> Result<Vec<FaultAnswers>, EngineError> {
         let under = |fault: Fault| {
-            let answers = Answers::under(bank, model, &fault, figures.to_vec())?;
+            let answers = Answers::under(bank, model, &fault, figures.to_vec(), healthy)?;
             Ok(FaultAnswers { fault, answers })
         };
         faults.into_par_iter().map(under).collect()

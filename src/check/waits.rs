@@ -65,6 +65,9 @@ pub struct FaultWait {
     /// When that is after isolation: how long after it.
     #[serde(rename = "opens_s", serialize_with = "si_or_null", skip_serializing_if = "Option::is_none")]
     pub opens_at: Option<Time>,
+    /// Where the voltage that stays is greatest with the resistor opening after isolation: how long after it.
+    #[serde(rename = "settles_opens_s", serialize_with = "si_or_null", skip_serializing_if = "Option::is_none")]
+    pub settles_opens_at: Option<Time>,
 }
 
 /// When a resistor opens, in the worst case.
@@ -158,6 +161,7 @@ impl WaitCheck<'_> {
 
     /// The waits at a test point under `faults`, in their order.
     pub fn fault_waits(&self, pair: usize, faults: &[FaultAnswers]) -> Vec<FaultWait> {
+        let after = |moment: Option<Moment>| if let Some(Moment::After(t)) = moment { finite(t) } else { None };
         let fault_wait = |fault: &FaultAnswers| {
             let wait = fault.worst(self.wait(pair));
             // Of a wait that never ends, the moment is the one that leaves the highest voltage.
@@ -172,7 +176,8 @@ impl WaitCheck<'_> {
                     Moment::AtIsolation => Opens::AtIsolation,
                     Moment::After(_) => Opens::AfterIsolation,
                 }),
-                opens_at: moment.and_then(|m| if let Moment::After(t) = m { finite(t) } else { None }),
+                opens_at: after(moment),
+                settles_opens_at: after(fault.moment(Figure::Settles { pair })),
             }
         };
         faults.iter().map(fault_wait).collect()
@@ -224,14 +229,8 @@ impl WaitCheck<'_> {
 
     /// A resistor that opens after isolation: nobody looks for a part that fails while they wait.
     fn opening_findings(index: usize, waits: &[Wait], findings: &mut Findings) {
-        // Opening as the healthy wait ends leaves that wait: nothing to tell.
-        let longer = |w: &&Wait| {
-            let seconds = |t: Option<Time>| t.map_or(f64::INFINITY, Quantity::si);
-            let (found, healthy) = (seconds(w.faults[index].wait), seconds(w.slowest));
-            found > healthy * (1.0 + 1e-6)
-        };
         let worse: Vec<(&Wait, Time)> =
-            waits.iter().filter(longer).filter_map(|w| w.faults[index].opens_at.map(|opens| (w, opens))).collect();
+            waits.iter().filter_map(|w| w.faults[index].opens_at.map(|opens| (w, opens))).collect();
         let Some((wait, opens)) = worse.iter().max_by(|x, y| {
             let length = |w: &Wait| w.faults[index].wait.map_or(f64::INFINITY, Quantity::si);
             length(x.0).total_cmp(&length(y.0))

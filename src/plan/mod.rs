@@ -88,7 +88,7 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
     let healthy = Answers::healthy(bank, &model, figures)?;
     let fault_figures: Vec<Figure> =
         [waits.fault_figures(), limits.fault_figures(), capacitors.figures(), resistors.fault_figures()].concat();
-    let under_faults = FaultAnswers::all(bank, &model, faults(bank, &model), &fault_figures)?;
+    let under_faults = FaultAnswers::all(bank, &model, faults(bank, &model), &fault_figures, &healthy)?;
 
     plan.time_constants = working::time_constants(bank, &model)?.into_iter().map(Time::from_si).collect();
     plan.stored = Some(stored.conclude(&healthy, findings));
@@ -114,7 +114,7 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
         plan.sensitivity = Some(sensitivities(&waits, &model, &plan.waits, &healthy)?);
     }
     if options.two_faults {
-        two_faults(bank, &model, &waits, plan, findings)?;
+        two_faults(bank, &model, &waits, &healthy, plan, findings)?;
     }
     if options.working {
         plan.working =
@@ -151,6 +151,7 @@ fn two_faults(
     bank: &Bank,
     model: &Model,
     waits: &WaitCheck,
+    healthy: &Answers,
     plan: &mut Plan,
     findings: &mut Findings,
 ) -> Result<(), EngineError> {
@@ -160,7 +161,7 @@ fn two_faults(
         findings.add(Severity::Warning, "too-many-fault-pairs", text);
         return Ok(());
     }
-    let answers = FaultAnswers::all(bank, model, pairs, &waits.fault_figures())?;
+    let answers = FaultAnswers::all(bank, model, pairs, &waits.fault_figures(), healthy)?;
     for (pair, wait) in plan.waits.iter_mut().enumerate() {
         wait.fault_pairs = waits.fault_waits(pair, &answers);
     }

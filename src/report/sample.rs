@@ -21,7 +21,14 @@ fn nodes(a: &str, b: &str) -> Pair {
 }
 
 fn fault(fault: &str, wait: Option<f64>, settles_at: f64) -> FaultWait {
-    FaultWait { fault: fault.into(), wait: wait.map(s), settles_at: v(settles_at), opens: None, opens_at: None }
+    FaultWait {
+        fault: fault.into(),
+        wait: wait.map(s),
+        settles_at: v(settles_at),
+        opens: None,
+        opens_at: None,
+        settles_opens_at: None,
+    }
 }
 
 fn wait(across: Pair, at: f64, nominal: f64, slowest: f64, faults: Vec<FaultWait>) -> Wait {

@@ -121,6 +121,8 @@ struct Fault {
     _opens: Option<String>,
     #[serde(rename = "opens_s")]
     _opens_s: Option<f64>,
+    #[serde(rename = "settles_opens_s")]
+    _settles_opens_s: Option<f64>,
 }
 
 #[derive(Deserialize)]
