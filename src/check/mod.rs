@@ -3,6 +3,7 @@
 
 mod answers;
 mod capacitors;
+mod charging;
 mod draws;
 mod energy;
 mod fault_words;
@@ -37,6 +38,7 @@ pub(crate) use waits::WaitCheck;
 
 pub use answers::EngineError;
 pub use capacitors::CapacitorResult;
+pub use charging::{Charging, ChargingMoment};
 pub use draws::{DrawFrom, Drawing, DrawnWait, Draws};
 pub use fault_words::fault_in_words;
 pub use limits::{LimitResult, LimitSource};

@@ -160,6 +160,21 @@ impl<'a> Procedure<'a> {
             .map_err(EngineError::of("healthy, through the steps"))
     }
 
+    /// The healthy bank through the steps with every value nominal, at the nominal voltage.
+    pub fn nominal(&self) -> Result<Timeline, EngineError> {
+        let scenario = Scenario::default();
+        let point = vec![1.0; self.model.parameters.len()];
+        Timeline::run(&self.setting(self.model, &scenario, self.tried_from[1]), &point)
+            .map_err(EngineError::of("nominal, through the steps"))
+    }
+
+    /// The numbers of the supplies that a step connects.
+    pub fn new_sources(&self, stage: usize) -> Vec<usize> {
+        let connected = &self.bank.description().procedure[stage].connect;
+        let sources = self.model.sources.iter().enumerate();
+        sources.filter(|(_, s)| connected.contains(&s.id)).map(|(index, _)| index).collect()
+    }
+
     /// Nominal voltages that a step leaves across a part that it connects, with the part and without it.
     pub fn with_and_without(&self, stage: usize, resistor: usize) -> Result<(f64, f64), EngineError> {
         let scenario = Scenario::default();

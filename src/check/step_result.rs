@@ -1,6 +1,6 @@
 //! What a plan says about the steps of a procedure.
 
-use super::{Pair, si, si_or_null};
+use super::{Charging, Pair, si, si_or_null};
 use crate::quantity::{Current, Energy, Power, Time, Voltage};
 use serde::Serialize;
 
@@ -39,6 +39,8 @@ pub struct StepResult {
     pub test_points: Vec<StepPoint>,
     /// What every resistor and supply that is connected bears during this step.
     pub parts: Vec<StepPart>,
+    /// How the supplies that it connects charge an empty bank.
+    pub charging: Vec<Charging>,
     /// The voltages at its end with one part failed.
     pub faults: Vec<StepFault>,
 }

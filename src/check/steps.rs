@@ -2,7 +2,7 @@
 
 use super::procedure::{Procedure, StepAnswers};
 use super::step_result::{FaultPoint, Recovery, StepFault, StepHold, StepPart, StepPoint, StepResult};
-use super::{EngineError, Pair, Wait};
+use super::{Charging, EngineError, Pair, Wait, charging};
 use crate::bank::description::{Lasts, Role, Step};
 use crate::circuit::Course;
 use crate::discharge::{Fault, StepFigure};
@@ -15,6 +15,7 @@ pub(crate) struct StepCheck<'a> {
     pub healthy: StepAnswers,
     pub faults: Vec<(Fault, StepAnswers)>,
     pub readings: Vec<Reading>,
+    charging: Vec<Vec<Charging>>,
 }
 
 /// What a meter reads at the end of the step that connects it, and what would be there without it; nominal, in volt.
@@ -38,7 +39,7 @@ impl<'a> StepCheck<'a> {
             Ok((fault, answers))
         };
         let faults = faults.into_par_iter().map(answered).collect::<Result<_, EngineError>>()?;
-        let mut check = StepCheck { procedure, healthy, faults, readings: Vec::new() };
+        let mut check = StepCheck { procedure, healthy, faults, readings: Vec::new(), charging: Vec::new() };
         for (stage, step) in check.steps().iter().enumerate() {
             let meters: Vec<&String> = step.connect.iter().filter(|id| check.role(id) == Some(Role::Meter)).collect();
             for id in meters {
@@ -48,6 +49,9 @@ impl<'a> StepCheck<'a> {
                 }
             }
         }
+        let stages = 0..procedure.stages.len();
+        let charging = stages.map(|stage| charging::charging(&check, stage, &procedure.new_sources(stage)));
+        check.charging = charging.collect::<Result<_, _>>()?;
         Ok(check)
     }
 
@@ -101,6 +105,7 @@ impl<'a> StepCheck<'a> {
             stored_at_start: Energy::from_si(self.healthy.worst(StepFigure::StoredEnergy { stage })),
             test_points: points.map(point).collect(),
             parts: procedure.connected(stage).into_iter().map(|r| self.part(stage, r)).collect(),
+            charging: self.charging[stage].clone(),
             faults: self.under_faults(stage, waits),
         }
     }
@@ -208,6 +213,7 @@ fn figures(procedure: &Procedure) -> Vec<StepFigure> {
     let mut figures = voltages(procedure);
     let capacitors = procedure.bank.description().capacitors.len();
     for stage in 0..procedure.stages.len() {
+        figures.extend(charging::figures(stage, procedure.new_sources(stage).into_iter()));
         figures.push(StepFigure::ReadyEnergy { stage });
         figures.push(StepFigure::StoredEnergy { stage });
         figures.extend((0..capacitors).map(|capacitor| StepFigure::CapacitorVoltage { stage, capacitor }));

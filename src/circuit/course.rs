@@ -68,6 +68,27 @@ impl Course {
         Course { pieces: pieces.collect(), last: self.last.plus(&other.last) }
     }
 
+    /// How far the course stays below `level`.
+    #[must_use]
+    pub fn short_of(&self, level: f64) -> Self {
+        let short = |sum: &ExpSum| ExpSum::new(level, []).plus(&sum.times(-1.0));
+        let pieces = self.pieces.iter().map(|(length, piece)| (*length, short(piece)));
+        Course { pieces: pieces.collect(), last: short(&self.last) }
+    }
+
+    /// Integral from 0 to a finite `t`.
+    pub fn integral(&self, mut t: f64) -> f64 {
+        let mut sum = 0.0;
+        for (length, piece) in &self.pieces {
+            sum += piece.integral(length.min(t));
+            if t <= *length {
+                return sum;
+            }
+            t -= length;
+        }
+        sum + self.last.integral(t)
+    }
+
     /// What is to come after `t` seconds, from there.
     #[must_use]
     pub fn after(&self, mut t: f64) -> Self {

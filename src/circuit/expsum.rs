@@ -4,7 +4,7 @@ use super::grown::Grown;
 use super::quadrature;
 
 /// `v(t) = constant + sum of amplitude * exp(-rate t)` for t >= 0, all rates positive; while a sink draws from the
-/// network, also what its current has brought about ([`Grown`]), over a finite time.
+/// network, also what its current has brought about (see `grown`), over a finite time.
 #[derive(Debug, Clone, PartialEq, Default)]
 pub struct ExpSum {
     constant: f64,

@@ -68,8 +68,9 @@ impl Response {
         let per_siemens = network.resistors.iter().map(|r| {
             let shapes = shapes_of((r.a, r.b));
             let amplitudes: Vec<f64> = shapes.iter().zip(&self.amplitudes).map(|(s, a)| s * a).collect();
-            let here = if at_once[r.a] == at_once[r.b] { 0.0 } else { self.across(r.a, r.b).value(t) };
-            -integral(&shapes, &amplitudes) - (at_once[r.a] - at_once[r.b]) * here
+            let share = at_once[r.a] - at_once[r.b];
+            let here = if share == 0.0 { 0.0 } else { self.across(r.a, r.b).value(t) };
+            -integral(&shapes, &amplitudes) - share * here
         });
         let mut per_start = Vec::with_capacity(network.capacitors.len());
         let per_farad = network.capacitors.iter().map(|c| {

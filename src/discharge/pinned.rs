@@ -123,7 +123,7 @@ impl Blocks {
                 both.map_or(free, |(v, e)| v.into_iter().zip(e).map(|(x, y)| x.and(y)).collect())
             }
             Figure::EnergyAt { .. } | Figure::EnergyWait { .. } => self.energy().unwrap_or(free),
-            Figure::StoredAt { t } if t == 0.0 => self.by_kind(|e| if e.capacitor { Pin::High } else { Pin::Free }),
+            Figure::StoredAt { t: 0.0 } => self.by_kind(|e| if e.capacitor { Pin::High } else { Pin::Free }),
             Figure::Start { .. } => self.by_kind(|e| if e.capacitor { Pin::Idle } else { Pin::Free }),
             Figure::StandingPower { resistor } => {
                 let part = &model.resistors[resistor];

@@ -97,6 +97,17 @@ impl Timeline {
         across(&self.runs[stage].response, &self.map, a, b)
     }
 
+    /// The charge by a supply that a step connects, from an empty bank: the voltage of the bank where the supply is, and
+    /// that across its series resistance of so many ohm.
+    pub fn charging(&self, model: &Model, stage: usize, source: usize) -> Option<(Course, Course, f64)> {
+        let source = &model.sources[source];
+        let run = &self.runs[stage];
+        let from_empty = run.tries.first()?;
+        let series = &model.resistors[source.resistor];
+        let bank = across(from_empty, &self.map, series.b, source.b);
+        Some((bank, across(from_empty, &self.map, series.a, series.b), run.ohms[source.resistor]))
+    }
+
     /// What is to come at a pair after the last step, from its end.
     pub fn afterwards(&self, a: usize, b: usize) -> Course {
         self.runs
@@ -133,6 +144,12 @@ pub(crate) enum StepFigure {
         stage: usize,
         pair: usize,
         level: f64,
+    },
+    /// When a supply that the step connects has brought an empty bank to a share of its voltage for good.
+    ChargedTo {
+        stage: usize,
+        source: usize,
+        share: f64,
     },
     /// Energy in the capacitors themselves at a step's start, without what their dielectrics give back slowly.
     ReadyEnergy {
@@ -275,7 +292,7 @@ impl Objective for ProcedureStudy<'_> {
                 1e-10 * model.capacitors.iter().map(|c| 0.5 * c.nominal * small * volts).sum::<f64>()
             }
             StepFigure::BodyRise { .. } => 1e-6,
-            StepFigure::LastOver { .. } => 0.0,
+            StepFigure::LastOver { .. } | StepFigure::ChargedTo { .. } => 0.0,
         }
     }
 
@@ -285,6 +302,7 @@ impl Objective for ProcedureStudy<'_> {
             | StepFigure::CapacitorVoltage { stage, .. }
             | StepFigure::VoltageAtStart { stage, .. }
             | StepFigure::LastOver { stage, .. }
+            | StepFigure::ChargedTo { stage, .. }
             | StepFigure::ReadyEnergy { stage }
             | StepFigure::StoredEnergy { stage }
             | StepFigure::Current { stage, .. }
@@ -329,6 +347,13 @@ impl StepFigure {
             StepFigure::LastOver { stage, pair, level } => {
                 at_pair(stage, pair).last_outside(level, floor.max(0.0))?.seconds()
             }
+            StepFigure::ChargedTo { stage, source, share } => match timeline.charging(model, stage, source) {
+                Some((bank, _, _)) => {
+                    let volts = model.sources[source].volts;
+                    bank.short_of(volts).last_outside((1.0 - share) * volts, floor.max(0.0))?.seconds()
+                }
+                None => 0.0,
+            },
             StepFigure::ReadyEnergy { stage } => {
                 let network = runs[stage].response.network();
                 let there = model.capacitors.iter().filter(|c| map[c.a] != map[c.b]);

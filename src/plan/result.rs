@@ -9,9 +9,9 @@ use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltag
 use serde::Serialize;
 
 pub use crate::check::{
-    Band, CapacitorResult, Check, DrawFrom, Drawing, DrawnWait, Draws, FaultPoint, FaultWait, LimitResult, LimitSource,
-    Opens, Pair, PartSensitivity, Recovery, ResistorResult, Sensitivity, SpreadResult, StepFault, StepHold, StepPart,
-    StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
+    Band, CapacitorResult, Charging, ChargingMoment, Check, DrawFrom, Drawing, DrawnWait, Draws, FaultPoint, FaultWait,
+    LimitResult, LimitSource, Opens, Pair, PartSensitivity, Recovery, ResistorResult, Sensitivity, SpreadResult,
+    StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
 };
 
 /// Everything that a plan says about one bank.

@@ -200,7 +200,28 @@ struct Step {
     ready_at_start_j: f64,
     test_points: Vec<StepPoint>,
     parts: Vec<StepPart>,
+    charging: Vec<Charging>,
     faults: Vec<StepFault>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Charging {
+    supply: String,
+    voltage_v: f64,
+    moments: Vec<ChargingMoment>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct ChargingMoment {
+    share: f64,
+    nominal_s: Option<f64>,
+    slowest_s: Option<f64>,
+    bank_v: Option<f64>,
+    series_v: Option<f64>,
+    current_a: Option<f64>,
+    charge_c: Option<f64>,
 }
 
 #[derive(Deserialize)]
@@ -364,6 +385,17 @@ fn check_steps(plan: &Plan) {
     for step in &plan.steps {
         assert!(!step.step.is_empty() && step.start_s >= 0.0 && step.end_s >= step.start_s);
         assert!(step.until || !step.never, "only an `until` can fail to come");
+        for charging in &step.charging {
+            assert!(plan.steps.iter().any(|s| s.connect.contains(&charging.supply)) && charging.voltage_v > 0.0);
+            for m in &charging.moments {
+                let reached = m.share * charging.voltage_v;
+                assert!(m.bank_v.is_none_or(|v| (v / reached - 1.0).abs() < 1e-9));
+                let both = m.bank_v.zip(m.series_v);
+                assert!(both.is_none_or(|(v, r)| ((v + r) / charging.voltage_v - 1.0).abs() < 1e-9));
+                assert!(m.nominal_s.zip(m.slowest_s).is_none_or(|(nominal, slowest)| nominal <= slowest));
+                assert_eq!(m.current_a.is_some(), m.charge_c.is_some());
+            }
+        }
         assert!(step.ready_at_start_j >= 0.0 && step.ready_at_start_j <= step.stored_at_start_j * (1.0 + 1e-9));
         assert_eq!(step.test_points.iter().map(|point| &point.across).collect::<Vec<_>>(), points);
         assert!(step.test_points.iter().all(|point| point.nominal_v >= 0.0 && point.highest_v >= point.nominal_v));

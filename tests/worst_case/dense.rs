@@ -135,7 +135,6 @@ fn never_below(bank: &Bank, seed: u64) {
         let across = [wait.across[0].as_str(), wait.across[1].as_str()];
         let slowest = wait.slowest.expect("it ends").si();
         let found = dense.longest(across, 1000, 4);
-        println!("{across:?}: tool {slowest}, dense {found}, {:e}", slowest / found - 1.0);
         assert!(slowest >= found * (1.0 - 1e-11), "{across:?}: {slowest} s, but {found} s was found");
         // And the tool's own figure is one that the box really holds.
         let at: Vec<f64> = bank

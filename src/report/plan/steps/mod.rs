@@ -2,6 +2,7 @@
 //! comes back afterwards.
 
 mod caution;
+mod charging;
 mod recovery;
 mod tables;
 
@@ -27,6 +28,7 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
         blocks.push(Block::Part(heading(plan, at, step)));
         blocks.push(Block::Labelled(entry(plan, at, step)));
     }
+    blocks.extend(charging::blocks(plan));
     blocks.extend(tables::loads(plan));
     blocks.extend(tables::faults(plan));
     blocks.extend(recovery::blocks(plan));
