@@ -9,6 +9,7 @@
 
 mod absorption;
 mod ascent;
+mod at_point;
 mod body;
 mod case;
 mod element;
@@ -23,6 +24,7 @@ mod study;
 mod timeline;
 mod worst;
 
+pub(crate) use at_point::{slopes_at, values_at};
 pub(crate) use case::Case;
 pub(crate) use element::element_model;
 pub(crate) use figure::{Body, Figure};
@@ -32,4 +34,4 @@ pub(crate) use scenario::{Fault, Scenario, faults, healthy, pairs_of_faults};
 pub(crate) use spread::{Spread, Spreads};
 pub(crate) use study::Study;
 pub(crate) use timeline::{ProcedureStudy, Setting, Stage, StepFigure, Timeline};
-pub(crate) use worst::{MOST_CORNERS, Method, Worst, nominal, slopes_at, values_at, worst};
+pub(crate) use worst::{MOST_CORNERS, Method, Worst, nominal, worst};

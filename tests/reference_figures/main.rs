@@ -212,7 +212,8 @@ fn a_resistor_that_opens_after_isolation_is_worse_than_the_reference_that_opens_
             }
         }
     }
-    assert!(compared < 40, "few of these banks have a section that another charges: {compared}");
+    let all = cases().iter().map(|case| case.faults().count()).sum::<usize>();
+    assert!(compared * 20 < all, "few of {all} are of a section that another charges: {compared}");
     conclude(compared, &misses);
 }
 
