@@ -3,7 +3,8 @@
 //! [`super::Bank`] is a description that passed every check; only that goes further into the tool.
 
 use crate::quantity::{
-    Capacitance, Charge, Current, Energy, Frequency, Power, Resistance, Temperature, Time, Tolerance, Voltage,
+    Capacitance, Charge, Current, Energy, Frequency, Power, Resistance, Temperature, TemperatureCoefficient, Time,
+    Tolerance, Voltage,
 };
 
 /// A pair of nodes; for a part, the first is the positive one.
@@ -125,6 +126,10 @@ pub struct Capacitor {
     pub kvar: Option<Kvar>,
     /// Tolerance of a unit's value; `None` where none is given (then it counts as 0 %).
     pub tolerance: Option<Tolerance>,
+    /// How far a unit's value can move per kelvin, either way.
+    pub tempco: Option<TemperatureCoefficient>,
+    /// How far a unit's value can have moved by age, beside the tolerance it was bought with.
+    pub ageing: Option<Tolerance>,
     /// Its two nodes, the positive one first. For a three-phase part the first two terminals.
     pub across: Pair,
     /// Groups in series.
@@ -200,6 +205,10 @@ pub struct Resistor {
     pub value: Resistance,
     /// Tolerance of an element's value; `None` where none is given (then it counts as 0 %).
     pub tolerance: Option<Tolerance>,
+    /// How far an element's value can move per kelvin, either way.
+    pub tempco: Option<TemperatureCoefficient>,
+    /// How far an element's value can have moved by age, beside the tolerance it was bought with.
+    pub ageing: Option<Tolerance>,
     /// Its two nodes. For a three-phase part the first two terminals.
     pub across: Pair,
     /// Elements in series in each string.

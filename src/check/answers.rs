@@ -3,7 +3,7 @@
 use crate::bank::Bank;
 use crate::bank::description::ChargedTo;
 use crate::circuit::CircuitError;
-use crate::discharge::{self, Fault, Figure, Model, Scenario, Study, Worst};
+use crate::discharge::{self, Fault, Figure, LaterStudy, Method, Model, Scenario, Study, Worst, asked_later};
 use crate::quantity::{Quantity, Voltage};
 use rayon::prelude::*;
 use std::fmt;
@@ -32,6 +32,9 @@ impl EngineError {
     }
 }
 
+/// Corners that may be tried under one fault where pins leave few values free: there are many faults.
+const FAULT_CORNERS: usize = 1 << 8;
+
 /// Figures of the healthy bank: nominal, and greatest over the tolerance box at the highest voltage; the worst of
 /// going with and without the sinks that no wait relies on.
 #[derive(Debug, Clone, Default)]
@@ -41,6 +44,18 @@ pub(crate) struct Answers {
     worst: Governed,
     /// Of a three-phase bank, for every figure the state at isolation that it comes from: nominal, worst.
     states: Vec<[Option<String>; 2]>,
+    /// For every figure of a resistor that opens, when it does.
+    moments: Vec<Moment>,
+}
+
+/// When a resistor opens, in the worst case.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(crate) enum Moment {
+    /// So long before isolation that the voltages have settled without it.
+    Before,
+    AtIsolation,
+    /// This many seconds after isolation.
+    After(f64),
 }
 
 /// The worst of several scenarios for each figure, and which of them it is.
@@ -91,25 +106,53 @@ impl Answers {
         let failed = |cause| EngineError { scenario: "healthy".into(), cause };
         let (mut nominal, mut worst) = (Vec::new(), Governed::default());
         for scenario in &discharge::healthy(model) {
-            let study = |volts| Study { model, scenario, volts, figures: &figures };
+            let study = |volts| Study::new(model, scenario, volts, &figures, 1 << discharge::MOST_CORNERS);
             greater(&mut nominal, discharge::nominal(&study(charged.nominal.si())).map_err(failed)?);
             worst.offer(scenario, discharge::worst(&study(charged.highest.si())).map_err(failed)?);
         }
         let states = states(model, charged, &figures, &worst).map_err(failed)?;
-        Ok(Answers { nominal, worst, figures, states })
+        Ok(Answers { nominal, worst, figures, states, moments: Vec::new() })
     }
 
-    /// Answers `figures` under `fault`.
-    pub fn under(bank: &Bank, model: &Model, fault: &Fault, mut figures: Vec<Figure>) -> Result<Self, EngineError> {
+    /// Answers `figures` under `fault`; `healthy` are those of the bank without it.
+    pub fn under(
+        bank: &Bank,
+        model: &Model,
+        fault: &Fault,
+        mut figures: Vec<Figure>,
+        healthy: &Answers,
+    ) -> Result<Self, EngineError> {
         without_repeats(&mut figures);
         let volts = bank.description().charged_to.highest.si();
         let failed = |cause| EngineError { scenario: fault.name.clone(), cause };
         let mut worst = Governed::default();
+        let mut moments = vec![Moment::Before; figures.len()];
         for scenario in &fault.scenarios {
-            let study = Study { model, scenario, volts, figures: &figures };
-            worst.offer(scenario, discharge::worst(&study).map_err(failed)?);
+            let study = Study::new(model, scenario, volts, &figures, FAULT_CORNERS);
+            let found = discharge::worst(&study).map_err(failed)?;
+            for ((moment, found), known) in moments.iter_mut().zip(&found).zip(&worst.worst) {
+                // Told apart by more than rounding: the simpler of two equal stories is told.
+                if found.value > known.value * (1.0 + 1e-9) {
+                    *moment = if scenario.before == scenario.after { Moment::Before } else { Moment::AtIsolation };
+                }
+            }
+            worst.offer(scenario, found);
         }
-        Ok(Answers { worst, figures, ..Answers::default() })
+        if let Some(lost) = &fault.later {
+            let later = LaterStudy::new(model, lost, volts, asked_later(model, &figures));
+            let found = discharge::worst(&later).map_err(failed)?;
+            for (asked, (figure, found)) in later.figures().iter().zip(found).enumerate() {
+                let Some(index) = figures.iter().position(|f| f == figure) else { continue };
+                // Opening as the healthy wait ends leaves that wait: it counts only where it makes something worse.
+                let at_best = worst.worst[index].value.max(healthy.worst(*figure));
+                if found.value > at_best * (1.0 + 1e-9) {
+                    moments[index] = Moment::After(later.moment(asked, &found.point).map_err(failed)?);
+                    worst.worst[index] = found;
+                }
+            }
+        }
+        let moments = if fault.later.is_some() { moments } else { Vec::new() };
+        Ok(Answers { worst, figures, moments, ..Answers::default() })
     }
 
     fn index(&self, figure: &Figure) -> Option<usize> {
@@ -124,6 +167,11 @@ impl Answers {
     /// The greatest value of a figure; NaN where it was never asked for, which passes no check.
     pub fn worst(&self, figure: Figure) -> f64 {
         self.index(&figure).and_then(|i| self.worst.worst.get(i)).map_or(f64::NAN, |w| w.value)
+    }
+
+    /// How the greatest value of a figure was found.
+    pub fn method(&self, figure: Figure) -> Option<Method> {
+        self.index(&figure).and_then(|i| self.worst.worst.get(i)).map(|w| w.method)
     }
 
     /// The point of the box at which a figure is greatest.
@@ -155,7 +203,7 @@ fn states(
     }
     let found = governed.scenario.iter().zip(&governed.worst).enumerate();
     let of = |(index, (scenario, worst)): (usize, (&Scenario, &Worst))| {
-        let study = |volts: Voltage| Study { model, scenario, volts: volts.si(), figures };
+        let study = |volts: Voltage| Study::new(model, scenario, volts.si(), figures, 0);
         let nominal = study(charged.nominal).worst_state(index, &model.nominal_point())?;
         let worst = study(charged.highest).worst_state(index, &worst.point)?;
         Ok([nominal, worst].map(|state| model.state_name(state)))
@@ -170,12 +218,18 @@ impl FaultAnswers {
         model: &Model,
         faults: Vec<Fault>,
         figures: &[Figure],
+        healthy: &Answers,
     ) -> Result<Vec<FaultAnswers>, EngineError> {
         let under = |fault: Fault| {
-            let answers = Answers::under(bank, model, &fault, figures.to_vec())?;
+            let answers = Answers::under(bank, model, &fault, figures.to_vec(), healthy)?;
             Ok(FaultAnswers { fault, answers })
         };
         faults.into_par_iter().map(under).collect()
+    }
+
+    /// When the resistor that failed opens, for the greatest value of a figure; `None` for another fault.
+    pub fn moment(&self, figure: Figure) -> Option<Moment> {
+        self.answers.index(&figure).and_then(|i| self.answers.moments.get(i)).copied()
     }
 
     /// The greatest value of a figure under this fault.

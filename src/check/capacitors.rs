@@ -3,7 +3,7 @@
 use super::{Answers, FaultAnswers, Verdict, si, si_or_null};
 use crate::bank::Bank;
 use crate::bank::description::Capacitor;
-use crate::discharge::Figure;
+use crate::discharge::{Figure, Spreads};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{Direction, Quantity, Tolerance, Voltage, exact, show};
 use serde::Serialize;
@@ -35,8 +35,8 @@ pub(crate) struct CapacitorCheck<'a> {
 
 /// The greatest share of a string's voltage that one of its groups can take: it at its lowest capacitance, the
 /// others at their highest (the same charge passes all, so voltages go as 1/C).
-fn greatest_share(capacitor: &Capacitor, groups: u32) -> f64 {
-    let tolerance = capacitor.tolerance.unwrap_or(Tolerance::NONE);
+fn greatest_share(tolerance: Option<Tolerance>, groups: u32) -> f64 {
+    let tolerance = tolerance.unwrap_or(Tolerance::NONE);
     let ratio = tolerance.highest_factor() / tolerance.lowest_factor();
     ratio / (ratio + f64::from(groups.saturating_sub(1)))
 }
@@ -59,17 +59,18 @@ impl CapacitorCheck<'_> {
             capacitors.map(|(index, capacitor)| self.capacitor(index, capacitor, healthy, faults)).collect();
         for (result, capacitor) in results.iter().zip(&self.bank.description().capacitors) {
             rating_findings(result, findings);
-            sharing_findings(result, capacitor, findings);
+            sharing_findings(result, capacitor, Spreads::of(self.bank).capacitor(capacitor).total(), findings);
         }
         results
     }
 
     fn capacitor(&self, index: usize, c: &Capacitor, healthy: &Answers, faults: &[FaultAnswers]) -> CapacitorResult {
         let figure = Figure::CapacitorVoltage { capacitor: index };
-        let unit = healthy.worst(figure) * greatest_share(c, c.series);
+        let spread = Spreads::of(self.bank).capacitor(c).total();
+        let unit = healthy.worst(figure) * greatest_share(spread, c.series);
         let under = |fault: &FaultAnswers| {
             let groups = if fault.fault.name == format!("{} one unit shorted", c.id) { c.series - 1 } else { c.series };
-            (fault.worst(figure) * greatest_share(c, groups), fault.fault.name.clone())
+            (fault.worst(figure) * greatest_share(spread, groups), fault.fault.name.clone())
         };
         // Of its own open leg a capacitor feels nothing: what then stands across its terminals is not on it.
         let felt = faults.iter().filter(|fault| fault.fault.name != format!("{} open", c.id));
@@ -113,9 +114,14 @@ fn rating_findings(result: &CapacitorResult, findings: &mut Findings) {
     }
 }
 
-fn sharing_findings(result: &CapacitorResult, capacitor: &Capacitor, findings: &mut Findings) {
+fn sharing_findings(
+    result: &CapacitorResult,
+    capacitor: &Capacitor,
+    spread: Option<Tolerance>,
+    findings: &mut Findings,
+) {
     let equal = 1.0 / f64::from(capacitor.series);
-    if capacitor.series > 1 && greatest_share(capacitor, capacitor.series) > equal * (1.0 + 1e-9) {
+    if capacitor.series > 1 && greatest_share(spread, capacitor.series) > equal * (1.0 + 1e-9) {
         findings.add(
             Severity::Warning,
             "units-share-unequally",

@@ -1,7 +1,7 @@
 //! What a reader should know of the description itself, and what the plan rests on.
 
 use super::waits::listed;
-use super::{CapacitorResult, ResistorResult, Verdict};
+use super::{CapacitorResult, ResistorResult, SpreadResult, Verdict, spreads};
 use crate::bank::Bank;
 use crate::bank::description::{Neutral, Role, Source};
 use crate::circuit::Network;
@@ -127,6 +127,26 @@ pub(crate) fn assumptions(bank: &Bank) -> Vec<String> {
     }
     if !description.charged_to.margin_given {
         list.push(format!("Highest voltage: {}, the nominal one.", exact(description.charged_to.highest)));
+    }
+    let moved = spreads(bank);
+    let ids = |of: &dyn Fn(&SpreadResult) -> bool| -> Vec<String> {
+        moved.iter().filter(|s| of(s)).map(|s| s.id.clone()).collect()
+    };
+    let (by_temperature, by_age) =
+        (ids(&|s| s.tempco.is_some()), ids(&|s| s.ageing_low.si() + s.ageing_high.si() > 0.0));
+    if !by_temperature.is_empty() {
+        list.push(format!(
+            "Temperature ({}): marked values hold at 20 °C or 25 °C, whichever is farther off; a capacitor and a \
+             resistor without thermal data are anywhere from there to the air, a resistor with thermal data up to its \
+             body before isolation, a tool up to where its rating ends. The coefficient counts both ways.",
+            listed(&by_temperature)
+        ));
+    }
+    if !by_age.is_empty() {
+        list.push(format!(
+            "Age ({}): anywhere from new to the end that is given, on top of the tolerance.",
+            listed(&by_age)
+        ));
     }
     for capacitor in &description.capacitors {
         let typical = capacitor.absorption.is_none();

@@ -258,6 +258,8 @@ impl ResistorChecks<'_> {
                 role: Role::Series,
                 value: supply.series,
                 tolerance: supply.tolerance,
+                tempco: None,
+                ageing: None,
                 across: supply.across.clone(),
                 series: 1,
                 parallel: 1,

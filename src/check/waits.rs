@@ -1,9 +1,9 @@
 //! How long to wait at each test point.
 
-use super::{Answers, FaultAnswers, Pair, fault_in_words, si, si_or_null};
+use super::{Answers, FaultAnswers, Moment, Pair, fault_in_words, si, si_or_null};
 use crate::bank::Bank;
 use crate::bank::description::Role;
-use crate::discharge::{Figure, Model};
+use crate::discharge::{Figure, Method, Model};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{Direction, Quantity, Time, Voltage, duration, exact, show};
 use serde::Serialize;
@@ -33,8 +33,13 @@ pub struct Wait {
     /// Of a three-phase bank, in which order its poles opened in the worst cases.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub interruption: Option<Interruption>,
+    /// How the slowest wait was found, in words; a search inside the box always follows.
+    pub found_by: String,
     /// The same with one part failed.
     pub faults: Vec<FaultWait>,
+    /// The same with two parts failed; only where that was asked for.
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub fault_pairs: Vec<FaultWait>,
 }
 
 /// The orders of the poles that leave the worst at a test point: which opened first, and at which polarity each.
@@ -68,6 +73,27 @@ pub struct FaultWait {
     /// Greatest voltage at infinite time over the box.
     #[serde(rename = "settles_at_v", serialize_with = "si")]
     pub settles_at: Voltage,
+    /// For a resistor that opens: when, in the worst case.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub opens: Option<Opens>,
+    /// When that is after isolation: how long after it.
+    #[serde(rename = "opens_s", serialize_with = "si_or_null", skip_serializing_if = "Option::is_none")]
+    pub opens_at: Option<Time>,
+    /// Where the voltage that stays is greatest with the resistor opening after isolation: how long after it.
+    #[serde(rename = "settles_opens_s", serialize_with = "si_or_null", skip_serializing_if = "Option::is_none")]
+    pub settles_opens_at: Option<Time>,
+}
+
+/// When a resistor opens, in the worst case.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub enum Opens {
+    /// So long before isolation that the voltages have settled without it.
+    BeforeIsolation,
+    /// At isolation.
+    AtIsolation,
+    /// After isolation, where another part of the bank has charged this one meanwhile.
+    AfterIsolation,
 }
 
 /// The wait for the touch voltage, per test point.
@@ -89,6 +115,11 @@ impl WaitCheck<'_> {
     /// The figure that is the wait at a test point.
     pub fn wait(&self, pair: usize) -> Figure {
         Figure::TouchWait { pair, level: self.level(), energy: self.bank.description().hold_energy.map(Quantity::si) }
+    }
+
+    /// The waits themselves, in the order of the test points.
+    pub fn waits(&self) -> Vec<Figure> {
+        self.pairs().map(|pair| self.wait(pair)).collect()
     }
 
     fn pairs(&self) -> std::ops::Range<usize> {
@@ -114,6 +145,7 @@ impl WaitCheck<'_> {
         }
         for (index, fault) in faults.iter().enumerate() {
             self.fault_findings(fault, index, &waits, findings);
+            Self::opening_findings(index, &waits, findings);
         }
         waits
     }
@@ -121,11 +153,6 @@ impl WaitCheck<'_> {
     fn wait_at(&self, pair: usize, healthy: &Answers, faults: &[FaultAnswers]) -> Wait {
         let (a, b) = self.model.pairs[pair];
         let point = healthy.worst_point(self.wait(pair));
-        let fault_wait = |fault: &FaultAnswers| FaultWait {
-            fault: fault.fault.name.clone(),
-            wait: finite(fault.worst(self.wait(pair))),
-            settles_at: Voltage::from_si(fault.worst(Figure::Settles { pair })),
-        };
         Wait {
             across: [self.model.node_names[a].clone(), self.model.node_names[b].clone()],
             nominal: finite(healthy.nominal(self.wait(pair))),
@@ -141,7 +168,9 @@ impl WaitCheck<'_> {
                 .zip(point)
                 .map(|(p, factor)| WorstValue { id: p.id.clone(), factor: *factor })
                 .collect(),
-            faults: faults.iter().map(fault_wait).collect(),
+            found_by: found_by(healthy.method(self.wait(pair)), self.model.passive),
+            faults: self.fault_waits(pair, faults),
+            fault_pairs: Vec::new(),
         }
     }
 
@@ -150,6 +179,30 @@ impl WaitCheck<'_> {
         let [nominal, slowest] = healthy.states(self.wait(pair))?.map(str::to_string);
         let [_, at_isolation] = healthy.states(Figure::Start { pair })?.map(str::to_string);
         Some(Interruption { nominal, slowest, at_isolation })
+    }
+
+    /// The waits at a test point under `faults`, in their order.
+    pub fn fault_waits(&self, pair: usize, faults: &[FaultAnswers]) -> Vec<FaultWait> {
+        let after = |moment: Option<Moment>| if let Some(Moment::After(t)) = moment { finite(t) } else { None };
+        let fault_wait = |fault: &FaultAnswers| {
+            let wait = fault.worst(self.wait(pair));
+            // Of a wait that never ends, the moment is the one that leaves the highest voltage.
+            let governing = if wait.is_finite() { self.wait(pair) } else { Figure::Settles { pair } };
+            let moment = fault.moment(governing);
+            FaultWait {
+                fault: fault.fault.name.clone(),
+                wait: finite(wait),
+                settles_at: Voltage::from_si(fault.worst(Figure::Settles { pair })),
+                opens: moment.map(|m| match m {
+                    Moment::Before => Opens::BeforeIsolation,
+                    Moment::AtIsolation => Opens::AtIsolation,
+                    Moment::After(_) => Opens::AfterIsolation,
+                }),
+                opens_at: after(moment),
+                settles_opens_at: after(fault.moment(Figure::Settles { pair })),
+            }
+        };
+        faults.iter().map(fault_wait).collect()
     }
 
     fn healthy_findings(&self, wait: &Wait, findings: &mut Findings) {
@@ -196,6 +249,32 @@ impl WaitCheck<'_> {
         }
     }
 
+    /// A resistor that opens after isolation: nobody looks for a part that fails while they wait.
+    fn opening_findings(index: usize, waits: &[Wait], findings: &mut Findings) {
+        let worse: Vec<(&Wait, Time)> =
+            waits.iter().filter_map(|w| w.faults[index].opens_at.map(|opens| (w, opens))).collect();
+        let Some((wait, opens)) = worse.iter().max_by(|x, y| {
+            let length = |w: &Wait| w.faults[index].wait.map_or(f64::INFINITY, Quantity::si);
+            length(x.0).total_cmp(&length(y.0))
+        }) else {
+            return;
+        };
+        let fault = &wait.faults[index];
+        let length =
+            fault.wait.map_or_else(|| "never ends".to_string(), |t| format!("is {}", duration(t, Direction::Up)));
+        findings.add(
+            Severity::Warning,
+            "opens-later-is-worse",
+            format!(
+                "{}: opening {} after isolation is worse than at or before it. Another part of the bank has charged \
+                 {} by then; the wait there then {length}.",
+                fault.fault,
+                duration(*opens, Direction::Down),
+                wait.across.join(" - "),
+            ),
+        );
+    }
+
     fn fault_findings(&self, fault: &FaultAnswers, index: usize, waits: &[Wait], findings: &mut Findings) {
         let never: Vec<&Wait> = waits.iter().filter(|w| w.faults[index].wait.is_none()).collect();
         let Some(worst) = never.iter().max_by(|x, y| {
@@ -226,6 +305,25 @@ impl WaitCheck<'_> {
                 show(worst.faults[index].settles_at, Direction::Up)
             ),
         );
+    }
+}
+
+/// How a worst case was found, in words.
+fn found_by(method: Option<Method>, loose: usize) -> String {
+    let proven = |pinned: usize| match pinned {
+        0 => String::new(),
+        n => format!("{n} of {loose} loose values pinned by proof, "),
+    };
+    match method {
+        None | Some(Method::AllCorners(0)) => "no value is loose".into(),
+        Some(Method::AllCorners(n)) => format!("all {} corners of {n} loose values", 1u64 << n),
+        Some(Method::Pinned { pinned, free: 0 }) => format!("all {pinned} loose values pinned by proof"),
+        Some(Method::Pinned { pinned, free }) => {
+            format!("{}all {} corners of the other {free}", proven(pinned), 1u64 << free)
+        }
+        Some(Method::Searched { pinned, free }) => {
+            format!("{}{free} searched from several starts: a search, not a proof", proven(pinned))
+        }
     }
 }
 

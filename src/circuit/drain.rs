@@ -144,6 +144,14 @@ impl Drain {
         self.phases[0].response.modes()
     }
 
+    /// The response itself, where no sink draws at any time.
+    pub fn undrawn(&self) -> Option<&Response> {
+        match self.phases.as_slice() {
+            [only] if !only.drawing.contains(&true) => Some(&only.response),
+            _ => None,
+        }
+    }
+
     fn last(&self) -> &Phase {
         &self.phases[self.phases.len() - 1]
     }

@@ -27,11 +27,13 @@ mod jacobi;
 mod laplacian;
 mod modes;
 mod network;
+mod opened;
 mod power;
 mod pull;
 mod quadrature;
 mod reduce;
 mod response;
+mod sensitivity;
 mod short;
 
 pub use course::Course;
@@ -42,7 +44,9 @@ pub use expsum::ExpSum;
 pub use interruption::{Feed, Phasor, three_phases};
 pub use modes::Modes;
 pub use network::{Edge, Network};
+pub use opened::{AtMoment, Opened};
 pub use response::Response;
+pub use sensitivity::{Carried, Sensitivity};
 pub use short::ShortCharge;
 
 use std::fmt;
@@ -70,6 +74,13 @@ pub enum CircuitError {
         /// The sum, which ought to be zero.
         sum: f64,
     },
+    /// A value somewhere in the tolerances exceeds the greatest one that was found.
+    Exceeded {
+        /// The value, in SI base units.
+        value: f64,
+        /// The greatest one that was found.
+        greatest: f64,
+    },
 }
 
 impl fmt::Display for CircuitError {
@@ -79,6 +90,9 @@ impl fmt::Display for CircuitError {
             CircuitError::SearchNotClosed => write!(f, "the search for a crossing or a greatest value did not close"),
             CircuitError::Unbalanced { before, after } => {
                 write!(f, "the energy balance failed: {before} J before, {after} J after")
+            }
+            CircuitError::Exceeded { value, greatest } => {
+                write!(f, "a value of {value:?} exceeds the worst case that was found, {greatest:?}")
             }
             CircuitError::Contradiction { capacitor, sum } => {
                 write!(f, "the voltages around the loop closed by capacitor {capacitor} add up to {sum} V, not 0 V")

@@ -23,7 +23,7 @@ impl Drawn {
 pub struct Response {
     modes: Arc<Modes>,
     /// Amplitude of every mode.
-    amplitudes: Vec<f64>,
+    pub(super) amplitudes: Vec<f64>,
     /// States at infinite time in volt, then the voltages of the sources.
     settled: Vec<f64>,
     /// Potentials at the start: a part that nothing ties to the reference keeps that of its anchor.
@@ -32,6 +32,13 @@ pub struct Response {
     voltages: Vec<f64>,
     /// Currents that sinks draw.
     drawn: Vec<Drawn>,
+}
+
+/// What one mode adds at the start; the mode without a rate stays for ever.
+pub(super) struct ByMode {
+    pub rate: Option<f64>,
+    pub voltages: Vec<f64>,
+    pub potentials: Vec<f64>,
 }
 
 impl Modes {
@@ -126,23 +133,14 @@ impl Response {
 
     /// Voltage in volt of node `a` against node `b`.
     pub fn across(&self, a: usize, b: usize) -> ExpSum {
+        let (constant, amplitudes) = self.amplitudes_across(a, b);
         let modes = &self.modes;
-        let (pa, pb) = (&modes.potentials[a], &modes.potentials[b]);
-        let difference: Vec<f64> = pa.iter().zip(pb).map(|(x, y)| x - y).collect();
-        let dot = |other: &[f64]| difference.iter().zip(other).map(|(x, y)| x * y).sum::<f64>();
-        // Nodes that resistors join end at one potential: exactly, not to rounding.
-        let no_source = self.network().sources.is_empty();
-        let constant = if no_source && modes.resistive[a] == modes.resistive[b] {
-            0.0
-        } else {
-            let anchors = self.start[modes.anchor[a]] - self.start[modes.anchor[b]];
-            dot(&self.settled) + if modes.anchor[a] == modes.anchor[b] { 0.0 } else { anchors }
-        };
-        let terms = modes.shapes.iter().zip(&modes.rates).zip(&self.amplitudes);
-        let passive = ExpSum::new(constant, terms.map(|((shape, rate), amplitude)| (dot(shape) * amplitude, *rate)));
+        let passive = ExpSum::new(constant, amplitudes.into_iter().zip(modes.rates.iter().copied()));
         if self.drawn.is_empty() {
             return passive;
         }
+        let (pa, pb) = (&modes.potentials[a], &modes.potentials[b]);
+        let dot = |other: &[f64]| pa.iter().zip(pb).zip(other).map(|((x, y), u)| (x - y) * u).sum::<f64>();
         let mut jump = 0.0;
         let mut grown = Vec::new();
         for Drawn { pull, ampere } in &self.drawn {
@@ -160,6 +158,44 @@ impl Response {
             grown.push(Grown { rate: 0.0, factors: lasting });
         }
         passive.plus(&ExpSum::new(jump, [])).with_grown(grown)
+    }
+
+    /// The constant and the amplitude of every mode of the voltage of node `a` against node `b`, in volt.
+    pub(super) fn amplitudes_across(&self, a: usize, b: usize) -> (f64, Vec<f64>) {
+        let modes = &self.modes;
+        let (pa, pb) = (&modes.potentials[a], &modes.potentials[b]);
+        let difference: Vec<f64> = pa.iter().zip(pb).map(|(x, y)| x - y).collect();
+        let dot = |other: &[f64]| difference.iter().zip(other).map(|(x, y)| x * y).sum::<f64>();
+        // Nodes that resistors join end at one potential: exactly, not to rounding.
+        let no_source = self.network().sources.is_empty();
+        let constant = if no_source && modes.resistive[a] == modes.resistive[b] {
+            0.0
+        } else {
+            let anchors = self.start[modes.anchor[a]] - self.start[modes.anchor[b]];
+            dot(&self.settled) + if modes.anchor[a] == modes.anchor[b] { 0.0 } else { anchors }
+        };
+        (constant, modes.shapes.iter().zip(&self.amplitudes).map(|(shape, amplitude)| dot(shape) * amplitude).collect())
+    }
+
+    /// The response taken apart: what each mode adds to the voltages of all capacitors and the potentials of all
+    /// nodes at the start, and what stays for ever. The network has no sources.
+    pub(super) fn parts_by_mode(&self) -> Vec<ByMode> {
+        let network = self.network();
+        let dot = |node: usize, states: &[f64]| -> f64 {
+            self.modes.potentials[node].iter().zip(states).map(|(x, u)| x * u).sum()
+        };
+        let part = |states: &[f64], rate: Option<f64>| {
+            let voltages = network.capacitors.iter().map(|c| dot(c.a, states) - dot(c.b, states)).collect();
+            let kept = |node: usize| if rate.is_none() { self.start[self.modes.anchor[node]] } else { 0.0 };
+            let potentials = (0..network.nodes).map(|node| kept(node) + dot(node, states)).collect();
+            ByMode { rate, voltages, potentials }
+        };
+        let modes = self.modes.shapes.iter().zip(&self.modes.rates).zip(&self.amplitudes);
+        let decaying = modes.map(|((shape, rate), amplitude)| {
+            let states: Vec<f64> = shape.iter().map(|x| x * amplitude).collect();
+            part(&states, Some(*rate))
+        });
+        std::iter::once(part(&self.settled, None)).chain(decaying).collect()
     }
 
     /// Energy in joule in all capacitors as a function of time, those of `parts` only where they are given: labels

@@ -54,6 +54,21 @@ pub(super) struct PlanArgs {
     /// Instead of the plan, print the bank file with plain parts only: three phases as their legs, kvar as farads
     #[arg(long)]
     pub expand: bool,
+    /// How many parts may have failed at once: 1, or 2 for every two of them as well
+    #[arg(long, value_name = "NUMBER", default_value_t = 1, value_parser = clap::value_parser!(u8).range(1..=2))]
+    pub faults: u8,
+    /// How much each wait changes per percent of each part's value, and what to tighten first
+    #[arg(long)]
+    pub sensitivity: bool,
+    /// Draw this many random banks within the tolerances, beside the worst case
+    #[arg(long, value_name = "NUMBER", value_parser = clap::value_parser!(u32).range(1..=1_000_000))]
+    pub draws: Option<u32>,
+    /// How the draws are spread over the tolerances; normal takes their ends as 3 standard deviations
+    #[arg(long, value_enum, default_value_t = DrawDistribution::Uniform, requires = "draws")]
+    pub draw_from: DrawDistribution,
+    /// The same seed gives the same draws
+    #[arg(long, value_name = "NUMBER", default_value_t = 1, requires = "draws")]
+    pub seed: u64,
     /// How the plan is written
     #[arg(long, value_enum, default_value_t = PlanFormat::Text)]
     pub format: PlanFormat,
@@ -96,6 +111,13 @@ pub(super) struct LimitsArgs {
     /// How the list is written
     #[arg(long, value_enum, default_value_t = ListFormat::Text)]
     pub format: ListFormat,
+}
+
+/// How random draws are spread.
+#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub(super) enum DrawDistribution {
+    Uniform,
+    Normal,
 }
 
 /// Formats of a plan. There is no CSV: a plan is not one table.

@@ -1,12 +1,12 @@
 //! `plan`: from a bank file, standard input, the example or a few flags to a plan.
 
-use super::args::{PlanArgs, PlanFormat, QuickArgs};
+use super::args::{DrawDistribution, PlanArgs, PlanFormat, QuickArgs};
 use super::input::{self, Input};
 use super::output::Output;
 use super::{INPUT_WRONG, NO_VERDICT};
 use crate::bank::file;
 use crate::bank::quick::{QuickForm, quick_text};
-use crate::plan::{Options, Plan};
+use crate::plan::{DrawFrom, Drawing, Options, Plan};
 use crate::{data, plan, report};
 use sha2::{Digest, Sha256};
 use std::fmt::Write as _;
@@ -46,11 +46,32 @@ pub(super) fn run(typed: &PlanArgs, stdin: &mut dyn Read, output: &mut Output) -
     if typed.expand {
         return output.result(&file::write(&bank.expanded()), 0);
     }
-    let options = Options { working: typed.working };
+    let options = Options {
+        working: typed.working,
+        two_faults: typed.faults == 2,
+        draws: drawing(typed),
+        sensitivity: typed.sensitivity,
+    };
+    if options.two_faults {
+        match plan::too_many_fault_pairs(&bank) {
+            Ok(None) => {}
+            Ok(Some(problem)) => return output.problem(&problem, INPUT_WRONG),
+            Err(e) => return no_verdict(&e.to_string(), output),
+        }
+    }
     match plan::plan(&bank, &sha256(&input.bytes), notes, options) {
         Ok(plan) => print(&plan, typed.format, output),
         Err(e) => no_verdict(&e.to_string(), output),
     }
+}
+
+/// The random draws that were asked for.
+fn drawing(typed: &PlanArgs) -> Option<Drawing> {
+    let from = match typed.draw_from {
+        DrawDistribution::Uniform => DrawFrom::Uniform,
+        DrawDistribution::Normal => DrawFrom::Normal,
+    };
+    typed.draws.map(|count| Drawing { count, from, seed: typed.seed })
 }
 
 /// What the words that were typed ask for; the error says what to type.

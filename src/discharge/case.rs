@@ -134,6 +134,14 @@ impl Case {
         self.before.greatest(self.map[a], self.map[b])
     }
 
+    /// Potentials in volt of the network's nodes before isolation; `None` where they alternate.
+    pub fn potentials(&self) -> Option<&[f64]> {
+        match &*self.before {
+            Before::Direct(potentials) => Some(potentials),
+            Before::Alternating(_) => None,
+        }
+    }
+
     /// Mean square of the voltage between two nodes of the model before isolation.
     pub fn before_mean_square(&self, a: usize, b: usize) -> f64 {
         self.before.mean_square(self.map[a], self.map[b])

@@ -20,6 +20,7 @@ pub(crate) fn element_model(model: &Model, resistor: &Resistor) -> Option<(Model
     // Other resistors keep their numbers: the array's own place becomes the element at the end.
     let whole = opened.resistors[index].clone();
     let unit = resistor.value.si();
+    let spread = model.spreads.resistor(resistor).total();
     let kind = if whole.kind == PartKind::Switched { PartKind::With(index) } else { whole.kind };
     let add = |opened: &mut Model, a, b, nominal, parameter| {
         opened.resistors.push(Part { id: whole.id.clone(), a, b, nominal, parameter, kind });
@@ -32,11 +33,10 @@ pub(crate) fn element_model(model: &Model, resistor: &Resistor) -> Option<(Model
         add(&mut opened, whole.a, whole.b, unit * f64::from(resistor.series) / strings, whole.parameter);
     }
     if resistor.series > 1 {
-        let parameter =
-            if resistor.parallel > 1 { opened.parameter(&resistor.id, resistor.tolerance) } else { whole.parameter };
+        let parameter = if resistor.parallel > 1 { opened.parameter(&resistor.id, spread) } else { whole.parameter };
         add(&mut opened, middle, whole.b, unit * f64::from(resistor.series - 1), parameter);
     }
-    let parameter = opened.parameter(&resistor.id, resistor.tolerance);
+    let parameter = opened.parameter(&resistor.id, spread);
     opened.resistors[index] = Part { b: middle, nominal: unit, parameter, ..whole };
     if model.passive == loose_before {
         opened.passive = opened.parameters.len();

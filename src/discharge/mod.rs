@@ -8,22 +8,31 @@
 //! typed quantities only.
 
 mod absorption;
+mod ascent;
+mod at_point;
 mod body;
 mod case;
 mod element;
 mod figure;
+mod gradient;
+mod later;
 mod model;
+mod pinned;
 mod poles;
 mod scenario;
+mod spread;
 mod study;
 mod timeline;
 mod worst;
 
+pub(crate) use at_point::{slopes_at, values_at};
 pub(crate) use case::Case;
 pub(crate) use element::element_model;
 pub(crate) use figure::{Body, Figure};
-pub(crate) use model::{Model, Part, PartKind, absorption};
-pub(crate) use scenario::{Fault, Scenario, faults, healthy};
+pub(crate) use later::{LaterStudy, asked_later};
+pub(crate) use model::{Model, Parameter, Part, PartKind, absorption};
+pub(crate) use scenario::{Fault, Scenario, faults, healthy, pairs_of_faults};
+pub(crate) use spread::{Spread, Spreads};
 pub(crate) use study::Study;
 pub(crate) use timeline::{ProcedureStudy, Setting, Stage, StepFigure, Timeline};
-pub(crate) use worst::{MOST_CORNERS, Worst, nominal, worst};
+pub(crate) use worst::{MOST_CORNERS, Method, Worst, nominal, worst};

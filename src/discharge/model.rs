@@ -2,6 +2,7 @@
 
 use super::absorption::Branches;
 use super::poles::ThreePhase;
+use super::spread::Spreads;
 use crate::bank::Bank;
 use crate::bank::description::{self, Capacitor, Lasts, Resistor, Supply};
 use crate::circuit::{CircuitError, Draw, Edge, Network, Sink};
@@ -100,6 +101,8 @@ pub(crate) struct Model {
     pub test_points: usize,
     /// Those of parts that are there at all times first.
     pub parameters: Vec<Parameter>,
+    /// How far values can lie from the marked ones.
+    pub spreads: Spreads,
     /// How many of the loose values are of parts that are there at all times; a passive discharge has no others.
     pub passive: usize,
     /// How it was fed, where that was from three phases.
@@ -115,6 +118,20 @@ pub(crate) struct Variation {
     pub capacitor: Option<(usize, f64)>,
     /// A capacitor that is a short: its nodes are one.
     pub shorted: Option<usize>,
+    /// What else has failed.
+    pub also: Option<Box<Variation>>,
+}
+
+impl Variation {
+    /// This one and all others at the same time.
+    pub fn all(&self) -> impl Iterator<Item = &Variation> {
+        std::iter::successors(Some(self), |v| v.also.as_deref())
+    }
+
+    /// By how much a capacitor differs.
+    fn of_capacitor(&self, index: usize) -> f64 {
+        self.all().filter_map(|v| v.capacitor).filter(|(i, _)| *i == index).map(|(_, factor)| factor).product()
+    }
 }
 
 impl Model {
@@ -124,7 +141,7 @@ impl Model {
     /// Where the absorption of a capacitor can't be calibrated.
     pub fn new(bank: &Bank) -> Result<Self, CircuitError> {
         let description = bank.description();
-        let mut model = Model::default();
+        let mut model = Model { spreads: Spreads::of(bank), ..Model::default() };
         model.terminals = description.terminals.iter().map(|n| model.node(n)).collect();
         for capacitor in &description.capacitors {
             let part = model.capacitor(capacitor);
@@ -139,7 +156,8 @@ impl Model {
             model.passive = model.parameters.len();
             for (index, resistor) in description.resistors.iter().enumerate() {
                 if model.resistors[index].kind == kind {
-                    model.resistors[index].parameter = model.parameter(&resistor.id, resistor.tolerance);
+                    let spread = model.spreads.resistor(resistor).total();
+                    model.resistors[index].parameter = model.parameter(&resistor.id, spread);
                 }
             }
         }
@@ -214,7 +232,7 @@ impl Model {
     fn capacitor(&mut self, c: &Capacitor) -> Part {
         let nominal = c.value.si() * f64::from(c.parallel) / f64::from(c.series);
         let (a, b) = (self.node(&c.across[0]), self.node(&c.across[1]));
-        let parameter = self.parameter(&c.id, c.tolerance);
+        let parameter = self.parameter(&c.id, self.spreads.capacitor(c).total());
         Part { id: c.id.clone(), a, b, nominal, parameter, kind: PartKind::Fixed }
     }
 
@@ -269,9 +287,10 @@ impl Model {
     /// For every node the node that it is one with under `variation`: a terminal, where one of the two is.
     pub fn merged(&self, variation: &Variation) -> Vec<usize> {
         let mut map: Vec<usize> = (0..self.node_names.len()).collect();
-        if let Some(c) = variation.shorted.map(|c| &self.capacitors[c]) {
-            let (gone, stays) = if self.terminals.contains(&c.a) { (c.b, c.a) } else { (c.a, c.b) };
-            map[gone] = stays;
+        for c in variation.all().filter_map(|v| v.shorted).map(|c| &self.capacitors[c]) {
+            let (a, b) = (map[c.a], map[c.b]);
+            let (gone, stays) = if self.terminals.contains(&a) { (b, a) } else { (a, b) };
+            map.iter_mut().filter(|n| **n == gone).for_each(|n| *n = stays);
         }
         map
     }
@@ -281,15 +300,16 @@ impl Model {
         let parts = self.resistors.iter().enumerate();
         parts
             .map(|(i, r)| {
-                let failed = variation.resistor.filter(|(index, _)| *index == i).map_or(1.0, |(_, factor)| factor);
+                let of_this = variation.all().filter_map(|v| v.resistor).filter(|(index, _)| *index == i);
+                let failed: f64 = of_this.map(|(_, factor)| factor).product();
                 let there = match r.kind {
                     PartKind::Fixed | PartKind::Absorbing(_) => true,
                     PartKind::Switched => connected.contains(&i),
                     PartKind::With(of) => connected.contains(&of),
                 };
                 // A branch of a failed capacitor scales with it; its time constant stays.
-                let branch = variation.capacitor.filter(|(index, _)| r.kind == PartKind::Absorbing(*index));
-                let failed = failed / branch.map_or(1.0, |(_, factor)| factor);
+                let branch = if let PartKind::Absorbing(of) = r.kind { variation.of_capacitor(of) } else { 1.0 };
+                let failed = failed / branch;
                 if there { r.value(point, true) * failed } else { f64::INFINITY }
             })
             .collect()
@@ -303,9 +323,8 @@ impl Model {
         let there = |e: &Edge| e.a != e.b && e.value.is_finite() && e.value > 0.0;
         let ohms = self.ohms(variation, point, connected);
         let farad = |i: usize, c: &Part| {
-            let (index, factor) = variation.capacitor.unwrap_or((usize::MAX, 1.0));
-            let failed = i == index || c.kind == PartKind::Absorbing(index);
-            c.value(point, false) * if failed { factor } else { 1.0 }
+            let of = if let PartKind::Absorbing(of) = c.kind { of } else { i };
+            c.value(point, false) * variation.of_capacitor(of)
         };
         let resistors = self.resistors.iter().zip(ohms).map(|(r, ohm)| edge(r, ohm));
         let capacitors = self.capacitors.iter().enumerate().map(|(i, c)| edge(c, farad(i, c)));
@@ -348,6 +367,34 @@ impl Model {
     /// The middle of the box of a passive discharge.
     pub fn nominal_point(&self) -> Vec<f64> {
         vec![1.0; self.passive]
+    }
+
+    /// The same model, passive, with every part that is always there loose: parts without a tolerance get a loose
+    /// value of their own after the others, with no range.
+    pub fn all_loose(&self) -> Model {
+        let mut model = self.passive_only();
+        let loose = |model: &mut Model, id: &str| {
+            model.parameters.push(Parameter { id: id.to_string(), low: 1.0, high: 1.0 });
+            Some(model.parameters.len() - 1)
+        };
+        for index in 0..model.resistors.len() {
+            if model.resistors[index].kind == PartKind::Fixed && model.resistors[index].parameter.is_none() {
+                let id = model.resistors[index].id.clone();
+                model.resistors[index].parameter = loose(&mut model, &id);
+            }
+        }
+        for index in 0..model.capacitors.len() {
+            if model.capacitors[index].kind == PartKind::Fixed && model.capacitors[index].parameter.is_none() {
+                let id = model.capacitors[index].id.clone();
+                let parameter = loose(&mut model, &id);
+                model.capacitors[index].parameter = parameter;
+                let branch = |part: &&mut Part| part.kind == PartKind::Absorbing(index);
+                model.capacitors.iter_mut().filter(branch).for_each(|c| c.parameter = parameter);
+                model.resistors.iter_mut().filter(branch).for_each(|r| r.parameter = parameter);
+            }
+        }
+        model.passive = model.parameters.len();
+        model
     }
 
     /// The same model with nothing loose that is not there at all times.

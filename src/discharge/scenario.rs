@@ -36,6 +36,8 @@ pub(crate) struct Fault {
     pub id: String,
     /// What it can look like: failed long before isolation (the voltages have settled without it), or at isolation.
     pub scenarios: Vec<Scenario>,
+    /// It can come about at any moment after isolation as well: what is lost then.
+    pub later: Option<Variation>,
 }
 
 impl Scenario {
@@ -82,13 +84,14 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
         let factor = if resistor.role == Role::Leakage { f64::INFINITY } else { factor };
         let lost = Variation { resistor: Some((index, factor)), ..Variation::default() };
         let at_isolation = Scenario { after: lost.clone(), ..Scenario::default() };
-        let mut scenarios = vec![Scenario::settled(lost)];
+        let mut scenarios = vec![Scenario::settled(lost.clone())];
         // A part breaks at a moment; leakage that is absent was never there. What no alternating current passes has no
         // say in the state of a three-phase bank at isolation: both moments are one.
         if resistor.role != Role::Leakage && (model.three_phase.is_none() || resistor.role == Role::Series) {
             scenarios.push(at_isolation);
         }
-        faults.push(Fault { name: format!("{} {word}", resistor.id), id: resistor.id.clone(), scenarios });
+        let later = (resistor.role != Role::Leakage).then_some(lost);
+        faults.push(Fault { name: format!("{} {word}", resistor.id), id: resistor.id.clone(), scenarios, later });
     }
     for (index, capacitor) in bank.description().capacitors.iter().enumerate() {
         let part = &model.capacitors[index];
@@ -101,6 +104,7 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
                 name: format!("{} shorted", capacitor.id),
                 id: capacitor.id.clone(),
                 scenarios: vec![scenario],
+                later: None,
             });
         }
         if model.three_phase.is_some() {
@@ -110,6 +114,7 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
                 name: format!("{} open", capacitor.id),
                 id: capacitor.id.clone(),
                 scenarios: vec![Scenario::settled(variation)],
+                later: None,
             });
         }
         if capacitor.series > 1 {
@@ -120,16 +125,64 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
                 id: capacitor.id.clone(),
                 // Its voltage is unchanged: the units that are left carry what the string carried.
                 scenarios: vec![Scenario { after: variation, ..Scenario::default() }],
+                later: None,
             });
         }
     }
     for (index, load) in model.loads.iter().enumerate().filter(|(_, load)| load.counted) {
         let scenario = Scenario { idle_sinks: vec![index], ..Scenario::default() };
-        faults.push(Fault { name: format!("{} dead", load.id), id: load.id.clone(), scenarios: vec![scenario] });
+        faults.push(Fault {
+            name: format!("{} dead", load.id),
+            id: load.id.clone(),
+            scenarios: vec![scenario],
+            later: None,
+        });
     }
     for fault in &mut faults {
         let scenarios = std::mem::take(&mut fault.scenarios).into_iter();
         fault.scenarios = scenarios.flat_map(|s| s.with_and_without_sinks(model)).collect();
     }
     faults
+}
+
+/// Every two of `single` at the same time, in their order; two that can't be at once (of one part, or shorts that make
+/// the terminals one) are left out.
+pub(crate) fn pairs_of_faults(model: &Model, single: &[Fault]) -> Vec<Fault> {
+    let mut pairs = Vec::new();
+    for (at, first) in single.iter().enumerate() {
+        for second in single[at + 1..].iter().filter(|f| f.id != first.id) {
+            let together = |x: &Scenario, y: &Scenario| Scenario {
+                before: both(&x.before, &y.before),
+                after: both(&x.after, &y.after),
+                drops_own_voltages: x.drops_own_voltages || y.drops_own_voltages,
+                idle_sinks: [&x.idle_sinks[..], &y.idle_sinks[..]].concat(),
+                state: None,
+            };
+            let scenarios: Vec<Scenario> = first
+                .scenarios
+                .iter()
+                .flat_map(|x| second.scenarios.iter().map(move |y| together(x, y)))
+                .filter(|s| keeps_terminals(model, &s.after))
+                .collect();
+            if !scenarios.is_empty() {
+                let name = format!("{} and {}", first.name, second.name);
+                pairs.push(Fault { name, id: first.id.clone(), scenarios, later: None });
+            }
+        }
+    }
+    pairs
+}
+
+/// Two variations as one.
+fn both(first: &Variation, second: &Variation) -> Variation {
+    if *first == Variation::default() {
+        return second.clone();
+    }
+    Variation { also: Some(Box::new(second.clone())), ..first.clone() }
+}
+
+fn keeps_terminals(model: &Model, variation: &Variation) -> bool {
+    let map = model.merged(variation);
+    let terminals = &model.terminals;
+    (0..terminals.len()).all(|i| (0..i).all(|j| map[terminals[i]] != map[terminals[j]]))
 }

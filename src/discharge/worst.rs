@@ -2,19 +2,25 @@
 //!
 //! With up to [`MOST_CORNERS`] loose values all corners are tried, then the neighbourhood and the inside of the box
 //! from the best corner of each figure. Maxima inside are real: charge that two capacitors share, a voltage that
-//! one section lends to another. With more loose values the corners are searched by flipping one value at a time
-//! from several starts, which is a search and no proof; a plan says which of the two it used.
+//! one section lends to another.
+//!
+//! With more loose values, those whose direction is proven for a figure are pinned ([`super::pinned`]). Where few
+//! enough are left, all corners of these are tried. Otherwise corners are searched by flipping single values, and
+//! the box is climbed from several starts along the gradient ([`super::ascent`]): a search and no proof. Both are
+//! followed by the same search inside the box. A plan says which of them gave a figure.
 
+use super::ascent;
 use super::model::Parameter;
+use super::pinned::Pin;
 use crate::circuit::CircuitError;
 use rayon::prelude::*;
-use std::collections::HashSet;
+use std::collections::{BTreeMap, HashSet};
 
 /// Up to this many loose values every corner is tried.
 pub(crate) const MOST_CORNERS: usize = 12;
 
-/// Starts of the search beyond that, besides the two extreme corners and the middle.
-const RANDOM_STARTS: usize = 8;
+/// Random starts of the search beyond that, besides the two extreme corners and the middle.
+pub(super) const RANDOM_STARTS: usize = 8;
 
 /// A gain below this share is not worth another round: a crossing is bracketed to little less.
 const NOTABLE: f64 = 1e-12;
@@ -24,6 +30,18 @@ const NOTABLE: f64 = 1e-12;
 pub(crate) struct Worst {
     pub value: f64,
     pub point: Vec<f64>,
+    pub method: Method,
+}
+
+/// How a greatest value was found, before the search inside the box that always follows.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(crate) enum Method {
+    /// Every corner of this many loose values.
+    AllCorners(usize),
+    /// Every corner of `free` values, all others pinned by proof.
+    Pinned { pinned: usize, free: usize },
+    /// Single flips and climbs from several starts over `free` values, all others pinned by proof.
+    Searched { pinned: usize, free: usize },
 }
 
 /// Figures to be maximised over a box: a point is solved once and then asked for any of them.
@@ -40,6 +58,32 @@ pub(crate) trait Objective: Sync {
     /// Up to how many loose values every corner is tried; beyond, corners are searched.
     fn most_corners(&self) -> usize {
         MOST_CORNERS
+    }
+
+    /// How many corners may be tried in all for figures that few values are left free for.
+    fn corner_budget(&self) -> usize {
+        1 << self.most_corners()
+    }
+
+    /// Random starts of a search; one of many faults does with fewer.
+    fn random_starts(&self) -> usize {
+        RANDOM_STARTS
+    }
+
+    /// What is proven of every loose value for one figure.
+    fn pins(&self, _index: usize) -> Vec<Pin> {
+        vec![Pin::Free; self.parameters().len()]
+    }
+
+    /// Whether one figure has derivatives in closed form at all.
+    fn has_gradient(&self, _index: usize) -> bool {
+        false
+    }
+
+    /// Derivatives of one figure by every loose value, in closed form; `None` where there is none, or where the figure
+    /// is flat (a wait of 0, a wait that never ends).
+    fn gradient(&self, _index: usize, _case: &Self::Case, _point: &[f64], _value: f64) -> Option<Vec<f64>> {
+        None
     }
 
     /// Solves one point.
@@ -74,15 +118,17 @@ pub(crate) fn worst<O: Objective>(objective: &O) -> Result<Vec<Worst>, CircuitEr
     Ok(best)
 }
 
-struct Search<'a, O> {
-    objective: &'a O,
+pub(super) struct Search<'a, O> {
+    pub objective: &'a O,
 }
 
 impl<O: Objective> Search<'_, O> {
     fn worst(&self) -> Result<Vec<Worst>, CircuitError> {
         let count = self.parameters().len();
         let middle = vec![1.0; count];
-        let mut best = vec![Worst { value: f64::NEG_INFINITY, point: middle.clone() }; self.objective.count()];
+        let method = Method::AllCorners(count);
+        let unknown = Worst { value: f64::NEG_INFINITY, point: middle.clone(), method };
+        let mut best = vec![unknown; self.objective.count()];
         self.offer(&middle, &mut best)?;
         if count == 0 {
             return Ok(best);
@@ -93,18 +139,84 @@ impl<O: Objective> Search<'_, O> {
                 self.offer(&self.corner(|p| mask >> p & 1 == 1), &mut best)?;
             }
         } else {
-            self.flip_from_many_starts(&mut best)?;
+            self.beyond_all_corners(&mut best)?;
         }
         self.refine_all(&mut best)?;
         Ok(best)
     }
 
-    fn parameters(&self) -> &[Parameter] {
+    /// More loose values than all corners can be tried for.
+    fn beyond_all_corners(&self, best: &mut [Worst]) -> Result<(), CircuitError> {
+        // Figures with the same pins share their corners; those with the fewest free values come first.
+        let mut groups: BTreeMap<(usize, Vec<Pin>), Vec<usize>> = BTreeMap::new();
+        for index in 0..best.len() {
+            let pins = self.objective.pins(index);
+            let free = pins.iter().filter(|pin| **pin == Pin::Free).count();
+            groups.entry((free, pins)).or_default().push(index);
+        }
+        let mut budget = self.objective.corner_budget();
+        let mut searched: Vec<usize> = Vec::new();
+        for ((free, pins), members) in &groups {
+            let pinned = pins.len() - free;
+            let corners = if *free < usize::BITS as usize { 1usize << free } else { usize::MAX };
+            let all = corners <= budget;
+            let method =
+                if all { Method::Pinned { pinned, free: *free } } else { Method::Searched { pinned, free: *free } };
+            members.iter().for_each(|i| best[*i].method = method);
+            if all {
+                budget -= corners;
+                self.corners_of_the_free(pins, corners, members, best)?;
+            } else {
+                searched.extend(members);
+            }
+        }
+        if searched.is_empty() {
+            return Ok(());
+        }
+        searched.sort_unstable();
+        self.flip_from_many_starts(&searched, best)?;
+        searched.retain(|index| self.objective.has_gradient(*index));
+        ascent::climb_from_many_starts(self, &searched, best)
+    }
+
+    /// Every corner of the free values, for the figures that the others are pinned for.
+    fn corners_of_the_free(
+        &self,
+        pins: &[Pin],
+        corners: usize,
+        members: &[usize],
+        best: &mut [Worst],
+    ) -> Result<(), CircuitError> {
+        for mask in (0..corners).rev() {
+            let mut bit = 0;
+            let point: Vec<f64> = self.pinned_point(pins, |_, range| {
+                bit += 1;
+                if mask >> (bit - 1) & 1 == 1 { range.high } else { range.low }
+            });
+            self.offer_to(members, &point, best)?;
+        }
+        Ok(())
+    }
+
+    /// A point with every pinned value where it is worst; `free` gives the others.
+    pub fn pinned_point(&self, pins: &[Pin], mut free: impl FnMut(usize, &Parameter) -> f64) -> Vec<f64> {
+        let values = pins.iter().zip(self.parameters()).enumerate();
+        values
+            .map(|(p, (pin, range))| match pin {
+                Pin::Free => free(p, range),
+                Pin::High => range.high,
+                Pin::Low => range.low,
+                Pin::Idle => 1.0,
+            })
+            .collect()
+    }
+
+    pub fn parameters(&self) -> &[Parameter] {
         self.objective.parameters()
     }
 
     /// The value of one figure, exact.
-    fn value(&self, index: usize, point: &[f64]) -> Result<f64, CircuitError> {
+    pub fn value(&self, index: usize, point: &[f64]) -> Result<f64, CircuitError> {
         self.objective.figure(index, &self.objective.case_for(index, point)?, 0.0)
     }
 
@@ -115,27 +227,34 @@ impl<O: Objective> Search<'_, O> {
 
     /// Tries a point for every figure.
     fn offer(&self, point: &[f64], best: &mut [Worst]) -> Result<(), CircuitError> {
+        let all: Vec<usize> = (0..best.len()).collect();
+        self.offer_to(&all, point, best)
+    }
+
+    /// Tries a point for some figures.
+    fn offer_to(&self, figures: &[usize], point: &[f64], best: &mut [Worst]) -> Result<(), CircuitError> {
         let case = self.objective.case(point)?;
-        for (index, worst) in best.iter_mut().enumerate() {
+        for index in figures.iter().copied() {
+            let worst = &mut best[index];
             if worst.value.is_infinite() && worst.value > 0.0 {
                 continue;
             }
             let value = self.objective.figure(index, &case, worst.value.max(0.0))?;
             if value > worst.value {
-                *worst = Worst { value, point: point.to_vec() };
+                *worst = Worst { value, point: point.to_vec(), ..*worst };
             }
         }
         Ok(())
     }
 
-    /// Beyond [`MOST_CORNERS`]: from each start flip single values for as long as a figure grows.
-    fn flip_from_many_starts(&self, best: &mut [Worst]) -> Result<(), CircuitError> {
+    /// From each start flip single values for as long as one of the figures grows.
+    fn flip_from_many_starts(&self, figures: &[usize], best: &mut [Worst]) -> Result<(), CircuitError> {
         let count = self.parameters().len();
-        self.offer(&self.corner(|_| true), best)?;
-        self.offer(&self.corner(|_| false), best)?;
+        self.offer_to(figures, &self.corner(|_| true), best)?;
+        self.offer_to(figures, &self.corner(|_| false), best)?;
         // A fixed sequence (xorshift; Marsaglia 2003), so that the same input gives the same plan.
         let mut state = 0x9e37_79b9_7f4a_7c15_u64;
-        for _ in 0..RANDOM_STARTS {
+        for _ in 0..self.objective.random_starts() {
             let bits: Vec<bool> = (0..count)
                 .map(|_| {
                     state ^= state << 13;
@@ -144,12 +263,13 @@ impl<O: Objective> Search<'_, O> {
                     state & 1 == 1
                 })
                 .collect();
-            self.offer(&self.corner(|p| bits[p]), best)?;
+            self.offer_to(figures, &self.corner(|p| bits[p]), best)?;
         }
         // Corners one flip away from each figure's best corner, until no best corner is new.
         let mut tried: HashSet<Vec<u64>> = HashSet::new();
         loop {
-            let fresh: Vec<Vec<f64>> = distinct(best).into_iter().filter(|p| !tried.contains(&bits(p))).collect();
+            let reached: Vec<Worst> = figures.iter().map(|i| best[*i].clone()).collect();
+            let fresh: Vec<Vec<f64>> = distinct(&reached).into_iter().filter(|p| !tried.contains(&bits(p))).collect();
             if fresh.is_empty() {
                 return Ok(());
             }
@@ -159,7 +279,7 @@ impl<O: Objective> Search<'_, O> {
                     let range = &self.parameters()[p];
                     let mut flipped = corner.clone();
                     flipped[p] = if flipped[p] < range.high { range.high } else { range.low };
-                    self.offer(&flipped, best)?;
+                    self.offer_to(figures, &flipped, best)?;
                 }
             }
         }
@@ -261,7 +381,7 @@ impl<O: Objective> Search<'_, O> {
             let point = at(s);
             let value = self.value(index, &point)?;
             if value > worst.value {
-                *worst = Worst { value, point };
+                *worst = Worst { value, point, ..*worst };
             }
             Ok(value)
         };

@@ -9,9 +9,9 @@ pub use result::*;
 use crate::bank::Bank;
 use crate::check::{
     Answers, CapacitorCheck, FaultAnswers, LimitChecks, Procedure, ResistorChecks, StepCheck, StoredCheck, WaitCheck,
-    assumptions, notes, phase_findings, remaining_energy, step_assumptions, step_findings,
+    assumptions, notes, phase_findings, remaining_energy, sensitivities, spreads, step_assumptions, step_findings,
 };
-use crate::discharge::{Figure, MOST_CORNERS, Model, faults};
+use crate::discharge::{Figure, MOST_CORNERS, Model, faults, pairs_of_faults};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{Quantity, Time};
 
@@ -20,7 +20,16 @@ use crate::quantity::{Quantity, Time};
 pub struct Options {
     /// The calculation of every wait, for a reviewer to check by hand.
     pub working: bool,
+    /// Waits with every two parts failed at once.
+    pub two_faults: bool,
+    /// Random draws over the tolerances beside the worst case.
+    pub draws: Option<Drawing>,
+    /// How the waits depend on every part.
+    pub sensitivity: bool,
 }
+
+/// So many pairs of faults are examined at most: each is a search over the box of its own.
+const MOST_FAULT_PAIRS: usize = 500;
 
 /// Makes the plan of `bank`. `input_sha256` is printed with it, so that a plan can be matched with its file;
 /// `noticed` are findings that reading the file brought up.
@@ -79,7 +88,7 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
     let healthy = Answers::healthy(bank, &model, figures)?;
     let fault_figures: Vec<Figure> =
         [waits.fault_figures(), limits.fault_figures(), capacitors.figures(), resistors.fault_figures()].concat();
-    let under_faults = FaultAnswers::all(bank, &model, faults(bank, &model), &fault_figures)?;
+    let under_faults = FaultAnswers::all(bank, &model, faults(bank, &model), &fault_figures, &healthy)?;
 
     plan.time_constants = working::time_constants(bank, &model)?.into_iter().map(Time::from_si).collect();
     plan.stored = Some(stored.conclude(&healthy, findings));
@@ -98,10 +107,64 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
     plan.capacitors = capacitors.conclude(&healthy, &under_faults, findings);
     phase_findings(bank, &model, &healthy, &plan.waits, findings);
     notes(bank, &model, &plan.resistors, &plan.capacitors, findings);
-    plan.worst_case_search = search_used(model.passive);
+    plan.worst_case_search = search_used(model.passive, &plan.waits);
+    if let Some(drawing) = &options.draws {
+        plan.draws = Some(Draws::make(&waits, &model, &plan.waits, drawing)?);
+    }
+    if options.sensitivity {
+        plan.sensitivity = Some(sensitivities(&waits, &model, &plan.waits, &healthy)?);
+    }
+    if options.two_faults {
+        two_faults(bank, &model, &waits, &healthy, plan, findings)?;
+    }
     if options.working {
         plan.working =
             Some(working::working(bank, &model, &plan.waits, |pair| healthy.worst_scenario(waits.wait(pair)))?);
+    }
+    Ok(())
+}
+
+/// Why the pairs of faults of a bank are too many to be examined; `None` where they are not.
+///
+/// # Errors
+/// Where the absorption of a capacitor can't be calibrated.
+pub fn too_many_fault_pairs(bank: &Bank) -> Result<Option<String>, EngineError> {
+    if bank.is_three_phase() {
+        return Ok(None);
+    }
+    let model = Model::new(bank).map_err(EngineError::of("absorption"))?;
+    let single = faults(bank, &model);
+    Ok(too_many(single.len(), pairs_of_faults(&model, &single).len()))
+}
+
+fn too_many(single: usize, pairs: usize) -> Option<String> {
+    (pairs > MOST_FAULT_PAIRS).then(|| {
+        format!(
+            "Two faults at once: {single} single faults make {pairs} pairs, and up to {MOST_FAULT_PAIRS} are \
+             examined, so none was. Split the bank into files of sections that hang together, or lump equal units \
+             (`units`, `array`)."
+        )
+    })
+}
+
+/// Waits with every two parts failed at once.
+fn two_faults(
+    bank: &Bank,
+    model: &Model,
+    waits: &WaitCheck,
+    healthy: &Answers,
+    plan: &mut Plan,
+    findings: &mut Findings,
+) -> Result<(), EngineError> {
+    let single = faults(bank, model);
+    let pairs = pairs_of_faults(model, &single);
+    if let Some(text) = too_many(single.len(), pairs.len()) {
+        findings.add(Severity::Warning, "too-many-fault-pairs", text);
+        return Ok(());
+    }
+    let answers = FaultAnswers::all(bank, model, pairs, &waits.fault_figures(), healthy)?;
+    for (pair, wait) in plan.waits.iter_mut().enumerate() {
+        wait.fault_pairs = waits.fault_waits(pair, &answers);
     }
     Ok(())
 }
@@ -131,6 +194,7 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
         stored: None,
         time_constants: Vec::new(),
         waits: Vec::new(),
+        spreads: spreads(bank),
         limits: Vec::new(),
         resistors: Vec::new(),
         capacitors: Vec::new(),
@@ -139,21 +203,36 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
         findings: Vec::new(),
         assumptions: assumptions(bank),
         worst_case_search: String::new(),
+        draws: None,
+        sensitivity: None,
         working: None,
     }
 }
 
 /// Which search found the worst cases, in one sentence.
-fn search_used(loose: usize) -> String {
+fn search_used(loose: usize, waits: &[Wait]) -> String {
     match loose {
         0 => "No value is loose: the worst case is the nominal one at the highest voltage.".into(),
         1..=MOST_CORNERS => format!(
             "All {} corners of {loose} loose values, then a search inside the box from the best of them.",
             1usize << loose
         ),
-        _ => format!(
-            "{loose} loose values: corners searched from several starts, then inside the box. A search, not a proof."
-        ),
+        _ => {
+            let mut ways: Vec<(&str, Vec<String>)> = Vec::new();
+            for wait in waits {
+                let at = wait.across.join(" - ");
+                match ways.iter_mut().find(|(way, _)| *way == wait.found_by) {
+                    Some((_, pairs)) => pairs.push(at),
+                    None => ways.push((&wait.found_by, vec![at])),
+                }
+            }
+            let ways: Vec<String> = ways.iter().map(|(way, pairs)| format!("{}: {way}", pairs.join(", "))).collect();
+            format!(
+                "{loose} loose values. Slowest waits: {}. Then a search inside the box. Figures that nothing is said \
+                 of are searched from several starts: a search, not a proof.",
+                ways.join("; ")
+            )
+        }
     }
 }
 

@@ -9,9 +9,9 @@ use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltag
 use serde::Serialize;
 
 pub use crate::check::{
-    Band, CapacitorResult, Charging, ChargingMoment, Check, FaultPoint, FaultWait, Interruption, LimitResult,
-    LimitSource, Pair, Recovery, ResistorResult, StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict,
-    Wait, WorstValue,
+    Band, CapacitorResult, Charging, ChargingMoment, Check, DrawFrom, Drawing, DrawnWait, Draws, FaultPoint, FaultWait,
+    Interruption, LimitResult, LimitSource, Opens, Pair, PartSensitivity, Recovery, ResistorResult, Sensitivity,
+    SpreadResult, StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
 };
 
 /// Everything that a plan says about one bank.
@@ -45,6 +45,8 @@ pub struct Plan {
     pub time_constants: Vec<Time>,
     /// Waits, one per test point.
     pub waits: Vec<Wait>,
+    /// What age and temperature add to the purchase tolerances; parts for which neither is given are left out.
+    pub spreads: Vec<SpreadResult>,
     /// Limits, one entry per limit and the pair that governs it.
     pub limits: Vec<LimitResult>,
     /// Resistors: figures of ONE element of an array at its own worst point.
@@ -61,6 +63,12 @@ pub struct Plan {
     pub assumptions: Vec<String>,
     /// How the worst cases were found, in one sentence.
     pub worst_case_search: String,
+    /// Random draws beside the worst case; only where asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub draws: Option<Draws>,
+    /// What the waits depend on; only where asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub sensitivity: Option<Vec<Sensitivity>>,
     /// The calculation in a form that a reviewer can check by hand; only where asked for.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub working: Option<Vec<Working>>,

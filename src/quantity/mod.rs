@@ -31,6 +31,8 @@ pub type Resistance = si::f64::ElectricalResistance;
 pub type Temperature = si::f64::ThermodynamicTemperature;
 /// Time, in second.
 pub type Time = si::f64::Time;
+/// Relative change of a value per kelvin.
+pub type TemperatureCoefficient = si::f64::TemperatureCoefficient;
 /// Electric potential difference, in volt.
 pub type Voltage = si::f64::ElectricPotential;
 
@@ -51,6 +53,7 @@ pub enum Kind {
     Ratio,
     Resistance,
     Temperature,
+    TemperatureCoefficient,
     Time,
     Voltage,
 }
@@ -89,6 +92,7 @@ quantities! {
     Ratio: ratio::ratio,
     Resistance: electrical_resistance::ohm,
     Temperature: thermodynamic_temperature::kelvin,
+    TemperatureCoefficient: temperature_coefficient::per_kelvin,
     Time: time::second,
     Voltage: electric_potential::volt,
 }

@@ -180,6 +180,15 @@ const fn grammar(kind: Kind) -> Grammar {
             least: -super::CELSIUS_ZERO_K,
             greatest: 1e4,
         },
+        Kind::TemperatureCoefficient => Grammar {
+            name: "a temperature coefficient",
+            units: &["/K", "/°C", "/degC", "/C"],
+            prefixes: &[("ppm", -6), ("%", -2)],
+            example: "100 ppm/K",
+            // A value that moves by 1 % per kelvin is a sensor.
+            least: -1e-2,
+            greatest: 1e-2,
+        },
         Kind::Time => Grammar {
             name: "a time",
             units: &["us", "ms", "s", "min", "h", "d"],
@@ -199,7 +208,7 @@ const fn grammar(kind: Kind) -> Grammar {
     }
 }
 
-const ALL_KINDS: [Kind; 12] = [
+const ALL_KINDS: [Kind; 13] = [
     Kind::Capacitance,
     Kind::Resistance,
     Kind::Voltage,
@@ -211,6 +220,7 @@ const ALL_KINDS: [Kind; 12] = [
     Kind::Charge,
     Kind::Frequency,
     Kind::Temperature,
+    Kind::TemperatureCoefficient,
     Kind::Ratio,
 ];
 
@@ -282,7 +292,7 @@ pub fn parse_kind(text: &str, kind: Kind) -> Result<Reading<f64>, QuantityError>
     }
     let value = if kind == Kind::Time { value * seconds_in(unit) } else { value };
     let value = if kind == Kind::Energy && unit.ends_with("Wh") { value * 3600.0 } else { value };
-    if kind != Kind::Temperature && (value < 0.0 || number.starts_with('-')) {
+    if !matches!(kind, Kind::Temperature | Kind::TemperatureCoefficient) && (value < 0.0 || number.starts_with('-')) {
         return fail(format!("`{}` is negative", clip(text)), format!("{instead}, without a sign"));
     }
     let value = in_range(value, &grammar)?;
@@ -419,7 +429,7 @@ fn clip(text: &str) -> String {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::quantity::{Capacitance, Energy, Power, Resistance, Temperature, Time, Voltage};
+    use crate::quantity::{Capacitance, Energy, Power, Resistance, Temperature, TemperatureCoefficient, Time, Voltage};
 
     fn value<Q: Quantity>(text: &str) -> f64 {
         parse::<Q>(text).unwrap_or_else(|e| panic!("{text}: {e}")).value.si()
@@ -453,6 +463,9 @@ mod tests {
         assert_eq!(value::<Temperature>("40 °C"), 313.15);
         assert_eq!(value::<Temperature>("-10 degC"), 263.15);
         assert_eq!(value::<Temperature>("25 C"), 298.15);
+        assert_eq!(value::<TemperatureCoefficient>("100 ppm/K"), 1e-4);
+        assert_eq!(value::<TemperatureCoefficient>("-750ppm/°C"), -7.5e-4);
+        assert_eq!(value::<TemperatureCoefficient>("0.39 %/K"), 3.9e-3);
         assert_eq!(value::<Ratio>("20 %"), 0.2);
         assert_eq!(value::<Energy>("0.5 J"), 0.5);
         assert_eq!(value::<Power>("25 W"), 25.0);

@@ -99,6 +99,7 @@ fn unit_of(kind: Kind) -> (&'static str, i32, i32) {
         Kind::Ratio => ("%", 0, 0),
         Kind::Resistance => ("ohm", -6, 12),
         Kind::Temperature => ("°C", 0, 0),
+        Kind::TemperatureCoefficient => ("1/K", 0, 0),
         Kind::Time => ("s", -9, 0),
         Kind::Voltage => ("V", -3, 6),
     }
@@ -204,6 +205,7 @@ pub fn exact<Q: Quantity>(quantity: Q) -> String {
     match Q::KIND {
         Kind::Temperature => format!("{} °C", trim_noise(si - CELSIUS_ZERO_K)),
         Kind::Ratio => format!("{} %", trim_noise(si * 100.0)),
+        Kind::TemperatureCoefficient => format!("{} ppm/K", trim_noise(si * 1e6)),
         Kind::Time => format!("{si} s"),
         kind => {
             let (unit, least, greatest) = unit_of(kind);

@@ -21,7 +21,14 @@ fn nodes(a: &str, b: &str) -> Pair {
 }
 
 fn fault(fault: &str, wait: Option<f64>, settles_at: f64) -> FaultWait {
-    FaultWait { fault: fault.into(), wait: wait.map(s), settles_at: v(settles_at) }
+    FaultWait {
+        fault: fault.into(),
+        wait: wait.map(s),
+        settles_at: v(settles_at),
+        opens: None,
+        opens_at: None,
+        settles_opens_at: None,
+    }
 }
 
 fn wait(across: Pair, at: f64, nominal: f64, slowest: f64, faults: Vec<FaultWait>) -> Wait {
@@ -34,7 +41,9 @@ fn wait(across: Pair, at: f64, nominal: f64, slowest: f64, faults: Vec<FaultWait
         at_isolation: v(at),
         worst_point: vec![WorstValue { id: "R1".into(), factor: 1.05 }],
         interruption: None,
+        found_by: "all 4 corners of 2 loose values".into(),
         faults,
+        fault_pairs: Vec::new(),
     }
 }
 
@@ -163,6 +172,9 @@ pub fn plan() -> Plan {
         },
         verdict: Verdict::NotMet,
         not_computed: Vec::new(),
+        spreads: Vec::new(),
+        draws: None,
+        sensitivity: None,
         touch_voltage: v(50.0),
         hold_energy: None,
         ambient: Temperature::from_si(313.15),

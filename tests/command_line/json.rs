@@ -30,6 +30,12 @@ struct Plan {
     assumptions: Vec<String>,
     worst_case_search: String,
     working: Option<Vec<serde_json::Value>>,
+    #[serde(rename = "draws")]
+    _draws: Option<serde_json::Value>,
+    #[serde(rename = "sensitivity")]
+    _sensitivity: Option<Vec<serde_json::Value>>,
+    #[serde(rename = "spreads")]
+    _spreads: Vec<serde_json::Value>,
 }
 
 #[derive(Deserialize)]
@@ -93,7 +99,11 @@ struct Wait {
     worst_point: Vec<Worst>,
     /// Only of a three-phase bank.
     interruption: Option<Interruption>,
+    #[serde(rename = "found_by")]
+    _found_by: String,
     faults: Vec<Fault>,
+    #[serde(default, rename = "fault_pairs")]
+    _fault_pairs: Vec<Fault>,
 }
 
 #[derive(Deserialize)]
@@ -117,6 +127,12 @@ struct Fault {
     fault: String,
     wait_s: Option<f64>,
     settles_at_v: f64,
+    #[serde(rename = "opens")]
+    _opens: Option<String>,
+    #[serde(rename = "opens_s")]
+    _opens_s: Option<f64>,
+    #[serde(rename = "settles_opens_s")]
+    _settles_opens_s: Option<f64>,
 }
 
 #[derive(Deserialize)]

@@ -3,6 +3,7 @@
 mod help;
 mod input;
 mod json;
+mod review;
 mod run;
 mod text;
 mod verdict;

@@ -15,7 +15,7 @@ use std::sync::OnceLock;
 /// The plan of a bank file's text, with the calculation.
 fn planned(name: &str, text: &str) -> Plan {
     let (bank, noticed) = file::read(name, text.as_bytes()).unwrap_or_else(|e| panic!("{name}: {e:?}"));
-    plan(&bank, "", noticed, Options { working: true }).unwrap_or_else(|e| panic!("{name}: {e}"))
+    plan(&bank, "", noticed, Options { working: true, ..Options::default() }).unwrap_or_else(|e| panic!("{name}: {e}"))
 }
 
 /// Every demonstration bank and the draft, planned once.

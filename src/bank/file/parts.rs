@@ -7,11 +7,13 @@ use super::top::{optional, unread};
 use crate::bank::description::{Capacitor, Connection, Draw, Kvar, Pair, Resistor, Role, Sink, Supply};
 use crate::quantity::{Capacitance, Current, Frequency, Power, Quantity, Ratio, Resistance, Voltage};
 
-const CAPACITOR: [&str; 12] = [
+const CAPACITOR: [&str; 14] = [
     "id",
     "value",
     "kvar",
     "tolerance",
+    "tempco",
+    "ageing",
     "across",
     "units",
     "rated",
@@ -21,7 +23,8 @@ const CAPACITOR: [&str; 12] = [
     "phases",
     "connection",
 ];
-const RESISTOR: [&str; 9] = ["id", "role", "value", "tolerance", "across", "array", "rating", "phases", "connection"];
+const RESISTOR: [&str; 11] =
+    ["id", "role", "value", "tolerance", "tempco", "ageing", "across", "array", "rating", "phases", "connection"];
 const SINK: [&str; 6] = ["id", "kind", "value", "across", "stops_below", "counted"];
 const SUPPLY: [&str; 6] = ["id", "voltage", "series", "tolerance", "across", "rating"];
 
@@ -55,6 +58,8 @@ fn capacitor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &Ter
         value: Capacitance::from_si(1.0),
         kvar: None,
         tolerance: None,
+        tempco: None,
+        ageing: None,
         across: unread_pair("capacitor", i),
         series: 1,
         parallel: 1,
@@ -75,6 +80,8 @@ fn capacitor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &Ter
     c.across = across.unwrap_or(c.across);
     (c.value, c.kvar) = value(reader, &group, c.phases).unwrap_or((c.value, None));
     c.tolerance = reader.may(&group, "tolerance").and_then(|spot| reader.tolerance(&spot));
+    c.tempco = optional(reader, &group, "tempco");
+    c.ageing = reader.may(&group, "ageing").and_then(|spot| reader.ageing(&spot));
     (c.series, c.parallel) = counts(reader, &group, "units");
     c.rated = optional(reader, &group, "rated");
     c.dielectric = reader.may(&group, "dielectric").and_then(|spot| reader.text(&spot));
@@ -147,6 +154,8 @@ fn resistor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &Term
         role: Role::Bleeder,
         value: Resistance::from_si(1.0),
         tolerance: None,
+        tempco: None,
+        ageing: None,
         across: unread_pair("resistor", i),
         series: 1,
         parallel: 1,
@@ -165,6 +174,8 @@ fn resistor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &Term
     }
     r.value = reader.need(&group, "value", "22 kohm").and_then(|spot| reader.quantity(&spot)).unwrap_or(r.value);
     r.tolerance = reader.may(&group, "tolerance").and_then(|spot| reader.tolerance(&spot));
+    r.tempco = optional(reader, &group, "tempco");
+    r.ageing = reader.may(&group, "ageing").and_then(|spot| reader.ageing(&spot));
     let (phases, across) = place(reader, &group, terminals);
     r.phases = phases;
     r.across = across.unwrap_or(r.across);

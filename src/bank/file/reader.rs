@@ -249,6 +249,25 @@ impl<'s> Reader<'s> {
         Tolerance::new(low, high).map_err(|e| self.wrong(spot, "bad-quantity", &e.problem, e.help)).ok()
     }
 
+    /// What age does to a value: both ways, or `low` or `high` or both; a side left out does not move.
+    pub(super) fn ageing(&mut self, spot: &Spot<'_>) -> Option<Tolerance> {
+        if !spot.is_mapping() {
+            return self.tolerance(spot);
+        }
+        let group = self.group(spot, spot.name.clone(), &["low", "high"])?;
+        if !group.has("low") && !group.has("high") {
+            let help = "write `{low: 20 %}`, `{high: 50 %}` or both, or `20 %` for both ways";
+            self.wrong(spot, "missing-key", "it has neither `low` nor `high`", help);
+            return None;
+        }
+        let mut side = |key| match self.may(&group, key) {
+            Some(spot) => self.quantity::<Ratio>(&spot),
+            None => (!group.has(key)).then(|| Ratio::from_si(0.0)),
+        };
+        let (low, high) = (side("low"), side("high"));
+        Tolerance::new(low?, high?).map_err(|e| self.wrong(spot, "bad-quantity", &e.problem, e.help)).ok()
+    }
+
     /// One of a few words.
     pub(super) fn word<T: Copy>(&mut self, spot: &Spot<'_>, words: &[(&'static str, T)]) -> Option<T> {
         let known = || words.iter().map(|(word, _)| *word);

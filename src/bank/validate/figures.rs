@@ -7,7 +7,7 @@ use super::super::near::advice;
 use super::super::problem::{Path, Sink};
 use super::is_known;
 use crate::data::{dielectric, dielectrics};
-use crate::quantity::{Quantity, Tolerance};
+use crate::quantity::{Quantity, TemperatureCoefficient, Tolerance};
 
 /// Units in series or in parallel: more than this is a slip of the pen.
 pub(super) const MOST_UNITS: u32 = 1000;
@@ -67,6 +67,7 @@ fn charged_to(d: &Description, sink: &mut Sink) {
 fn capacitor(c: &Capacitor, path: &Path, sink: &mut Sink) {
     above_zero(c.value, "value", path, sink);
     tolerance(c.tolerance, path, sink);
+    moves((c.tempco, c.ageing), path, sink);
     count(c.series, "series", &path.then("units"), sink);
     count(c.parallel, "parallel", &path.then("units"), sink);
     optional(c.rated, "rated", path, sink);
@@ -98,6 +99,7 @@ fn capacitor(c: &Capacitor, path: &Path, sink: &mut Sink) {
 fn resistor(r: &Resistor, path: &Path, sink: &mut Sink) {
     above_zero(r.value, "value", path, sink);
     tolerance(r.tolerance, path, sink);
+    moves((r.tempco, r.ageing), path, sink);
     count(r.series, "series", &path.then("array"), sink);
     count(r.parallel, "parallel", &path.then("array"), sink);
     rating(&r.rating, &path.then("rating"), sink);
@@ -141,6 +143,16 @@ fn tolerance(tolerance: Option<Tolerance>, path: &Path, sink: &mut Sink) {
     // `Tolerance` is valid by construction but for an upper side that overflows.
     if tolerance.is_some_and(|t| !t.highest_factor().is_finite()) {
         not_a_figure(path.then("tolerance"), "tolerance", sink);
+    }
+}
+
+/// What temperature and age do to a value.
+fn moves((tempco, ageing): (Option<TemperatureCoefficient>, Option<Tolerance>), path: &Path, sink: &mut Sink) {
+    if tempco.is_some_and(|t| !t.si().is_finite()) {
+        not_a_figure(path.then("tempco"), "tempco", sink);
+    }
+    if ageing.is_some_and(|a| !a.highest_factor().is_finite()) {
+        not_a_figure(path.then("ageing"), "ageing", sink);
     }
 }
 

@@ -1,8 +1,11 @@
 //! What a plan says, in the order in which a person needs it.
 
 mod closing;
+mod draws;
 mod limits;
 mod ratings;
+mod sensitivity;
+mod spreads;
 mod steps;
 mod summary;
 mod waits;
@@ -15,6 +18,9 @@ use crate::plan::Plan;
 pub(super) fn document(plan: &Plan) -> Vec<Block> {
     let mut blocks = summary::blocks(plan);
     blocks.extend(waits::blocks(plan));
+    blocks.extend(spreads::blocks(plan));
+    blocks.extend(draws::blocks(plan));
+    blocks.extend(sensitivity::blocks(plan));
     blocks.extend(steps::blocks(plan));
     blocks.extend(limits::blocks(plan));
     blocks.extend(ratings::blocks(plan));
