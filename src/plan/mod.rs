@@ -129,9 +129,6 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
 /// # Errors
 /// Where the absorption of a capacitor can't be calibrated.
 pub fn too_many_fault_pairs(bank: &Bank) -> Result<Option<String>, EngineError> {
-    if bank.is_three_phase() {
-        return Ok(None);
-    }
     let model = Model::new(bank).map_err(EngineError::of("absorption"))?;
     let single = faults(bank, &model);
     Ok(too_many(single.len(), pairs_of_faults(&model, &single).len()))
