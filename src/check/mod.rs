@@ -4,8 +4,10 @@
 mod answers;
 mod capacitors;
 mod energy;
+mod equipment;
 mod limits;
 mod notes;
+mod notice;
 mod procedure;
 mod resistors;
 mod serial;
@@ -19,8 +21,10 @@ mod waits;
 pub(crate) use answers::{Answers, FaultAnswers};
 pub(crate) use capacitors::CapacitorCheck;
 pub(crate) use energy::remaining_energy;
+pub(crate) use equipment::equipment;
 pub(crate) use limits::LimitChecks;
 pub(crate) use notes::{assumptions, notes};
+pub(crate) use notice::notice;
 pub(crate) use procedure::{Procedure, StepAnswers};
 pub(crate) use resistors::ResistorChecks;
 pub(crate) use serial::{celsius_or_null, degrees, si, si_list, si_or_null};
@@ -31,9 +35,13 @@ pub(crate) use waits::WaitCheck;
 
 pub use answers::EngineError;
 pub use capacitors::CapacitorResult;
+pub use equipment::{Equipment, EquipmentPart};
 pub use limits::{LimitResult, LimitSource};
+pub use notice::{Notice, NoticeFault};
 pub use resistors::{Check, ResistorResult};
-pub use step_result::{FaultPoint, Recovery, StepFault, StepHold, StepPart, StepPoint, StepResult};
+pub use step_result::{
+    FaultPoint, FaultReading, Recovery, StepFault, StepHold, StepPart, StepPoint, StepReading, StepResult,
+};
 pub use stored::{Band, Stored};
 pub use verdict::Verdict;
 pub use waits::{FaultWait, Wait, WorstValue};

@@ -27,10 +27,19 @@ Examples: ebbvolt plan bank.yaml
 Exit status: 0 all limits met and no rating exceeded; 1 a limit not met, a rating exceeded or a wait of never; \
 2 wrong input; 3 no verdict";
 
+const SHEET_EXAMPLES: &str = "\
+Examples: ebbvolt sheet bank.yaml -o sheet.html
+          ebbvolt sheet --example --format text
+
+The exit status is that of `ebbvolt plan`.";
+
 #[derive(Subcommand)]
 pub(super) enum Command {
     /// Print the plan of a bank: the wait to keep, stored energy, limits, ratings, findings
     Plan(Box<PlanArgs>),
+    /// Print the discharge sheet of a bank: a checklist to carry to the cabinet, to fill in and to sign
+    #[command(after_help = SHEET_EXAMPLES)]
+    Sheet(SheetArgs),
     /// List the published limits that a bank file can name
     #[command(after_help = "Example: ebbvolt limits --format csv")]
     Limits(LimitsArgs),
@@ -56,6 +65,50 @@ pub(super) struct PlanArgs {
     pub format: PlanFormat,
     #[command(flatten)]
     pub quick: QuickArgs,
+}
+
+/// Which bank: of a file, of standard input, or the one that is built in.
+#[derive(Args)]
+pub(super) struct BankArgs {
+    /// The bank file; - reads standard input
+    #[arg(value_name = "BANK.yaml", required_unless_present = "example", conflicts_with = "example")]
+    pub bank: Option<PathBuf>,
+    /// Take the bank that is built in
+    #[arg(long)]
+    pub example: bool,
+}
+
+#[derive(Args)]
+pub(super) struct SheetArgs {
+    #[command(flatten)]
+    pub bank: BankArgs,
+    /// How the sheet is written
+    #[arg(long, value_enum, default_value_t = SheetFormat::Html)]
+    pub format: SheetFormat,
+    /// The date to print on it, as year-month-day; without one, none is printed
+    #[arg(long, value_name = "DATE")]
+    pub date: Option<String>,
+    /// The paper of the HTML
+    #[arg(long, value_enum, default_value_t = SheetPaper::A4)]
+    pub paper: SheetPaper,
+    /// Write to this file instead of standard output; what it held is replaced
+    #[arg(short = 'o', long, value_name = "FILE")]
+    pub output: Option<PathBuf>,
+}
+
+/// Formats of a sheet.
+#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub(super) enum SheetFormat {
+    Html,
+    Markdown,
+    Text,
+}
+
+/// Papers of a sheet.
+#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub(super) enum SheetPaper {
+    A4,
+    Letter,
 }
 
 /// One capacitance with one bleeder, without a file.

@@ -2,10 +2,12 @@
 
 mod args;
 mod draft;
+mod given;
 mod input;
 mod limits;
 mod output;
 mod plan;
+mod sheet;
 mod terminal;
 
 pub use terminal::Terminal;
@@ -49,6 +51,7 @@ pub fn run(
     };
     match typed.command {
         Command::Plan(typed) => plan::run(&typed, stdin, &mut output),
+        Command::Sheet(typed) => sheet::run(&typed, stdin, &mut output),
         Command::Limits(typed) => limits::run(&typed, &mut output),
         Command::Draft => draft::run(&mut output),
     }

@@ -136,7 +136,7 @@ fn save(path: &Path, bytes: &[u8]) -> Result<(), String> {
     file.write_all(bytes).map_err(|e| format!("`{name}` can't be written: {e}"))
 }
 
-fn sha256(bytes: &[u8]) -> String {
+pub(super) fn sha256(bytes: &[u8]) -> String {
     Sha256::digest(bytes).iter().fold(String::new(), |mut hex, byte| {
         // Writing to a string can't fail.
         let _ = write!(hex, "{byte:02x}");
@@ -160,7 +160,7 @@ fn print(plan: &Plan, format: PlanFormat, output: &mut Output) -> u8 {
     }
 }
 
-fn no_verdict(problem: &str, output: &mut Output) -> u8 {
+pub(super) fn no_verdict(problem: &str, output: &mut Output) -> u8 {
     let advice = "No plan is printed: the tool could not certify its own result. Please report it with the bank file.";
     output.problem(&format!("internal error: {problem}\n{advice}"), NO_VERDICT)
 }

@@ -9,7 +9,7 @@ pub use result::*;
 use crate::bank::Bank;
 use crate::check::{
     Answers, CapacitorCheck, FaultAnswers, LimitChecks, Procedure, ResistorChecks, StepCheck, StoredCheck, WaitCheck,
-    assumptions, notes, remaining_energy, step_assumptions, step_findings,
+    assumptions, equipment, notes, notice, remaining_energy, step_assumptions, step_findings,
 };
 use crate::discharge::{Figure, MOST_CORNERS, Model, faults};
 use crate::finding::{Findings, Severity};
@@ -56,6 +56,8 @@ pub fn plan(bank: &Bank, input_sha256: &str, noticed: Findings, options: Options
     for missing in &plan.not_computed {
         findings.add(Severity::Warning, "not-computed", format!("Not computed by this version: {missing}."));
     }
+    plan.notice = notice(&plan.waits, &plan.recovery);
+    plan.equipment = equipment(bank, plan.stored.as_ref(), &plan.waits, &plan.steps, &plan.recovery);
     plan.findings = findings.into_sorted();
     plan.verdict = plan.judged();
     Ok(plan)
@@ -133,6 +135,8 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
         capacitors: Vec::new(),
         steps: Vec::new(),
         recovery: Vec::new(),
+        notice: notice(&[], &[]),
+        equipment: equipment(bank, None, &[], &[], &[]),
         findings: Vec::new(),
         assumptions: assumptions(bank),
         worst_case_search: String::new(),

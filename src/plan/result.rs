@@ -9,8 +9,9 @@ use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltag
 use serde::Serialize;
 
 pub use crate::check::{
-    Band, CapacitorResult, Check, FaultPoint, FaultWait, LimitResult, LimitSource, Pair, Recovery, ResistorResult,
-    StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
+    Band, CapacitorResult, Check, Equipment, EquipmentPart, FaultPoint, FaultReading, FaultWait, LimitResult,
+    LimitSource, Notice, NoticeFault, Pair, Recovery, ResistorResult, StepFault, StepHold, StepPart, StepPoint,
+    StepReading, StepResult, Stored, Verdict, Wait, WorstValue,
 };
 
 /// Everything that a plan says about one bank.
@@ -54,6 +55,10 @@ pub struct Plan {
     pub steps: Vec<StepResult>,
     /// What comes back after the last step.
     pub recovery: Vec<Recovery>,
+    /// What the notice on the cabinet says.
+    pub notice: Notice,
+    /// What is needed to carry out and to check the discharge.
+    pub equipment: Equipment,
     /// What the tool noticed, the gravest first.
     pub findings: Vec<Finding>,
     /// What the plan rests on.

@@ -7,7 +7,7 @@ mod parse;
 mod show;
 
 pub use parse::{QuantityError, Reading, Tolerance, parse, parse_kind};
-pub use show::{Direction, Rounded, duration, exact, keepable, show, show_digits};
+pub use show::{Direction, Rounded, duration, exact, for_a_notice, keepable, show, show_digits};
 
 use uom::si;
 

@@ -3,10 +3,13 @@
 
 mod block;
 mod findings;
+mod html;
 mod json;
 mod limits;
 mod markdown;
+mod paper;
 mod plan;
+mod sheet;
 mod text;
 mod words;
 
@@ -19,4 +22,5 @@ pub use findings::findings_text;
 pub use json::{NotFinite, check_finite, plan_json};
 pub use limits::{limits_csv, limits_json, limits_markdown, limits_text};
 pub use markdown::plan_markdown;
+pub use sheet::{Paper, Sheet, sheet_html, sheet_markdown, sheet_text};
 pub use text::{message_text, plan_text};

@@ -188,6 +188,8 @@ pub fn plan() -> Plan {
         capacitors: vec![capacitor("C1"), capacitor("C2")],
         steps: Vec::new(),
         recovery: Vec::new(),
+        notice: Notice { delay: Some(s(300.0)), longest_fault: None, never_faults: vec!["R1 open".into()], left: None },
+        equipment: Equipment { instrument_voltage: v(750.0), parts: Vec::new() },
         findings,
         assumptions: vec!["Air at the resistors is 40 °C: the file gives none.".into()],
         worst_case_search: "all 16 corners of 4 loose values, then a search inside the box from the best.".into(),

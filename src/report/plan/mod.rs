@@ -1,12 +1,12 @@
 //! What a plan says, in the order in which a person needs it.
 
-mod closing;
-mod limits;
-mod ratings;
-mod steps;
-mod summary;
-mod waits;
-mod working;
+pub(super) mod closing;
+pub(super) mod limits;
+pub(super) mod ratings;
+pub(super) mod steps;
+pub(super) mod summary;
+pub(super) mod waits;
+pub(super) mod working;
 
 use super::block::Block;
 use crate::plan::Plan;
