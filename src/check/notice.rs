@@ -56,7 +56,7 @@ pub(crate) fn notice(waits: &[Wait], recovery: &[Recovery]) -> Notice {
 mod tests {
     use super::*;
     use crate::check::FaultWait;
-    
+
     fn wait(keep: Option<f64>, faults: &[(&str, Option<f64>)]) -> Wait {
         let fault = |(name, wait): &(&str, Option<f64>)| FaultWait {
             fault: (*name).into(),

@@ -33,6 +33,12 @@ Examples: ebbvolt sheet bank.yaml -o sheet.html
 
 The exit status is that of `ebbvolt plan`.";
 
+const LABEL_EXAMPLES: &str = "\
+Examples: ebbvolt label bank.yaml -o notice.svg
+          ebbvolt label --size 90x60mm --page a4 one.yaml two.yaml -o notices.svg
+
+The exit status is that of `ebbvolt plan`; of several banks, the highest.";
+
 #[derive(Subcommand)]
 pub(super) enum Command {
     /// Print the plan of a bank: the wait to keep, stored energy, limits, ratings, findings
@@ -40,6 +46,9 @@ pub(super) enum Command {
     /// Print the discharge sheet of a bank: a checklist to carry to the cabinet, to fill in and to sign
     #[command(after_help = SHEET_EXAMPLES)]
     Sheet(SheetArgs),
+    /// Draw the notice for the cabinet, with the hazard and the delay before opening, as SVG
+    #[command(after_help = LABEL_EXAMPLES)]
+    Label(LabelArgs),
     /// List the published limits that a bank file can name
     #[command(after_help = "Example: ebbvolt limits --format csv")]
     Limits(LimitsArgs),
@@ -94,6 +103,38 @@ pub(super) struct SheetArgs {
     /// Write to this file instead of standard output; what it held is replaced
     #[arg(short = 'o', long, value_name = "FILE")]
     pub output: Option<PathBuf>,
+}
+
+#[derive(Args)]
+pub(super) struct LabelArgs {
+    /// The bank file, or several for several notices on a page; - reads standard input
+    #[arg(value_name = "BANK.yaml", required_unless_present = "example", conflicts_with = "example")]
+    pub banks: Vec<PathBuf>,
+    /// Take the bank that is built in
+    #[arg(long)]
+    pub example: bool,
+    /// Width and height of one notice; 120x80mm if not given
+    #[arg(long, value_name = "SIZE")]
+    pub size: Option<String>,
+    /// Lay the notices out on a page of this paper
+    #[arg(long, value_enum)]
+    pub page: Option<SheetPaper>,
+    /// How many of each, on a page
+    #[arg(long, value_name = "NUMBER", default_value_t = 1, value_parser = clap::value_parser!(u8).range(1..=100))]
+    pub copies: u8,
+    /// Write to this file instead of standard output; what it held is replaced
+    #[arg(short = 'o', long, value_name = "FILE")]
+    pub output: Option<PathBuf>,
+}
+
+impl LabelArgs {
+    /// The banks that were named, one by one.
+    pub fn each(&self) -> Vec<BankArgs> {
+        if self.example {
+            return vec![BankArgs { bank: None, example: true }];
+        }
+        self.banks.iter().map(|bank| BankArgs { bank: Some(bank.clone()), example: false }).collect()
+    }
 }
 
 /// Formats of a sheet.

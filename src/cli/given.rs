@@ -20,8 +20,8 @@ pub(super) fn planned(
 ) -> Result<Plan, u8> {
     let input = read(typed, stdin).map_err(|problem| output.problem(&problem, INPUT_WRONG))?;
     let (bank, notes) = file::read(&input.name, &input.bytes).map_err(|findings| output.findings(&findings))?;
-    let plan = plan::plan(&bank, &sha256(&input.bytes), notes, options)
-        .map_err(|e| no_verdict(&e.to_string(), output))?;
+    let plan =
+        plan::plan(&bank, &sha256(&input.bytes), notes, options).map_err(|e| no_verdict(&e.to_string(), output))?;
     // No format may show a figure that is none.
     report::check_finite(&plan).map_err(|e| no_verdict(&e.to_string(), output))?;
     Ok(plan)
@@ -50,14 +50,15 @@ pub(super) fn refuse_overwriting(typed: &BankArgs, file: Option<&Path>, output: 
     }
 }
 
-/// Status of a result that must not be shown because the plan is incomplete.
-pub(super) fn incomplete(plan: &Plan, what: &str, output: &mut Output) -> Option<u8> {
+/// Refuses a result that must not be shown because the plan is incomplete.
+pub(super) fn incomplete(plan: &Plan, what: &str, output: &mut Output) -> Result<(), u8> {
     if plan.not_computed.is_empty() {
-        return None;
+        return Ok(());
     }
-    let missing = plan.not_computed.join("; ");
-    Some(output.problem(
-        &format!("INCOMPLETE: this version does not compute everything that the file asks for, so there is no {what}.\nNot computed: {missing}."),
-        NO_VERDICT,
-    ))
+    let text = format!(
+        "INCOMPLETE: this version does not compute everything that the file asks for, so there is no {what}.\nNot \
+         computed: {}.",
+        plan.not_computed.join("; ")
+    );
+    Err(output.problem(&text, NO_VERDICT))
 }

@@ -4,6 +4,7 @@ mod args;
 mod draft;
 mod given;
 mod input;
+mod label;
 mod limits;
 mod output;
 mod plan;
@@ -52,6 +53,7 @@ pub fn run(
     match typed.command {
         Command::Plan(typed) => plan::run(&typed, stdin, &mut output),
         Command::Sheet(typed) => sheet::run(&typed, stdin, &mut output),
+        Command::Label(typed) => label::run(&typed, stdin, &mut output),
         Command::Limits(typed) => limits::run(&typed, &mut output),
         Command::Draft => draft::run(&mut output),
     }

@@ -5,6 +5,7 @@ mod block;
 mod findings;
 mod html;
 mod json;
+mod label;
 mod limits;
 mod markdown;
 mod paper;
@@ -20,6 +21,7 @@ mod tests;
 
 pub use findings::findings_text;
 pub use json::{NotFinite, check_finite, plan_json};
+pub use label::{LabelError, LabelSize, label_svg, labels_page_svg};
 pub use limits::{limits_csv, limits_json, limits_markdown, limits_text};
 pub use markdown::plan_markdown;
 pub use sheet::{Paper, Sheet, sheet_html, sheet_markdown, sheet_text};

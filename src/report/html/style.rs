@@ -86,7 +86,7 @@ td.room { border: .75pt solid #000; min-width: 18mm; height: 8mm; }
 .signatures td { border: .75pt solid #000; height: 11mm; width: 27%; }
 .signatures { break-inside: avoid; }
 .formula { font-family: 'Liberation Mono', 'DejaVu Sans Mono', monospace; font-size: 10pt; margin-left: 4mm; }
-.ticks { list-style: none; padding: 0; }
+.ticks { list-style: none; padding: 0; break-inside: avoid; }
 .ticks li { display: grid; grid-template-columns: 7mm 1fr; }
 .tick { display: inline-block; width: 4.2mm; height: 4.2mm; border: 1pt solid #000; background: #fff; vertical-align: -.7mm; margin-right: 2.5mm; }
 .blanks p, .done { display: flex; align-items: flex-end; gap: 2mm; break-inside: avoid; }

@@ -78,9 +78,10 @@ fn given<Q: Quantity>(rating: Option<Q>) -> String {
 /// What a part bears for a short time.
 fn short(part: &EquipmentPart) -> String {
     let pulse = part.pulse.map(down);
-    let overload = part.overload_times.zip(part.overload_for).map(|(times, time): (f64, Time)| {
-        format!("{} times its power for {}", glued(&times.to_string()), typed(time))
-    });
+    let overload = part
+        .overload_times
+        .zip(part.overload_for)
+        .map(|(times, time): (f64, Time)| format!("{} times its power for {}", glued(&times.to_string()), typed(time)));
     let both: Vec<String> = pulse.into_iter().chain(overload).collect();
     if both.is_empty() { "not given".into() } else { both.join("; ") }
 }
@@ -88,7 +89,8 @@ fn short(part: &EquipmentPart) -> String {
 fn lockout(plan: &Plan) -> Vec<Block> {
     let ticks = [
         format!("Every feed of {} is off, locked and tagged", list(&plan.terminals)),
-        "Other feeds, control supplies and back-feeds that could charge the bank again are found, off and locked".into(),
+        "Other feeds, control supplies and back-feeds that could charge the bank again are found, off and locked"
+            .into(),
         "Nothing that turns or generates can charge the bank".into(),
         "The isolation was tried: the equipment does not start".into(),
     ];
@@ -100,7 +102,10 @@ fn lockout(plan: &Plan) -> Vec<Block> {
     ];
     let from = match plan.steps.len() {
         0 => "All times on this sheet run from the moment of isolation.".to_string(),
-        n => format!("All times on this sheet, those of its {} too, run from the moment of isolation.", count(n, "step", "steps")),
+        n => format!(
+            "All times on this sheet, those of its {} too, run from the moment of isolation.",
+            count(n, "step", "steps")
+        ),
     };
     vec![
         Block::Section("Isolation and lockout"),

@@ -80,7 +80,11 @@ fn failed(plan: &Plan) -> Option<LargeFigure> {
             1 => String::new(),
             n => format!(" and {} more", n - 1),
         };
-        return Some(LargeFigure { label, figure: "NEVER".into(), under: format!("{fault}{more}: only the test tells") });
+        return Some(LargeFigure {
+            label,
+            figure: "NEVER".into(),
+            under: format!("{fault}{more}: only the test tells"),
+        });
     }
     let longest = notice.longest_fault.as_ref()?;
     let figure = format!("up to {}", whole(longest.delay));

@@ -126,7 +126,9 @@ fn points_to(reading: &StepReading) -> String {
         .iter()
         .filter(|f| f.fault != steps::NOT_ISOLATED)
         .take(NAMED_FAULTS)
-        .map(|f| format!("{}{}", f.fault, f.highest.map_or_else(String::new, |v: Voltage| format!(" (up to {})", up(v)))))
+        .map(|f| {
+            format!("{}{}", f.fault, f.highest.map_or_else(String::new, |v: Voltage| format!(" (up to {})", up(v))))
+        })
         .collect();
     let source = reading.points_to.iter().any(|f| f.fault == steps::NOT_ISOLATED);
     let more = (reading.points_to.len() - usize::from(source)).saturating_sub(NAMED_FAULTS);
