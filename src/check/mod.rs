@@ -3,6 +3,8 @@
 
 mod answers;
 mod capacitors;
+mod curve_times;
+mod curves;
 mod energy;
 mod equipment;
 mod limits;
@@ -20,6 +22,7 @@ mod waits;
 
 pub(crate) use answers::{Answers, FaultAnswers};
 pub(crate) use capacitors::CapacitorCheck;
+pub(crate) use curves::CurveCheck;
 pub(crate) use energy::remaining_energy;
 pub(crate) use equipment::equipment;
 pub(crate) use limits::LimitChecks;
@@ -35,6 +38,9 @@ pub(crate) use waits::WaitCheck;
 
 pub use answers::EngineError;
 pub use capacitors::CapacitorResult;
+pub use curves::{
+    CurveLoad, CurvePair, CurvePart, CurveSample, CurveSpan, CurveTimes, CurveTool, CurveVoltage, Curves, ToolLoad,
+};
 pub use equipment::{Equipment, EquipmentPart};
 pub use limits::{LimitResult, LimitSource};
 pub use notice::{Notice, NoticeFault};

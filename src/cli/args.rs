@@ -39,10 +39,20 @@ Examples: ebbvolt label bank.yaml -o notice.svg
 
 The exit status is that of `ebbvolt plan`; of several banks, the highest.";
 
+const TRACE_EXAMPLES: &str = "\
+Examples: ebbvolt trace bank.yaml
+          ebbvolt trace bank.yaml --format csv --times 0s,30s,5min
+
+Loads of parts are nominal and of the whole part; voltages and tools are given nominal and highest. The exit status is \
+that of `ebbvolt plan`.";
+
 #[derive(Subcommand)]
 pub(super) enum Command {
     /// Print the plan of a bank: the wait to keep, stored energy, limits, ratings, findings
     Plan(Box<PlanArgs>),
+    /// Show voltages, currents and powers against time, as a plot or as figures
+    #[command(after_help = TRACE_EXAMPLES)]
+    Trace(TraceArgs),
     /// Print the discharge sheet of a bank: a checklist to carry to the cabinet, to fill in and to sign
     #[command(after_help = SHEET_EXAMPLES)]
     Sheet(SheetArgs),
@@ -135,6 +145,30 @@ impl LabelArgs {
         }
         self.banks.iter().map(|bank| BankArgs { bank: Some(bank.clone()), example: false }).collect()
     }
+}
+
+#[derive(Args)]
+pub(super) struct TraceArgs {
+    #[command(flatten)]
+    pub bank: BankArgs,
+    /// How it is written
+    #[arg(long, value_enum, default_value_t = TraceFormat::Text)]
+    pub format: TraceFormat,
+    /// Only these moments from isolation, such as 0s,30s,5min; without them, moments are chosen where voltages change
+    #[arg(long, value_name = "TIMES", allow_hyphen_values = true)]
+    pub times: Option<String>,
+    /// Write to this file instead of standard output; what it held is replaced
+    #[arg(short = 'o', long, value_name = "FILE")]
+    pub output: Option<PathBuf>,
+}
+
+/// Formats of a trace.
+#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub(super) enum TraceFormat {
+    Text,
+    Csv,
+    Json,
+    Svg,
 }
 
 /// Formats of a sheet.

@@ -43,7 +43,7 @@ pub(super) fn run(typed: &PlanArgs, stdin: &mut dyn Read, output: &mut Output) -
             Err(problem) => return output.problem(&problem, INPUT_WRONG),
         }
     }
-    let options = Options { working: typed.working };
+    let options = Options { working: typed.working, ..Options::default() };
     match plan::plan(&bank, &sha256(&input.bytes), notes, options) {
         Ok(plan) => print(&plan, typed.format, output),
         Err(e) => no_verdict(&e.to_string(), output),

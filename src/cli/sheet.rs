@@ -4,7 +4,7 @@ use super::INPUT_WRONG;
 use super::args::{SheetArgs, SheetFormat, SheetPaper};
 use super::given;
 use super::output::Output;
-use crate::plan::Options;
+use crate::plan::{CurveTimes, Options};
 use crate::report::{self, Paper, Sheet};
 use std::io::Read;
 
@@ -19,7 +19,8 @@ fn made(typed: &SheetArgs, stdin: &mut dyn Read, output: &mut Output) -> Result<
     let date = typed.date.as_deref().map(date).transpose().map_err(|e| output.problem(&e, INPUT_WRONG))?;
     let file = typed.output.as_deref();
     given::refuse_overwriting(&typed.bank, file, output)?;
-    let plan = given::planned(&typed.bank, Options { working: true }, stdin, output)?;
+    let plan =
+        given::planned(&typed.bank, Options { working: true, curves: Some(CurveTimes::Automatic) }, stdin, output)?;
     let paper = match typed.paper {
         SheetPaper::A4 => Paper::A4,
         SheetPaper::Letter => Paper::Letter,

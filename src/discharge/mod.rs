@@ -10,6 +10,7 @@
 mod absorption;
 mod body;
 mod case;
+mod course;
 mod element;
 mod figure;
 mod model;
@@ -19,9 +20,10 @@ mod timeline;
 mod worst;
 
 pub(crate) use case::Case;
+pub(crate) use course::{CourseStudy, Load, Moment, capacitor_load, load};
 pub(crate) use element::element_model;
 pub(crate) use figure::{Body, Figure};
-pub(crate) use model::{Model, Part, PartKind, absorption};
+pub(crate) use model::{Model, Parameter, Part, PartKind, absorption};
 pub(crate) use scenario::{Fault, Scenario, faults};
 pub(crate) use study::Study;
 pub(crate) use timeline::{ProcedureStudy, Setting, Stage, StepFigure, Timeline};

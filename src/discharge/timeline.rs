@@ -94,6 +94,35 @@ impl Timeline {
         across(&self.runs[stage].response, &self.map, a, b)
     }
 
+    /// Resistance in ohm of a resistor during a step; infinite where it is open or not connected.
+    pub fn ohms(&self, stage: usize, resistor: usize) -> f64 {
+        self.runs[stage].ohms[resistor]
+    }
+
+    /// Length of a step in second.
+    pub fn duration(&self, stage: usize) -> f64 {
+        self.runs[stage].duration
+    }
+
+    /// Power in watt of a resistor before isolation.
+    pub fn standing(&self, resistor: usize) -> f64 {
+        self.standing[resistor]
+    }
+
+    /// Power in a resistor during a step, from its start.
+    pub fn power(&self, model: &Model, stage: usize, resistor: usize) -> ExpSum {
+        self.runs[stage].power(model, &self.map, resistor)
+    }
+
+    /// Checks the energy balance of every step.
+    pub fn certify(&self) -> Result<(), CircuitError> {
+        for run in &self.runs {
+            run.response.check_balance(run.duration)?;
+            run.tries.iter().try_for_each(|response| response.check_balance(run.duration))?;
+        }
+        Ok(())
+    }
+
     /// What is to come at a pair after the last step, from its end.
     pub fn afterwards(&self, a: usize, b: usize) -> ExpSum {
         self.runs
@@ -293,11 +322,7 @@ impl Objective for ProcedureStudy<'_> {
     }
 
     fn certify(&self, case: &Timeline) -> Result<(), CircuitError> {
-        for run in &case.runs {
-            run.response.check_balance(run.duration)?;
-            run.tries.iter().try_for_each(|response| response.check_balance(run.duration))?;
-        }
-        Ok(())
+        case.certify()
     }
 
     fn figure(&self, index: usize, case: &Timeline, floor: f64) -> Result<f64, CircuitError> {

@@ -8,18 +8,20 @@ pub use result::*;
 
 use crate::bank::Bank;
 use crate::check::{
-    Answers, CapacitorCheck, FaultAnswers, LimitChecks, Procedure, ResistorChecks, StepCheck, StoredCheck, WaitCheck,
-    assumptions, equipment, notes, notice, remaining_energy, step_assumptions, step_findings,
+    Answers, CapacitorCheck, CurveCheck, FaultAnswers, LimitChecks, Procedure, ResistorChecks, StepCheck, StoredCheck,
+    WaitCheck, assumptions, equipment, notes, notice, remaining_energy, step_assumptions, step_findings,
 };
 use crate::discharge::{Figure, MOST_CORNERS, Model, faults};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{Quantity, Time};
 
 /// What a plan is to contain beyond the figures.
-#[derive(Debug, Clone, Copy, Default, PartialEq, Eq)]
+#[derive(Debug, Clone, Default, PartialEq)]
 pub struct Options {
     /// The calculation of every wait, for a reviewer to check by hand.
     pub working: bool,
+    /// Curves at these moments.
+    pub curves: Option<CurveTimes>,
 }
 
 /// Makes the plan of `bank`. `input_sha256` is printed with it, so that a plan can be matched with its file;
@@ -51,7 +53,7 @@ pub fn plan(bank: &Bank, input_sha256: &str, noticed: Findings, options: Options
     let mut findings = noticed;
     let mut plan = blank(bank, input_sha256);
     if !bank.is_three_phase() {
-        compute(bank, &mut plan, &mut findings, options)?;
+        compute(bank, &mut plan, &mut findings, &options)?;
     }
     for missing in &plan.not_computed {
         findings.add(Severity::Warning, "not-computed", format!("Not computed by this version: {missing}."));
@@ -64,7 +66,7 @@ pub fn plan(bank: &Bank, input_sha256: &str, noticed: Findings, options: Options
 }
 
 /// Fills in everything that is computed.
-fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Options) -> Result<(), EngineError> {
+fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: &Options) -> Result<(), EngineError> {
     let model = Model::new(bank).map_err(EngineError::of("absorption"))?;
     let description = bank.description();
     let (first, last) = (description.terminals.first(), description.terminals.last());
@@ -103,7 +105,24 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
     if options.working {
         plan.working = Some(working::working(bank, &model, &plan.waits)?);
     }
+    if let Some(times) = &options.curves {
+        let alone = model.passive_only();
+        let followed = if procedure.is_some() { &model } else { &alone };
+        plan.curves = Some(CurveCheck::new(bank, followed, procedure.as_ref(), followed_for(plan))?.curves(times)?);
+    }
     Ok(())
+}
+
+/// How long a bank that nobody discharges is followed, in second: somewhat past its longest wait and the times of its
+/// limits; where there is no wait, over its slowest time constant.
+fn followed_for(plan: &Plan) -> f64 {
+    let waits = plan.waits.iter().filter_map(|w| w.keep);
+    let limits = plan.limits.iter().filter_map(|l| l.within);
+    let longest = waits.chain(limits).map(Quantity::si).fold(0.0, f64::max);
+    let slowest = plan.time_constants.first().map_or(0.0, |tau| tau.si());
+    let never = plan.waits.iter().any(|w| w.keep.is_none());
+    let followed = if never || longest <= 0.0 { longest.max(5.0 * slowest) } else { 1.25 * longest };
+    if followed > 0.0 { followed } else { 3600.0 }
 }
 
 /// A plan with everything that needs no engine.
@@ -141,6 +160,7 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
         assumptions: assumptions(bank),
         worst_case_search: String::new(),
         working: None,
+        curves: None,
     }
 }
 

@@ -9,9 +9,10 @@ use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltag
 use serde::Serialize;
 
 pub use crate::check::{
-    Band, CapacitorResult, Check, Equipment, EquipmentPart, FaultPoint, FaultReading, FaultWait, LimitResult,
-    LimitSource, Notice, NoticeFault, Pair, Recovery, ResistorResult, StepFault, StepHold, StepPart, StepPoint,
-    StepReading, StepResult, Stored, Verdict, Wait, WorstValue,
+    Band, CapacitorResult, Check, CurveLoad, CurvePair, CurvePart, CurveSample, CurveSpan, CurveTimes, CurveTool,
+    CurveVoltage, Curves, Equipment, EquipmentPart, FaultPoint, FaultReading, FaultWait, LimitResult, LimitSource,
+    Notice, NoticeFault, Pair, Recovery, ResistorResult, StepFault, StepHold, StepPart, StepPoint, StepReading,
+    StepResult, Stored, ToolLoad, Verdict, Wait, WorstValue,
 };
 
 /// Everything that a plan says about one bank.
@@ -68,6 +69,9 @@ pub struct Plan {
     /// The calculation in a form that a reviewer can check by hand; only where asked for.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub working: Option<Vec<Working>>,
+    /// Voltages, currents and powers against time; only where asked for, and never in the JSON of a plan.
+    #[serde(skip)]
+    pub curves: Option<Curves>,
 }
 
 /// Which tool and which format of result.

@@ -8,6 +8,7 @@ mod touch;
 use super::block::Block;
 use super::html::{self, Page};
 use super::plan::{closing, limits, ratings, waits, working};
+use super::plot;
 use super::words::clean;
 use super::{markdown, text};
 use crate::plan::Plan;
@@ -61,6 +62,7 @@ fn document(plan: &Plan, sheet: &Sheet) -> Vec<Block> {
     blocks.extend(before::blocks(plan));
     blocks.extend(steps::blocks(plan));
     blocks.extend(touch::blocks(plan));
+    blocks.extend(plot::blocks(plan));
     blocks.extend(limits::blocks(plan));
     blocks.extend(ratings::blocks(plan));
     blocks.extend(waits::blocks(plan));

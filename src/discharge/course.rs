@@ -1,0 +1,122 @@
+//! A bank through its steps at chosen moments: what curves and traces are drawn from.
+
+use super::body::Thermal;
+use super::model::{Model, Parameter, PartKind};
+use super::timeline::{Setting, Timeline};
+use super::worst::Objective;
+use crate::circuit::CircuitError;
+
+/// What is asked at a moment: `t` seconds after the start of a step.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(crate) enum Moment {
+    /// Voltage between two nodes of the model.
+    Voltage { stage: usize, a: usize, b: usize, t: f64 },
+    /// Power in a resistor; 0 where it is not connected.
+    Power { stage: usize, resistor: usize, t: f64 },
+    /// Rise of a resistor's body over the air, in K.
+    Rise { stage: usize, resistor: usize, body: Thermal, t: f64 },
+}
+
+impl Moment {
+    fn stage(&self) -> usize {
+        match *self {
+            Moment::Voltage { stage, .. } | Moment::Power { stage, .. } | Moment::Rise { stage, .. } => stage,
+        }
+    }
+
+    /// Its value, a magnitude.
+    fn of(&self, model: &Model, timeline: &Timeline) -> f64 {
+        match *self {
+            Moment::Voltage { stage, a, b, t } => timeline.across(stage, a, b).value(t).abs(),
+            Moment::Power { stage, resistor, t } => timeline.power(model, stage, resistor).value(t),
+            Moment::Rise { stage, resistor, body, t } => {
+                let mut rise = body.kelvin_per_watt * timeline.standing(resistor);
+                for earlier in 0..stage {
+                    let course = body.rise(rise, &timeline.power(model, earlier, resistor));
+                    rise = course.value(timeline.duration(earlier));
+                }
+                body.rise(rise, &timeline.power(model, stage, resistor)).value(t)
+            }
+        }
+    }
+}
+
+/// What a part has across it, what flows in it from its first node to its second, and the power that it takes up.
+#[derive(Debug, Clone, Copy, Default, PartialEq)]
+pub(crate) struct Load {
+    pub voltage: f64,
+    pub current: f64,
+    pub power: f64,
+}
+
+/// The load of a whole resistor at a moment; nothing flows in one that is not connected.
+pub(crate) fn load(model: &Model, timeline: &Timeline, stage: usize, resistor: usize, t: f64) -> Load {
+    let part = &model.resistors[resistor];
+    let ohms = timeline.ohms(stage, resistor);
+    let voltage = timeline.across(stage, part.a, part.b).value(t);
+    let current = if ohms.is_finite() { voltage / ohms } else { 0.0 };
+    Load { voltage, current, power: voltage * current }
+}
+
+/// The load of a whole capacitor of its marked value at a moment, its absorption included: i = C dv/dt, and what flows
+/// in the branches.
+pub(crate) fn capacitor_load(model: &Model, timeline: &Timeline, stage: usize, capacitor: usize, t: f64) -> Load {
+    let part = &model.capacitors[capacitor];
+    let (voltage, slope) = timeline.across(stage, part.a, part.b).value_and_slope(t);
+    let branches = model.resistors.iter().enumerate().filter(|(_, r)| r.kind == PartKind::Absorbing(capacitor));
+    let absorbed: f64 = branches.map(|(r, _)| load(model, timeline, stage, r, t).current).sum();
+    let current = part.nominal * slope + absorbed;
+    Load { voltage, current, power: voltage * current }
+}
+
+/// Moments of a procedure, to be maximised over the box.
+pub(crate) struct CourseStudy<'a> {
+    pub setting: Setting<'a>,
+    /// Up to how many loose values every corner is tried.
+    pub most_corners: usize,
+    pub moments: &'a [Moment],
+}
+
+impl Objective for CourseStudy<'_> {
+    type Case = Timeline;
+
+    fn parameters(&self) -> &[Parameter] {
+        &self.setting.model.parameters
+    }
+
+    fn count(&self) -> usize {
+        self.moments.len()
+    }
+
+    fn most_corners(&self) -> usize {
+        self.most_corners
+    }
+
+    fn case(&self, point: &[f64]) -> Result<Timeline, CircuitError> {
+        Timeline::run(&self.setting, point)
+    }
+
+    /// A curve is drawn to a hundredth of its scale; what lies a thousand times below the bank's voltage or its power
+    /// is not worth a search inside the box.
+    fn negligible(&self, index: usize) -> f64 {
+        let Setting { model, volts, .. } = self.setting;
+        match self.moments[index] {
+            Moment::Voltage { .. } => 1e-6 * volts,
+            Moment::Power { resistor, .. } => 1e-6 * volts * volts / model.resistors[resistor].nominal,
+            Moment::Rise { .. } => 1e-3,
+        }
+    }
+
+    fn case_for(&self, index: usize, point: &[f64]) -> Result<Timeline, CircuitError> {
+        let needed = self.moments[index].stage() + 1;
+        Timeline::run(&Setting { stages: &self.setting.stages[..needed], ..self.setting }, point)
+    }
+
+    fn certify(&self, case: &Timeline) -> Result<(), CircuitError> {
+        case.certify()
+    }
+
+    fn figure(&self, index: usize, case: &Timeline, _: f64) -> Result<f64, CircuitError> {
+        Ok(self.moments[index].of(self.setting.model, case))
+    }
+}
