@@ -40,7 +40,7 @@ pub(super) fn document(page: &Page, blocks: &[Block]) -> String {
                 main {
                     header { @for block in &blocks[..first] { (part(block)) } }
                     @for (start, end) in starts.iter().copied().zip(ends) {
-                        section { @for block in &blocks[start..end] { (part(block)) } }
+                        section class=(section_class(&blocks[start])) { @for block in &blocks[start..end] { (part(block)) } }
                     }
                 }
             }
@@ -49,6 +49,27 @@ pub(super) fn document(page: &Page, blocks: &[Block]) -> String {
     let mut text = markup.into_string();
     text.push('\n');
     text
+}
+
+/// How a section is set: short ones are kept on one page, the calculation stands in two columns.
+fn section_class(first: &Block) -> &'static str {
+    const SHORT: [&str; 8] = [
+        "Identification",
+        "What the bank holds",
+        "Who may do this",
+        "What is needed",
+        "Isolation and lockout",
+        "Before anyone touches: prove, test, prove",
+        "About this plan",
+        "Signatures",
+    ];
+    match first {
+        Block::Section("Working") => "columns",
+        // What introduces steps or plots stays with the first of them.
+        Block::Section("The steps" | "Voltage against time") => "introduced",
+        Block::Section(heading) if SHORT.contains(heading) => "short",
+        _ => "long",
+    }
 }
 
 fn part(block: &Block) -> Markup {
@@ -175,15 +196,37 @@ fn table(grid: &Grid) -> Markup {
             } } }
             tbody { @for row in &grid.rows { tr { @for (i, cell) in row.iter().enumerate() {
                 @if i == 0 {
-                    th scope="row" class=(class(i)) { (clean(cell)) }
+                    th scope="row" class=(class(i)) { (breakable(cell)) }
                 } @else if cell.is_empty() {
                     td.room {}
                 } @else {
-                    td class=(class(i)) { (clean(cell)) }
+                    td class=(class(i)) { (breakable(cell)) }
                 }
             } } } }
         }
     }
+}
+
+/// The text of a cell. A word that is longer than any name people use may be broken, so that it can't push a table
+/// off the paper; a shorter one never is.
+fn breakable(text: &str) -> Markup {
+    const LONGEST_WORD: usize = 18;
+    const PIECE: usize = 6;
+    let text = clean(text);
+    let mut pieces: Vec<String> = vec![String::new()];
+    for word in text.split_inclusive(' ') {
+        let characters: Vec<char> = word.chars().collect();
+        let size = if characters.len() > LONGEST_WORD { PIECE } else { characters.len().max(1) };
+        for (i, piece) in characters.chunks(size).enumerate() {
+            if i > 0 {
+                pieces.push(String::new());
+            }
+            if let Some(last) = pieces.last_mut() {
+                last.extend(piece);
+            }
+        }
+    }
+    html! { @for (i, piece) in pieces.iter().enumerate() { @if i > 0 { wbr; } (piece) } }
 }
 
 fn plot(picture: &Picture) -> Markup {

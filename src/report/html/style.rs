@@ -44,8 +44,12 @@ html { font: 10.5pt/1.38 'Liberation Sans', 'DejaVu Sans', Arial, Helvetica, san
 body { margin: 0; }
 main { max-width: 180mm; margin: 0 auto; padding: 6mm 4mm; }
 h1, h2, h3, p, ul, dl, dd, dt, figure { margin: 0; padding: 0; }
-h1, h2, h3, p, li, dd, dt, th, td, figcaption { overflow-wrap: anywhere; }
-header { border-bottom: 3pt solid #000; padding-bottom: 3mm; margin-bottom: 2mm; }
+h1, h2, h3, p, li, dd, dt, figcaption { overflow-wrap: anywhere; }
+header { margin-bottom: 4mm; }
+.short { break-inside: avoid; }
+.columns { columns: 2; column-gap: 7mm; break-before: page; }
+.introduced > p { break-after: avoid; }
+.columns h2 { column-span: all; }
 .kind { font-size: 12pt; letter-spacing: .14em; text-transform: uppercase; }
 h1 { font-size: 21pt; line-height: 1.15; margin-bottom: 3mm; }
 h2 { font-size: 13pt; margin: 6mm 0 2mm; padding-top: 1mm; border-top: 1.5pt solid #000; break-after: avoid; }
@@ -89,6 +93,7 @@ td.room { border: .75pt solid #000; min-width: 18mm; height: 8mm; }
 .ticks { list-style: none; padding: 0; break-inside: avoid; }
 .ticks li { display: grid; grid-template-columns: 7mm 1fr; }
 .tick { display: inline-block; width: 4.2mm; height: 4.2mm; border: 1pt solid #000; background: #fff; vertical-align: -.7mm; margin-right: 2.5mm; }
+.blanks { break-inside: avoid; }
 .blanks p, .done { display: flex; align-items: flex-end; gap: 2mm; break-inside: avoid; }
 .blanks p { min-height: 8mm; }
 .blanks .label { max-width: 90mm; }

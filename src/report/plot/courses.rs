@@ -8,6 +8,9 @@ use crate::quantity::{Power, Quantity, Temperature, Time, Voltage, celsius};
 /// Pairs whose curves differ by less than this share are drawn as one: a line in print is wider.
 const ALIKE: f64 = 0.02;
 
+/// Power in watt below which the course of a tool is not worth a plot.
+const LEAST_POWER: f64 = 1e-3;
+
 /// Characters of a line's name that fit beside it.
 const LONGEST_NAME: usize = 46;
 
@@ -24,6 +27,8 @@ pub(super) struct Course {
     pub nominal: Vec<(f64, f64)>,
     pub levels: Vec<Level>,
     pub marks: Vec<Mark>,
+    /// The unit of the time, where its axis is even.
+    pub unit: Option<TimeUnit>,
 }
 
 /// A line across a plot.
@@ -126,9 +131,44 @@ pub(super) fn voltages(plan: &Plan, curves: &Curves) -> Vec<Course> {
                 nominal: points(&|v| v.nominal),
                 levels: levels(plan, curves, group, end, unit),
                 marks: marks(plan, spans, unit),
+                unit: Some(unit),
             }
         })
         .collect()
+}
+
+/// The same voltage drawn again over the time in which there is something to see, where that is a small part of it.
+pub(super) fn closer(course: &Course) -> Option<Course> {
+    const SMALL: f64 = 0.25;
+    let over = |(_, v): &&(f64, f64)| *v > course.up.low * 1.0001;
+    let last = course.highest.iter().rev().find(over)?.0;
+    if last <= 0.0 || last > SMALL * course.across.high {
+        return None;
+    }
+    let unit = course.unit?;
+    let seconds = 1.15 * last * unit.seconds;
+    let finer = TimeUnit::for_length(seconds);
+    let factor = unit.seconds / finer.seconds;
+    let end = seconds / finer.seconds;
+    let inside = |points: &[(f64, f64)]| -> Vec<(f64, f64)> {
+        let scaled = points.iter().map(|(t, v)| (t * factor, *v));
+        scaled.filter(|(t, _)| *t <= end).collect()
+    };
+    let marks = course.marks.iter().filter(|mark| mark.from * factor < end);
+    let levels = course.levels.iter().filter(|level| level.from.is_none_or(|from| from * factor < end));
+    Some(Course {
+        title: format!("{}, the first {}", course.title, whole(Time::from_si(seconds))),
+        description: format!("The same, drawn over the first {}.", whole(Time::from_si(seconds))),
+        across: Axis::times(seconds, finer),
+        highest: inside(&course.highest),
+        nominal: inside(&course.nominal),
+        levels: levels.map(|level| Level { from: level.from.map(|from| from * factor), ..level.clone() }).collect(),
+        marks: marks
+            .map(|mark| Mark { from: mark.from * factor, to: (mark.to * factor).min(end), name: mark.name.clone() })
+            .collect(),
+        unit: Some(finer),
+        up: course.up.clone(),
+    })
 }
 
 /// In words what the plot shows.
@@ -231,6 +271,7 @@ pub(super) fn afterwards(plan: &Plan, curves: &Curves) -> Vec<Course> {
                     name: format!("touch voltage {}", typed(plan.touch_voltage)),
                 }],
                 marks: Vec::new(),
+                unit: None,
             }
         })
         .collect()
@@ -280,13 +321,28 @@ pub(super) fn tools(plan: &Plan, curves: &Curves) -> Vec<Course> {
         let element =
             if tool.elements == 1 { String::new() } else { format!(", one of its {} elements", tool.elements) };
         let who = glued(&format!("{} ({})", clean(&tool.id), tool.role));
-        courses.push(power(tool, &who, &element, across(), points(&|t| Some(t.power.si())), marks.clone()));
+        let watts = points(&|t| Some(t.power.si()));
+        if watts.iter().any(|(_, watt)| *watt >= LEAST_POWER) {
+            courses.push(power(tool, &who, &element, across(), watts, marks.clone()));
+        }
         let heat = points(&|t| t.temperature.map(celsius));
         if !heat.is_empty() {
             courses.push(temperature(plan, tool, &who, &element, across(), heat, marks));
         }
     }
     courses
+}
+
+/// In words, the tools whose power is not worth a plot.
+pub(super) fn idle_tools(curves: &Curves) -> Option<String> {
+    let peak = |i: usize| {
+        let samples = curves.spans.iter().flat_map(|span| &span.samples);
+        samples.filter_map(|s| s.tools.get(i)).map(|t| t.power.si()).fold(0.0, f64::max)
+    };
+    let idle = curves.tools.iter().enumerate().map(|(i, tool)| (tool, peak(i))).filter(|(_, p)| *p < LEAST_POWER);
+    let names: Vec<String> =
+        idle.map(|(tool, p)| format!("{} (up to {} in one element)", clean(&tool.id), up(Power::from_si(p)))).collect();
+    (!names.is_empty()).then(|| format!("Without a plot of its power, which is below a milliwatt: {}.", list(&names)))
 }
 
 /// The first and the last step in which a tool is connected.
@@ -307,7 +363,9 @@ fn power(
 ) -> Course {
     let peak = highest.iter().map(|(_, p)| *p).fold(0.0, f64::max);
     let allowed = tool.allowed_power;
-    let top = allowed.map_or(peak, |a| a.si().max(peak)).max(1e-9);
+    // A rating far above what the part bears would leave no room for the curve; it stands in the text then.
+    let in_sight = allowed.filter(|a| a.si() <= 100.0 * peak);
+    let top = in_sight.map_or(peak, |a| a.si().max(peak));
     let watts = |value: f64| typed(Power::from_si(format!("{value:.3e}").parse().unwrap_or(value)));
     let beside = allowed.map_or_else(String::new, |a| format!("; {} allowed continuously", down(a)));
     Course {
@@ -317,11 +375,12 @@ fn power(
         up: Axis::powers(1e-4 * top, top, "power", watts),
         highest,
         nominal: Vec::new(),
-        levels: allowed
+        levels: in_sight
             .map(|a| Level { value: a.si(), from: None, name: format!("allowed continuously {}", down(a)) })
             .into_iter()
             .collect(),
         marks,
+        unit: None,
     }
 }
 
@@ -352,5 +411,6 @@ fn temperature(
             .into_iter()
             .collect(),
         marks,
+        unit: None,
     }
 }

@@ -27,7 +27,9 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
     let afterwards = courses::afterwards(plan, curves);
     let nothing_comes_back = afterwards.is_empty() && !plan.steps.is_empty();
     let tools = courses::tools(plan, curves);
-    for course in all.iter().take(DRAWN).chain(afterwards.iter().take(DRAWN)).chain(&tools) {
+    let closer: Vec<Option<Course>> = all.iter().map(courses::closer).collect();
+    let drawn = all.iter().zip(&closer).take(DRAWN).flat_map(|(whole, closer)| [Some(whole), closer.as_ref()]);
+    for course in drawn.flatten().chain(afterwards.iter().take(DRAWN)).chain(&tools) {
         blocks.push(Block::Plot(picture(course)));
     }
     if left_out > 0 {
@@ -35,6 +37,7 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
             format!("{} not drawn here; `ebbvolt trace` has every one.", count(left_out, "pair is", "pairs are"));
         blocks.push(Block::Paragraph(text));
     }
+    blocks.extend(courses::idle_tools(curves).map(Block::Paragraph));
     if nothing_comes_back {
         blocks.push(Block::Paragraph(courses::nothing_comes_back(plan, curves)));
     }
@@ -45,6 +48,19 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
 const KEY: &str = "Solid line: the highest credible value at that moment, over all tolerances. Broken line: every value \
                    nominal. Grey: between the two. Numbers on top: the steps. What lies below the axis is drawn on its \
                    lowest line.";
+
+/// Everything that a trace draws, in order.
+fn all(plan: &Plan, curves: &Curves) -> Vec<Course> {
+    let mut courses = Vec::new();
+    for whole in courses::voltages(plan, curves) {
+        let closer = courses::closer(&whole);
+        courses.push(whole);
+        courses.extend(closer);
+    }
+    courses.extend(courses::afterwards(plan, curves));
+    courses.extend(courses::tools(plan, curves));
+    courses
+}
 
 fn picture(course: &Course) -> Picture {
     Picture { title: course.title.clone(), description: course.description.clone(), svg: svg::element(course) }
@@ -65,8 +81,7 @@ pub fn trace_text(plan: &Plan, width: usize) -> String {
     let Some(curves) = &plan.curves else { return String::new() };
     let mut lines = vec![clean(&plan.bank.tag)];
     lines.extend(text::wrap(super::plan::summary::caution().as_str(), width));
-    let courses = courses::voltages(plan, curves).into_iter().chain(courses::afterwards(plan, curves));
-    for course in courses.chain(courses::tools(plan, curves)) {
+    for course in all(plan, curves) {
         lines.push(String::new());
         lines.extend(text::wrap(&course.title, width));
         lines.extend(characters::plot(&course, width));
@@ -98,7 +113,5 @@ pub fn trace_json(plan: &Plan) -> Result<String, NotFinite> {
 /// All plots under each other in one SVG file.
 pub fn trace_svg(plan: &Plan) -> String {
     let Some(curves) = &plan.curves else { return String::new() };
-    let courses = courses::voltages(plan, curves).into_iter().chain(courses::afterwards(plan, curves));
-    let courses: Vec<Course> = courses.chain(courses::tools(plan, curves)).collect();
-    svg::file(&format!("{}: voltage against time", clean(&plan.bank.tag)), &courses)
+    svg::file(&format!("{}: voltage against time", clean(&plan.bank.tag)), &all(plan, curves))
 }

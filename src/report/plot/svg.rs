@@ -15,16 +15,16 @@ const FINE: u32 = 8;
 
 /// Size in units. Printed over the width of a page a pixel is about its natural size, so that 14 px are 10.5 pt.
 const WIDTH: u32 = 660 * FINE;
-const HEIGHT: u32 = 300 * FINE;
+const HEIGHT: u32 = 240 * FINE;
 /// Room for the figures of the axes and for the numbers of the steps.
 const LEFT: u32 = 72 * FINE;
 const BELOW: u32 = 48 * FINE;
-const ABOVE: u32 = 40 * FINE;
+const ABOVE: u32 = 50 * FINE;
 const RIGHT: u32 = 14 * FINE;
 /// Size of the type; the library writes it by a factor of 1.24 smaller.
 const TYPE: f64 = 1.24 * 14.0 * FINE as f64;
 /// Distance of two rows of text.
-const ROW: i32 = 17 * FINE as i32;
+const ROW: i32 = 16 * FINE as i32;
 /// How wide a character is at most, on average.
 const CHARACTER: f64 = 7.6 * FINE as f64;
 
@@ -135,6 +135,7 @@ fn draw(course: &Course, root: &DrawingArea<SVGBackend, Shift>) -> Result<(), Fa
         let text = Text::new(name, (0, -4 * FINE as i32 - ROW * row), style);
         chart.draw_series(std::iter::once(EmptyElement::at((share, 1.0)) + text))?;
     }
+    let offsets = name_offsets(&course.levels, up);
     for (i, level) in course.levels.iter().enumerate() {
         let (from, y) = (level.from.map_or(0.0, |x| across.share(x)), up.share(level.value));
         let (dash, gap) = if level.from.is_none() { (12 * FINE, 4 * FINE) } else { (3 * FINE, 3 * FINE) };
@@ -145,7 +146,7 @@ fn draw(course: &Course, root: &DrawingArea<SVGBackend, Shift>) -> Result<(), Fa
         chart.draw_series(DashedLineSeries::new(points, dash, gap, BLACK.stroke_width(FINE)))?;
         let style = font().pos(Pos::new(HPos::Right, VPos::Bottom));
         let name = level.name.replace('\u{a0}', " ");
-        let low = -2 * FINE as i32 - ROW * stacked(&course.levels, i, up);
+        let low = offsets[i];
         // The name stands on white, so that no line runs through it; the curves are drawn over both.
         let width = (CHARACTER * name.chars().count() as f64) as i32;
         let ground = Rectangle::new([(-width, low - ROW), (-2 * FINE as i32, low + FINE as i32)], WHITE.filled());
@@ -192,16 +193,31 @@ impl ValueFormatter<f64> for Shares {
     }
 }
 
-/// How many names of earlier lines stand where this one's would: those of lines at nearly the same height.
-fn stacked(levels: &[Level], index: usize, up: &Axis) -> i32 {
-    let height = up.share(levels[index].value);
-    levels[..index].iter().filter(|other| (up.share(other.value) - height).abs() < 0.06).count() as i32
+/// How far above its line each line's name stands, in units below zero: over the line, and over the names that are
+/// already there; where the plot ends above it, below the line.
+fn name_offsets(levels: &[Level], up: &Axis) -> Vec<i32> {
+    let depth = f64::from(HEIGHT - ABOVE - BELOW);
+    let line = |level: &Level| ((1.0 - up.share(level.value)) * depth) as i32;
+    let mut taken: Vec<i32> = Vec::new();
+    let mut offsets = Vec::new();
+    for level in levels {
+        let own = line(level);
+        let free = |base: &i32, taken: &[i32]| taken.iter().all(|other| (other - base).abs() >= ROW);
+        let above = (0..).map(|k| own - 2 * FINE as i32 - k * ROW / 4).find(|base| free(base, &taken) || *base < ROW);
+        let base = above.filter(|base| *base >= ROW).unwrap_or_else(|| {
+            let below = (0..).map(|k| own + ROW + FINE as i32 + k * ROW / 4);
+            below.take(60).find(|base| free(base, &taken)).unwrap_or(own + ROW)
+        });
+        taken.push(base);
+        offsets.push(base - own);
+    }
+    offsets
 }
 
 /// Step numbers over the plot, each in the lowest row in which it does not run into another.
 fn rows(course: &Course) -> Vec<(i32, f64, String)> {
     let width = f64::from(WIDTH - LEFT - RIGHT);
-    let mut ends = [f64::NEG_INFINITY; 2];
+    let mut ends = [f64::NEG_INFINITY; 3];
     let mut placed = Vec::new();
     for mark in &course.marks {
         let middle = 0.5 * (course.across.share(mark.from) + course.across.share(mark.to));

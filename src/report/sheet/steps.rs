@@ -97,7 +97,7 @@ fn if_higher(step: &StepResult) -> Option<Labelled> {
     let mut lines: Vec<(String, Vec<String>)> = Vec::new();
     for reading in &step.readings {
         let answer = points_to(reading);
-        let place = format!("{} above {}", pair(&reading.across), bar(reading));
+        let place = format!("{} {}", pair(&reading.across), bar(reading));
         match lines.iter_mut().find(|(known, _)| *known == answer) {
             Some((_, places)) => places.push(place),
             None => lines.push((answer, vec![place])),
@@ -115,9 +115,15 @@ fn any_of(places: &[String]) -> String {
     }
 }
 
-/// The reading above which people stop: where no hold point is, the highest predicted.
+/// The reading above which people stop: where no hold point is, the highest predicted. Below what a meter for such
+/// voltages can tell, that is any reading at all.
 fn bar(reading: &StepReading) -> String {
-    reading.allowed.map_or_else(|| up(reading.highest), down)
+    const TOLD_FROM_ZERO: f64 = 0.1;
+    match reading.allowed {
+        Some(allowed) => format!("above {}", down(allowed)),
+        None if reading.highest.si() < TOLD_FROM_ZERO => "at any reading that can be told from zero".into(),
+        None => format!("above {}", up(reading.highest)),
+    }
 }
 
 fn points_to(reading: &StepReading) -> String {
