@@ -69,8 +69,8 @@ pub struct StepReading {
     /// The greatest reading with which to go on, where the step's hold point is on this pair; `None` (null) elsewhere.
     #[serde(rename = "allowed_v", serialize_with = "si_or_null")]
     pub allowed: Option<Voltage>,
-    /// Failures under which the reading can be higher than that, or than the highest predicted where no hold point
-    /// is on this pair.
+    /// Failures under which the reading can be higher than the highest predicted, whether or not a hold point would
+    /// stop there.
     pub points_to: Vec<FaultReading>,
 }
 

@@ -111,9 +111,8 @@ impl<'a> StepCheck<'a> {
         let highest = self.volts(stage, pair);
         let hold = step.hold.as_ref().filter(|hold| self.procedure.pairs(hold).contains(&pair));
         let allowed = hold.map(|hold| hold.below);
-        let bar = allowed.map_or(highest, |allowed| allowed.si().max(highest));
         // What only differs in the engine's last digits would not be seen on any instrument.
-        let shows = |volts: f64| volts > bar * (1.0 + 1e-6) && volts > 1e-3;
+        let shows = |volts: f64| volts > highest * (1.0 + 1e-6) && volts > 1e-3;
         let parts = self.faults.iter().map(|(fault, answers)| (fault.name.clone(), answers.worst(figure)));
         let mut points_to: Vec<FaultReading> = parts
             .filter(|(_, volts)| shows(*volts))

@@ -151,8 +151,16 @@ pub(super) fn closer(course: &Course) -> Option<Course> {
     let factor = unit.seconds / finer.seconds;
     let end = seconds / finer.seconds;
     let inside = |points: &[(f64, f64)]| -> Vec<(f64, f64)> {
-        let scaled = points.iter().map(|(t, v)| (t * factor, *v));
-        scaled.filter(|(t, _)| *t <= end).collect()
+        let scaled: Vec<(f64, f64)> = points.iter().map(|(t, v)| (t * factor, *v)).collect();
+        let mut inside: Vec<(f64, f64)> = scaled.iter().copied().filter(|(t, _)| *t <= end).collect();
+        // The line goes on to the edge, where the next moment lies beyond it.
+        if let (Some(&(t0, v0)), Some(&(t1, v1))) = (inside.last(), scaled.get(inside.len())) {
+            let share = (end - t0) / (t1 - t0);
+            let by_factors =
+                (v0.max(f64::MIN_POSITIVE).ln() * (1.0 - share) + v1.max(f64::MIN_POSITIVE).ln() * share).exp();
+            inside.push((end, by_factors));
+        }
+        inside
     };
     let marks = course.marks.iter().filter(|mark| mark.from * factor < end);
     let levels = course.levels.iter().filter(|level| level.from.is_none_or(|from| from * factor < end));

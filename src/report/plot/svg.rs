@@ -58,7 +58,9 @@ pub(super) fn file(title: &str, courses: &[Course]) -> String {
             rect width="100%" height="100%" fill="#fff" {}
             @for (i, course) in courses.iter().enumerate() {
                 g transform=(format!("translate(0 {})", row * i as u32)) {
-                    text x=(8 * FINE) y=(20 * FINE) font-family="sans-serif" font-size=(15 * FINE) font-weight="bold" { (course.title) }
+                    text x=(8 * FINE) y=(20 * FINE) font-family="sans-serif" font-size=(15 * FINE) font-weight="bold" {
+                        (heading(&course.title))
+                    }
                     g transform=(format!("translate(0 {})", 28 * FINE)) {
                         desc { (course.description) }
                         (PreEscaped(inner(course)))
@@ -70,6 +72,16 @@ pub(super) fn file(title: &str, courses: &[Course]) -> String {
     let mut text = markup.into_string();
     text.push('\n');
     text
+}
+
+/// A title on one line, as far as it fits.
+fn heading(title: &str) -> String {
+    const FITS: usize = 76;
+    let mut short: String = title.chars().take(FITS).collect();
+    if short.len() < title.len() {
+        short.push('…');
+    }
+    short
 }
 
 /// What stands inside the SVG element; a plot that can't be drawn says so in its place.

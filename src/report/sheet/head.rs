@@ -4,7 +4,7 @@ use super::super::block::{Block, Grid, Labelled, LargeFigure, Side};
 use super::super::plan::summary;
 use super::super::words::{pair, up, whole};
 use crate::plan::{Plan, Wait};
-use crate::quantity::{Quantity, keepable};
+use crate::quantity::{Quantity, Time, keepable};
 
 pub(super) fn blocks(plan: &Plan, date: Option<&str>) -> Vec<Block> {
     let bank = &plan.bank;
@@ -58,7 +58,7 @@ fn wait(plan: &Plan) -> LargeFigure {
         return LargeFigure { label, figure: "NEVER".into(), under };
     }
     let longest = plan.waits.iter().filter_map(|w| w.keep).map(Quantity::si).reduce(f64::max);
-    let Some(longest) = longest.map(crate::quantity::Time::from_si) else {
+    let Some(longest) = longest.map(Time::from_si) else {
         return LargeFigure { label, figure: "not computed".into(), under: String::new() };
     };
     LargeFigure {

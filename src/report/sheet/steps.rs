@@ -3,9 +3,9 @@
 use super::super::block::{Block, Grid, Labelled, Side, Step};
 use super::super::plan::steps::{self, caution, held, is_same, part, predicted};
 use super::super::plan::summary;
-use super::super::words::{count, down, list, pair, typed, up, whole};
-use crate::plan::{Pair, Plan, StepReading, StepResult};
-use crate::quantity::{Quantity, Voltage, keepable};
+use super::super::words::{down, list, pair, typed, up, whole};
+use crate::plan::{FaultReading, Pair, Plan, StepReading, StepResult};
+use crate::quantity::{Quantity, Time, Voltage, keepable};
 
 /// Failures that a reading names; the JSON output has every one.
 const NAMED_FAULTS: usize = 5;
@@ -39,7 +39,7 @@ fn entry(plan: &Plan, at: usize, step: &StepResult) -> Step {
         items.push(Labelled::new("DISCONNECT", parts(&step.disconnect)));
     }
     if step.end.si() > step.start.si() {
-        let time = crate::quantity::Time::from_si(step.end.si() - step.start.si());
+        let time = Time::from_si(step.end.si() - step.start.si());
         items.push(Labelled::new("KEEP", vec![format!("{}, to {} after isolation.", whole(time), whole(step.end))]));
     }
     if step.never {
@@ -95,12 +95,33 @@ fn readings(step: &StepResult) -> Grid {
 /// What to do where a reading is higher, and which failures it points to; pairs with the same answer share a line.
 fn if_higher(step: &StepResult) -> Option<Labelled> {
     let mut lines: Vec<(String, Vec<String>)> = Vec::new();
+    let mut add = |place: String, answer: String| match lines.iter_mut().find(|(known, _)| *known == answer) {
+        Some((_, places)) => places.push(place),
+        None => lines.push((answer, vec![place])),
+    };
     for reading in &step.readings {
-        let answer = points_to(reading);
-        let place = format!("{} {}", pair(&reading.across), bar(reading));
-        match lines.iter_mut().find(|(known, _)| *known == answer) {
-            Some((_, places)) => places.push(place),
-            None => lines.push((answer, vec![place])),
+        let place = pair(&reading.across);
+        let above = |bar: Voltage| reading.points_to.iter().filter(move |f| f.highest.is_none_or(|v| v > bar));
+        match reading.allowed {
+            Some(allowed) => {
+                add(
+                    format!("{place} above {}", down(allowed)),
+                    format!("stop, keep away. {}", points_to(above(allowed))),
+                );
+                if reading.highest < allowed && told_from_zero(allowed) {
+                    let place = format!("{place} above {} and up to {}", up(reading.highest), down(allowed));
+                    let why = points_to(reading.points_to.iter());
+                    add(place, format!("more than is predicted; find out why before you go on. {why}"));
+                }
+            }
+            None if told_from_zero(reading.highest) => {
+                let answer = format!("stop, keep away. {}", points_to(reading.points_to.iter()));
+                add(format!("{place} above {}", up(reading.highest)), answer);
+            }
+            None => {
+                let answer = format!("stop, keep away. {}", points_to(reading.points_to.iter()));
+                add(format!("{place} at any reading that can be told from zero"), answer);
+            }
         }
     }
     let text: Vec<String> =
@@ -115,40 +136,25 @@ fn any_of(places: &[String]) -> String {
     }
 }
 
-/// The reading above which people stop: where no hold point is, the highest predicted. Below what a meter for such
-/// voltages can tell, that is any reading at all.
-fn bar(reading: &StepReading) -> String {
-    const TOLD_FROM_ZERO: f64 = 0.1;
-    match reading.allowed {
-        Some(allowed) => format!("above {}", down(allowed)),
-        None if reading.highest.si() < TOLD_FROM_ZERO => "at any reading that can be told from zero".into(),
-        None => format!("above {}", up(reading.highest)),
-    }
+/// True for a voltage that a meter for such banks can tell from zero.
+fn told_from_zero(voltage: Voltage) -> bool {
+    const LEAST: f64 = 0.1;
+    voltage.si() >= LEAST
 }
 
-fn points_to(reading: &StepReading) -> String {
-    let mut names: Vec<String> = reading
-        .points_to
-        .iter()
-        .filter(|f| f.fault != steps::NOT_ISOLATED)
-        .take(NAMED_FAULTS)
-        .map(|f| {
-            format!("{}{}", f.fault, f.highest.map_or_else(String::new, |v: Voltage| format!(" (up to {})", up(v))))
-        })
-        .collect();
-    let source = reading.points_to.iter().any(|f| f.fault == steps::NOT_ISOLATED);
-    let more = (reading.points_to.len() - usize::from(source)).saturating_sub(NAMED_FAULTS);
-    if more > 0 {
-        names.push(format!("{} more", count(more, "failure", "failures").replace(" failure", "")));
+fn points_to<'a>(failures: impl Iterator<Item = &'a FaultReading>) -> String {
+    let (source, parts): (Vec<_>, Vec<_>) = failures.partition(|f| f.fault == steps::NOT_ISOLATED);
+    let figure = |f: &&FaultReading| f.highest.map_or_else(String::new, |v| format!(" (up to {})", up(v)));
+    let mut names: Vec<String> = parts.iter().take(NAMED_FAULTS).map(|f| format!("{}{}", f.fault, figure(f))).collect();
+    if parts.len() > NAMED_FAULTS {
+        names.push(format!("{} more", parts.len() - NAMED_FAULTS));
     }
-    if source {
-        names.push("a source that is not isolated".into());
-    }
+    names.extend(source.first().map(|_| "a source that is not isolated".to_string()));
     let Some(last) = names.pop() else {
-        return "stop; no single failure that was examined explains it.".into();
+        return "No single failure that was examined explains it.".into();
     };
     let names = if names.is_empty() { last } else { format!("{} or {last}", names.join(", ")) };
-    format!("stop, keep away, find out why. It points to {names}.")
+    format!("It points to {names}.")
 }
 
 /// Without a procedure a sheet has the wait and the test, and says that the steps are missing.
@@ -172,7 +178,7 @@ fn without_procedure(plan: &Plan) -> Vec<Block> {
         grid.row([pair(&wait.across), time, typed(plan.touch_voltage), blank(), blank(), blank()]);
     }
     let act = if longest.is_finite() {
-        format!("Keep the wait of {} after isolation.", whole(keepable(crate::quantity::Time::from_si(longest))))
+        format!("Keep the wait of {} after isolation.", whole(keepable(Time::from_si(longest))))
     } else {
         "Waiting is not enough: a test point never falls below. Discharge it by other means first.".into()
     };
