@@ -52,7 +52,7 @@ fn made(typed: &LabelArgs, stdin: &mut dyn Read, output: &mut Output) -> Result<
             plan.bank.tag
         ));
     }
-    Ok(output.to_file_or_stdout(file, &svg, status))
+    Ok(output.file_or_result(file, &svg, status))
 }
 
 /// A size such as `100x60mm`.

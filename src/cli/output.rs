@@ -38,7 +38,7 @@ impl<'a> Output<'a> {
     }
 
     /// The same into a file where one is named, and a word about it on standard error.
-    pub fn to_file_or_stdout(&mut self, file: Option<&Path>, text: &str, status: u8) -> u8 {
+    pub fn file_or_result(&mut self, file: Option<&Path>, text: &str, status: u8) -> u8 {
         let Some(path) = file else { return self.result(text, status) };
         let name = path.display();
         match std::fs::write(path, text) {

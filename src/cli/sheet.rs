@@ -31,7 +31,7 @@ fn made(typed: &SheetArgs, stdin: &mut dyn Read, output: &mut Output) -> Result<
         SheetFormat::Markdown => report::sheet_markdown(&plan, &sheet),
         SheetFormat::Text => report::sheet_text(&plan, &sheet, output.width()),
     };
-    Ok(output.to_file_or_stdout(file, &text, plan.exit_code()))
+    Ok(output.file_or_result(file, &text, plan.exit_code()))
 }
 
 /// A date as it is printed; it has to be one, since a sheet is kept for years.

@@ -31,7 +31,7 @@ fn made(typed: &TraceArgs, stdin: &mut dyn Read, output: &mut Output) -> Result<
         TraceFormat::Svg => report::trace_svg(&plan),
         TraceFormat::Json => report::trace_json(&plan).map_err(|e| no_verdict(&e.to_string(), output))?,
     };
-    Ok(output.to_file_or_stdout(file, &text, plan.exit_code()))
+    Ok(output.file_or_result(file, &text, plan.exit_code()))
 }
 
 /// Times such as `0s,30s,5min`.

@@ -19,13 +19,11 @@ pub(super) fn plot(course: &Course, width: usize) -> Vec<String> {
         let line = row(&course.up, level.value);
         grid[line][from..].fill('-');
     }
-    for x in 0..columns {
-        let at = x as f64 / (columns - 1) as f64;
-        if let Some(value) = value_at(&course.nominal, &course.across, at) {
-            grid[row(&course.up, value)][x] = '.';
-        }
-        if let Some(value) = value_at(&course.highest, &course.across, at) {
-            grid[row(&course.up, value)][x] = '#';
+    for (points, mark) in [(&course.nominal, '.'), (&course.highest, '#')] {
+        for (column, at) in (0..columns).map(|x| (x, x as f64 / (columns - 1) as f64)) {
+            if let Some(value) = value_at(points, &course.across, at) {
+                grid[row(&course.up, value)][column] = mark;
+            }
         }
     }
     let mut lines = Vec::new();

@@ -35,14 +35,24 @@ pub struct Sheet {
 /// The sheet as one HTML file that needs nothing else: no script, no other file.
 pub fn sheet_html(plan: &Plan, sheet: &Sheet) -> String {
     let bank = &plan.bank;
-    let revision = bank.revision.as_ref().map_or_else(String::new, |revision| format!(", revision {revision}"));
+    let revision =
+        bank.revision.as_ref().map_or_else(String::new, |revision| format!(", revision {}", shortened(revision, 8)));
     let hash: String = bank.input_sha256.chars().take(12).collect();
     let page = Page {
         title: format!("Discharge sheet {}", clean(&bank.tag)),
-        foot: clean(&format!("{}{revision}; input {hash}", bank.tag)),
+        foot: format!("{}{revision}; input {hash}", shortened(&bank.tag, 18)),
         paper: sheet.paper,
     };
     html::document(&page, &document(plan, sheet))
+}
+
+/// The beginning of a name, for a line that can't be broken; the hash beside it tells sheets apart.
+fn shortened(name: &str, longest: usize) -> String {
+    let name = clean(name);
+    if name.chars().count() <= longest {
+        return name;
+    }
+    name.chars().take(longest).chain(['…']).collect()
 }
 
 /// The sheet as Markdown.
