@@ -31,12 +31,46 @@ impl EngineError {
     }
 }
 
-/// Figures of the healthy bank: nominal, and greatest over the tolerance box at the highest voltage.
+/// Figures of the healthy bank: nominal, and greatest over the tolerance box at the highest voltage; the worst of
+/// going with and without the sinks that no wait relies on.
 #[derive(Debug, Clone, Default)]
 pub(crate) struct Answers {
     figures: Vec<Figure>,
     nominal: Vec<f64>,
-    worst: Vec<Worst>,
+    worst: Governed,
+}
+
+/// The worst of several scenarios for each figure, and which of them it is.
+#[derive(Debug, Clone, Default)]
+pub(crate) struct Governed {
+    pub worst: Vec<Worst>,
+    pub scenario: Vec<Scenario>,
+}
+
+impl Governed {
+    /// Takes in what was found in one more scenario.
+    pub fn offer(&mut self, scenario: &Scenario, found: Vec<Worst>) {
+        if self.worst.is_empty() {
+            self.scenario = vec![scenario.clone(); found.len()];
+            self.worst = found;
+            return;
+        }
+        for (index, found) in found.into_iter().enumerate() {
+            if found.value > self.worst[index].value {
+                self.worst[index] = found;
+                self.scenario[index] = scenario.clone();
+            }
+        }
+    }
+}
+
+/// The greater of each nominal figure.
+pub(super) fn greater(nominal: &mut Vec<f64>, found: Vec<f64>) {
+    if nominal.is_empty() {
+        *nominal = found;
+    } else {
+        nominal.iter_mut().zip(found).for_each(|(x, y)| *x = x.max(y));
+    }
 }
 
 /// Figures under one fault: the greatest over the box and over the ways in which it can come about.
@@ -51,11 +85,13 @@ impl Answers {
     pub fn healthy(bank: &Bank, model: &Model, mut figures: Vec<Figure>) -> Result<Self, EngineError> {
         without_repeats(&mut figures);
         let charged = &bank.description().charged_to;
-        let scenario = Scenario::default();
-        let study = |volts| Study { model, scenario: &scenario, volts, figures: &figures };
         let failed = |cause| EngineError { scenario: "healthy".into(), cause };
-        let nominal = discharge::nominal(&study(charged.nominal.si())).map_err(failed)?;
-        let worst = discharge::worst(&study(charged.highest.si())).map_err(failed)?;
+        let (mut nominal, mut worst) = (Vec::new(), Governed::default());
+        for scenario in &discharge::healthy(model) {
+            let study = |volts| Study { model, scenario, volts, figures: &figures };
+            greater(&mut nominal, discharge::nominal(&study(charged.nominal.si())).map_err(failed)?);
+            worst.offer(scenario, discharge::worst(&study(charged.highest.si())).map_err(failed)?);
+        }
         Ok(Answers { nominal, worst, figures })
     }
 
@@ -64,15 +100,10 @@ impl Answers {
         without_repeats(&mut figures);
         let volts = bank.description().charged_to.highest.si();
         let failed = |cause| EngineError { scenario: fault.name.clone(), cause };
-        let mut worst: Vec<Worst> = Vec::new();
+        let mut worst = Governed::default();
         for scenario in &fault.scenarios {
-            let found = discharge::worst(&Study { model, scenario, volts, figures: &figures }).map_err(failed)?;
-            if worst.is_empty() {
-                worst = found;
-            } else {
-                let pairs = worst.iter_mut().zip(found);
-                pairs.filter(|(w, f)| f.value > w.value).for_each(|(w, f)| *w = f);
-            }
+            let study = Study { model, scenario, volts, figures: &figures };
+            worst.offer(scenario, discharge::worst(&study).map_err(failed)?);
         }
         Ok(Answers { nominal: Vec::new(), worst, figures })
     }
@@ -88,12 +119,17 @@ impl Answers {
 
     /// The greatest value of a figure; NaN where it was never asked for, which passes no check.
     pub fn worst(&self, figure: Figure) -> f64 {
-        self.index(&figure).and_then(|i| self.worst.get(i)).map_or(f64::NAN, |w| w.value)
+        self.index(&figure).and_then(|i| self.worst.worst.get(i)).map_or(f64::NAN, |w| w.value)
     }
 
     /// The point of the box at which a figure is greatest.
     pub fn worst_point(&self, figure: Figure) -> &[f64] {
-        self.index(&figure).and_then(|i| self.worst.get(i)).map_or(&[], |w| &w.point)
+        self.index(&figure).and_then(|i| self.worst.worst.get(i)).map_or(&[], |w| &w.point)
+    }
+
+    /// The scenario in which a figure is greatest.
+    pub fn worst_scenario(&self, figure: Figure) -> Scenario {
+        self.index(&figure).and_then(|i| self.worst.scenario.get(i)).cloned().unwrap_or_default()
     }
 }
 

@@ -1,6 +1,6 @@
 //! Moments at which a curve is sampled: close together where it bends.
 
-use crate::circuit::ExpSum;
+use crate::circuit::Course;
 
 /// How far a straight line between two moments may be off: in powers of ten of the voltage, and as a share of the
 /// greatest voltage of the step. Both are less than the width of a line in print.
@@ -15,7 +15,7 @@ const SHORTEST: f64 = 1e-7;
 
 /// Moments in second from the start of a step of length `duration`, its start and end included. `floor` is the
 /// voltage below which a curve is of no interest.
-pub(super) fn chosen(courses: &[ExpSum], duration: f64, floor: f64) -> Vec<f64> {
+pub(super) fn chosen(courses: &[Course], duration: f64, floor: f64) -> Vec<f64> {
     if duration <= 0.0 {
         return vec![0.0];
     }
@@ -68,10 +68,11 @@ fn most_off(times: &[f64], values: &[Vec<f64>], from: usize, to: usize, floor: f
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::circuit::ExpSum;
 
     #[test]
     fn a_straight_line_on_a_logarithmic_axis_still_shows_its_bend_on_an_even_one() {
-        let course = ExpSum::new(0.0, [(100.0, 1.0)]);
+        let course = Course::from(ExpSum::new(0.0, [(100.0, 1.0)]));
         let times = chosen(std::slice::from_ref(&course), 10.0, 1e-3);
         assert!((5..60).contains(&times.len()), "{}", times.len());
         for pair in times.windows(2) {
@@ -83,7 +84,7 @@ mod tests {
 
     #[test]
     fn a_fast_fall_before_a_long_rest_is_not_missed() {
-        let course = ExpSum::new(5.0, [(745.0, 1e4)]);
+        let course = Course::from(ExpSum::new(5.0, [(745.0, 1e4)]));
         let times = chosen(&[course], 60.0, 1e-2);
         assert!(times.iter().filter(|t| **t > 0.0 && **t < 1e-3).count() > 5, "{times:?}");
     }
@@ -91,6 +92,6 @@ mod tests {
     #[test]
     fn a_step_without_length_has_one_moment() {
         assert_eq!(chosen(&[], 0.0, 1.0), [0.0]);
-        assert_eq!(chosen(&[ExpSum::default()], 60.0, 1.0), [0.0, 60.0]);
+        assert_eq!(chosen(&[Course::default()], 60.0, 1.0), [0.0, 60.0]);
     }
 }

@@ -6,6 +6,7 @@ use super::{EngineError, Pair, celsius_or_null, curve_times, si, si_or_null};
 use crate::bank::Bank;
 use crate::discharge::{
     self, Body, CourseStudy, Load, Model, Moment, PartKind, Scenario, Setting, Stage, Timeline, capacitor_load, load,
+    sink_load,
 };
 use crate::quantity::{Current, Power, Quantity, Temperature, Time, Voltage};
 use serde::Serialize;
@@ -24,7 +25,7 @@ pub enum CurveTimes {
 pub struct Curves {
     /// The pairs that have a voltage: the test points, then each capacitor's own pair that is none.
     pub pairs: Vec<CurvePair>,
-    /// The parts that have a load: capacitors, then resistors, then supplies.
+    /// The parts that have a load: capacitors, then resistors, supplies, sinks.
     pub parts: Vec<CurvePart>,
     /// Parts that only steps connect to take energy up or to charge: tools and the series resistances of supplies.
     pub tools: Vec<CurveTool>,
@@ -48,7 +49,7 @@ pub struct CurvePair {
 pub struct CurvePart {
     /// The part, all its elements together.
     pub id: String,
-    /// `capacitor`, the role of a resistor, or `supply` for the series resistance of one.
+    /// `capacitor`, the role of a resistor, `supply` for the series resistance of one, or `sink`.
     pub role: &'static str,
 }
 
@@ -92,7 +93,8 @@ pub struct CurveSample {
     pub time: Time,
     /// One per pair.
     pub voltages: Vec<CurveVoltage>,
-    /// One per part, every value nominal; with their signs, from the first node to the second.
+    /// One per part, every value nominal and without sinks that nobody counts on; with their signs, from the first node
+    /// to the second.
     pub loads: Vec<CurveLoad>,
     /// One per tool, greatest over the box.
     pub tools: Vec<ToolLoad>,
@@ -187,51 +189,58 @@ impl<'a> CurveCheck<'a> {
         Setting { model: self.model, scenario, volts, tried_from: &self.tried_from, stages: &self.stages }
     }
 
-    fn at(&self, point: &[f64], volts: f64) -> Result<Timeline, EngineError> {
-        let scenario = Scenario::default();
-        Timeline::run(&self.setting(&scenario, volts), point).map_err(EngineError::of("healthy, curves"))
+    fn at(&self, scenario: &Scenario, point: &[f64], volts: f64) -> Result<Timeline, EngineError> {
+        Timeline::run(&self.setting(scenario, volts), point).map_err(EngineError::of("healthy, curves"))
     }
 
-    /// Points of the box that show where voltages change: the middle and the two extreme corners.
+    /// Points of the box that show where voltages change: the middle and the two extreme corners, in every way in which
+    /// the healthy bank may go.
     fn guides(&self) -> Result<Vec<Timeline>, EngineError> {
         let all =
             |of: &dyn Fn(&discharge::Parameter) -> f64| self.model.parameters.iter().map(of).collect::<Vec<f64>>();
-        [all(&|_| 1.0), all(&|p| p.low), all(&|p| p.high)]
-            .iter()
-            .map(|point| self.at(point, self.tried_from[2]))
-            .collect()
+        let points = [all(&|_| 1.0), all(&|p| p.low), all(&|p| p.high)];
+        let scenarios = discharge::healthy(self.model);
+        let runs = scenarios.iter().flat_map(|scenario| points.iter().map(move |point| (scenario, point)));
+        runs.map(|(scenario, point)| self.at(scenario, point, self.tried_from[2])).collect()
     }
 
     /// How long the bank is followed after the last step: five of the slowest time constants that still matter there.
     fn afterwards(&self) -> Result<f64, EngineError> {
         const LEAST: f64 = 60.0;
         const MOST: f64 = 3.2e7;
-        let mut slowest: f64 = 0.0;
+        let mut longest: f64 = 0.0;
         for guide in self.guides()? {
             for (a, b) in &self.pairs {
                 let course = guide.afterwards(*a, *b);
-                let matters =
-                    course.terms().iter().filter(|(amplitude, _)| amplitude.abs() > 1e-5 * self.tried_from[2]);
-                slowest = matters.map(|(_, rate)| rate.recip()).fold(slowest, f64::max);
+                let terms = course.last().terms().iter();
+                let matters = terms.filter(|(amplitude, _)| amplitude.abs() > 1e-5 * self.tried_from[2]);
+                let slowest = matters.map(|(_, rate)| rate.recip()).fold(0.0, f64::max);
+                longest = longest.max(course.last_start() + 5.0 * slowest);
             }
         }
-        Ok((5.0 * slowest).clamp(LEAST, MOST))
+        Ok(longest.clamp(LEAST, MOST))
     }
 
     /// The curves at the moments that are wanted.
     pub fn curves(&self, times: &CurveTimes) -> Result<Curves, EngineError> {
         let chosen = self.times(times)?;
         let moments = self.moments(&chosen);
-        let scenario = Scenario::default();
-        let setting = self.setting(&scenario, self.tried_from[2]);
-        let study = CourseStudy { setting, most_corners: CORNERS_ASIDE, moments: &moments };
-        let highest: Vec<f64> = discharge::worst(&study)
-            .map_err(EngineError::of("healthy, curves"))?
-            .into_iter()
-            .map(|worst| worst.value)
-            .collect();
-        let nominal = self.at(&vec![1.0; self.model.parameters.len()], self.tried_from[1])?;
-        nominal.certify().map_err(EngineError::of("healthy, curves"))?;
+        let failed = EngineError::of("healthy, curves");
+        let mut highest = vec![0.0f64; moments.len()];
+        let mut nominal = Vec::new();
+        let middle = vec![1.0; self.model.parameters.len()];
+        // With and without what nobody may count on; the first is without.
+        for scenario in &discharge::healthy(self.model) {
+            let setting = self.setting(scenario, self.tried_from[2]);
+            let study = CourseStudy { setting, most_corners: CORNERS_ASIDE, moments: &moments };
+            let worst = discharge::worst(&study).map_err(&failed)?;
+            // NaN stays NaN, so that no guard lets it pass.
+            let greater = |known: f64, found: f64| if found <= known { known } else { found };
+            highest.iter_mut().zip(worst).for_each(|(known, found)| *known = greater(*known, found.value));
+            let timeline = self.at(scenario, &middle, self.tried_from[1])?;
+            timeline.certify().map_err(&failed)?;
+            nominal.push(timeline);
+        }
         let mut highest = highest.into_iter();
         let mut spans = Vec::new();
         for (stage, times) in chosen.iter().enumerate() {
@@ -307,7 +316,7 @@ impl<'a> CurveCheck<'a> {
 
     fn sample(
         &self,
-        nominal: &Timeline,
+        nominal: &[Timeline],
         stage: usize,
         t: f64,
         time: f64,
@@ -316,7 +325,9 @@ impl<'a> CurveCheck<'a> {
         // What was never answered is no figure, and no guard lets it pass.
         let mut next = || highest.next().unwrap_or(f64::NAN);
         let voltage = |(a, b): &(usize, usize)| CurveVoltage {
-            nominal: Voltage::from_si(nominal.across(stage, *a, *b).value(t).abs()),
+            nominal: Voltage::from_si(
+                nominal.iter().map(|n| n.across(stage, *a, *b).value(t).abs()).fold(0.0, f64::max),
+            ),
             highest: Voltage::from_si(next()),
         };
         let voltages = self.pairs.iter().map(voltage).collect();
@@ -326,15 +337,22 @@ impl<'a> CurveCheck<'a> {
             temperature: tool.body.map(|_| Temperature::from_si(ambient + next())),
         };
         let tools = self.tools.iter().map(tool).collect();
+        let loads = nominal.first().map_or_else(Vec::new, |first| self.loads(first, stage, t));
+        CurveSample { time: Time::from_si(time), voltages, loads, tools }
+    }
+
+    /// The loads of all parts in the first way in which the healthy bank may go: no sink draws that nobody counts on.
+    fn loads(&self, nominal: &Timeline, stage: usize, t: f64) -> Vec<CurveLoad> {
         let model = self.model;
         let capacitors = self.capacitors().map(|c| capacitor_load(model, nominal, stage, c, t));
-        let loads =
-            capacitors.chain(self.resistors().map(|r| load(model, nominal, stage, r, t))).map(|l: Load| CurveLoad {
-                voltage: Voltage::from_si(l.voltage),
-                current: Current::from_si(l.current),
-                power: Power::from_si(l.power),
-            });
-        CurveSample { time: Time::from_si(time), voltages, loads: loads.collect(), tools }
+        let resistors = self.resistors().map(|r| load(model, nominal, stage, r, t));
+        let sinks = (0..model.loads.len()).map(|s| sink_load(model, nominal, stage, s, t));
+        let load = |l: Load| CurveLoad {
+            voltage: Voltage::from_si(l.voltage),
+            current: Current::from_si(l.current),
+            power: Power::from_si(l.power),
+        };
+        capacitors.chain(resistors).chain(sinks).map(load).collect()
     }
 
     fn capacitors(&self) -> impl Iterator<Item = usize> + '_ {
@@ -358,7 +376,8 @@ impl<'a> CurveCheck<'a> {
             let id = &self.model.resistors[r].id;
             CurvePart { id: id.clone(), role: self.role(id) }
         });
-        capacitors.chain(resistors).collect()
+        let sinks = self.model.loads.iter().map(|s| CurvePart { id: s.id.clone(), role: "sink" });
+        capacitors.chain(resistors).chain(sinks).collect()
     }
 
     fn pair(&self, index: usize, (a, b): (usize, usize)) -> CurvePair {

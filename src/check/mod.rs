@@ -3,10 +3,12 @@
 
 mod answers;
 mod capacitors;
+mod charging;
 mod curve_times;
 mod curves;
 mod energy;
 mod equipment;
+mod fault_words;
 mod limits;
 mod notes;
 mod notice;
@@ -38,10 +40,12 @@ pub(crate) use waits::WaitCheck;
 
 pub use answers::EngineError;
 pub use capacitors::CapacitorResult;
+pub use charging::{Charging, ChargingMoment};
 pub use curves::{
     CurveLoad, CurvePair, CurvePart, CurveSample, CurveSpan, CurveTimes, CurveTool, CurveVoltage, Curves, ToolLoad,
 };
 pub use equipment::{Equipment, EquipmentPart};
+pub use fault_words::fault_in_words;
 pub use limits::{LimitResult, LimitSource};
 pub use notice::{Notice, NoticeFault};
 pub use resistors::{Check, ResistorResult};

@@ -53,6 +53,18 @@ pub(crate) fn notes(
             format!("The waits rest on leakage ({}), which varies with temperature, age and dirt.", listed(&leakage)),
         );
     }
+    let counted: Vec<String> = description.sinks.iter().filter(|s| s.counted).map(|s| s.id.clone()).collect();
+    if !counted.is_empty() {
+        findings.add(
+            Severity::Warning,
+            "wait-rests-on-sink",
+            format!(
+                "The waits rest on {}, a circuit that must work to draw anything: it needs its supply, its control and \
+                 its parts. What follows where it does not is among the faults.",
+                listed(&counted)
+            ),
+        );
+    }
     unchecked(resistors, capacitors, findings);
     floating(model, findings);
 }
@@ -128,6 +140,20 @@ pub(crate) fn assumptions(bank: &Bank) -> Vec<String> {
                 capacitor.dielectric.as_deref().unwrap_or("its dielectric")
             ));
         }
+    }
+    let uncounted: Vec<String> = description.sinks.iter().filter(|s| !s.counted).map(|s| s.id.clone()).collect();
+    if !uncounted.is_empty() {
+        list.push(format!(
+            "No wait relies on {}: every figure is the worse of with and without what it draws.",
+            listed(&uncounted)
+        ));
+    }
+    if !description.sinks.is_empty() {
+        list.push(
+            "A sink draws from isolation on until the voltage across it first falls to where it stops, and does not \
+             start again; before isolation it draws nothing."
+                .to_string(),
+        );
     }
     let own: Vec<String> =
         description.capacitors.iter().filter(|c| c.charged_to.is_some()).map(|c| c.id.clone()).collect();

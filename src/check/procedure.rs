@@ -1,6 +1,7 @@
 //! The procedure with its lengths resolved, and its figures.
 
 use super::EngineError;
+use super::answers::{Governed, greater};
 use crate::bank::Bank;
 use crate::bank::description::{Hold, Lasts, Step};
 use crate::circuit::CircuitError;
@@ -27,7 +28,7 @@ pub(crate) struct Procedure<'a> {
 pub(crate) struct StepAnswers {
     figures: Vec<StepFigure>,
     nominal: Vec<f64>,
-    worst: Vec<Worst>,
+    worst: Governed,
 }
 
 impl StepAnswers {
@@ -42,12 +43,17 @@ impl StepAnswers {
 
     /// NaN where it was never asked for, which passes no check.
     pub fn worst(&self, figure: StepFigure) -> f64 {
-        self.index(figure).and_then(|i| self.worst.get(i)).map_or(f64::NAN, |w| w.value)
+        self.index(figure).and_then(|i| self.worst.worst.get(i)).map_or(f64::NAN, |w| w.value)
     }
 
     /// The point of the box at which a figure is greatest.
     pub fn worst_point(&self, figure: StepFigure) -> &[f64] {
-        self.index(figure).and_then(|i| self.worst.get(i)).map_or(&[], |w| &w.point)
+        self.index(figure).and_then(|i| self.worst.worst.get(i)).map_or(&[], |w| &w.point)
+    }
+
+    /// The scenario in which a figure is greatest.
+    pub fn worst_scenario(&self, figure: StepFigure) -> Scenario {
+        self.index(figure).and_then(|i| self.worst.scenario.get(i)).cloned().unwrap_or_default()
     }
 }
 
@@ -86,9 +92,11 @@ impl<'a> Procedure<'a> {
                     .into_iter()
                     .map(|pair| StepFigure::LastOver { stage, pair, level: hold.below.si() })
                     .collect();
-                let found =
-                    self.worst(&Scenario::default(), &figures, MOST_CORNERS).map_err(EngineError::of("healthy"))?;
-                let longest = found.iter().map(|w| w.value).fold(0.0, f64::max);
+                let mut longest = 0.0f64;
+                for scenario in &discharge::healthy(self.model) {
+                    let found = self.worst(scenario, &figures, MOST_CORNERS).map_err(EngineError::of("healthy"))?;
+                    longest = found.iter().map(|w| w.value).fold(longest, f64::max);
+                }
                 self.never[stage] = !longest.is_finite();
                 if longest.is_finite() {
                     self.stages[stage].duration = keepable(Time::from_si(longest)).si();
@@ -122,37 +130,65 @@ impl<'a> Procedure<'a> {
 
     /// Figures of the healthy bank; `model` may have an array opened up.
     pub fn healthy(&self, model: &Model, figures: Vec<StepFigure>) -> Result<StepAnswers, EngineError> {
-        let scenario = Scenario::default();
         let most_corners = if std::ptr::eq(model, self.model) { MOST_CORNERS } else { CORNERS_ASIDE };
-        let study = |volts| {
-            let setting = self.setting(model, &scenario, volts);
-            ProcedureStudy { setting, most_corners, figures: &figures }
-        };
         let failed = EngineError::of("healthy, through the steps");
-        let nominal = discharge::nominal(&study(self.tried_from[1])).map_err(&failed)?;
-        let worst = discharge::worst(&study(self.tried_from[2])).map_err(&failed)?;
+        let (mut nominal, mut worst) = (Vec::new(), Governed::default());
+        for scenario in &discharge::healthy(model) {
+            let study = |volts| {
+                let setting = self.setting(model, scenario, volts);
+                ProcedureStudy { setting, most_corners, figures: &figures }
+            };
+            greater(&mut nominal, discharge::nominal(&study(self.tried_from[1])).map_err(&failed)?);
+            worst.offer(scenario, discharge::worst(&study(self.tried_from[2])).map_err(&failed)?);
+        }
         Ok(StepAnswers { nominal, worst, figures })
     }
 
     /// Figures under a fault, the worst of the ways in which it can come about.
     pub fn under(&self, fault: &Fault, figures: &[StepFigure]) -> Result<StepAnswers, EngineError> {
-        let mut worst: Vec<Worst> = Vec::new();
+        let mut worst = Governed::default();
         for scenario in &fault.scenarios {
             let found = self.worst(scenario, figures, CORNERS_ASIDE).map_err(EngineError::of(&fault.name))?;
-            if worst.is_empty() {
-                worst = found;
-            } else {
-                worst.iter_mut().zip(found).filter(|(w, f)| f.value > w.value).for_each(|(w, f)| *w = f);
-            }
+            worst.offer(scenario, found);
         }
         Ok(StepAnswers { nominal: Vec::new(), worst, figures: figures.to_vec() })
     }
 
-    /// The healthy bank through the steps at one point of the box, at the highest voltage.
-    pub fn at(&self, point: &[f64]) -> Result<Timeline, EngineError> {
-        let scenario = Scenario::default();
-        Timeline::run(&self.setting(self.model, &scenario, self.tried_from[2]), point)
+    /// The bank through the steps in one scenario at one point of the box, at the highest voltage.
+    pub fn at(&self, scenario: &Scenario, point: &[f64]) -> Result<Timeline, EngineError> {
+        Timeline::run(&self.setting(self.model, scenario, self.tried_from[2]), point)
             .map_err(EngineError::of("healthy, through the steps"))
+    }
+
+    /// The healthy bank through the steps with every value nominal, at the nominal voltage.
+    pub fn nominal(&self) -> Result<Timeline, EngineError> {
+        let scenario = Scenario::default();
+        let point = vec![1.0; self.model.parameters.len()];
+        Timeline::run(&self.setting(self.model, &scenario, self.tried_from[1]), &point)
+            .map_err(EngineError::of("nominal, through the steps"))
+    }
+
+    /// The numbers of the supplies that a step connects.
+    pub fn new_sources(&self, stage: usize) -> Vec<usize> {
+        let connected = &self.bank.description().procedure[stage].connect;
+        let sources = self.model.sources.iter().enumerate();
+        sources.filter(|(_, s)| connected.contains(&s.id)).map(|(index, _)| index).collect()
+    }
+
+    /// Nominal voltages that a step leaves across a part that it connects, with the part and without it.
+    pub fn with_and_without(&self, stage: usize, resistor: usize) -> Result<(f64, f64), EngineError> {
+        let scenario = Scenario::default();
+        let part = &self.model.resistors[resistor];
+        let mut stages = self.stages[..=stage].to_vec();
+        let left = |stages: &[Stage]| {
+            let setting = Setting { stages, ..self.setting(self.model, &scenario, self.tried_from[1]) };
+            let point = vec![1.0; self.model.parameters.len()];
+            let timeline = Timeline::run(&setting, &point).map_err(EngineError::of("a meter's reading"))?;
+            Ok(timeline.across(stage, part.a, part.b).value(stages[stage].duration).abs())
+        };
+        let with = left(&stages)?;
+        stages[stage].connected.retain(|r| *r != resistor);
+        Ok((with, left(&stages)?))
     }
 
     /// When a step starts, in second from isolation.

@@ -1,6 +1,9 @@
 //! What resistors bear: standing load, voltage, the discharge itself.
 
-use super::{Answers, EngineError, FaultAnswers, Procedure, StepAnswers, Verdict, celsius_or_null, si, si_or_null};
+use super::{
+    Answers, EngineError, FaultAnswers, Procedure, StepAnswers, Verdict, celsius_or_null, fault_in_words, si,
+    si_or_null,
+};
 use crate::bank::Bank;
 use crate::bank::description::{Rating, Resistor, Role, Supply};
 use crate::discharge::{Body, Figure, Model, StepFigure, element_model};
@@ -316,7 +319,7 @@ impl ResistorChecks<'_> {
                      too.",
                     resistor.id,
                     show(Power::from_si(per_element(fault)), Direction::Up),
-                    fault.fault.name,
+                    fault_in_words(&fault.fault.name),
                     show(allowed, Direction::Down)
                 ),
             );

@@ -3,7 +3,7 @@
 use super::steps::{NOT_ISOLATED, StepCheck};
 use super::stored::bands;
 use super::waits::listed;
-use super::{Recovery, ResistorResult, StepResult, Verdict};
+use super::{Recovery, ResistorResult, StepResult, Verdict, fault_in_words};
 use crate::bank::description::Role;
 use crate::discharge::StepFigure;
 use crate::finding::{Findings, Severity};
@@ -200,7 +200,7 @@ fn touched(check: &StepCheck, stage: usize, steps: &[StepResult], findings: &mut
             format!(
                 "{}: with {} up to {} is still at {}. {}",
                 named(stage, step),
-                fault.fault,
+                fault_in_words(&fault.fault),
                 show(point.highest, Direction::Up),
                 point.across.join(" - "),
                 shown_at(&steps[..stage], &fault.fault)
@@ -241,6 +241,25 @@ fn meters(check: &StepCheck, stage: usize, step: &StepResult, findings: &mut Fin
                     show(Energy::from_si(taken), Direction::Up),
                     show(step.stored_at_start, Direction::Up),
                     show(crate::quantity::Power::from_si(power), Direction::Up)
+                ),
+            );
+        }
+    }
+    let touch = check.procedure.bank.description().touch_voltage.si();
+    for reading in check.readings.iter().filter(|r| r.stage == stage) {
+        // A reading that the meter pulls down by a tenth, of a voltage that would count.
+        if reading.without > 0.1 * touch && reading.with < 0.9 * reading.without {
+            findings.add(
+                Severity::Danger,
+                "meter-hides-charge",
+                format!(
+                    "{}: {} pulls down what it reads: {} at the step's end, where {} would be without it (nominal). A \
+                     low reading does not tell what is stored behind the point. Read with a meter of higher \
+                     resistance, and short every unit on its own.",
+                    named(stage, step),
+                    reading.id,
+                    volts(reading.with),
+                    volts(reading.without)
                 ),
             );
         }

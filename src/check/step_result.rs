@@ -1,6 +1,6 @@
 //! What a plan says about the steps of a procedure.
 
-use super::{Pair, si, si_or_null};
+use super::{Charging, Pair, si, si_or_null};
 use crate::quantity::{Current, Energy, Power, Time, Voltage};
 use serde::Serialize;
 
@@ -32,12 +32,17 @@ pub struct StepResult {
     /// Energy in all capacitors at its start, greatest over the box.
     #[serde(rename = "stored_at_start_j", serialize_with = "si")]
     pub stored_at_start: Energy,
+    /// The part of it that a short would meet at once: without what dielectrics give back slowly.
+    #[serde(rename = "ready_at_start_j", serialize_with = "si")]
+    pub ready_at_start: Energy,
     /// Voltages at its end.
     pub test_points: Vec<StepPoint>,
     /// The pairs that people read at its end, with what they may find there and what it would mean.
     pub readings: Vec<StepReading>,
     /// What every resistor and supply that is connected bears during this step.
     pub parts: Vec<StepPart>,
+    /// How the supplies that it connects charge an empty bank.
+    pub charging: Vec<Charging>,
     /// The voltages at its end with one part failed.
     pub faults: Vec<StepFault>,
 }

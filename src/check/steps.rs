@@ -4,9 +4,9 @@ use super::procedure::{Procedure, StepAnswers};
 use super::step_result::{
     FaultPoint, FaultReading, Recovery, StepFault, StepHold, StepPart, StepPoint, StepReading, StepResult,
 };
-use super::{EngineError, Pair, Wait};
+use super::{Charging, EngineError, Pair, Wait, charging};
 use crate::bank::description::{Lasts, Role, Step};
-use crate::circuit::ExpSum;
+use crate::circuit::Course;
 use crate::discharge::{Fault, StepFigure};
 use crate::quantity::{Current, Energy, Power, Quantity, Time, Voltage};
 use rayon::prelude::*;
@@ -16,6 +16,16 @@ pub(crate) struct StepCheck<'a> {
     pub procedure: &'a Procedure<'a>,
     pub healthy: StepAnswers,
     pub faults: Vec<(Fault, StepAnswers)>,
+    pub readings: Vec<Reading>,
+    charging: Vec<Vec<Charging>>,
+}
+
+/// What a meter reads at the end of the step that connects it, and what would be there without it; nominal, in volt.
+pub(crate) struct Reading {
+    pub stage: usize,
+    pub id: String,
+    pub with: f64,
+    pub without: f64,
 }
 
 /// A name for a source that stays connected: the reading does not fall.
@@ -31,7 +41,20 @@ impl<'a> StepCheck<'a> {
             Ok((fault, answers))
         };
         let faults = faults.into_par_iter().map(answered).collect::<Result<_, EngineError>>()?;
-        Ok(StepCheck { procedure, healthy, faults })
+        let mut check = StepCheck { procedure, healthy, faults, readings: Vec::new(), charging: Vec::new() };
+        for (stage, step) in check.steps().iter().enumerate() {
+            let meters: Vec<&String> = step.connect.iter().filter(|id| check.role(id) == Some(Role::Meter)).collect();
+            for id in meters {
+                if let Some(resistor) = procedure.model.find_resistor(id) {
+                    let (with, without) = procedure.with_and_without(stage, resistor)?;
+                    check.readings.push(Reading { stage, id: id.clone(), with, without });
+                }
+            }
+        }
+        let stages = 0..procedure.stages.len();
+        let charging = stages.map(|stage| charging::charging(&check, stage, &procedure.new_sources(stage)));
+        check.charging = charging.collect::<Result<_, _>>()?;
+        Ok(check)
     }
 
     pub(super) fn steps(&self) -> &'a [Step] {
@@ -80,10 +103,12 @@ impl<'a> StepCheck<'a> {
             measure: step.measure.clone(),
             hold: self.hold(stage, step),
             touch: step.touch,
+            ready_at_start: Energy::from_si(self.healthy.worst(StepFigure::ReadyEnergy { stage })),
             stored_at_start: Energy::from_si(self.healthy.worst(StepFigure::StoredEnergy { stage })),
             test_points: points.map(point).collect(),
             readings: step.measure.iter().filter_map(|[a, b]| self.reading(stage, step, [a, b], waits)).collect(),
             parts: procedure.connected(stage).into_iter().map(|r| self.part(stage, r)).collect(),
+            charging: self.charging[stage].clone(),
             faults: self.under_faults(stage, waits),
         }
     }
@@ -173,7 +198,8 @@ impl<'a> StepCheck<'a> {
         let figure = StepFigure::Recovery { pair };
         let (a, b) = self.procedure.model.pairs[pair];
         let end = self.procedure.end();
-        let course = self.procedure.at(self.healthy.worst_point(figure))?.afterwards(a, b);
+        let scenario = self.healthy.worst_scenario(figure);
+        let course = self.procedure.at(&scenario, self.healthy.worst_point(figure))?.afterwards(a, b);
         let (_, at) = course.greatest_magnitude().map_err(EngineError::of("healthy, after the last step"))?;
         let touch = self.procedure.bank.description().touch_voltage.si();
         Ok(Recovery {
@@ -186,13 +212,13 @@ impl<'a> StepCheck<'a> {
 }
 
 /// When a voltage that begins below `level` first reaches it on its way to its greatest value at `peak`.
-fn passes(course: &ExpSum, level: f64, peak: f64) -> Option<f64> {
+fn passes(course: &Course, level: f64, peak: f64) -> Option<f64> {
     let over = |t: f64| course.value(t).abs() > level;
     if over(0.0) {
         return Some(0.0);
     }
-    let slowest = course.terms().first().map_or(1.0, |(_, rate)| rate.recip());
-    let mut high = if peak.is_finite() { peak } else { 40.0 * slowest };
+    let slowest = course.last().terms().first().map_or(1.0, |(_, rate)| rate.recip());
+    let mut high = if peak.is_finite() { peak } else { course.last_start() + 40.0 * slowest };
     if !over(high) {
         return None;
     }
@@ -217,6 +243,7 @@ fn figures(procedure: &Procedure) -> Vec<StepFigure> {
     let mut figures = voltages(procedure);
     let capacitors = procedure.bank.description().capacitors.len();
     for stage in 0..procedure.stages.len() {
+        figures.extend(charging::figures(stage, procedure.new_sources(stage).into_iter()));
         figures.push(StepFigure::ReadyEnergy { stage });
         figures.push(StepFigure::StoredEnergy { stage });
         figures.extend((0..capacitors).map(|capacitor| StepFigure::CapacitorVoltage { stage, capacitor }));

@@ -1,6 +1,6 @@
 //! How long to wait at each test point.
 
-use super::{Answers, FaultAnswers, Pair, si, si_or_null};
+use super::{Answers, FaultAnswers, Pair, fault_in_words, si, si_or_null};
 use crate::bank::Bank;
 use crate::bank::description::Role;
 use crate::discharge::{Figure, Model};
@@ -46,7 +46,7 @@ pub struct WorstValue {
 /// The wait with one part failed.
 #[derive(Debug, Clone, PartialEq, Serialize)]
 pub struct FaultWait {
-    /// `R1 open`, `C1 shorted`, `C1 one unit shorted`, `R2 absent`.
+    /// `R1 open`, `C1 shorted`, `C1 one unit shorted`, `R2 absent`, `K1 dead`.
     pub fault: String,
     /// The longest wait over the box; `None` is never.
     #[serde(rename = "wait_s", serialize_with = "si_or_null")]
@@ -72,7 +72,8 @@ impl WaitCheck<'_> {
         self.bank.description().touch_voltage.si()
     }
 
-    fn wait(&self, pair: usize) -> Figure {
+    /// The figure that is the wait at a test point.
+    pub fn wait(&self, pair: usize) -> Figure {
         Figure::TouchWait { pair, level: self.level(), energy: self.bank.description().hold_energy.map(Quantity::si) }
     }
 
@@ -182,7 +183,9 @@ impl WaitCheck<'_> {
             return;
         };
         let role = self.bank.description().resistors.iter().find(|r| r.id == fault.fault.id).map(|r| r.role);
+        let is_sink = self.model.loads.iter().any(|l| l.id == fault.fault.id);
         let (code, why) = match role {
+            None if is_sink => ("sink-dead-never", "without what this sink draws"),
             Some(Role::Bleeder) => ("bleeder-open-never", "with this bleeder open"),
             Some(Role::Leakage) => ("leakage-absent-never", "without this leakage path"),
             Some(_) => ("resistor-open-never", "with this resistor open"),
@@ -195,7 +198,7 @@ impl WaitCheck<'_> {
             format!(
                 "{}: {why} the wait never ends at {}; {} can stay at {}. The reading does not fall: test before \
                  touch, and discharge by tool and strap.",
-                fault.fault.name,
+                fault_in_words(&fault.fault.name),
                 listed(&pairs),
                 worst.across.join(" - "),
                 show(worst.faults[index].settles_at, Direction::Up)

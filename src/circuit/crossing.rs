@@ -43,7 +43,8 @@ impl ExpSum {
     /// # Errors
     /// [`CircuitError::SearchNotClosed`] where the search does not close.
     pub fn last_outside(&self, level: f64, from: f64) -> Result<LastExit, CircuitError> {
-        let rounding = ROUNDING * self.envelope().max(level.abs());
+        debug_assert!(self.grown().is_empty(), "what a current brings about is asked for over a finite time");
+        let rounding = ROUNDING * self.envelope(f64::INFINITY).max(level.abs());
         let mut latest = from;
         for sign in [-1.0, 1.0] {
             let mut f = self.times(sign).plus(&ExpSum::new(level, []));
@@ -58,6 +59,66 @@ impl ExpSum {
         }
         Ok(LastExit::At(latest))
     }
+
+    /// As [`ExpSum::last_outside`], but up to `until` seconds only: `until` itself where it then is outside.
+    ///
+    /// # Errors
+    /// As [`ExpSum::last_outside`].
+    pub fn last_outside_within(&self, level: f64, from: f64, until: f64) -> Result<f64, CircuitError> {
+        let mut latest = from;
+        for sign in [-1.0, 1.0] {
+            if latest < until {
+                let f = self.times(sign).plus(&ExpSum::new(level, [])).after(latest);
+                latest += search_from_the_right(&f, until - latest)?;
+            }
+        }
+        Ok(latest)
+    }
+
+    /// The first time up to `until` seconds at which `|v| <= level`; the later end of its bracket, and `None` where
+    /// there is none.
+    ///
+    /// # Errors
+    /// [`CircuitError::SearchNotClosed`] where the search does not close.
+    pub fn first_inside(&self, level: f64, until: f64) -> Result<Option<f64>, CircuitError> {
+        let start = self.value(0.0);
+        if start.abs() <= level {
+            return Ok(Some(0.0));
+        }
+        search_from_the_left(&self.times(start.signum()).plus(&ExpSum::new(-level, [])), until)
+    }
+}
+
+/// The first time in `[0, end]` at which `f <= 0`.
+fn search_from_the_left(f: &ExpSum, end: f64) -> Result<Option<f64>, CircuitError> {
+    let mut open = vec![(0.0, end)];
+    for _ in 0..MOST_INTERVALS {
+        let Some((low, high)) = open.pop() else {
+            return Ok(None);
+        };
+        let bounds = Bounds::of(f, low, high);
+        if bounds.least > 0.0 {
+            continue;
+        }
+        if f.value(low) <= 0.0 {
+            return Ok(Some(low));
+        }
+        let rising = bounds.steepest_down >= 0.0;
+        let falling = bounds.steepest_up <= 0.0;
+        if rising || (falling && f.value(high) > 0.0) {
+            continue;
+        }
+        if falling {
+            return Ok(Some(bracket(&f.times(-1.0), low, high)));
+        }
+        if high - low <= BRACKET * high {
+            return Ok(Some(high));
+        }
+        let middle = split(low, high);
+        open.push((middle, high));
+        open.push((low, middle));
+    }
+    Err(CircuitError::SearchNotClosed)
 }
 
 /// The last time after `from` at which `f < 0`, or `from`.
@@ -143,7 +204,7 @@ pub(super) struct Bounds {
 }
 
 /// Order of the Taylor form.
-const ORDER: usize = 8;
+pub(super) const ORDER: usize = 8;
 
 impl Bounds {
     /// A term that falls much over the interval is bounded by its ends, it being monotone. All others are added up as
@@ -184,6 +245,9 @@ impl Bounds {
                 bounds.least_curvature += x * x * fewest;
                 bounds.greatest_curvature += x * x * most;
             }
+        }
+        for grown in f.grown() {
+            rest += grown.bounds((low, high), &mut taylor, &mut bounds);
         }
         // Value, slope and curvature of the form: its own term in the middle, all others at their full size.
         let factorial = |n: usize| (1..=n).map(|k| k as f64).product::<f64>();

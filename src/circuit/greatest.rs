@@ -43,7 +43,8 @@ impl ExpSum {
         };
         // No sum of the terms of one sign is ever exceeded.
         let of_sign = |sign: f64| self.terms().iter().map(|(a, _)| (a * sign).max(0.0)).sum::<f64>();
-        let limit = (self.constant() + of_sign(1.0)).max(of_sign(-1.0) - self.constant());
+        let grown: f64 = self.grown().iter().map(|g| g.reach(until)).sum();
+        let limit = (self.constant() + of_sign(1.0)).max(of_sign(-1.0) - self.constant()) + grown;
         if offer(self.value(0.0).abs(), 0.0) >= limit * (1.0 - ACCURACY) {
             return Ok(best);
         }
@@ -51,12 +52,13 @@ impl ExpSum {
             offer(self.constant().abs(), f64::INFINITY);
         }
         // Terms that cancel leave no more than this of themselves by rounding.
-        let noise = 32.0 * f64::EPSILON * self.envelope();
+        let noise = 32.0 * f64::EPSILON * self.envelope(until);
         // Past `end` every term is below rounding of the envelope.
         let count = self.terms().len().max(1) as f64;
         let small = limit * f64::EPSILON / count;
         let end = self.terms().iter().map(|(a, r)| (a.abs() / small).ln().max(0.0) / r).fold(0.0, f64::max);
-        let end = end.min(until);
+        // Where a current is drawn nothing settles: the time asked for is finite.
+        let end = if self.grown().is_empty() { end.min(until) } else { until };
         let mut open = vec![(0.0, end)];
         offer(self.value(end).abs(), end);
         for _ in 0..MOST_INTERVALS {

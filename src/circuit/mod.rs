@@ -6,23 +6,36 @@
 //! 1. [`Network`] holds the parts; [`Network::operating_point`] gives the potentials before isolation.
 //! 2. [`Modes`] turns a network into decay rates and shapes, to high relative accuracy.
 //! 3. [`Response`] is what follows from an initial state: every voltage as an [`ExpSum`],
-//!    `v(t) = v_inf + sum of a_k exp(-lambda_k t)`, with no time step anywhere.
-//! 4. [`ExpSum`] answers the questions: the value at a time, the last time outside a band (proven, never too
+//!    `v(t) = v_inf + sum of a_k exp(-lambda_k t)`, with no time step anywhere (a constant power alone is
+//!    taken in steps).
+//! 4. [`Drain`] is a response while sinks draw from the network: phases, between which one of them stops. A
+//!    [`Course`] is a voltage through the phases.
+//! 5. [`ExpSum`] answers the questions: the value at a time, the last time outside a band (proven, never too
 //!    early), the greatest value, the integral of the square.
 
+mod course;
 mod crossing;
+mod drain;
+mod energy;
 mod expsum;
 mod graph;
 mod greatest;
+mod grown;
 mod jacobi;
 mod laplacian;
 mod modes;
 mod network;
+mod power;
+mod pull;
+mod quadrature;
 mod reduce;
 mod response;
 mod short;
 
+pub use course::Course;
 pub use crossing::LastExit;
+pub use drain::{Drain, Draw, Sink};
+pub use energy::EnergyCourse;
 pub use expsum::ExpSum;
 pub use modes::Modes;
 pub use network::{Edge, Network};

@@ -1,7 +1,22 @@
 //! What follows from an initial state: every voltage as a sum of exponentials.
 
-use super::{CircuitError, ExpSum, Modes, Network};
+use super::grown::{Grown, grown};
+use super::pull::Pull;
+use super::{CircuitError, ExpSum, Modes, Network, quadrature};
 use std::sync::Arc;
+
+/// A current that is drawn: where, and how much in ampere, as coefficients of the powers of time.
+#[derive(Debug, Clone)]
+pub(super) struct Drawn {
+    pub pull: Arc<Pull>,
+    pub ampere: Vec<f64>,
+}
+
+impl Drawn {
+    fn at(&self, t: f64) -> f64 {
+        self.ampere.iter().rev().fold(0.0, |sum, c| sum * t + c)
+    }
+}
 
 /// A network let go from an initial state.
 #[derive(Debug, Clone)]
@@ -15,6 +30,8 @@ pub struct Response {
     start: Vec<f64>,
     /// Voltages of all capacitors at the start.
     voltages: Vec<f64>,
+    /// Currents that sinks draw.
+    drawn: Vec<Drawn>,
 }
 
 impl Modes {
@@ -41,7 +58,7 @@ impl Modes {
         let amplitudes = self.weights.iter().map(|w| w.iter().zip(&falling).map(|(x, u)| x * u).sum()).collect();
         settled.extend(network.sources.iter().map(|s| s.value));
         let (voltages, start) = (voltages.to_vec(), potentials.to_vec());
-        Ok(Response { modes: Arc::clone(self), amplitudes, settled, start, voltages })
+        Ok(Response { modes: Arc::clone(self), amplitudes, settled, start, voltages, drawn: Vec::new() })
     }
 
     /// A steady state under the sources, in volt. Where they stand on the reference it is an operating point, free of
@@ -82,6 +99,31 @@ impl Response {
         self.modes.network()
     }
 
+    /// The same start while these currents are drawn. What follows holds for a finite time only, unless the currents
+    /// are constant and [`Response::for_ever`] is asked for.
+    pub(super) fn drawing(&self, drawn: Vec<Drawn>) -> Self {
+        Response { drawn, ..self.clone() }
+    }
+
+    /// The network without any charge and with its sources at 0 V: what currents do to it is what is left.
+    pub(super) fn uncharged(&self) -> Self {
+        let zeros = |list: &[f64]| vec![0.0; list.len()];
+        Response {
+            modes: Arc::clone(&self.modes),
+            amplitudes: zeros(&self.amplitudes),
+            settled: zeros(&self.settled),
+            start: zeros(&self.start),
+            voltages: zeros(&self.voltages),
+            drawn: Vec::new(),
+        }
+    }
+
+    /// The same with the currents of the start kept for ever.
+    pub(super) fn for_ever(&self) -> Self {
+        let first = |d: &Drawn| Drawn { pull: Arc::clone(&d.pull), ampere: vec![d.at(0.0)] };
+        Response { drawn: self.drawn.iter().map(first).collect(), ..self.clone() }
+    }
+
     /// Voltage in volt of node `a` against node `b`.
     pub fn across(&self, a: usize, b: usize) -> ExpSum {
         let modes = &self.modes;
@@ -97,15 +139,35 @@ impl Response {
             dot(&self.settled) + if modes.anchor[a] == modes.anchor[b] { 0.0 } else { anchors }
         };
         let terms = modes.shapes.iter().zip(&modes.rates).zip(&self.amplitudes);
-        ExpSum::new(constant, terms.map(|((shape, rate), amplitude)| (dot(shape) * amplitude, *rate)))
+        let passive = ExpSum::new(constant, terms.map(|((shape, rate), amplitude)| (dot(shape) * amplitude, *rate)));
+        if self.drawn.is_empty() {
+            return passive;
+        }
+        let mut jump = 0.0;
+        let mut grown = Vec::new();
+        for Drawn { pull, ampere } in &self.drawn {
+            let jumps = pull.jump[a] - pull.jump[b];
+            let slope = dot(&pull.slope);
+            let times = |factor: f64| ampere.iter().map(|i| factor * i).collect::<Vec<f64>>();
+            let shapes = modes.shapes.iter().zip(&modes.rates).zip(&pull.force);
+            grown.extend(shapes.map(|((s, rate), force)| Grown { rate: *rate, factors: times(dot(s) * force) }));
+            jump += jumps * ampere[0];
+            // t^j is what grows from a force j t^(j-1).
+            let mut lasting = times(slope);
+            for (order, ampere) in ampere.iter().enumerate().skip(1) {
+                lasting[order - 1] += jumps * ampere * order as f64;
+            }
+            grown.push(Grown { rate: 0.0, factors: lasting });
+        }
+        passive.plus(&ExpSum::new(jump, [])).with_grown(grown)
     }
 
-    /// Energy in joule in all capacitors as a function of time, those of `part` only where it is given: the
-    /// label of [`Network::connected_parts`].
-    pub fn stored_energy(&self, part: Option<usize>) -> ExpSum {
+    /// Energy in joule in all capacitors as a function of time, those of `parts` only where they are given: labels
+    /// of [`Network::connected_parts`].
+    pub fn stored_energy(&self, parts: Option<&[usize]>) -> ExpSum {
         let network = self.network();
         let label = network.connected_parts();
-        let chosen = network.capacitors.iter().filter(|c| part.is_none_or(|p| label[c.a] == p));
+        let chosen = network.capacitors.iter().filter(|c| parts.is_none_or(|p| p.contains(&label[c.a])));
         chosen.fold(ExpSum::default(), |sum, c| sum.plus(&self.across(c.a, c.b).squared().times(0.5 * c.value)))
     }
 
@@ -134,6 +196,16 @@ impl Response {
             let left = amplitude * (-rate * t).exp();
             states.iter_mut().zip(shape).for_each(|(s, x)| *s += left * x);
         }
+        for Drawn { pull, ampere } in &self.drawn {
+            let brought =
+                |rate: f64| -> f64 { ampere.iter().zip(grown(ampere.len(), rate, t)).map(|(c, x)| c * x).sum() };
+            for ((shape, rate), force) in self.modes.shapes.iter().zip(&self.modes.rates).zip(&pull.force) {
+                let left = force * brought(*rate);
+                states.iter_mut().zip(shape).for_each(|(s, x)| *s += left * x);
+            }
+            let charge = brought(0.0);
+            states.iter_mut().zip(&pull.slope).for_each(|(s, x)| *s += charge * x);
+        }
         states
     }
 
@@ -142,7 +214,17 @@ impl Response {
     pub fn potentials_at(&self, t: f64) -> Vec<f64> {
         let states = self.states_at(t);
         let dot = |node: usize| self.modes.potentials[node].iter().zip(&states).map(|(x, u)| x * u).sum::<f64>();
-        (0..self.network().nodes).map(|node| self.start[self.modes.anchor[node]] + dot(node)).collect()
+        let jump = |node: usize| self.drawn.iter().map(|d| d.pull.jump[node] * d.at(t)).sum::<f64>();
+        (0..self.network().nodes).map(|node| self.start[self.modes.anchor[node]] + dot(node) + jump(node)).collect()
+    }
+
+    /// Energy in joule that the sinks take within `t` seconds.
+    fn drawn_energy(&self, t: f64) -> f64 {
+        let taken = |d: &Drawn| {
+            let volts = self.across(d.pull.a, d.pull.b);
+            quadrature::integral(|x| volts.value(x) * d.at(x), volts.fastest(), t)
+        };
+        self.drawn.iter().map(taken).sum()
     }
 
     /// Charge in coulomb that a source gives within `t` seconds (its current flows out of its node `a`), in all
@@ -154,9 +236,9 @@ impl Response {
         at.map(|r| out(r.a) * self.across(r.a, r.b).integral(t) / r.value).sum::<f64>() * source.value
     }
 
-    /// Checks over `t` seconds (infinite for ever; finite where there are sources) that what was stored at the
-    /// start and what the sources gave is what is stored at the end and what the resistors took, to 1e-9 of the
-    /// former.
+    /// Checks over `t` seconds (infinite for ever; finite where there are sources or sinks) that what was stored at
+    /// the start and what the sources gave is what is stored at the end and what the resistors and sinks took, to
+    /// 1e-9 of the former.
     ///
     /// # Errors
     /// [`CircuitError::Unbalanced`] where it is not.
@@ -168,6 +250,7 @@ impl Response {
             .filter(|r| r.a != r.b)
             .map(|r| self.across(r.a, r.b).integral_of_square(t) / r.value)
             .sum();
+        let taken = taken + self.drawn_energy(t);
         let given: f64 = (0..network.sources.len()).map(|s| self.source_energy(s, t)).sum();
         let end: Vec<f64> = if t.is_infinite() {
             network.capacitors.iter().map(|c| self.across(c.a, c.b).constant()).collect()

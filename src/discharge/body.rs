@@ -1,6 +1,6 @@
 //! The temperature of a resistor's body over time, first-order.
 
-use crate::circuit::ExpSum;
+use crate::circuit::{CircuitError, Course, ExpSum};
 
 /// Thermal data of one element: K/W and s.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -9,7 +9,75 @@ pub(crate) struct Thermal {
     pub time_constant: f64,
 }
 
+/// How a body got through a time: its greatest rise in K over the air, and the one at the end.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub(crate) struct Heated {
+    pub greatest: f64,
+    pub end: f64,
+}
+
 impl Thermal {
+    /// The body from `start` K over the air, with `volts` across `ohms` for `until` seconds (infinite for ever).
+    pub fn heated(&self, start: f64, volts: &Course, ohms: f64, until: f64) -> Result<Heated, CircuitError> {
+        let mut body = Heated { greatest: start, end: start };
+        if ohms.is_infinite() && until.is_infinite() {
+            return Ok(body);
+        }
+        let mut left = until;
+        for (length, piece) in volts.pieces() {
+            let time = length.min(left);
+            body = self.through(body, piece, ohms, time)?;
+            left -= time;
+        }
+        if left > 0.0 {
+            body = self.through(body, volts.last(), ohms, left)?;
+        }
+        Ok(body)
+    }
+
+    fn through(&self, before: Heated, volts: &ExpSum, ohms: f64, time: f64) -> Result<Heated, CircuitError> {
+        if volts.is_driven() {
+            return Ok(self.while_a_sink_draws(before, volts, ohms, time));
+        }
+        let power = if ohms.is_finite() { volts.squared().times(ohms.recip()) } else { ExpSum::default() };
+        let course = self.rise(before.end, &power);
+        let greatest = course.greatest_magnitude_within(before.greatest, time)?.0;
+        let end = if time.is_finite() { course.value(time) } else { course.constant() };
+        Ok(Heated { greatest, end })
+    }
+
+    /// The square of such a voltage is no sum of exponentials: the heat is integrated numerically, from mark to mark,
+    /// and the greatest rise is looked for between the marks around the highest one. (The power falls while a sink
+    /// draws, so the rise has one maximum.)
+    fn while_a_sink_draws(&self, before: Heated, volts: &ExpSum, ohms: f64, time: f64) -> Heated {
+        const MARKS: usize = 64;
+        let own = self.time_constant.recip();
+        let gain = self.kelvin_per_watt * own / ohms;
+        let after = |start: f64, volts: &ExpSum, t: f64| {
+            start * (-own * t).exp() + gain * volts.lagging_integral_of_square(own, t)
+        };
+        let step = time / MARKS as f64;
+        let mut marks = vec![before.end];
+        for k in 0..MARKS {
+            let piece = volts.after(step * k as f64);
+            marks.push(after(marks[k], &piece, step));
+        }
+        let end = marks[MARKS];
+        let top = (0..=MARKS).max_by(|x, y| marks[*x].total_cmp(&marks[*y])).unwrap_or(MARKS);
+        let mut greatest = before.greatest.max(marks[top]);
+        for left in [top.saturating_sub(1), top.min(MARKS - 1)] {
+            let piece = volts.after(step * left as f64);
+            let (mut low, mut high) = (0.0, step);
+            for _ in 0..40 {
+                let (x, y) = (low + (high - low) / 3.0, high - (high - low) / 3.0);
+                let (at_x, at_y) = (after(marks[left], &piece, x), after(marks[left], &piece, y));
+                greatest = greatest.max(at_x).max(at_y);
+                if at_x < at_y { low = x } else { high = y }
+            }
+        }
+        Heated { greatest, end }
+    }
+
     /// Temperature rise in K over the air, from `start` K at the beginning, under `power` in W:
     /// theta' = (P(t) - theta / R_th) / C_th in closed form, C_th = time constant / R_th.
     pub fn rise(&self, start: f64, power: &ExpSum) -> ExpSum {

@@ -2,7 +2,7 @@
 
 use super::model::Model;
 use super::scenario::Scenario;
-use crate::circuit::{CircuitError, ExpSum, Modes, Response, ShortCharge};
+use crate::circuit::{CircuitError, Course, Drain, EnergyCourse, Modes, ShortCharge};
 use std::sync::Arc;
 
 /// The moment of isolation under a scenario, at one point of the box.
@@ -47,7 +47,7 @@ pub(crate) struct Case {
     /// Resistances in ohm of all resistors of the model before and after isolation; infinite for open.
     pub before_ohms: Vec<f64>,
     pub after_ohms: Vec<f64>,
-    pub response: Response,
+    pub response: Drain,
 }
 
 impl Case {
@@ -55,16 +55,17 @@ impl Case {
     pub fn solve(model: &Model, scenario: &Scenario, point: &[f64], volts: f64) -> Result<Self, CircuitError> {
         let Start { map, potentials, voltages } = Start::at_isolation(model, scenario, point, volts);
         let after = model.network(&scenario.after, point, &[]);
-        let response = Arc::new(Modes::new(after)?).response(&voltages, &potentials)?;
+        let sinks = model.sinks(&map);
+        let response = Arc::new(Modes::new(after)?).drain(&voltages, &potentials, &sinks, &scenario.drawing(model))?;
         let before_ohms = model.ohms(&scenario.before, point, &[]);
         let after_ohms = model.ohms(&scenario.after, point, &[]);
         Ok(Case { map, potentials, before_ohms, after_ohms, response })
     }
 
     /// Voltage between two nodes of the model after isolation.
-    pub fn across(&self, a: usize, b: usize) -> ExpSum {
+    pub fn across(&self, a: usize, b: usize) -> Course {
         let (a, b) = (self.map[a], self.map[b]);
-        if a == b { ExpSum::default() } else { self.response.across(a, b) }
+        if a == b { Course::default() } else { self.response.across(a, b) }
     }
 
     /// Voltage in volt between two nodes of the model before isolation.
@@ -73,22 +74,23 @@ impl Case {
     }
 
     /// Charge in coulomb that a short between two nodes would pass, by the moment at which it closes.
-    pub fn charge(&self, a: usize, b: usize) -> ExpSum {
+    pub fn charge(&self, a: usize, b: usize) -> Course {
         let (a, b) = (self.map[a], self.map[b]);
         if a == b {
-            return ExpSum::default();
+            return Course::default();
         }
         let network = self.response.network();
         let short = ShortCharge::new(network, a, b);
         let parts = network.capacitors.iter().zip(short.weights());
-        parts.fold(ExpSum::default(), |sum, (c, w)| sum.plus(&self.response.across(c.a, c.b).times(*w)))
+        let of = |(c, w): (&crate::circuit::Edge, &f64)| self.response.across(c.a, c.b).times(*w);
+        parts.map(of).reduce(|sum, part| sum.plus(&part)).unwrap_or_default()
     }
 
     /// Energy in joule in all capacitors connected to the pair through any parts.
-    pub fn energy(&self, a: usize, b: usize) -> ExpSum {
+    pub fn energy(&self, a: usize, b: usize) -> EnergyCourse {
         let label = self.response.network().connected_parts();
         let (a, b) = (label[self.map[a]], label[self.map[b]]);
-        let at_a = self.response.stored_energy(Some(a));
-        if a == b { at_a } else { at_a.plus(&self.response.stored_energy(Some(b))) }
+        let parts = if a == b { vec![a] } else { vec![a, b] };
+        self.response.stored_energy(Some(&parts))
     }
 }

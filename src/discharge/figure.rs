@@ -3,7 +3,7 @@
 use super::body::Thermal;
 use super::case::Case;
 use super::model::Model;
-use crate::circuit::{CircuitError, ExpSum, LastExit};
+use crate::circuit::{CircuitError, Course, LastExit};
 
 /// Thermal data and standing power for a body temperature.
 pub(crate) type Body = Thermal;
@@ -63,7 +63,7 @@ impl Figure {
             Figure::TouchWait { pair: p, level, energy: most } => {
                 let from = floor.max(0.0);
                 match (pair(p).last_outside(level, from)?, most) {
-                    (LastExit::At(from), Some(most)) => energy(p).last_outside(most, from)?.seconds(),
+                    (LastExit::At(from), Some(most)) => energy(p).last_over(most, from)?.seconds(),
                     (exit, _) => exit.seconds(),
                 }
             }
@@ -73,7 +73,7 @@ impl Figure {
             Figure::ChargeAt { pair: p, t } => charge(p).value(t).abs(),
             Figure::ChargeWait { pair: p, level } => charge(p).last_outside(level, floor.max(0.0))?.seconds(),
             Figure::EnergyAt { pair: p, t } => energy(p).value(t),
-            Figure::EnergyWait { pair: p, level } => energy(p).last_outside(level, floor.max(0.0))?.seconds(),
+            Figure::EnergyWait { pair: p, level } => energy(p).last_over(level, floor.max(0.0))?.seconds(),
             Figure::StoredAt { t } => {
                 if t == 0.0 {
                     case.response.initial_energy()
@@ -104,9 +104,8 @@ impl Figure {
             Figure::BodyRise { resistor: r, body } => {
                 let start = body.kelvin_per_watt * standing_power(model, case, r);
                 let ohms = case.after_ohms[r];
-                let power =
-                    if ohms.is_finite() { resistor(r).squared().times(ohms.recip()) } else { ExpSum::default() };
-                body.rise(start, &power).greatest_magnitude_over(floor)?.0
+                let volts = if ohms.is_finite() { resistor(r) } else { Course::default() };
+                body.heated(start, &volts, ohms, f64::INFINITY)?.greatest.max(floor)
             }
             Figure::CapacitorVoltage { capacitor } => {
                 let c = &model.capacitors[capacitor];

@@ -10,21 +10,21 @@
 mod absorption;
 mod body;
 mod case;
-mod course;
 mod element;
 mod figure;
 mod model;
+mod moment;
 mod scenario;
 mod study;
 mod timeline;
 mod worst;
 
 pub(crate) use case::Case;
-pub(crate) use course::{CourseStudy, Load, Moment, capacitor_load, load};
 pub(crate) use element::element_model;
 pub(crate) use figure::{Body, Figure};
 pub(crate) use model::{Model, Parameter, Part, PartKind, absorption};
-pub(crate) use scenario::{Fault, Scenario, faults};
+pub(crate) use moment::{CourseStudy, Load, Moment, capacitor_load, load, sink_load};
+pub(crate) use scenario::{Fault, Scenario, faults, healthy};
 pub(crate) use study::Study;
 pub(crate) use timeline::{ProcedureStudy, Setting, Stage, StepFigure, Timeline};
 pub(crate) use worst::{MOST_CORNERS, Worst, nominal, worst};

@@ -2,8 +2,8 @@
 
 use super::absorption::Branches;
 use crate::bank::Bank;
-use crate::bank::description::{Capacitor, Lasts, Resistor, Supply};
-use crate::circuit::{CircuitError, Edge, Network};
+use crate::bank::description::{self, Capacitor, Lasts, Resistor, Supply};
+use crate::circuit::{CircuitError, Draw, Edge, Network, Sink};
 use crate::data::dielectric;
 use crate::quantity::{Quantity, Tolerance};
 
@@ -69,6 +69,15 @@ pub(crate) struct Source {
     pub resistor: usize,
 }
 
+/// A sink, and whether a wait may rely on it.
+#[derive(Debug, Clone)]
+pub(crate) struct Load {
+    /// The part of the bank file.
+    pub id: String,
+    pub sink: Sink,
+    pub counted: bool,
+}
+
 /// A bank as a network whose values follow from a point of the tolerance box.
 #[derive(Debug, Clone, Default)]
 pub(crate) struct Model {
@@ -80,6 +89,8 @@ pub(crate) struct Model {
     /// Those of the file first, in its order; then absorption branches.
     pub capacitors: Vec<Part>,
     pub sources: Vec<Source>,
+    /// Paths that are no resistor.
+    pub loads: Vec<Load>,
     /// Own voltage of every capacitor at isolation, in volt.
     pub own_voltages: Vec<Option<f64>>,
     /// Pairs that figures are asked for: the test points, then the terminals and pairs of limits that are none.
@@ -132,6 +143,7 @@ impl Model {
         for supply in &description.supplies {
             model.supply(supply);
         }
+        model.loads = description.sinks.iter().map(|s| model.load(s)).collect();
         for (index, capacitor) in description.capacitors.iter().enumerate() {
             if let Some((share, slow)) = absorption(capacitor) {
                 let branches = Branches::calibrated(capacitor.value.si(), share, slow)?;
@@ -219,6 +231,21 @@ impl Model {
         self.resistors.push(Part { id: s.id.clone(), a: inside, b: a, nominal, parameter, kind });
         let resistor = self.resistors.len() - 1;
         self.sources.push(Source { id: s.id.clone(), inside, b, volts: s.voltage.si(), resistor });
+    }
+
+    fn load(&mut self, s: &description::Sink) -> Load {
+        let draw = match s.draw {
+            description::Draw::ConstantCurrent(current) => Draw::Current(current.si()),
+            description::Draw::ConstantPower(power) => Draw::Power(power.si()),
+        };
+        let (a, b) = (self.node(&s.across[0]), self.node(&s.across[1]));
+        let sink = Sink { a, b, draw, stops_below: s.stops_below.si() };
+        Load { id: s.id.clone(), sink, counted: s.counted }
+    }
+
+    /// The sinks of a network in which capacitor and resistor nodes are those of `map`.
+    pub fn sinks(&self, map: &[usize]) -> Vec<Sink> {
+        self.loads.iter().map(|l| Sink { a: map[l.sink.a], b: map[l.sink.b], ..l.sink }).collect()
     }
 
     /// Adds the branches of a capacitor's absorption; they follow its own loose value.

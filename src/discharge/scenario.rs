@@ -11,12 +11,24 @@ pub(crate) struct Scenario {
     pub after: Variation,
     /// Own voltages of capacitors are dropped: all take the operating point of the failed circuit.
     pub drops_own_voltages: bool,
+    /// Sinks that draw nothing, by number.
+    pub idle_sinks: Vec<usize>,
+}
+
+/// Up to this many sinks that no wait relies on, every choice of which of them draw is tried; beyond, none, all, and
+/// each alone.
+const MOST_SINK_CHOICES: usize = 4;
+
+/// The ways in which the healthy bank may go: with and without the sinks that no wait relies on. The first is without
+/// any of them.
+pub(crate) fn healthy(model: &Model) -> Vec<Scenario> {
+    Scenario::default().with_and_without_sinks(model)
 }
 
 /// One part failed, and the scenarios of which the worst counts.
 #[derive(Debug, Clone)]
 pub(crate) struct Fault {
-    /// `R1 open`, `R2 absent`, `C1 shorted`, `C1 one unit shorted`.
+    /// `R1 open`, `R2 absent`, `C1 shorted`, `C1 one unit shorted`, `K1 dead`.
     pub name: String,
     /// The part.
     pub id: String,
@@ -25,8 +37,34 @@ pub(crate) struct Fault {
 }
 
 impl Scenario {
+    /// Which sinks draw from isolation on.
+    pub fn drawing(&self, model: &Model) -> Vec<bool> {
+        (0..model.loads.len()).map(|index| !self.idle_sinks.contains(&index)).collect()
+    }
+
+    /// The same with and without every sink that nobody may count on: no wait is shorter than without it, and none
+    /// than with it.
+    fn with_and_without_sinks(self, model: &Model) -> Vec<Scenario> {
+        let uncounted: Vec<usize> = (0..model.loads.len()).filter(|index| !model.loads[*index].counted).collect();
+        let idle: Vec<Vec<usize>> = if uncounted.len() <= MOST_SINK_CHOICES {
+            let chosen = |mask: usize| {
+                uncounted.iter().enumerate().filter(move |(at, _)| mask >> at & 1 == 1).map(|(_, index)| *index)
+            };
+            (0..1usize << uncounted.len()).rev().map(|mask| chosen(mask).collect()).collect()
+        } else {
+            let but_one = |kept: usize| uncounted.iter().copied().filter(|index| *index != kept).collect();
+            let each: Vec<Vec<usize>> = uncounted.iter().map(|kept| but_one(*kept)).collect();
+            [vec![uncounted.clone(), Vec::new()], each].concat()
+        };
+        let with = |idle: Vec<usize>| Scenario {
+            idle_sinks: self.idle_sinks.iter().copied().chain(idle).collect(),
+            ..self.clone()
+        };
+        idle.into_iter().map(with).collect()
+    }
+
     fn settled(variation: Variation) -> Self {
-        Scenario { before: variation.clone(), after: variation, drops_own_voltages: false }
+        Scenario { before: variation.clone(), after: variation, drops_own_voltages: false, idle_sinks: Vec::new() }
     }
 }
 
@@ -71,6 +109,14 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
                 scenarios: vec![Scenario { after: variation, ..Scenario::default() }],
             });
         }
+    }
+    for (index, load) in model.loads.iter().enumerate().filter(|(_, load)| load.counted) {
+        let scenario = Scenario { idle_sinks: vec![index], ..Scenario::default() };
+        faults.push(Fault { name: format!("{} dead", load.id), id: load.id.clone(), scenarios: vec![scenario] });
+    }
+    for fault in &mut faults {
+        let scenarios = std::mem::take(&mut fault.scenarios).into_iter();
+        fault.scenarios = scenarios.flat_map(|s| s.with_and_without_sinks(model)).collect();
     }
     faults
 }

@@ -8,7 +8,7 @@ use super::case::Start;
 use super::model::{Model, Parameter, PartKind};
 use super::scenario::Scenario;
 use super::worst::Objective;
-use crate::circuit::{CircuitError, ExpSum, Modes, Response};
+use crate::circuit::{CircuitError, Course, Drain, Modes};
 use std::sync::Arc;
 
 /// One step: which switched resistors are connected during it, and how long it lasts in second.
@@ -24,11 +24,11 @@ pub(crate) struct Stage {
 /// A solved step.
 #[derive(Debug)]
 struct Run {
-    response: Response,
+    response: Drain,
     ohms: Vec<f64>,
     duration: f64,
     /// What follows from each voltage that a connected supply is tried from.
-    tries: Vec<Response>,
+    tries: Vec<Drain>,
 }
 
 /// A solved procedure.
@@ -62,6 +62,8 @@ impl Timeline {
             if ohm.is_finite() { (potentials[map[r.a]] - potentials[map[r.b]]).powi(2) / ohm } else { 0.0 }
         };
         let standing = model.resistors.iter().zip(before).map(power).collect();
+        let sinks = model.sinks(&map);
+        let mut drawing = scenario.drawing(model);
         let mut timeline = Timeline { map, standing, runs: Vec::with_capacity(setting.stages.len()) };
         let (mut voltages, mut potentials) = (voltages, potentials);
         let mut last: Option<(&[usize], Arc<Modes>)> = None;
@@ -72,17 +74,18 @@ impl Timeline {
                 _ => Arc::new(Modes::new(model.network(&scenario.after, point, &stage.connected))?),
             };
             last = Some((&stage.connected, Arc::clone(&modes)));
-            let response = modes.response(&voltages, &potentials)?;
+            let response = modes.drain(&voltages, &potentials, &sinks, &drawing)?;
             let mut tries = Vec::new();
             if stage.tried {
                 for volts in setting.tried_from {
                     let from = Scenario { drops_own_voltages: true, ..scenario.clone() };
                     let start = Start::at_isolation(model, &from, point, *volts);
-                    tries.push(modes.response(&start.voltages, &start.potentials)?);
+                    tries.push(modes.drain(&start.voltages, &start.potentials, &sinks, &drawing)?);
                 }
             }
             voltages = response.voltages_at(stage.duration);
             potentials = response.potentials_at(stage.duration);
+            drawing = response.drawing_at(stage.duration).to_vec();
             let ohms = model.ohms(&scenario.after, point, &stage.connected);
             timeline.runs.push(Run { response, ohms, duration: stage.duration, tries });
         }
@@ -90,7 +93,7 @@ impl Timeline {
     }
 
     /// Voltage between two nodes of the model during a step, from its start.
-    pub fn across(&self, stage: usize, a: usize, b: usize) -> ExpSum {
+    pub fn across(&self, stage: usize, a: usize, b: usize) -> Course {
         across(&self.runs[stage].response, &self.map, a, b)
     }
 
@@ -109,9 +112,14 @@ impl Timeline {
         self.standing[resistor]
     }
 
-    /// Power in a resistor during a step, from its start.
-    pub fn power(&self, model: &Model, stage: usize, resistor: usize) -> ExpSum {
-        self.runs[stage].power(model, &self.map, resistor)
+    /// Which sinks draw at a moment of a step.
+    pub fn drawing(&self, stage: usize, t: f64) -> &[bool] {
+        self.runs[stage].response.drawing_at(t)
+    }
+
+    /// The voltage that counts for the heat of a resistor during a step, from its start.
+    pub fn hottest(&self, model: &Model, stage: usize, resistor: usize) -> Course {
+        self.runs[stage].hottest(model, &self.map, resistor)
     }
 
     /// Checks the energy balance of every step.
@@ -123,17 +131,28 @@ impl Timeline {
         Ok(())
     }
 
+    /// The charge by a supply that a step connects, from an empty bank: the voltage of the bank where the supply is, and
+    /// that across its series resistance of so many ohm.
+    pub fn charging(&self, model: &Model, stage: usize, source: usize) -> Option<(Course, Course, f64)> {
+        let source = &model.sources[source];
+        let run = &self.runs[stage];
+        let from_empty = run.tries.first()?;
+        let series = &model.resistors[source.resistor];
+        let bank = across(from_empty, &self.map, series.b, source.b);
+        Some((bank, across(from_empty, &self.map, series.a, series.b), run.ohms[source.resistor]))
+    }
+
     /// What is to come at a pair after the last step, from its end.
-    pub fn afterwards(&self, a: usize, b: usize) -> ExpSum {
+    pub fn afterwards(&self, a: usize, b: usize) -> Course {
         self.runs
             .last()
-            .map_or_else(ExpSum::default, |last| across(&last.response, &self.map, a, b).after(last.duration))
+            .map_or_else(Course::default, |last| across(&last.response, &self.map, a, b).after(last.duration))
     }
 }
 
-fn across(response: &Response, map: &[usize], a: usize, b: usize) -> ExpSum {
+fn across(response: &Drain, map: &[usize], a: usize, b: usize) -> Course {
     let (a, b) = (map[a], map[b]);
-    if a == b { ExpSum::default() } else { response.across(a, b) }
+    if a == b { Course::default() } else { response.across(a, b) }
 }
 
 /// One figure of a procedure. Stages count from 0, pairs are those of the model.
@@ -159,6 +178,12 @@ pub(crate) enum StepFigure {
         stage: usize,
         pair: usize,
         level: f64,
+    },
+    /// When a supply that the step connects has brought an empty bank to a share of its voltage for good.
+    ChargedTo {
+        stage: usize,
+        source: usize,
+        share: f64,
     },
     /// Energy in the capacitors themselves at a step's start, without what their dielectrics give back slowly.
     ReadyEnergy {
@@ -214,7 +239,7 @@ pub(crate) enum StepFigure {
 
 impl Run {
     /// The voltages that count for a resistor: those of the step itself, or of what a supply is tried from.
-    fn voltages(&self, model: &Model, map: &[usize], resistor: usize) -> Vec<ExpSum> {
+    fn voltages(&self, model: &Model, map: &[usize], resistor: usize) -> Vec<Course> {
         let part = &model.resistors[resistor];
         let responses = if self.tries.is_empty() { std::slice::from_ref(&self.response) } else { &self.tries[..] };
         responses.iter().map(|r| across(r, map, part.a, part.b)).collect()
@@ -240,15 +265,15 @@ impl Run {
         energies.map(|v| v.integral_of_square(self.duration) / ohms).fold(0.0, f64::max)
     }
 
-    /// Power in a resistor over time; of what a supply is tried from, the one that heats most.
-    fn power(&self, model: &Model, map: &[usize], resistor: usize) -> ExpSum {
-        let ohms = self.ohms[resistor];
-        if !ohms.is_finite() {
-            return ExpSum::default();
+    /// The voltage that counts for the temperature of a resistor: of what a supply is tried from, the one that heats
+    /// most.
+    fn hottest(&self, model: &Model, map: &[usize], resistor: usize) -> Course {
+        if !self.ohms[resistor].is_finite() {
+            return Course::default();
         }
-        let heat = |v: &ExpSum| v.integral_of_square(self.duration);
+        let heat = |v: &Course| v.integral_of_square(self.duration);
         let hottest = self.voltages(model, map, resistor).into_iter().max_by(|x, y| heat(x).total_cmp(&heat(y)));
-        hottest.map_or_else(ExpSum::default, |v| v.squared().times(ohms.recip()))
+        hottest.unwrap_or_default()
     }
 }
 
@@ -301,7 +326,7 @@ impl Objective for ProcedureStudy<'_> {
                 1e-10 * model.capacitors.iter().map(|c| 0.5 * c.nominal * small * volts).sum::<f64>()
             }
             StepFigure::BodyRise { .. } => 1e-6,
-            StepFigure::LastOver { .. } => 0.0,
+            StepFigure::LastOver { .. } | StepFigure::ChargedTo { .. } => 0.0,
         }
     }
 
@@ -311,6 +336,7 @@ impl Objective for ProcedureStudy<'_> {
             | StepFigure::CapacitorVoltage { stage, .. }
             | StepFigure::VoltageAtStart { stage, .. }
             | StepFigure::LastOver { stage, .. }
+            | StepFigure::ChargedTo { stage, .. }
             | StepFigure::ReadyEnergy { stage }
             | StepFigure::StoredEnergy { stage }
             | StepFigure::Current { stage, .. }
@@ -351,6 +377,13 @@ impl StepFigure {
             StepFigure::LastOver { stage, pair, level } => {
                 at_pair(stage, pair).last_outside(level, floor.max(0.0))?.seconds()
             }
+            StepFigure::ChargedTo { stage, source, share } => match timeline.charging(model, stage, source) {
+                Some((bank, _, _)) => {
+                    let volts = model.sources[source].volts;
+                    bank.short_of(volts).last_outside((1.0 - share) * volts, floor.max(0.0))?.seconds()
+                }
+                None => 0.0,
+            },
             StepFigure::ReadyEnergy { stage } => {
                 let network = runs[stage].response.network();
                 let there = model.capacitors.iter().filter(|c| map[c.a] != map[c.b]);
@@ -384,9 +417,10 @@ impl StepFigure {
                 let mut rise = body.kelvin_per_watt * standing[resistor];
                 let mut greatest = rise;
                 for run in runs {
-                    let course = body.rise(rise, &run.power(model, map, resistor));
-                    greatest = course.greatest_magnitude_within(greatest, run.duration)?.0;
-                    rise = course.value(run.duration);
+                    let volts = run.hottest(model, map, resistor);
+                    let heated = body.heated(rise, &volts, run.ohms[resistor], run.duration)?;
+                    greatest = greatest.max(heated.greatest);
+                    rise = heated.end;
                 }
                 greatest
             }

@@ -3,7 +3,7 @@
 mod result;
 mod working;
 
-pub use crate::check::EngineError;
+pub use crate::check::{EngineError, fault_in_words};
 pub use result::*;
 
 use crate::bank::Bank;
@@ -103,7 +103,8 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: &Opti
     notes(bank, &model, &plan.resistors, &plan.capacitors, findings);
     plan.worst_case_search = search_used(model.passive);
     if options.working {
-        plan.working = Some(working::working(bank, &model, &plan.waits)?);
+        plan.working =
+            Some(working::working(bank, &model, &plan.waits, |pair| healthy.worst_scenario(waits.wait(pair)))?);
     }
     if let Some(times) = &options.curves {
         let alone = model.passive_only();
@@ -166,12 +167,8 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
 
 /// Parts of the description that this version reads but does not compute.
 fn not_computed(bank: &Bank) -> Vec<String> {
-    let description = bank.description();
-    let missing = [
-        (bank.is_three_phase(), "a three-phase bank: no wait, energy or rating is computed"),
-        (!description.sinks.is_empty(), "sinks: no wait relies on them"),
-    ];
-    missing.into_iter().filter(|(present, _)| *present).map(|(_, text)| text.to_string()).collect()
+    let three_phase = "a three-phase bank: no wait, energy or rating is computed";
+    bank.is_three_phase().then(|| three_phase.to_string()).into_iter().collect()
 }
 
 /// Which search found the worst cases, in one sentence.

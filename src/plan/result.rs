@@ -9,10 +9,10 @@ use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltag
 use serde::Serialize;
 
 pub use crate::check::{
-    Band, CapacitorResult, Check, CurveLoad, CurvePair, CurvePart, CurveSample, CurveSpan, CurveTimes, CurveTool,
-    CurveVoltage, Curves, Equipment, EquipmentPart, FaultPoint, FaultReading, FaultWait, LimitResult, LimitSource,
-    Notice, NoticeFault, Pair, Recovery, ResistorResult, StepFault, StepHold, StepPart, StepPoint, StepReading,
-    StepResult, Stored, ToolLoad, Verdict, Wait, WorstValue,
+    Band, CapacitorResult, Charging, ChargingMoment, Check, CurveLoad, CurvePair, CurvePart, CurveSample, CurveSpan,
+    CurveTimes, CurveTool, CurveVoltage, Curves, Equipment, EquipmentPart, FaultPoint, FaultReading, FaultWait,
+    LimitResult, LimitSource, Notice, NoticeFault, Pair, Recovery, ResistorResult, StepFault, StepHold, StepPart,
+    StepPoint, StepReading, StepResult, Stored, ToolLoad, Verdict, Wait, WorstValue,
 };
 
 /// Everything that a plan says about one bank.
@@ -119,6 +119,9 @@ pub struct Working {
     /// Voltage across the terminals at isolation.
     #[serde(rename = "charged_to_v", serialize_with = "si")]
     pub charged_to: Voltage,
+    /// From when on the modes below hold, where sinks draw before; absent for from isolation on.
+    #[serde(rename = "from_s", serialize_with = "si_or_null", skip_serializing_if = "Option::is_none")]
+    pub from: Option<Time>,
     /// Where the voltage settles; with its sign.
     #[serde(rename = "settles_at_v", serialize_with = "si")]
     pub settles_at: Voltage,

@@ -6,19 +6,26 @@ use crate::check::EngineError;
 use crate::discharge::{Case, Model, Part, PartKind, Scenario};
 use crate::quantity::{Capacitance, Quantity, Resistance, Time, Voltage};
 
-fn solve(model: &Model, point: &[f64], volts: Voltage) -> Result<Case, EngineError> {
+fn solve(model: &Model, scenario: &Scenario, point: &[f64], volts: Voltage) -> Result<Case, EngineError> {
     let failed = |cause| EngineError { scenario: "healthy".into(), cause };
-    Case::solve(model, &Scenario::default(), point, volts.si()).map_err(failed)
+    Case::solve(model, scenario, point, volts.si()).map_err(failed)
 }
 
 /// Nominal time constants in second, the slowest first.
 pub(super) fn time_constants(bank: &Bank, model: &Model) -> Result<Vec<f64>, EngineError> {
     let nominal = bank.description().charged_to.nominal;
-    Ok(solve(model, &model.nominal_point(), nominal)?.response.modes().time_constants())
+    Ok(solve(model, &Scenario::default(), &model.nominal_point(), nominal)?.response.modes().time_constants())
 }
 
 /// The nominal and the slowest wait at every test point, worked out.
-pub(super) fn working(bank: &Bank, model: &Model, waits: &[Wait]) -> Result<Vec<Working>, EngineError> {
+///
+/// `governing` gives the scenario in which the slowest wait was found.
+pub(super) fn working(
+    bank: &Bank,
+    model: &Model,
+    waits: &[Wait],
+    governing: impl Fn(usize) -> Scenario,
+) -> Result<Vec<Working>, EngineError> {
     let charged = bank.description().charged_to;
     let mut list = Vec::with_capacity(2 * waits.len());
     for (pair, wait) in waits.iter().enumerate() {
@@ -27,8 +34,9 @@ pub(super) fn working(bank: &Bank, model: &Model, waits: &[Wait]) -> Result<Vec<
             ("nominal", model.nominal_point(), charged.nominal, wait.nominal),
             ("slowest", worst, charged.highest, wait.slowest),
         ];
+        let scenario = governing(pair);
         for (name, point, volts, time) in cases {
-            list.push(worked(bank, model, (pair, name), &point, volts, time)?);
+            list.push(worked(bank, (model, &scenario), (pair, name), &point, volts, time)?);
         }
     }
     Ok(list)
@@ -41,15 +49,16 @@ fn resistors_of(model: &Model) -> impl Iterator<Item = &Part> {
 
 fn worked(
     bank: &Bank,
-    model: &Model,
+    (model, scenario): (&Model, &Scenario),
     (pair, name): (usize, &str),
     point: &[f64],
     volts: Voltage,
     wait: Option<Time>,
 ) -> Result<Working, EngineError> {
-    let case = solve(model, point, volts)?;
+    let case = solve(model, scenario, point, volts)?;
     let (a, b) = model.pairs[pair];
-    let voltage = case.across(a, b);
+    let course = case.across(a, b);
+    let voltage = course.last();
     let factor = |parameter: Option<usize>| parameter.map_or(1.0, |p| point[p]);
     let resistors = resistors_of(model).map(|r| WorkingValue {
         id: r.id.clone(),
@@ -69,7 +78,7 @@ fn worked(
     });
     // One capacitor and one mode: tau = R C by hand.
     let single = match (model.capacitors.as_slice(), voltage.terms()) {
-        ([c], [(amplitude, rate)]) if voltage.constant() == 0.0 => {
+        ([c], [(amplitude, rate)]) if voltage.constant() == 0.0 && course.pieces().is_empty() => {
             let farad = c.nominal * factor(c.parameter);
             Some(WorkingSingle {
                 resistance: Resistance::from_si((rate * farad).recip()),
@@ -85,6 +94,7 @@ fn worked(
         case: name.to_string(),
         values: resistors.chain(capacitors).collect(),
         charged_to: volts,
+        from: (!course.pieces().is_empty()).then(|| Time::from_si(course.last_start())),
         settles_at: Voltage::from_si(voltage.constant()),
         modes: modes.collect(),
         single,

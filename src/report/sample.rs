@@ -125,6 +125,7 @@ fn working() -> Vec<Working> {
         case: "slowest".into(),
         values,
         charged_to: v(750.0),
+        from: None,
         settles_at: v(0.0),
         modes: vec![mode(45.738, 750.0)],
         single: Some(single),

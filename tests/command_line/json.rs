@@ -242,10 +242,32 @@ struct Step {
     hold: Option<Hold>,
     touch: bool,
     stored_at_start_j: f64,
+    ready_at_start_j: f64,
     test_points: Vec<StepPoint>,
     readings: Vec<StepReading>,
     parts: Vec<StepPart>,
+    charging: Vec<Charging>,
     faults: Vec<StepFault>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Charging {
+    supply: String,
+    voltage_v: f64,
+    moments: Vec<ChargingMoment>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct ChargingMoment {
+    share: f64,
+    nominal_s: Option<f64>,
+    slowest_s: Option<f64>,
+    bank_v: Option<f64>,
+    series_v: Option<f64>,
+    current_a: Option<f64>,
+    charge_c: Option<f64>,
 }
 
 #[derive(Deserialize)]
@@ -346,6 +368,7 @@ fn every_example_bank_has_the_documented_keys_and_finite_numbers() {
         );
         assert!(plan.not_computed.is_empty());
         check_steps(&plan);
+        check_notice(&plan);
         assert!(plan.time_constants_s.windows(2).all(|pair| pair[0] >= pair[1]), "slowest first");
         assert!(!plan.worst_case_search.is_empty() && !plan.assumptions.is_empty());
         assert!(plan.working.is_some_and(|working| !working.is_empty()));
@@ -370,7 +393,6 @@ fn every_example_bank_has_the_documented_keys_and_finite_numbers() {
             );
         }
         check_parts(&plan.resistors, &plan.capacitors);
-        check_notice(&plan);
         check_findings(&plan.findings);
     }
 }
@@ -438,7 +460,18 @@ fn check_steps(plan: &Plan) {
     for step in &plan.steps {
         assert!(!step.step.is_empty() && step.start_s >= 0.0 && step.end_s >= step.start_s);
         assert!(step.until || !step.never, "only an `until` can fail to come");
-        assert!(step.stored_at_start_j >= 0.0);
+        for charging in &step.charging {
+            assert!(plan.steps.iter().any(|s| s.connect.contains(&charging.supply)) && charging.voltage_v > 0.0);
+            for m in &charging.moments {
+                let reached = m.share * charging.voltage_v;
+                assert!(m.bank_v.is_none_or(|v| (v / reached - 1.0).abs() < 1e-9));
+                let both = m.bank_v.zip(m.series_v);
+                assert!(both.is_none_or(|(v, r)| ((v + r) / charging.voltage_v - 1.0).abs() < 1e-9));
+                assert!(m.nominal_s.zip(m.slowest_s).is_none_or(|(nominal, slowest)| nominal <= slowest));
+                assert_eq!(m.current_a.is_some(), m.charge_c.is_some());
+            }
+        }
+        assert!(step.ready_at_start_j >= 0.0 && step.ready_at_start_j <= step.stored_at_start_j * (1.0 + 1e-9));
         assert_eq!(step.test_points.iter().map(|point| &point.across).collect::<Vec<_>>(), points);
         assert!(step.test_points.iter().all(|point| point.nominal_v >= 0.0 && point.highest_v >= point.nominal_v));
         let figures = |p: &StepPart| [p.peak_current_a, p.peak_power_w, p.energy_j];

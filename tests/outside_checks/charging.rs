@@ -139,3 +139,28 @@ fn two_charged_capacitors_joined_by_a_strap_share_their_charge() {
         Row { source, figure: "charge of 4.0 uF", stated: "1.78e-3", found: 4.0e-6 * volts("Q") },
     ]);
 }
+
+#[test]
+fn a_charge_is_followed_from_share_to_share_of_the_supply() {
+    // Common practice: V_R + V_C = E at every instant, I = V_R / R, Q = C V_C; to a share s in RC ln(1/(1-s)).
+    let plan = charged("100 V", "101 ohm", "50e-3 F", &["1 s"], "");
+    let [charging] = plan.steps[0].charging.as_slice() else { panic!("one supply") };
+    assert_eq!(charging.supply, "S1");
+    assert_eq!(charging.moments.len(), 4);
+    for moment in &charging.moments {
+        let share = moment.share.si();
+        let close = |found: Option<f64>, expected: f64| {
+            let found = found.expect("it comes");
+            assert!((found / expected - 1.0).abs() < 1e-9, "{share}: {found} for {expected}");
+        };
+        close(moment.nominal.map(Quantity::si), -5.05 * (1.0 - share).ln());
+        close(moment.bank.map(Quantity::si), 100.0 * share);
+        close(moment.series.map(Quantity::si), 100.0 * (1.0 - share));
+        close(moment.current.map(Quantity::si), 100.0 * (1.0 - share) / 101.0);
+        close(moment.charge.map(Quantity::si), 50e-3 * 100.0 * share);
+    }
+    // A bleeder of 101 ohm holds the bank at half the supply's voltage: it never comes to 90 %.
+    let bleeder = "resistors: [{id: R1, role: bleeder, value: 101 ohm}]\n";
+    let plan = charged("100 V", "101 ohm", "50e-3 F", &["1 s"], bleeder);
+    assert!(plan.steps[0].charging[0].moments[1..].iter().all(|m| m.nominal.is_none() && m.bank.is_none()));
+}

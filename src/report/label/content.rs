@@ -2,7 +2,7 @@
 
 use super::super::plan::summary;
 use super::super::words::{clean, glued, list, pair, up, whole};
-use crate::plan::{Plan, Wait};
+use crate::plan::{Plan, Wait, fault_in_words};
 use crate::quantity::Quantity;
 
 /// Failures that are named; only the test tells which has happened.
@@ -80,10 +80,15 @@ fn failed(plan: &Plan) -> Vec<String> {
     let notice = &plan.notice;
     let mut lines = Vec::new();
     if let Some(longest) = &notice.longest_fault {
-        lines.push(format!("If one part has failed: up to {} ({}).", whole(longest.delay), glued(&longest.fault)));
+        lines.push(format!(
+            "If one part has failed: up to {} ({}).",
+            whole(longest.delay),
+            glued(&fault_in_words(&longest.fault))
+        ));
     }
     if !notice.never_faults.is_empty() {
-        let mut names: Vec<String> = notice.never_faults.iter().take(NAMED_FAULTS).cloned().collect();
+        let mut names: Vec<String> =
+            notice.never_faults.iter().take(NAMED_FAULTS).map(|fault| fault_in_words(fault)).collect();
         if notice.never_faults.len() > NAMED_FAULTS {
             names.push(format!("{} more", notice.never_faults.len() - NAMED_FAULTS));
         }

@@ -3,7 +3,7 @@
 use super::super::block::{Block, Labelled};
 use super::super::words::{count, glued, list, pair, time, typed, up, whole};
 use super::steps;
-use crate::plan::{FaultWait, LimitResult, Plan, Stored, Verdict, Wait};
+use crate::plan::{FaultWait, LimitResult, Plan, Stored, Verdict, Wait, fault_in_words};
 use crate::quantity::{Quantity, keepable};
 
 /// Faults that are named one by one on the first screen; the table has them all.
@@ -197,13 +197,14 @@ fn failed(plan: &Plan) -> Option<Labelled> {
     if let Some(f) = longest(all.iter(), |f: &Failure| f.fault.wait.map(Quantity::si)) {
         let which = if never.is_empty() { "At most" } else { "Otherwise at most" };
         let wait = f.fault.wait.map(keepable).map_or_else(String::new, whole);
-        text.push(format!("{which} {wait} ({}, at {}).", f.fault.fault, pair(&f.at.across)));
+        text.push(format!("{which} {wait} ({}, at {}).", fault_in_words(&f.fault.fault), pair(&f.at.across)));
     }
     Some(Labelled::new(label, text))
 }
 
 fn stays(failure: &Failure) -> String {
     let FaultWait { fault, settles_at, .. } = failure.fault;
+    let fault = fault_in_words(fault);
     format!("{fault}: NEVER; {} stays at up to {}.", pair(&failure.at.across), up(*settles_at))
 }
 

@@ -2,7 +2,7 @@
 
 use super::super::block::{Block, Grid, Side};
 use super::super::words::{pair, time, up, wait};
-use crate::plan::{FaultWait, Plan, Wait};
+use crate::plan::{FaultWait, Plan, Wait, fault_in_words};
 use crate::quantity::Quantity;
 
 pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
@@ -82,7 +82,7 @@ fn fault_table(faults: &[Worst]) -> Grid {
     ]);
     for Worst { at, fault } in faults {
         let wait = fault.wait.map_or_else(|| "NEVER".to_string(), time);
-        grid.row([fault.fault.clone(), pair(&at.across), wait, up(fault.settles_at)]);
+        grid.row([fault_in_words(&fault.fault), pair(&at.across), wait, up(fault.settles_at)]);
     }
     grid
 }

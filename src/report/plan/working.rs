@@ -83,10 +83,19 @@ fn network(working: &Working) -> Vec<Block> {
         grid.row([(k + 1).to_string(), six(mode.tau), amplitude(mode.amplitude)]);
     }
     let settles: Voltage = working.settles_at;
-    let wait = working.wait.map_or_else(|| "t: never".into(), |t| format!("last crossing: t = {}", six(t)));
-    vec![
+    let from = if working.from.is_some() { " from isolation" } else { "" };
+    let wait = working.wait.map_or_else(|| "t: never".into(), |t| format!("last crossing: t = {}{from}", six(t)));
+    let sinks = working.from.map(|from| {
+        Block::Paragraph(format!(
+            "While a sink draws, until t = {0}, the voltage falls by its current too (a sum of exponentials over each \
+             such time); from then on, with t counted from {0}:",
+            six(from)
+        ))
+    });
+    let sum = [
         Block::Formula(format!("v(t) = {} + sum over k of a_k exp(-t/tau_k)", six(settles))),
         Block::Table(grid),
         Block::Formula(wait),
-    ]
+    ];
+    sinks.into_iter().chain(sum).collect()
 }

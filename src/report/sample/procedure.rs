@@ -32,7 +32,9 @@ fn step(name: &str, from: f64, to: f64, stored: f64, volts: [(f64, f64); 3]) -> 
         hold: None,
         touch: false,
         stored_at_start: Energy::from_si(stored),
+        ready_at_start: Energy::from_si(stored),
         test_points: pairs.iter().cloned().zip(volts).map(point).collect(),
+        charging: Vec::new(),
         parts: vec![
             step_part("R1", volts[0].1 / 22e3, volts[0].1.powi(2) / 22e3, stored / 2.0),
             step_part("R2", volts[1].1 / 47e3, volts[1].1.powi(2) / 47e3, stored / 9.0),

@@ -3,7 +3,7 @@
 use super::super::block::{Block, Grid, Labelled, LargeFigure, Side};
 use super::super::plan::summary;
 use super::super::words::{pair, up, whole};
-use crate::plan::{Plan, Wait};
+use crate::plan::{Plan, Wait, fault_in_words};
 use crate::quantity::{Quantity, Time, keepable};
 
 pub(super) fn blocks(plan: &Plan, date: Option<&str>) -> Vec<Block> {
@@ -75,7 +75,7 @@ fn failed(plan: &Plan) -> Option<LargeFigure> {
         return None;
     }
     let label = "With one part failed";
-    if let Some(fault) = notice.never_faults.first() {
+    if let Some(fault) = notice.never_faults.first().map(|fault| fault_in_words(fault)) {
         let more = match notice.never_faults.len() {
             1 => String::new(),
             n => format!(" and {} more", n - 1),
@@ -88,7 +88,7 @@ fn failed(plan: &Plan) -> Option<LargeFigure> {
     }
     let longest = notice.longest_fault.as_ref()?;
     let figure = format!("up to {}", whole(longest.delay));
-    Some(LargeFigure { label, figure, under: format!("{}; only the test tells", longest.fault) })
+    Some(LargeFigure { label, figure, under: format!("{}; only the test tells", fault_in_words(&longest.fault)) })
 }
 
 fn identification(plan: &Plan, date: Option<&str>) -> Grid {

@@ -4,7 +4,7 @@ use super::super::block::{Block, Grid, Labelled, Side, Step};
 use super::super::plan::steps::{self, caution, held, is_same, part, predicted};
 use super::super::plan::summary;
 use super::super::words::{down, list, pair, typed, up, whole};
-use crate::plan::{FaultReading, Pair, Plan, StepReading, StepResult};
+use crate::plan::{FaultReading, Pair, Plan, StepReading, StepResult, fault_in_words};
 use crate::quantity::{Quantity, Time, Voltage, keepable};
 
 /// Failures that a reading names; the JSON output has every one.
@@ -25,7 +25,10 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
 
 /// What the parts bear and what a failed part changes: behind the work, for the reviewer.
 pub(super) fn tables(plan: &Plan) -> Vec<Block> {
-    [steps::tables::loads(plan), steps::tables::faults(plan)].into_iter().flatten().collect()
+    [steps::tables::loads(plan), steps::charging::blocks(plan), steps::tables::faults(plan)]
+        .into_iter()
+        .flatten()
+        .collect()
 }
 
 fn entry(plan: &Plan, at: usize, step: &StepResult) -> Step {
@@ -145,7 +148,8 @@ fn told_from_zero(voltage: Voltage) -> bool {
 fn points_to<'a>(failures: impl Iterator<Item = &'a FaultReading>) -> String {
     let (source, parts): (Vec<_>, Vec<_>) = failures.partition(|f| f.fault == steps::NOT_ISOLATED);
     let figure = |f: &&FaultReading| f.highest.map_or_else(String::new, |v| format!(" (up to {})", up(v)));
-    let mut names: Vec<String> = parts.iter().take(NAMED_FAULTS).map(|f| format!("{}{}", f.fault, figure(f))).collect();
+    let mut names: Vec<String> =
+        parts.iter().take(NAMED_FAULTS).map(|f| format!("{}{}", fault_in_words(&f.fault), figure(f))).collect();
     if parts.len() > NAMED_FAULTS {
         names.push(format!("{} more", parts.len() - NAMED_FAULTS));
     }

@@ -111,12 +111,16 @@ fn a_caution_becomes_danger_where_the_stored_energy_is_in_a_hazard_band() {
     // Put on right after isolation, at 750 V.
     plan.steps.swap(1, 3);
     plan.steps[1].stored_at_start = Energy::from_si(556.9);
+    plan.steps[1].ready_at_start = Energy::from_si(556.9);
     let step = entry(&plan, 2);
     in_order(
         &step,
         &["DANGER Before T1 goes on, up to 557 J", "No step before this one reads the voltage: test first."],
     );
     plan.steps[5].stored_at_start = Energy::from_si(4000.0);
+    let step = entry(&plan, 6);
+    assert!(step.contains("WARNING Hands") && step.contains("Up to 0 J is stored and ready (with"), "{step}");
+    plan.steps[5].ready_at_start = Energy::from_si(4000.0);
     assert!(entry(&plan, 6).contains("DANGER Hands may come near only after the test"));
 }
 

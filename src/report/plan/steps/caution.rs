@@ -6,7 +6,7 @@ use super::tables::{failures, worst};
 use super::{highest_at_start, is_of, role, straps};
 use crate::data::energy_bands;
 use crate::finding::Severity;
-use crate::plan::{Plan, StepPart, StepPoint, StepResult};
+use crate::plan::{Plan, StepPart, StepPoint, StepResult, fault_in_words};
 use crate::quantity::Quantity;
 
 /// One caution for each kind of part that goes on, and one where hands may come near.
@@ -28,7 +28,7 @@ pub(in crate::report) fn cautions(plan: &Plan, at: usize, step: &StepResult) -> 
 fn connection(plan: &Plan, at: usize, step: &StepResult, kind: &str, ids: &[&String]) -> Labelled {
     let names = list(&ids.iter().map(|id| (*id).clone()).collect::<Vec<_>>());
     let go = if ids.len() == 1 { "goes" } else { "go" };
-    let mut text = vec![format!("Before {names} {go} on, up to {} is stored.", up(step.stored_at_start))];
+    let mut text = vec![format!("Before {names} {go} on, up to {}.", stored(step))];
     text.extend(borne(plan, step, kind, ids));
     text.push(match kind {
         "supply" => charging(step),
@@ -97,7 +97,7 @@ fn reading_first(plan: &Plan, at: usize) -> String {
 /// True where what is stored at the step's start lies in a published hazard band, at the voltage then reached.
 fn is_hazardous(plan: &Plan, at: usize, step: &StepResult) -> bool {
     let voltage = highest_at_start(plan, at);
-    energy_bands().iter().any(|band| band.is_hazard() && band.holds(voltage, step.stored_at_start))
+    energy_bands().iter().any(|band| band.is_hazard() && band.holds(voltage, step.ready_at_start))
 }
 
 /// True where a test point is predicted above the touch voltage when the step starts or ends.
@@ -106,11 +106,21 @@ fn is_live(plan: &Plan, at: usize, step: &StepResult) -> bool {
     highest_at_start(plan, at).si().max(end) > plan.touch_voltage.si()
 }
 
+/// What is stored at the step's start, and how much of it only a dielectric gives back.
+fn stored(step: &StepResult) -> String {
+    let (all, ready) = (up(step.stored_at_start), up(step.ready_at_start));
+    if all == ready {
+        format!("{all} is stored")
+    } else {
+        format!("{ready} is stored and ready (with what the dielectrics give back slowly: {all})")
+    }
+}
+
 fn hands(plan: &Plan, at: usize, step: &StepResult) -> Labelled {
     let mut text = vec![format!(
         "Hands may come near only after the test: every pair that can be reached, with a rated instrument proved on a \
-         known source before and after. Up to {} is stored at the start of this step.",
-        up(step.stored_at_start)
+         known source before and after. Up to {} at the start of this step.",
+        stored(step)
     )];
     let live = is_live(plan, at, step);
     if live {
@@ -121,7 +131,11 @@ fn hands(plan: &Plan, at: usize, step: &StepResult) -> Labelled {
     let failed = worst(here.flat_map(failures)).filter(|f| f.point.highest.si() > plan.touch_voltage.si());
     text.extend(failed.map(|f| {
         let place = pair(&f.point.across);
-        format!("With {} up to {} is predicted at {place}: only the test can tell.", f.fault, up(f.point.highest))
+        format!(
+            "With {} up to {} is predicted at {place}: only the test can tell.",
+            fault_in_words(f.fault),
+            up(f.point.highest)
+        )
     }));
     if plan.steps.iter().take(at).all(|step| step.measure.is_empty()) {
         text.push("No step before this one reads any voltage.".into());

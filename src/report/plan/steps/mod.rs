@@ -2,12 +2,13 @@
 //! comes back afterwards.
 
 pub(in crate::report) mod caution;
+pub(in crate::report) mod charging;
 pub(in crate::report) mod recovery;
 pub(in crate::report) mod tables;
 
 use super::super::block::{Block, Labelled};
 use super::super::words::{count, down, list, pair, up, whole};
-use crate::plan::{Pair, Plan, StepHold, StepResult};
+use crate::plan::{Pair, Plan, StepHold, StepResult, fault_in_words};
 use crate::quantity::{Quantity, Time, Voltage};
 
 /// Failures that a hold point names; the JSON output has every one.
@@ -27,6 +28,7 @@ pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
         blocks.push(Block::Part(heading(plan, at, step)));
         blocks.push(Block::Labelled(entry(plan, at, step)));
     }
+    blocks.extend(charging::blocks(plan));
     blocks.extend(tables::loads(plan));
     blocks.extend(tables::faults(plan));
     blocks.extend(recovery::blocks(plan));
@@ -195,7 +197,7 @@ pub(in crate::report) fn held(step: &StepResult, hold: &StepHold) -> Vec<String>
 
 fn pointed_to(faults: &[String]) -> String {
     let (parts, source): (Vec<&String>, Vec<&String>) = faults.iter().partition(|fault| *fault != NOT_ISOLATED);
-    let mut names: Vec<String> = parts.iter().take(NAMED_FAULTS).map(|part| (*part).clone()).collect();
+    let mut names: Vec<String> = parts.iter().take(NAMED_FAULTS).map(|part| fault_in_words(part)).collect();
     if parts.len() > NAMED_FAULTS {
         names.push(format!("{} more", parts.len() - NAMED_FAULTS));
     }

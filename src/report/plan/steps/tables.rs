@@ -3,7 +3,7 @@
 use super::super::super::block::{Block, Grid, Side};
 use super::super::super::words::{down, pair, typed, up};
 use super::NOT_ISOLATED;
-use crate::plan::{FaultPoint, Plan, StepFault, StepPart, StepResult};
+use crate::plan::{FaultPoint, Plan, StepFault, StepPart, StepResult, fault_in_words};
 use crate::quantity::Quantity;
 use std::collections::{HashMap, HashSet};
 
@@ -145,5 +145,5 @@ fn row(number: usize, step: &StepResult, failure: &Failure) -> [String; 6] {
     };
     let allowed = step.hold.as_ref().map_or_else(|| "-".into(), |hold| down(hold.below));
     let Failure { fault, point, .. } = failure;
-    [number.to_string(), (*fault).into(), pair(&point.across), up(point.highest), allowed, shown.into()]
+    [number.to_string(), fault_in_words(fault), pair(&point.across), up(point.highest), allowed, shown.into()]
 }

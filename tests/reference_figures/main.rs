@@ -4,6 +4,8 @@
 //! A wait has to agree to 1e-9, or to 1e-12 V over the slope at the crossing where that is more: a voltage can graze
 //! the touch voltage. Where capacitors of more than 1e6 between them form loops, 1e-7 is what doubles can carry.
 
+mod steps;
+
 use ebbvolt::bank::file;
 use ebbvolt::plan::{FaultWait, LimitResult, Options, Plan, Wait, plan};
 use ebbvolt::quantity::{Quantity, Time};
@@ -35,6 +37,10 @@ struct Reference {
     capacitor_loop_ratio: Number,
     waits: Vec<ReferenceWait>,
     limits: Vec<ReferenceLimit>,
+    #[serde(default)]
+    steps: Vec<steps::ReferenceStep>,
+    #[serde(default)]
+    recovery: Vec<steps::ReferenceRecovery>,
 }
 
 #[derive(Deserialize)]

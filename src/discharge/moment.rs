@@ -4,7 +4,7 @@ use super::body::Thermal;
 use super::model::{Model, Parameter, PartKind};
 use super::timeline::{Setting, Timeline};
 use super::worst::Objective;
-use crate::circuit::CircuitError;
+use crate::circuit::{CircuitError, Course, Draw, ExpSum, Sink};
 
 /// What is asked at a moment: `t` seconds after the start of a step.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -25,20 +25,33 @@ impl Moment {
     }
 
     /// Its value, a magnitude.
-    fn of(&self, model: &Model, timeline: &Timeline) -> f64 {
-        match *self {
+    fn of(&self, model: &Model, timeline: &Timeline) -> Result<f64, CircuitError> {
+        Ok(match *self {
             Moment::Voltage { stage, a, b, t } => timeline.across(stage, a, b).value(t).abs(),
-            Moment::Power { stage, resistor, t } => timeline.power(model, stage, resistor).value(t),
+            Moment::Power { stage, resistor, t } => {
+                let ohms = timeline.ohms(stage, resistor);
+                if ohms.is_finite() { timeline.hottest(model, stage, resistor).value(t).powi(2) / ohms } else { 0.0 }
+            }
             Moment::Rise { stage, resistor, body, t } => {
                 let mut rise = body.kelvin_per_watt * timeline.standing(resistor);
-                for earlier in 0..stage {
-                    let course = body.rise(rise, &timeline.power(model, earlier, resistor));
-                    rise = course.value(timeline.duration(earlier));
+                for at in 0..=stage {
+                    let volts = timeline.hottest(model, at, resistor);
+                    let time = if at == stage { t } else { timeline.duration(at) };
+                    rise = heated(body, rise, &volts, timeline.ohms(at, resistor), time)?;
                 }
-                body.rise(rise, &timeline.power(model, stage, resistor)).value(t)
+                rise
             }
-        }
+        })
     }
+}
+
+/// The rise of a body after a time. In closed form where no sink draws, without looking for the greatest on the way.
+fn heated(body: Thermal, start: f64, volts: &Course, ohms: f64, time: f64) -> Result<f64, CircuitError> {
+    if volts.pieces().is_empty() && !volts.last().is_driven() {
+        let power = if ohms.is_finite() { volts.last().squared().times(ohms.recip()) } else { ExpSum::default() };
+        return Ok(body.rise(start, &power).value(time));
+    }
+    Ok(body.heated(start, volts, ohms, time)?.end)
 }
 
 /// What a part has across it, what flows in it from its first node to its second, and the power that it takes up.
@@ -66,6 +79,19 @@ pub(crate) fn capacitor_load(model: &Model, timeline: &Timeline, stage: usize, c
     let branches = model.resistors.iter().enumerate().filter(|(_, r)| r.kind == PartKind::Absorbing(capacitor));
     let absorbed: f64 = branches.map(|(r, _)| load(model, timeline, stage, r, t).current).sum();
     let current = part.nominal * slope + absorbed;
+    Load { voltage, current, power: voltage * current }
+}
+
+/// The load of a sink at a moment; nothing flows in one that has stopped.
+pub(crate) fn sink_load(model: &Model, timeline: &Timeline, stage: usize, sink: usize, t: f64) -> Load {
+    let Sink { a, b, draw, .. } = model.loads[sink].sink;
+    let voltage = timeline.across(stage, a, b).value(t);
+    let draws = timeline.drawing(stage, t).get(sink).copied().unwrap_or(false) && voltage.abs() > 0.0;
+    let current = match draw {
+        _ if !draws => 0.0,
+        Draw::Current(ampere) => ampere * voltage.signum(),
+        Draw::Power(watt) => watt / voltage,
+    };
     Load { voltage, current, power: voltage * current }
 }
 
@@ -117,6 +143,6 @@ impl Objective for CourseStudy<'_> {
     }
 
     fn figure(&self, index: usize, case: &Timeline, _: f64) -> Result<f64, CircuitError> {
-        Ok(self.moments[index].of(self.setting.model, case))
+        self.moments[index].of(self.setting.model, case)
     }
 }
