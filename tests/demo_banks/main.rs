@@ -60,7 +60,7 @@ fn every_bank_and_the_draft_meet_their_limits_and_ratings() {
 
 /// Where the plans of these banks may have null: what the file does not give, a wait that never ends under a fault, and
 /// figures of a resistor that only a step connects. Anywhere else it would stand for a figure that is lost.
-const MAY_BE_NULL: [&str; 30] = [
+const MAY_BE_NULL: [&str; 31] = [
     ".bank.location",
     ".bank.notes",
     ".bank.prepared_by",
@@ -77,6 +77,7 @@ const MAY_BE_NULL: [&str; 30] = [
     ".limits.allowed_voltage_v",
     ".limits.single_fault_missed_by",
     ".limits.source",
+    ".notice.left_v",
     ".recovery.at_s",
     ".recovery.passes_touch_at_s",
     ".resistors.allowed_power_w",
