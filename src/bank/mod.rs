@@ -5,6 +5,7 @@
 
 pub mod codes;
 pub mod description;
+mod expand;
 pub mod file;
 mod near;
 mod parts;

@@ -1,9 +1,10 @@
 //! The figures that the checks ask for, answered together: every corner of the box is solved once for all of them.
 
 use crate::bank::Bank;
+use crate::bank::description::ChargedTo;
 use crate::circuit::CircuitError;
 use crate::discharge::{self, Fault, Figure, Model, Scenario, Study, Worst};
-use crate::quantity::Quantity;
+use crate::quantity::{Quantity, Voltage};
 use rayon::prelude::*;
 use std::fmt;
 
@@ -38,6 +39,8 @@ pub(crate) struct Answers {
     figures: Vec<Figure>,
     nominal: Vec<f64>,
     worst: Governed,
+    /// Of a three-phase bank, for every figure the state at isolation that it comes from: nominal, worst.
+    states: Vec<[Option<String>; 2]>,
 }
 
 /// The worst of several scenarios for each figure, and which of them it is.
@@ -92,7 +95,8 @@ impl Answers {
             greater(&mut nominal, discharge::nominal(&study(charged.nominal.si())).map_err(failed)?);
             worst.offer(scenario, discharge::worst(&study(charged.highest.si())).map_err(failed)?);
         }
-        Ok(Answers { nominal, worst, figures })
+        let states = states(model, charged, &figures, &worst).map_err(failed)?;
+        Ok(Answers { nominal, worst, figures, states })
     }
 
     /// Answers `figures` under `fault`.
@@ -105,7 +109,7 @@ impl Answers {
             let study = Study { model, scenario, volts, figures: &figures };
             worst.offer(scenario, discharge::worst(&study).map_err(failed)?);
         }
-        Ok(Answers { nominal: Vec::new(), worst, figures })
+        Ok(Answers { worst, figures, ..Answers::default() })
     }
 
     fn index(&self, figure: &Figure) -> Option<usize> {
@@ -127,10 +131,36 @@ impl Answers {
         self.index(&figure).and_then(|i| self.worst.worst.get(i)).map_or(&[], |w| &w.point)
     }
 
+    /// The states at isolation from which a figure is greatest, nominal and worst; `None` where there is one only.
+    pub fn states(&self, figure: Figure) -> Option<[&str; 2]> {
+        let [nominal, worst] = self.index(&figure).and_then(|i| self.states.get(i))?;
+        Some([nominal.as_deref()?, worst.as_deref()?])
+    }
+
     /// The scenario in which a figure is greatest.
     pub fn worst_scenario(&self, figure: Figure) -> Scenario {
         self.index(&figure).and_then(|i| self.worst.scenario.get(i)).cloned().unwrap_or_default()
     }
+}
+
+/// From which state at isolation every figure comes, where there are several.
+fn states(
+    model: &Model,
+    charged: &ChargedTo,
+    figures: &[Figure],
+    governed: &Governed,
+) -> Result<Vec<[Option<String>; 2]>, CircuitError> {
+    if model.three_phase.is_none() {
+        return Ok(Vec::new());
+    }
+    let found = governed.scenario.iter().zip(&governed.worst).enumerate();
+    let of = |(index, (scenario, worst)): (usize, (&Scenario, &Worst))| {
+        let study = |volts: Voltage| Study { model, scenario, volts: volts.si(), figures };
+        let nominal = study(charged.nominal).worst_state(index, &model.nominal_point())?;
+        let worst = study(charged.highest).worst_state(index, &worst.point)?;
+        Ok([nominal, worst].map(|state| model.state_name(state)))
+    };
+    found.map(of).collect()
 }
 
 impl FaultAnswers {

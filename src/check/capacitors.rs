@@ -71,7 +71,9 @@ impl CapacitorCheck<'_> {
             let groups = if fault.fault.name == format!("{} one unit shorted", c.id) { c.series - 1 } else { c.series };
             (fault.worst(figure) * greatest_share(c, groups), fault.fault.name.clone())
         };
-        let worst = faults.iter().map(under).max_by(|x, y| x.0.total_cmp(&y.0));
+        // Of its own open leg a capacitor feels nothing: what then stands across its terminals is not on it.
+        let felt = faults.iter().filter(|fault| fault.fault.name != format!("{} open", c.id));
+        let worst = felt.map(under).max_by(|x, y| x.0.total_cmp(&y.0));
         CapacitorResult {
             id: c.id.clone(),
             voltage_highest: Voltage::from_si(unit),

@@ -189,7 +189,7 @@ impl<'a> CurveCheck<'a> {
         Setting { model: self.model, scenario, volts, tried_from: &self.tried_from, stages: &self.stages }
     }
 
-    fn at(&self, scenario: &Scenario, point: &[f64], volts: f64) -> Result<Timeline, EngineError> {
+    fn at(&self, scenario: &Scenario, point: &[f64], volts: f64) -> Result<Vec<Timeline>, EngineError> {
         Timeline::run(&self.setting(scenario, volts), point).map_err(EngineError::of("healthy, curves"))
     }
 
@@ -201,7 +201,11 @@ impl<'a> CurveCheck<'a> {
         let points = [all(&|_| 1.0), all(&|p| p.low), all(&|p| p.high)];
         let scenarios = discharge::healthy(self.model);
         let runs = scenarios.iter().flat_map(|scenario| points.iter().map(move |point| (scenario, point)));
-        runs.map(|(scenario, point)| self.at(scenario, point, self.tried_from[2])).collect()
+        let mut guides = Vec::new();
+        for (scenario, point) in runs {
+            guides.extend(self.at(scenario, point, self.tried_from[2])?);
+        }
+        Ok(guides)
     }
 
     /// How long the bank is followed after the last step: five of the slowest time constants that still matter there.
@@ -237,9 +241,9 @@ impl<'a> CurveCheck<'a> {
             // NaN stays NaN, so that no guard lets it pass.
             let greater = |known: f64, found: f64| if found <= known { known } else { found };
             highest.iter_mut().zip(worst).for_each(|(known, found)| *known = greater(*known, found.value));
-            let timeline = self.at(scenario, &middle, self.tried_from[1])?;
-            timeline.certify().map_err(&failed)?;
-            nominal.push(timeline);
+            let timelines = self.at(scenario, &middle, self.tried_from[1])?;
+            timelines.iter().try_for_each(Timeline::certify).map_err(&failed)?;
+            nominal.extend(timelines);
         }
         let mut highest = highest.into_iter();
         let mut spans = Vec::new();
@@ -341,7 +345,8 @@ impl<'a> CurveCheck<'a> {
         CurveSample { time: Time::from_si(time), voltages, loads, tools }
     }
 
-    /// The loads of all parts in the first way in which the healthy bank may go: no sink draws that nobody counts on.
+    /// The loads of all parts in the first way in which the healthy bank may go: no sink draws that nobody counts
+    /// on, and of the states that poles can leave it is the first.
     fn loads(&self, nominal: &Timeline, stage: usize, t: f64) -> Vec<CurveLoad> {
         let model = self.model;
         let capacitors = self.capacitors().map(|c| capacitor_load(model, nominal, stage, c, t));

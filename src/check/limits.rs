@@ -7,7 +7,7 @@ use crate::bank::description::{Bound, Limit, Rule};
 use crate::data::{Alternative, LimitKind, PublishedLimit, published_limit};
 use crate::discharge::{Figure, Model};
 use crate::finding::{Findings, Severity};
-use crate::quantity::{Capacitance, Charge, Direction, Energy, Quantity, Time, Voltage, duration, exact, show};
+use crate::quantity::{Capacitance, Charge, Direction, Energy, Quantity, Ratio, Time, Voltage, duration, exact, show};
 use serde::Serialize;
 
 /// A limit at the pair that governs it.
@@ -78,6 +78,8 @@ struct Prepared<'a> {
     published: Option<&'static PublishedLimit>,
     within: Option<Time>,
     requirements: Vec<Requirement>,
+    /// A share of the rated voltage, and that voltage, to be reached before the bank is switched in again.
+    switching_in: Option<(f64, Voltage)>,
 }
 
 /// All limits of a bank.
@@ -118,7 +120,12 @@ impl<'a> LimitChecks<'a> {
     /// The limits, in the order of the file, each at the pair that governs it.
     pub fn conclude(&self, healthy: &Answers, faults: &[FaultAnswers], findings: &mut Findings) -> Vec<LimitResult> {
         let results: Vec<LimitResult> = self.limits.iter().map(|l| self.result(l, healthy, faults)).collect();
-        results.iter().for_each(|r| limit_findings(r, findings));
+        for (result, prepared) in results.iter().zip(&self.limits) {
+            match prepared.published.map(|p| &p.kind) {
+                Some(LimitKind::BeforeSwitchingIn { .. }) => switching_findings(prepared, result, faults, findings),
+                _ => limit_findings(result, findings),
+            }
+        }
         results
     }
 
@@ -132,6 +139,8 @@ impl<'a> LimitChecks<'a> {
         let missed = |f: &&FaultAnswers| prepared.requirements.iter().any(|r| !in_time(fault_held(r, f), r.within));
         let missed_by = faults.iter().find(missed).map(|f| f.fault.name.clone());
         let bounded = governing.filter(|r| !r.healthy.is_empty());
+        // Where the document names no time there is none to keep; the bank's own is found all the same.
+        let judged = bounded.filter(|_| prepared.switching_in.is_none());
         let (pair, t) = governing.map_or((0, 0.0), |r| (r.pair, r.within));
         let (a, b) = self.model.pairs[pair];
         LimitResult {
@@ -145,10 +154,10 @@ impl<'a> LimitChecks<'a> {
             }),
             across: [self.model.node_names[a].clone(), self.model.node_names[b].clone()],
             within: prepared.within,
-            met: bounded.map(|_| prepared.requirements.iter().all(|r| in_time(held(r), r.within))),
-            single_fault_met: bounded.map(|_| missed_by.is_none()),
+            met: judged.map(|_| prepared.requirements.iter().all(|r| in_time(held(r), r.within))),
+            single_fault_met: judged.map(|_| missed_by.is_none()),
             single_fault_asked: prepared.limit.single_fault,
-            single_fault_missed_by: bounded.and(missed_by),
+            single_fault_missed_by: judged.and(missed_by),
             everywhere: prepared.limit.at.is_none(),
             allowed_voltage: governing.and_then(|r| r.healthy.iter().find_map(allowed_voltage)),
             voltage: Voltage::from_si(healthy.worst(Figure::VoltageAt { pair, t })),
@@ -206,6 +215,7 @@ fn prepare<'a>(bank: &Bank, model: &'a Model, limit: &'a Limit) -> Result<Prepar
         pairs.iter().map(one).collect()
     };
     let zero = Time::from_si(0.0);
+    let mut switching_in = None;
     let (within, requirements) = match (&limit.rule, published.map(|p| &p.kind)) {
         (Rule::Own { any_of, within }, _) => (Some(*within), plain(*within, any_of, any_of)),
         (_, Some(LimitKind::AnyOf { alternatives, within, fault_alternatives })) => {
@@ -225,10 +235,19 @@ fn prepare<'a>(bank: &Bank, model: &'a Model, limit: &'a Limit) -> Result<Prepar
             }
             (*within, requirements)
         }
+        (_, Some(LimitKind::BeforeSwitchingIn { share })) => {
+            // Only a bank on an AC supply is switched in at a crest; its rated voltage is taken to be the supply's.
+            switching_in = bank.supply_voltage().map(|rated| (*share, rated));
+            let bounds: Vec<Bound> = switching_in
+                .iter()
+                .map(|(share, rated)| Bound::Voltage(Voltage::from_si(share * rated.si())))
+                .collect();
+            (None, plain(zero, &bounds, &bounds))
+        }
         (_, Some(LimitKind::Wait { at_least })) => (Some(*at_least), plain(*at_least, &[], &[])),
         (Rule::Published(_), None) => (None, plain(zero, &[], &[])),
     };
-    Ok(Prepared { limit, published, within, requirements })
+    Ok(Prepared { limit, published, within, requirements, switching_in })
 }
 
 fn bound(alternative: &Alternative) -> Bound {
@@ -260,6 +279,10 @@ fn interpolate(table: &[(Capacitance, Voltage)], farad: f64) -> f64 {
 fn rule_text(prepared: &Prepared, governing: Option<&Requirement>) -> String {
     let bounds: Vec<String> = governing.map_or(Vec::new(), |r| r.healthy.iter().map(bound_text).collect());
     let within = prepared.within.map(given);
+    if let Some((share, rated)) = prepared.switching_in {
+        let share = exact(Ratio::from_si(share));
+        return format!("{} ({share} of {}) before it is switched in again", bounds.join(" or "), exact(rated));
+    }
     match (bounds.is_empty(), within) {
         (true, Some(within)) => format!("a wait of at least {within} before the short is applied"),
         (true, None) => "no figure to check".into(),
@@ -322,6 +345,39 @@ fn limit_findings(result: &LimitResult, findings: &mut Findings) {
             format!("{}: {}; a plan without steps can't show that it is kept.", result.id, result.rule),
         ),
     }
+}
+
+/// The time of the bank itself for a limit that only says what has to be reached before switching in again.
+fn switching_findings(prepared: &Prepared, result: &LimitResult, faults: &[FaultAnswers], findings: &mut Findings) {
+    if prepared.switching_in.is_none() {
+        let text = format!(
+            "{}: a share of the rated voltage of a bank on an alternating supply, and this one was charged from a \
+             direct voltage; nothing was checked.",
+            result.id
+        );
+        return findings.add(Severity::Note, "switching-in-not-checked", text);
+    }
+    let from = |time: f64| {
+        let time = time.is_finite().then(|| duration(Time::from_si(time), Direction::Up));
+        time.map_or_else(|| "never by itself".to_string(), |t| format!("from {t} on"))
+    };
+    let worst = |f: &FaultAnswers| {
+        let held = |r: &Requirement| holds_from(&r.fault, |b| f.worst(figure(r.pair, b)));
+        prepared.requirements.iter().map(held).fold(0.0, f64::max)
+    };
+    let failed = faults.iter().max_by(|x, y| worst(x).total_cmp(&worst(y)));
+    let failed = failed.map_or_else(String::new, |f| format!("; with {}: {}", f.fault.name, from(worst(f))));
+    findings.add(
+        Severity::Caution,
+        "switching-in-delay",
+        format!(
+            "{}: {}. Every test point is there {}{failed}. The delay of the controller has to be longer: capacitors that \
+             are switched in with a charge left draw a far higher current.",
+            result.id,
+            result.rule,
+            from(result.holds_from.map_or(f64::INFINITY, Quantity::si)),
+        ),
+    );
 }
 
 #[cfg(test)]

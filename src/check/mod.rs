@@ -12,6 +12,7 @@ mod fault_words;
 mod limits;
 mod notes;
 mod notice;
+mod phases;
 mod procedure;
 mod resistors;
 mod serial;
@@ -30,6 +31,7 @@ pub(crate) use equipment::equipment;
 pub(crate) use limits::LimitChecks;
 pub(crate) use notes::{assumptions, notes};
 pub(crate) use notice::notice;
+pub(crate) use phases::phase_findings;
 pub(crate) use procedure::{Procedure, StepAnswers};
 pub(crate) use resistors::ResistorChecks;
 pub(crate) use serial::{celsius_or_null, degrees, si, si_list, si_or_null};
@@ -54,7 +56,7 @@ pub use step_result::{
 };
 pub use stored::{Band, Stored};
 pub use verdict::Verdict;
-pub use waits::{FaultWait, Wait, WorstValue};
+pub use waits::{FaultWait, Interruption, Wait, WorstValue};
 
 /// A pair of nodes by name.
 pub type Pair = [String; 2];

@@ -3,7 +3,7 @@
 use super::waits::listed;
 use super::{CapacitorResult, ResistorResult, Verdict};
 use crate::bank::Bank;
-use crate::bank::description::Role;
+use crate::bank::description::{Neutral, Role, Source};
 use crate::circuit::Network;
 use crate::discharge::{Model, PartKind, absorption};
 use crate::finding::{Findings, Severity};
@@ -119,9 +119,7 @@ pub(crate) fn assumptions(bank: &Bank) -> Vec<String> {
         "The file describes every part that stores or drains charge, and no source is left connected after \
          isolation."
             .to_string(),
-        "The bank was charged long enough for its resistors to set the division of the voltage; a part without a \
-         resistive path to a terminal divides by capacitance, from uncharged."
-            .to_string(),
+        at_isolation(description.charged_to.source).to_string(),
         "Values lie within the tolerances given; the worst of them are used, at the highest voltage.".to_string(),
     ];
     if !bank.ambient_given() {
@@ -161,6 +159,28 @@ pub(crate) fn assumptions(bank: &Bank) -> Vec<String> {
         list.push(format!("At isolation {} at the voltage given, in every case.", stands(&own)));
     }
     list
+}
+
+/// What the voltages at isolation rest on.
+fn at_isolation(source: Source) -> &'static str {
+    match source {
+        Source::Direct | Source::Crest { .. } => {
+            "The bank was charged long enough for its resistors to set the division of the voltage; a part without a \
+             resistive path to a terminal divides by capacitance, from uncharged."
+        }
+        Source::ThreePhase { neutral: Neutral::Isolated, .. } => {
+            "Three phases, neutral isolated: the poles open one after the other, each when its own current is zero, in \
+             any order and at either polarity. Bleeders are neglected during the interruption and before it, since they \
+             carry little beside the capacitors at line frequency; a series resistor is taken to carry its capacitors' \
+             current without a drop. Nothing was trapped before."
+        }
+        Source::ThreePhase { neutral: Neutral::Grounded, .. } => {
+            "Three phases, neutral grounded (the node G, where the bank has one): the poles open one after the other, \
+             each when its own current is zero, in any order and at any polarity. Bleeders are neglected during the \
+             interruption and before it, since they carry little beside the capacitors at line frequency; a series \
+             resistor is taken to carry its capacitors' current without a drop. Nothing was trapped before."
+        }
+    }
 }
 
 fn stands(names: &[String]) -> String {

@@ -71,6 +71,7 @@ mod tests {
             settles_at: Voltage::from_si(0.0),
             at_isolation: Voltage::from_si(750.0),
             worst_point: Vec::new(),
+            interruption: None,
             faults: faults.iter().map(fault).collect(),
         }
     }

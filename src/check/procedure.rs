@@ -154,18 +154,21 @@ impl<'a> Procedure<'a> {
         Ok(StepAnswers { nominal: Vec::new(), worst, figures: figures.to_vec() })
     }
 
-    /// The bank through the steps in one scenario at one point of the box, at the highest voltage.
-    pub fn at(&self, scenario: &Scenario, point: &[f64]) -> Result<Timeline, EngineError> {
+    /// The bank through the steps in one scenario at one point of the box, at the highest voltage, from every state that
+    /// it can have at isolation.
+    pub fn at(&self, scenario: &Scenario, point: &[f64]) -> Result<Vec<Timeline>, EngineError> {
         Timeline::run(&self.setting(self.model, scenario, self.tried_from[2]), point)
             .map_err(EngineError::of("healthy, through the steps"))
     }
 
-    /// The healthy bank through the steps with every value nominal, at the nominal voltage.
+    /// The healthy bank through the steps with every value nominal, at the nominal voltage, from the first of the states
+    /// that it can have at isolation: what a supply does to an empty bank depends on none of them.
     pub fn nominal(&self) -> Result<Timeline, EngineError> {
         let scenario = Scenario::default();
         let point = vec![1.0; self.model.parameters.len()];
-        Timeline::run(&self.setting(self.model, &scenario, self.tried_from[1]), &point)
-            .map_err(EngineError::of("nominal, through the steps"))
+        let failed = EngineError::of("nominal, through the steps");
+        let all = Timeline::run(&self.setting(self.model, &scenario, self.tried_from[1]), &point).map_err(&failed)?;
+        all.into_iter().next().ok_or_else(|| failed(CircuitError::SearchNotClosed))
     }
 
     /// The numbers of the supplies that a step connects.
@@ -183,8 +186,10 @@ impl<'a> Procedure<'a> {
         let left = |stages: &[Stage]| {
             let setting = Setting { stages, ..self.setting(self.model, &scenario, self.tried_from[1]) };
             let point = vec![1.0; self.model.parameters.len()];
-            let timeline = Timeline::run(&setting, &point).map_err(EngineError::of("a meter's reading"))?;
-            Ok(timeline.across(stage, part.a, part.b).value(stages[stage].duration).abs())
+            let all = Timeline::run(&setting, &point).map_err(EngineError::of("a meter's reading"))?;
+            let volts =
+                |timeline: &Timeline| timeline.across(stage, part.a, part.b).value(stages[stage].duration).abs();
+            Ok(all.iter().map(volts).fold(0.0, f64::max))
         };
         let with = left(&stages)?;
         stages[stage].connected.retain(|r| *r != resistor);

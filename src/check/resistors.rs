@@ -279,15 +279,22 @@ impl ResistorChecks<'_> {
             role: resistor.role.word(),
             value: resistor.value,
             elements: resistor.series * resistor.parallel,
-            continuous_power: load.filter(|_| resistor.role.always_connected()).map(|l| Power::from_si(l.standing)),
+            continuous_power: load
+                .filter(|_| resistor.role.always_connected() && !carries_current(self.bank, resistor))
+                .map(|l| Power::from_si(l.standing)),
             allowed_power: derated(&resistor.rating, ambient),
             element_voltage: load.map(|l| Voltage::from_si(l.voltage)),
             peak_current: load.map(|l| Current::from_si(l.current)),
             peak_power: load.map(|l| Power::from_si(l.power)),
             energy: load.map(|l| Energy::from_si(l.energy)),
-            body_temperature: temperature,
-            checks: load
-                .map_or_else(Vec::new, |l| checks(&resistor.rating, l, ambient, resistor.role.always_connected())),
+            body_temperature: temperature.filter(|_| !carries_current(self.bank, resistor)),
+            checks: load.map_or_else(Vec::new, |l| {
+                let mut checks = checks(&resistor.rating, l, ambient, resistor.role.always_connected());
+                if carries_current(self.bank, resistor) {
+                    checks.iter_mut().filter(|c| ALTERNATING.contains(&c.check)).for_each(not_computed);
+                }
+                checks
+            }),
         }
     }
 
@@ -325,6 +332,20 @@ impl ResistorChecks<'_> {
             );
         }
     }
+}
+
+/// Checks that rest on the power before isolation.
+const ALTERNATING: [&str; 2] = ["continuous power", "body temperature"];
+
+/// A series resistor of a three-phase bank carries its capacitors' alternating current, which depends on the line
+/// frequency; what it dissipates before isolation is not computed.
+fn carries_current(bank: &Bank, resistor: &Resistor) -> bool {
+    bank.is_three_phase() && resistor.role == Role::Series
+}
+
+fn not_computed(check: &mut Check) {
+    (check.found, check.verdict) = (None, Verdict::NotChecked);
+    check.remark = Some("the alternating current of its capacitors is not computed".into());
 }
 
 /// The checks that apply to a load.

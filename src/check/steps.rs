@@ -199,8 +199,15 @@ impl<'a> StepCheck<'a> {
         let (a, b) = self.procedure.model.pairs[pair];
         let end = self.procedure.end();
         let scenario = self.healthy.worst_scenario(figure);
-        let course = self.procedure.at(&scenario, self.healthy.worst_point(figure))?.afterwards(a, b);
-        let (_, at) = course.greatest_magnitude().map_err(EngineError::of("healthy, after the last step"))?;
+        let all = self.procedure.at(&scenario, self.healthy.worst_point(figure))?;
+        let (mut course, mut greatest, mut at) = (Course::default(), f64::NEG_INFINITY, 0.0);
+        for timeline in all {
+            let this = timeline.afterwards(a, b);
+            let (voltage, when) = this.greatest_magnitude().map_err(EngineError::of("healthy, after the last step"))?;
+            if voltage > greatest {
+                (course, greatest, at) = (this, voltage, when);
+            }
+        }
         let touch = self.procedure.bank.description().touch_voltage.si();
         Ok(Recovery {
             across: self.pair_name(pair),

@@ -20,7 +20,7 @@ pub struct Stored {
     /// Greatest charge that a short at the terminals would pass, over the tolerance box at the highest voltage.
     #[serde(rename = "charge_highest_c", serialize_with = "si")]
     pub charge_highest: Charge,
-    /// Nominal charge over nominal voltage at the terminals; `None` at 0 V.
+    /// Nominal charge over nominal voltage at the terminals (first and last); `None` at 0 V.
     #[serde(rename = "capacitance_f", serialize_with = "si_or_null")]
     pub capacitance: Option<Capacitance>,
     /// Greatest voltage on the terminals, any test point or any capacitor at isolation, at the highest voltage.
@@ -64,11 +64,19 @@ impl StoredCheck<'_> {
         Figure::ChargeAt { pair: self.terminals, t: 0.0 }
     }
 
+    fn capacitance(&self) -> Figure {
+        Figure::Capacitance { pair: self.terminals }
+    }
+
     /// What has to be known of the healthy bank.
     pub fn figures(&self) -> Vec<Figure> {
         let capacitors = (0..self.model.capacitors.len()).map(|c| Figure::CapacitorVoltageAt { capacitor: c, t: 0.0 });
         let points = (0..self.model.pairs.len()).map(|pair| Figure::Start { pair });
-        [Figure::StoredAt { t: 0.0 }, self.charge()].into_iter().chain(points).chain(capacitors).collect()
+        [Figure::StoredAt { t: 0.0 }, self.charge(), self.capacitance()]
+            .into_iter()
+            .chain(points)
+            .chain(capacitors)
+            .collect()
     }
 
     /// What the bank holds.
@@ -83,7 +91,12 @@ impl StoredCheck<'_> {
         let voltage_highest = Voltage::from_si(greatest);
         let bands = bands(voltage_highest, energy_highest);
         let nominal = charged.nominal.si();
-        let capacitance = (nominal > 0.0).then(|| Capacitance::from_si(healthy.nominal(self.charge()) / nominal));
+        // What a switch traps on three phases is no multiple of their voltage: there, charge over the voltage trapped.
+        let farad = match self.bank.is_three_phase() {
+            true => healthy.nominal(self.capacitance()),
+            false => healthy.nominal(self.charge()) / nominal,
+        };
+        let capacitance = (nominal > 0.0).then(|| Capacitance::from_si(farad));
         if let Some(band) = bands.first() {
             findings.add(
                 Severity::Danger,

@@ -30,8 +30,22 @@ pub struct Wait {
     pub at_isolation: Voltage,
     /// The values of the loose parts at which the slowest wait was found.
     pub worst_point: Vec<WorstValue>,
+    /// Of a three-phase bank, in which order its poles opened in the worst cases.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub interruption: Option<Interruption>,
     /// The same with one part failed.
     pub faults: Vec<FaultWait>,
+}
+
+/// The orders of the poles that leave the worst at a test point: which opened first, and at which polarity each.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct Interruption {
+    /// Of the nominal wait.
+    pub nominal: String,
+    /// Of the slowest wait.
+    pub slowest: String,
+    /// Of the greatest voltage at isolation.
+    pub at_isolation: String,
 }
 
 /// The value that a loose part has at a worst point.
@@ -119,6 +133,7 @@ impl WaitCheck<'_> {
             slowest: finite(healthy.worst(self.wait(pair))),
             settles_at: Voltage::from_si(healthy.worst(Figure::Settles { pair })),
             at_isolation: Voltage::from_si(healthy.worst(Figure::Start { pair })),
+            interruption: self.interruption(pair, healthy),
             worst_point: self
                 .model
                 .parameters
@@ -128,6 +143,13 @@ impl WaitCheck<'_> {
                 .collect(),
             faults: faults.iter().map(fault_wait).collect(),
         }
+    }
+
+    /// `None` for a bank that has one state at isolation only.
+    fn interruption(&self, pair: usize, healthy: &Answers) -> Option<Interruption> {
+        let [nominal, slowest] = healthy.states(self.wait(pair))?.map(str::to_string);
+        let [_, at_isolation] = healthy.states(Figure::Start { pair })?.map(str::to_string);
+        Some(Interruption { nominal, slowest, at_isolation })
     }
 
     fn healthy_findings(&self, wait: &Wait, findings: &mut Findings) {

@@ -77,11 +77,28 @@ pub(super) fn held_potentials(
     edges: impl Iterator<Item = (usize, usize, f64)>,
     held: &[Option<f64>],
 ) -> Vec<Option<f64>> {
+    mixed_potentials(count, edges, held, &vec![0.0; count])
+}
+
+/// As [`held_potentials`], for a graph of capacitances whose free nodes carry the charges `charge`.
+pub(super) fn mixed_potentials(
+    count: usize,
+    edges: impl Iterator<Item = (usize, usize, f64)>,
+    held: &[Option<f64>],
+    charge: &[f64],
+) -> Vec<Option<f64>> {
     let mut graph = WeightedGraph::new(count, edges);
     let free = (0..count).filter(|n| held[*n].is_none()).collect();
+    let eliminated = graph.eliminate_all(free);
+    let mut charge = charge.to_vec();
+    for Eliminated { node, total, neighbours } in &eliminated {
+        for (j, w) in neighbours {
+            charge[*j] += charge[*node] * (w / total);
+        }
+    }
     let mut potential = held.to_vec();
-    for Eliminated { node, total, neighbours } in graph.eliminate_all(free).into_iter().rev() {
-        let mut sum = Some(0.0);
+    for Eliminated { node, total, neighbours } in eliminated.into_iter().rev() {
+        let mut sum = Some(charge[node] / total);
         for (j, w) in &neighbours {
             sum = sum.zip(potential[*j]).map(|(s, v)| s + w / total * v);
         }

@@ -4,6 +4,7 @@
 //! volt, ampere, coulomb, joule, second). The way through the room:
 //!
 //! 1. [`Network`] holds the parts; [`Network::operating_point`] gives the potentials before isolation.
+//!    For three phases, [`Network::interrupted_potentials`] gives what a switch leaves whose poles open one by one.
 //! 2. [`Modes`] turns a network into decay rates and shapes, to high relative accuracy.
 //! 3. [`Response`] is what follows from an initial state: every voltage as an [`ExpSum`],
 //!    `v(t) = v_inf + sum of a_k exp(-lambda_k t)`, with no time step anywhere (a constant power alone is
@@ -21,6 +22,7 @@ mod expsum;
 mod graph;
 mod greatest;
 mod grown;
+mod interruption;
 mod jacobi;
 mod laplacian;
 mod modes;
@@ -37,6 +39,7 @@ pub use crossing::LastExit;
 pub use drain::{Drain, Draw, Sink};
 pub use energy::EnergyCourse;
 pub use expsum::ExpSum;
+pub use interruption::{Feed, Phasor, three_phases};
 pub use modes::Modes;
 pub use network::{Edge, Network};
 pub use response::Response;

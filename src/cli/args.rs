@@ -79,6 +79,9 @@ pub(super) struct PlanArgs {
     /// Show the calculation so that it can be checked by hand
     #[arg(long)]
     pub working: bool,
+    /// Instead of the plan, print the bank file with plain parts only: three phases as their legs, kvar as farads
+    #[arg(long)]
+    pub expand: bool,
     /// How the plan is written
     #[arg(long, value_enum, default_value_t = PlanFormat::Text)]
     pub format: PlanFormat,

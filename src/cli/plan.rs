@@ -43,6 +43,9 @@ pub(super) fn run(typed: &PlanArgs, stdin: &mut dyn Read, output: &mut Output) -
             Err(problem) => return output.problem(&problem, INPUT_WRONG),
         }
     }
+    if typed.expand {
+        return output.result(&file::write(&bank.expanded()), 0);
+    }
     let options = Options { working: typed.working, ..Options::default() };
     match plan::plan(&bank, &sha256(&input.bytes), notes, options) {
         Ok(plan) => print(&plan, typed.format, output),

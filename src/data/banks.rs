@@ -11,6 +11,7 @@ pub fn demo_banks() -> &'static [(&'static str, &'static str)] {
         ("fast-charger", include_str!("../../data/banks/fast-charger.yaml")),
         ("filter", include_str!("../../data/banks/filter.yaml")),
         ("marx", include_str!("../../data/banks/marx.yaml")),
+        ("power-factor", include_str!("../../data/banks/power-factor.yaml")),
         ("pulse-capacitor", include_str!("../../data/banks/pulse-capacitor.yaml")),
         ("pump-drive", include_str!("../../data/banks/pump-drive.yaml")),
         ("supercap", include_str!("../../data/banks/supercap.yaml")),

@@ -1,7 +1,7 @@
 //! Published limits on what may be left in a capacitor, from `data/limits.json`.
 
 use super::raw::{optional, quantity, read_list};
-use crate::quantity::{Capacitance, Charge, Energy, Quantity, Time, Voltage};
+use crate::quantity::{Capacitance, Charge, Energy, Quantity, Ratio, Time, Voltage};
 use serde::Deserialize;
 use std::sync::LazyLock;
 
@@ -49,6 +49,12 @@ pub enum LimitKind {
         /// How many times the voltage is allowed with one part failed, where it differs.
         fault_factor: Option<f64>,
     },
+    /// A voltage that has to be reached before the bank is switched in again, as a share of the rated voltage. The
+    /// document names no time: the bank has one of its own.
+    BeforeSwitchingIn {
+        /// The voltage allowed over the rated one.
+        share: f64,
+    },
     /// A time to wait, with no voltage at all.
     Wait {
         /// How long.
@@ -90,6 +96,7 @@ struct RawPoint {
 enum RawKind {
     AnyOf,
     VoltageByCapacitance,
+    BeforeSwitchingIn,
     Wait,
 }
 
@@ -112,6 +119,7 @@ struct Raw {
     #[serde(default)]
     table: Vec<RawPoint>,
     fault_factor: Option<f64>,
+    share_of_rated: Option<String>,
 }
 
 fn alternatives(id: &str, raw: &[RawAlternative]) -> Result<Vec<Alternative>, String> {
@@ -145,6 +153,13 @@ fn make(raw: Raw) -> Result<PublishedLimit, String> {
         },
         RawKind::VoltageByCapacitance => {
             LimitKind::VoltageByCapacitance { table: table(id, &raw.table)?, within, fault_factor: raw.fault_factor }
+        }
+        RawKind::BeforeSwitchingIn => {
+            let share: Option<Ratio> = optional(id, raw.share_of_rated.as_deref())?;
+            let share = share.map(Quantity::si).filter(|share| *share > 0.0 && *share < 1.0);
+            LimitKind::BeforeSwitchingIn {
+                share: share.ok_or_else(|| format!("{id}: a share between 0 and 1 is due"))?,
+            }
         }
         RawKind::Wait => LimitKind::Wait { at_least: within.ok_or_else(|| format!("{id}: a wait without a time"))? },
     };
@@ -220,6 +235,8 @@ mod tests {
             r#""kind": "any-of", "alternatives": [], "within": "5 s""#,
             r#""kind": "any-of", "alternatives": [{"voltage": "60"}], "within": "5 s""#,
             r#""kind": "wait""#,
+            r#""kind": "before-switching-in""#,
+            r#""kind": "before-switching-in", "share_of_rated": "110 %""#,
             r#""kind": "voltage-by-capacitance", "table": [], "within": "2 s""#,
             r#""kind": "guess""#,
             r#""kind": "wait", "within": "5 min", "wihtin": "5 min""#,

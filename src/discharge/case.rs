@@ -1,49 +1,101 @@
-//! One scenario at one point of the tolerance box, solved.
+//! One scenario at one point of the tolerance box, solved: from every state that the bank can have at isolation.
 
-use super::model::Model;
+use super::model::{Model, Part};
 use super::scenario::Scenario;
-use crate::circuit::{CircuitError, Course, Drain, EnergyCourse, Modes, ShortCharge};
+use crate::circuit::{CircuitError, Course, Drain, EnergyCourse, Modes, Phasor, ShortCharge};
 use std::sync::Arc;
+
+/// Potentials before isolation.
+#[derive(Debug, Clone)]
+pub(crate) enum Before {
+    /// Of a DC bank, in volt.
+    Direct(Vec<f64>),
+    /// Of a three-phase bank: crests in volt.
+    Alternating(Vec<Phasor>),
+}
+
+impl Before {
+    /// The greatest voltage between two nodes of the network.
+    pub fn greatest(&self, a: usize, b: usize) -> f64 {
+        match self {
+            Before::Direct(v) => (v[a] - v[b]).abs(),
+            Before::Alternating(v) => (v[a][0] - v[b][0]).hypot(v[a][1] - v[b][1]),
+        }
+    }
+
+    /// The mean square of the voltage between two nodes of the network: what heats a resistor.
+    pub fn mean_square(&self, a: usize, b: usize) -> f64 {
+        let greatest = self.greatest(a, b);
+        match self {
+            Before::Direct(_) => greatest * greatest,
+            Before::Alternating(_) => 0.5 * greatest * greatest,
+        }
+    }
+}
 
 /// The moment of isolation under a scenario, at one point of the box.
 #[derive(Debug, Clone)]
 pub(crate) struct Start {
     /// For every node of the model, its node in the network (a shorted capacitor makes two one).
     pub map: Vec<usize>,
-    /// Potentials in volt of the network's nodes before isolation.
+    /// Potentials of the network's nodes before isolation.
+    pub before: Before,
+    /// The states that the bank can be in at isolation: one with DC, those that the poles leave with three phases.
+    pub states: Vec<State>,
+}
+
+/// One state at isolation.
+#[derive(Debug, Clone)]
+pub(crate) struct State {
+    /// Potentials in volt of the network's nodes.
     pub potentials: Vec<f64>,
-    /// Voltages in volt of the capacitors of the network after isolation.
+    /// Voltages in volt of the capacitors of the network.
     pub voltages: Vec<f64>,
 }
 
 impl Start {
-    /// The operating point with `volts` held across the terminals; capacitors with a voltage of their own take it.
+    /// The operating point with `volts` held across the terminals, or what the poles leave of `volts` from line to line;
+    /// capacitors with a voltage of their own take it.
     pub fn at_isolation(model: &Model, scenario: &Scenario, point: &[f64], volts: f64) -> Self {
         let map = model.merged(&scenario.after);
-        let before = model.network(&scenario.before, point, &[]);
-        let held: Vec<(usize, f64)> = match model.terminals.as_slice() {
-            [top, reference] => vec![(map[*top], volts), (map[*reference], 0.0)],
-            _ => Vec::new(),
+        let (before, all) = match &model.three_phase {
+            Some(three_phase) => {
+                let (phasors, left) = three_phase.potentials(model, &scenario.before, point, volts);
+                (Before::Alternating(phasors), left)
+            }
+            None => {
+                let before = model.network(&scenario.before, point, &[]);
+                let held: Vec<(usize, f64)> = match model.terminals.as_slice() {
+                    [top, reference] => vec![(map[*top], volts), (map[*reference], 0.0)],
+                    _ => Vec::new(),
+                };
+                let potentials = before.operating_point(&held);
+                (Before::Direct(potentials.clone()), vec![potentials])
+            }
         };
-        let potentials = before.operating_point(&held);
-        let there = model.capacitors.iter().zip(&model.own_voltages).filter(|(c, _)| map[c.a] != map[c.b]);
-        let voltages = there
-            .map(|(c, own)| {
+        let state = |potentials: Vec<f64>| {
+            let parts = model.capacitors.iter().zip(&model.own_voltages).enumerate();
+            let there = parts.filter(|(i, _)| model.is_there(&scenario.after, &map, *i));
+            let voltage = |c: &Part, own: &Option<f64>| {
                 let settled = potentials[map[c.a]] - potentials[map[c.b]];
                 own.filter(|_| !scenario.drops_own_voltages).unwrap_or(settled)
-            })
-            .collect();
-        Start { map, potentials, voltages }
+            };
+            let voltages = there.map(|(_, (c, own))| voltage(c, own)).collect();
+            State { potentials, voltages }
+        };
+        let chosen = all.into_iter().enumerate().filter(|(number, _)| scenario.state.is_none_or(|s| s == *number));
+        let states = chosen.map(|(_, potentials)| state(potentials)).collect();
+        Start { map, before, states }
     }
 }
 
-/// A solved scenario: the state before isolation and every voltage after it.
+/// A solved scenario from one state at isolation: what was before it and every voltage after it.
 #[derive(Debug)]
 pub(crate) struct Case {
     /// For every node of the model, its node in the network.
     pub map: Vec<usize>,
-    /// Potentials in volt of the network's nodes before isolation.
-    pub potentials: Vec<f64>,
+    /// Potentials of the network's nodes before isolation.
+    before: Arc<Before>,
     /// Resistances in ohm of all resistors of the model before and after isolation; infinite for open.
     pub before_ohms: Vec<f64>,
     pub after_ohms: Vec<f64>,
@@ -51,15 +103,24 @@ pub(crate) struct Case {
 }
 
 impl Case {
-    /// Solves `scenario` at `point` with `volts` across the terminals before isolation.
-    pub fn solve(model: &Model, scenario: &Scenario, point: &[f64], volts: f64) -> Result<Self, CircuitError> {
-        let Start { map, potentials, voltages } = Start::at_isolation(model, scenario, point, volts);
-        let after = model.network(&scenario.after, point, &[]);
-        let sinks = model.sinks(&map);
-        let response = Arc::new(Modes::new(after)?).drain(&voltages, &potentials, &sinks, &scenario.drawing(model))?;
+    /// Solves `scenario` at `point` with `volts` across the terminals before isolation, from every state.
+    pub fn solve(model: &Model, scenario: &Scenario, point: &[f64], volts: f64) -> Result<Vec<Self>, CircuitError> {
+        let Start { map, before, states } = Start::at_isolation(model, scenario, point, volts);
+        let after = Arc::new(Modes::new(model.network(&scenario.after, point, &[]))?);
         let before_ohms = model.ohms(&scenario.before, point, &[]);
         let after_ohms = model.ohms(&scenario.after, point, &[]);
-        Ok(Case { map, potentials, before_ohms, after_ohms, response })
+        let (sinks, drawing) = (model.sinks(&map), scenario.drawing(model));
+        let before = Arc::new(before);
+        let case = |state: State| {
+            Ok(Case {
+                map: map.clone(),
+                before: Arc::clone(&before),
+                before_ohms: before_ohms.clone(),
+                after_ohms: after_ohms.clone(),
+                response: after.drain(&state.voltages, &state.potentials, &sinks, &drawing)?,
+            })
+        };
+        states.into_iter().map(case).collect()
     }
 
     /// Voltage between two nodes of the model after isolation.
@@ -68,9 +129,14 @@ impl Case {
         if a == b { Course::default() } else { self.response.across(a, b) }
     }
 
-    /// Voltage in volt between two nodes of the model before isolation.
+    /// Greatest voltage in volt between two nodes of the model before isolation.
     pub fn before(&self, a: usize, b: usize) -> f64 {
-        self.potentials[self.map[a]] - self.potentials[self.map[b]]
+        self.before.greatest(self.map[a], self.map[b])
+    }
+
+    /// Mean square of the voltage between two nodes of the model before isolation.
+    pub fn before_mean_square(&self, a: usize, b: usize) -> f64 {
+        self.before.mean_square(self.map[a], self.map[b])
     }
 
     /// Charge in coulomb that a short between two nodes would pass, by the moment at which it closes.

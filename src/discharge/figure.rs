@@ -87,7 +87,7 @@ impl Figure {
             }
             Figure::StandingPower { resistor: r } => standing_power(model, case, r),
             Figure::ResistorVoltage { resistor: r } => {
-                let standing = case.before(model.resistors[r].a, model.resistors[r].b).abs();
+                let standing = case.before(model.resistors[r].a, model.resistors[r].b);
                 resistor(r).greatest_magnitude_over(floor.max(standing))?.0
             }
             Figure::PeakCurrent { resistor: r } => {
@@ -109,7 +109,7 @@ impl Figure {
             }
             Figure::CapacitorVoltage { capacitor } => {
                 let c = &model.capacitors[capacitor];
-                let standing = case.before(c.a, c.b).abs();
+                let standing = case.before(c.a, c.b);
                 case.across(c.a, c.b).greatest_magnitude_over(floor.max(standing))?.0
             }
             Figure::CapacitorVoltageAt { capacitor, t } => {
@@ -121,8 +121,7 @@ impl Figure {
 }
 
 fn standing_power(model: &Model, case: &Case, r: usize) -> f64 {
-    let volts = case.before(model.resistors[r].a, model.resistors[r].b);
-    per_ohm(volts * volts, case.before_ohms[r])
+    per_ohm(case.before_mean_square(model.resistors[r].a, model.resistors[r].b), case.before_ohms[r])
 }
 
 /// An open resistor carries nothing, whatever its voltage.

@@ -14,6 +14,7 @@ mod element;
 mod figure;
 mod model;
 mod moment;
+mod poles;
 mod scenario;
 mod study;
 mod timeline;

@@ -1,6 +1,7 @@
 //! The bank as numbered nodes and parts.
 
 use super::absorption::Branches;
+use super::poles::ThreePhase;
 use crate::bank::Bank;
 use crate::bank::description::{self, Capacitor, Lasts, Resistor, Supply};
 use crate::circuit::{CircuitError, Draw, Edge, Network, Sink};
@@ -101,6 +102,8 @@ pub(crate) struct Model {
     pub parameters: Vec<Parameter>,
     /// How many of the loose values are of parts that are there at all times; a passive discharge has no others.
     pub passive: usize,
+    /// How it was fed, where that was from three phases.
+    pub three_phase: Option<ThreePhase>,
 }
 
 /// What differs from the healthy bank.
@@ -108,7 +111,7 @@ pub(crate) struct Model {
 pub(crate) struct Variation {
     /// (resistor, factor on its value); infinite for open.
     pub resistor: Option<(usize, f64)>,
-    /// (capacitor, factor on its value).
+    /// (capacitor, factor on its value); zero for one that is not connected any more.
     pub capacitor: Option<(usize, f64)>,
     /// A capacitor that is a short: its nodes are one.
     pub shorted: Option<usize>,
@@ -168,6 +171,7 @@ impl Model {
                 model.pairs.push(pair);
             }
         }
+        model.three_phase = ThreePhase::of(bank, &model);
         Ok(model)
     }
 
@@ -296,7 +300,7 @@ impl Model {
     pub fn network(&self, variation: &Variation, point: &[f64], connected: &[usize]) -> Network {
         let map = self.merged(variation);
         let edge = |part: &Part, value: f64| Edge { a: map[part.a], b: map[part.b], value };
-        let there = |e: &Edge| e.a != e.b && e.value.is_finite();
+        let there = |e: &Edge| e.a != e.b && e.value.is_finite() && e.value > 0.0;
         let ohms = self.ohms(variation, point, connected);
         let farad = |i: usize, c: &Part| {
             let (index, factor) = variation.capacitor.unwrap_or((usize::MAX, 1.0));
@@ -313,6 +317,32 @@ impl Model {
             capacitors: capacitors.filter(there).collect(),
             sources: on.map(|s| Edge { a: s.inside, b: map[s.b], value: s.volts }).collect(),
         }
+    }
+
+    /// Whether a capacitor is in the network under `variation`: neither shorted nor open.
+    pub fn is_there(&self, variation: &Variation, map: &[usize], capacitor: usize) -> bool {
+        let part = &self.capacitors[capacitor];
+        let gone = |i: usize| i == capacitor || part.kind == PartKind::Absorbing(i);
+        let open = variation.capacitor.is_some_and(|(i, factor)| factor == 0.0 && gone(i));
+        map[part.a] != map[part.b] && !open
+    }
+
+    /// The network of what is there at all times, without absorption branches.
+    pub fn main_network(&self, variation: &Variation, point: &[f64]) -> Network {
+        let map = self.merged(variation);
+        let main: Vec<bool> = (0..self.capacitors.len())
+            .filter(|i| self.is_there(variation, &map, *i))
+            .map(|i| self.capacitors[i].kind == PartKind::Fixed)
+            .collect();
+        let mut network = self.network(variation, point, &[]);
+        let mut main = main.into_iter();
+        network.capacitors.retain(|_| main.next().unwrap_or(true));
+        network
+    }
+
+    /// For every absorption branch its own node and the node of its capacitor that a resistance ties it to.
+    pub fn absorbing_nodes(&self) -> impl Iterator<Item = (usize, usize)> {
+        self.resistors.iter().filter(|r| matches!(r.kind, PartKind::Absorbing(_))).map(|r| (r.b, r.a))
     }
 
     /// The middle of the box of a passive discharge.

@@ -2,6 +2,7 @@
 
 use super::body::Thermal;
 use super::model::{Model, Parameter, PartKind};
+use super::study::greatest;
 use super::timeline::{Setting, Timeline};
 use super::worst::Objective;
 use crate::circuit::{CircuitError, Course, Draw, ExpSum, Sink};
@@ -104,7 +105,7 @@ pub(crate) struct CourseStudy<'a> {
 }
 
 impl Objective for CourseStudy<'_> {
-    type Case = Timeline;
+    type Case = Vec<Timeline>;
 
     fn parameters(&self) -> &[Parameter] {
         &self.setting.model.parameters
@@ -118,7 +119,7 @@ impl Objective for CourseStudy<'_> {
         self.most_corners
     }
 
-    fn case(&self, point: &[f64]) -> Result<Timeline, CircuitError> {
+    fn case(&self, point: &[f64]) -> Result<Vec<Timeline>, CircuitError> {
         Timeline::run(&self.setting, point)
     }
 
@@ -133,16 +134,16 @@ impl Objective for CourseStudy<'_> {
         }
     }
 
-    fn case_for(&self, index: usize, point: &[f64]) -> Result<Timeline, CircuitError> {
+    fn case_for(&self, index: usize, point: &[f64]) -> Result<Vec<Timeline>, CircuitError> {
         let needed = self.moments[index].stage() + 1;
         Timeline::run(&Setting { stages: &self.setting.stages[..needed], ..self.setting }, point)
     }
 
-    fn certify(&self, case: &Timeline) -> Result<(), CircuitError> {
-        case.certify()
+    fn certify(&self, cases: &Vec<Timeline>) -> Result<(), CircuitError> {
+        cases.iter().try_for_each(Timeline::certify)
     }
 
-    fn figure(&self, index: usize, case: &Timeline, _: f64) -> Result<f64, CircuitError> {
-        self.moments[index].of(self.setting.model, case)
+    fn figure(&self, index: usize, cases: &Vec<Timeline>, floor: f64) -> Result<f64, CircuitError> {
+        greatest(cases, floor, |timeline, _| self.moments[index].of(self.setting.model, timeline))
     }
 }

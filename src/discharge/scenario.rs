@@ -13,6 +13,8 @@ pub(crate) struct Scenario {
     pub drops_own_voltages: bool,
     /// Sinks that draw nothing, by number.
     pub idle_sinks: Vec<usize>,
+    /// Only this one of the states that the bank can have at isolation (those of [`super::case::Start`]); `None` for all of them.
+    pub state: Option<usize>,
 }
 
 /// Up to this many sinks that no wait relies on, every choice of which of them draw is tried; beyond, none, all, and
@@ -28,7 +30,7 @@ pub(crate) fn healthy(model: &Model) -> Vec<Scenario> {
 /// One part failed, and the scenarios of which the worst counts.
 #[derive(Debug, Clone)]
 pub(crate) struct Fault {
-    /// `R1 open`, `R2 absent`, `C1 shorted`, `C1 one unit shorted`, `K1 dead`.
+    /// `R1 open`, `R2 absent`, `C1 shorted`, `C1 one unit shorted`, `K1 dead`; in a three-phase bank `CB.AB open` too.
     pub name: String,
     /// The part.
     pub id: String,
@@ -64,7 +66,7 @@ impl Scenario {
     }
 
     fn settled(variation: Variation) -> Self {
-        Scenario { before: variation.clone(), after: variation, drops_own_voltages: false, idle_sinks: Vec::new() }
+        Scenario { before: variation.clone(), after: variation, ..Scenario::default() }
     }
 }
 
@@ -81,22 +83,33 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
         let lost = Variation { resistor: Some((index, factor)), ..Variation::default() };
         let at_isolation = Scenario { after: lost.clone(), ..Scenario::default() };
         let mut scenarios = vec![Scenario::settled(lost)];
-        if resistor.role != Role::Leakage {
-            // A part breaks at a moment; leakage that is absent was never there.
+        // A part breaks at a moment; leakage that is absent was never there. What no alternating current passes has no
+        // say in the state of a three-phase bank at isolation: both moments are one.
+        if resistor.role != Role::Leakage && (model.three_phase.is_none() || resistor.role == Role::Series) {
             scenarios.push(at_isolation);
         }
         faults.push(Fault { name: format!("{} {word}", resistor.id), id: resistor.id.clone(), scenarios });
     }
     for (index, capacitor) in bank.description().capacitors.iter().enumerate() {
         let part = &model.capacitors[index];
-        let at_terminals = model.terminals.contains(&part.a) && model.terminals.contains(&part.b);
-        if !at_terminals {
+        let earth = model.three_phase.as_ref().and_then(|three| three.earth);
+        let is_held = |node: usize| model.terminals.contains(&node) || earth == Some(node);
+        if !(is_held(part.a) && is_held(part.b)) {
             let variation = Variation { shorted: Some(index), ..Variation::default() };
             let scenario = Scenario { drops_own_voltages: true, ..Scenario::settled(variation) };
             faults.push(Fault {
                 name: format!("{} shorted", capacitor.id),
                 id: capacitor.id.clone(),
                 scenarios: vec![scenario],
+            });
+        }
+        if model.three_phase.is_some() {
+            // A fuse has blown, or the leg has come open: long before isolation, and nobody noticed.
+            let variation = Variation { capacitor: Some((index, 0.0)), ..Variation::default() };
+            faults.push(Fault {
+                name: format!("{} open", capacitor.id),
+                id: capacitor.id.clone(),
+                scenarios: vec![Scenario::settled(variation)],
             });
         }
         if capacitor.series > 1 {

@@ -4,9 +4,10 @@
 //! two steps the network is linear, so every voltage is a sum of exponentials of its own.
 
 use super::body::Thermal;
-use super::case::Start;
+use super::case::{Start, State};
 use super::model::{Model, Parameter, PartKind};
 use super::scenario::Scenario;
+use super::study::greatest;
 use super::worst::Objective;
 use crate::circuit::{CircuitError, Course, Drain, Modes};
 use std::sync::Arc;
@@ -37,6 +38,10 @@ pub(crate) struct Timeline {
     map: Vec<usize>,
     /// Power in watt of every resistor before isolation.
     standing: Vec<f64>,
+    /// Greatest voltage across every resistor before isolation, 0 for one that is not connected.
+    standing_volts: Vec<f64>,
+    /// Which capacitors of the model are in the network.
+    present: Vec<bool>,
     runs: Vec<Run>,
 }
 
@@ -52,44 +57,69 @@ pub(crate) struct Setting<'a> {
     pub stages: &'a [Stage],
 }
 
-impl Timeline {
-    /// Runs a procedure at one point of the box.
-    pub fn run(setting: &Setting, point: &[f64]) -> Result<Self, CircuitError> {
-        let Setting { model, scenario, .. } = *setting;
-        let Start { map, potentials, voltages } = Start::at_isolation(model, scenario, point, setting.volts);
-        let before = model.ohms(&scenario.before, point, &[]);
-        let power = |(r, ohm): (&super::model::Part, f64)| {
-            if ohm.is_finite() { (potentials[map[r.a]] - potentials[map[r.b]]).powi(2) / ohm } else { 0.0 }
-        };
-        let standing = model.resistors.iter().zip(before).map(power).collect();
-        let sinks = model.sinks(&map);
-        let mut drawing = scenario.drawing(model);
-        let mut timeline = Timeline { map, standing, runs: Vec::with_capacity(setting.stages.len()) };
-        let (mut voltages, mut potentials) = (voltages, potentials);
+/// What a step is before anything is known of the state in which it begins.
+struct Step {
+    modes: Arc<Modes>,
+    ohms: Vec<f64>,
+    /// For each voltage that a connected supply is tried from, the states that it can leave.
+    tried_from: Vec<Vec<State>>,
+}
+
+impl Setting<'_> {
+    fn solved_steps(&self, point: &[f64]) -> Result<Vec<Step>, CircuitError> {
+        let Setting { model, scenario, .. } = *self;
         let mut last: Option<(&[usize], Arc<Modes>)> = None;
-        for stage in setting.stages {
+        let mut steps = Vec::with_capacity(self.stages.len());
+        for stage in self.stages {
             // A step that connects and lifts nothing goes on with the network of the step before.
             let modes = match last {
                 Some((connected, modes)) if *connected == stage.connected => modes,
                 _ => Arc::new(Modes::new(model.network(&scenario.after, point, &stage.connected))?),
             };
             last = Some((&stage.connected, Arc::clone(&modes)));
-            let response = modes.drain(&voltages, &potentials, &sinks, &drawing)?;
-            let mut tries = Vec::new();
-            if stage.tried {
-                for volts in setting.tried_from {
-                    let from = Scenario { drops_own_voltages: true, ..scenario.clone() };
-                    let start = Start::at_isolation(model, &from, point, *volts);
-                    tries.push(modes.drain(&start.voltages, &start.potentials, &sinks, &drawing)?);
-                }
-            }
-            voltages = response.voltages_at(stage.duration);
-            potentials = response.potentials_at(stage.duration);
-            drawing = response.drawing_at(stage.duration).to_vec();
-            let ohms = model.ohms(&scenario.after, point, &stage.connected);
-            timeline.runs.push(Run { response, ohms, duration: stage.duration, tries });
+            let from = Scenario { drops_own_voltages: true, ..scenario.clone() };
+            let volts = if stage.tried { self.tried_from } else { &[] };
+            let tried_from = volts.iter().map(|v| Start::at_isolation(model, &from, point, *v).states).collect();
+            steps.push(Step { modes, ohms: model.ohms(&scenario.after, point, &stage.connected), tried_from });
         }
-        Ok(timeline)
+        Ok(steps)
+    }
+}
+
+impl Timeline {
+    /// Runs a procedure at one point of the box, from every state that the bank can have at isolation.
+    pub fn run(setting: &Setting, point: &[f64]) -> Result<Vec<Self>, CircuitError> {
+        let Setting { model, scenario, .. } = *setting;
+        let Start { map, before, states } = Start::at_isolation(model, scenario, point, setting.volts);
+        let ohms = model.ohms(&scenario.before, point, &[]);
+        let parts = || model.resistors.iter().zip(&ohms).map(|(r, ohm)| (map[r.a], map[r.b], *ohm));
+        let standing: Vec<f64> =
+            parts().map(|(a, b, ohm)| if ohm.is_finite() { before.mean_square(a, b) / ohm } else { 0.0 }).collect();
+        let standing_volts: Vec<f64> =
+            parts().map(|(a, b, ohm)| if ohm.is_finite() { before.greatest(a, b) } else { 0.0 }).collect();
+        let present: Vec<bool> =
+            (0..model.capacitors.len()).map(|c| model.is_there(&scenario.after, &map, c)).collect();
+        let steps = setting.solved_steps(point)?;
+        let sinks = model.sinks(&map);
+        let timeline = |(number, state): (usize, State)| {
+            let mut runs = Vec::with_capacity(steps.len());
+            let mut drawing = scenario.drawing(model);
+            let State { mut voltages, mut potentials } = state;
+            for (Step { modes, ohms, tried_from }, stage) in steps.iter().zip(setting.stages) {
+                let response = modes.drain(&voltages, &potentials, &sinks, &drawing)?;
+                let from = tried_from.iter().filter_map(|states| states.get(number));
+                let tries = from
+                    .map(|start| modes.drain(&start.voltages, &start.potentials, &sinks, &drawing))
+                    .collect::<Result<_, CircuitError>>()?;
+                voltages = response.voltages_at(stage.duration);
+                potentials = response.potentials_at(stage.duration);
+                drawing = response.drawing_at(stage.duration).to_vec();
+                runs.push(Run { response, ohms: ohms.clone(), duration: stage.duration, tries });
+            }
+            let (map, standing, standing_volts) = (map.clone(), standing.clone(), standing_volts.clone());
+            Ok(Timeline { map, standing, standing_volts, present: present.clone(), runs })
+        };
+        states.into_iter().enumerate().map(timeline).collect()
     }
 
     /// Voltage between two nodes of the model during a step, from its start.
@@ -286,7 +316,8 @@ pub(crate) struct ProcedureStudy<'a> {
 }
 
 impl Objective for ProcedureStudy<'_> {
-    type Case = Timeline;
+    /// The procedure from every state that the bank can have at isolation; a figure is the greatest of theirs.
+    type Case = Vec<Timeline>;
 
     fn parameters(&self) -> &[Parameter] {
         &self.setting.model.parameters
@@ -300,7 +331,7 @@ impl Objective for ProcedureStudy<'_> {
         self.most_corners
     }
 
-    fn case(&self, point: &[f64]) -> Result<Timeline, CircuitError> {
+    fn case(&self, point: &[f64]) -> Result<Vec<Timeline>, CircuitError> {
         Timeline::run(&self.setting, point)
     }
 
@@ -330,7 +361,7 @@ impl Objective for ProcedureStudy<'_> {
         }
     }
 
-    fn case_for(&self, index: usize, point: &[f64]) -> Result<Timeline, CircuitError> {
+    fn case_for(&self, index: usize, point: &[f64]) -> Result<Vec<Timeline>, CircuitError> {
         let needed = match self.figures[index] {
             StepFigure::Voltage { stage, .. }
             | StepFigure::CapacitorVoltage { stage, .. }
@@ -347,18 +378,18 @@ impl Objective for ProcedureStudy<'_> {
         Timeline::run(&Setting { stages: &self.setting.stages[..needed], ..self.setting }, point)
     }
 
-    fn certify(&self, case: &Timeline) -> Result<(), CircuitError> {
-        case.certify()
+    fn certify(&self, cases: &Vec<Timeline>) -> Result<(), CircuitError> {
+        cases.iter().try_for_each(Timeline::certify)
     }
 
-    fn figure(&self, index: usize, case: &Timeline, floor: f64) -> Result<f64, CircuitError> {
-        self.figures[index].of(self.setting.model, case, floor)
+    fn figure(&self, index: usize, cases: &Vec<Timeline>, floor: f64) -> Result<f64, CircuitError> {
+        greatest(cases, floor, |timeline, floor| self.figures[index].of(self.setting.model, timeline, floor))
     }
 }
 
 impl StepFigure {
     fn of(&self, model: &Model, timeline: &Timeline, floor: f64) -> Result<f64, CircuitError> {
-        let Timeline { map, runs, standing } = timeline;
+        let Timeline { map, runs, standing, standing_volts, present } = timeline;
         let at_pair = |stage: usize, pair: usize| timeline.across(stage, model.pairs[pair].0, model.pairs[pair].1);
         let all = |of: &dyn Fn(&Run) -> Result<f64, CircuitError>| -> Result<Vec<f64>, CircuitError> {
             runs.iter().map(of).collect()
@@ -386,7 +417,7 @@ impl StepFigure {
             },
             StepFigure::ReadyEnergy { stage } => {
                 let network = runs[stage].response.network();
-                let there = model.capacitors.iter().filter(|c| map[c.a] != map[c.b]);
+                let there = model.capacitors.iter().zip(present).filter(|(_, there)| **there).map(|(c, _)| c);
                 let voltages = runs[stage].response.voltages_at(0.0);
                 let parts = there.zip(&network.capacitors).zip(voltages);
                 parts.filter(|((c, _), _)| c.kind == PartKind::Fixed).map(|((_, e), u)| 0.5 * e.value * u * u).sum()
@@ -402,8 +433,7 @@ impl StepFigure {
             StepFigure::PartVoltage { resistor } => {
                 let peaks = greatest(all(&|run| run.peak(model, map, resistor))?);
                 let fixed = model.resistors[resistor].kind != PartKind::Switched;
-                let ohms = runs.first().map_or(f64::INFINITY, |run| run.ohms[resistor]);
-                if fixed && ohms.is_finite() { peaks.max((standing[resistor] * ohms).sqrt()) } else { peaks }
+                if fixed { peaks.max(standing_volts[resistor]) } else { peaks }
             }
             StepFigure::PartCurrent { resistor } => {
                 greatest(all(&|run| Ok(per_ohm(run.peak(model, map, resistor)?, run.ohms[resistor])))?)

@@ -9,7 +9,8 @@ pub use result::*;
 use crate::bank::Bank;
 use crate::check::{
     Answers, CapacitorCheck, CurveCheck, FaultAnswers, LimitChecks, Procedure, ResistorChecks, StepCheck, StoredCheck,
-    WaitCheck, assumptions, equipment, notes, notice, remaining_energy, step_assumptions, step_findings,
+    WaitCheck, assumptions, equipment, notes, notice, phase_findings, remaining_energy, step_assumptions,
+    step_findings,
 };
 use crate::discharge::{Figure, MOST_CORNERS, Model, faults};
 use crate::finding::{Findings, Severity};
@@ -51,10 +52,10 @@ pub struct Options {
 /// ```
 pub fn plan(bank: &Bank, input_sha256: &str, noticed: Findings, options: Options) -> Result<Plan, EngineError> {
     let mut findings = noticed;
+    // From here on every part is a plain one: the plan of a file and that of its expanded form are the same.
+    let bank = &bank.expanded();
     let mut plan = blank(bank, input_sha256);
-    if !bank.is_three_phase() {
-        compute(bank, &mut plan, &mut findings, &options)?;
-    }
+    compute(bank, &mut plan, &mut findings, &options)?;
     for missing in &plan.not_computed {
         findings.add(Severity::Warning, "not-computed", format!("Not computed by this version: {missing}."));
     }
@@ -100,6 +101,7 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: &Opti
         plan.assumptions.extend(step_assumptions(&steps));
     }
     plan.capacitors = capacitors.conclude(&healthy, &under_faults, findings);
+    phase_findings(bank, &model, &healthy, &plan.waits, findings);
     notes(bank, &model, &plan.resistors, &plan.capacitors, findings);
     plan.worst_case_search = search_used(model.passive);
     if options.working {
@@ -141,7 +143,8 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
             input_sha256: input_sha256.to_string(),
         },
         verdict: Verdict::NotChecked,
-        not_computed: not_computed(bank),
+        // Every part of the format is computed; a later one that is only read would be named here.
+        not_computed: Vec::new(),
         touch_voltage: description.touch_voltage,
         hold_energy: description.hold_energy,
         ambient: bank.ambient(),
@@ -163,12 +166,6 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
         working: None,
         curves: None,
     }
-}
-
-/// Parts of the description that this version reads but does not compute.
-fn not_computed(bank: &Bank) -> Vec<String> {
-    let three_phase = "a three-phase bank: no wait, energy or rating is computed";
-    bank.is_three_phase().then(|| three_phase.to_string()).into_iter().collect()
 }
 
 /// Which search found the worst cases, in one sentence.

@@ -11,8 +11,8 @@ use serde::Serialize;
 pub use crate::check::{
     Band, CapacitorResult, Charging, ChargingMoment, Check, CurveLoad, CurvePair, CurvePart, CurveSample, CurveSpan,
     CurveTimes, CurveTool, CurveVoltage, Curves, Equipment, EquipmentPart, FaultPoint, FaultReading, FaultWait,
-    LimitResult, LimitSource, Notice, NoticeFault, Pair, Recovery, ResistorResult, StepFault, StepHold, StepPart,
-    StepPoint, StepReading, StepResult, Stored, ToolLoad, Verdict, Wait, WorstValue,
+    Interruption, LimitResult, LimitSource, Notice, NoticeFault, Pair, Recovery, ResistorResult, StepFault, StepHold,
+    StepPart, StepPoint, StepReading, StepResult, Stored, ToolLoad, Verdict, Wait, WorstValue,
 };
 
 /// Everything that a plan says about one bank.

@@ -3,12 +3,15 @@
 use super::result::{Wait, Working, WorkingMode, WorkingSingle, WorkingValue};
 use crate::bank::Bank;
 use crate::check::EngineError;
+use crate::circuit::CircuitError;
 use crate::discharge::{Case, Model, Part, PartKind, Scenario};
 use crate::quantity::{Capacitance, Quantity, Resistance, Time, Voltage};
 
+/// One state of a scenario: the first, where it leaves several open.
 fn solve(model: &Model, scenario: &Scenario, point: &[f64], volts: Voltage) -> Result<Case, EngineError> {
     let failed = |cause| EngineError { scenario: "healthy".into(), cause };
-    Case::solve(model, scenario, point, volts.si()).map_err(failed)
+    let mut states = Case::solve(model, scenario, point, volts.si()).map_err(failed)?.into_iter();
+    states.next().ok_or_else(|| failed(CircuitError::SearchNotClosed))
 }
 
 /// Nominal time constants in second, the slowest first.
@@ -30,12 +33,12 @@ pub(super) fn working(
     let mut list = Vec::with_capacity(2 * waits.len());
     for (pair, wait) in waits.iter().enumerate() {
         let worst: Vec<f64> = wait.worst_point.iter().map(|w| w.factor).collect();
-        let cases = [
-            ("nominal", model.nominal_point(), charged.nominal, wait.nominal),
-            ("slowest", worst, charged.highest, wait.slowest),
-        ];
-        let scenario = governing(pair);
-        for (name, point, volts, time) in cases {
+        let states = wait.interruption.as_ref();
+        let nominal = (states.map(|i| &i.nominal), model.nominal_point(), charged.nominal, wait.nominal);
+        let slowest = (states.map(|i| &i.slowest), worst, charged.highest, wait.slowest);
+        for (name, (state, point, volts, time)) in [("nominal", nominal), ("slowest", slowest)] {
+            let scenario = Scenario { state: model.find_state(state.map(String::as_str)), ..governing(pair) };
+            let name = state.map_or_else(|| name.to_string(), |state| format!("{name}, {state}"));
             list.push(worked(bank, (model, &scenario), (pair, name), &point, volts, time)?);
         }
     }
@@ -50,7 +53,7 @@ fn resistors_of(model: &Model) -> impl Iterator<Item = &Part> {
 fn worked(
     bank: &Bank,
     (model, scenario): (&Model, &Scenario),
-    (pair, name): (usize, &str),
+    (pair, name): (usize, String),
     point: &[f64],
     volts: Voltage,
     wait: Option<Time>,
@@ -91,7 +94,7 @@ fn worked(
     };
     Ok(Working {
         across: [model.node_names[a].clone(), model.node_names[b].clone()],
-        case: name.to_string(),
+        case: name,
         values: resistors.chain(capacitors).collect(),
         charged_to: volts,
         from: (!course.pieces().is_empty()).then(|| Time::from_si(course.last_start())),

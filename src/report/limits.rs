@@ -60,6 +60,7 @@ fn entry(limit: &PublishedLimit) -> Vec<Labelled> {
 fn within(limit: &PublishedLimit) -> Option<Time> {
     match &limit.kind {
         LimitKind::AnyOf { within, .. } | LimitKind::VoltageByCapacitance { within, .. } => *within,
+        LimitKind::BeforeSwitchingIn { .. } => None,
         LimitKind::Wait { at_least } => Some(*at_least),
     }
 }

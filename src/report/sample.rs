@@ -33,6 +33,7 @@ fn wait(across: Pair, at: f64, nominal: f64, slowest: f64, faults: Vec<FaultWait
         settles_at: v(0.0),
         at_isolation: v(at),
         worst_point: vec![WorstValue { id: "R1".into(), factor: 1.05 }],
+        interruption: None,
         faults,
     }
 }

@@ -150,7 +150,17 @@ struct Wait {
     settles_at_v: f64,
     at_isolation_v: f64,
     worst_point: Vec<Worst>,
+    /// Only of a three-phase bank.
+    interruption: Option<Interruption>,
     faults: Vec<Fault>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Interruption {
+    nominal: String,
+    slowest: String,
+    at_isolation: String,
 }
 
 #[derive(Deserialize)]
@@ -382,6 +392,10 @@ fn every_example_bank_has_the_documented_keys_and_finite_numbers() {
             assert!(wait.slowest_s.is_none() || wait.slowest_s >= wait.nominal_s);
             let never = wait.nominal_s.is_none() || wait.slowest_s.is_none();
             assert_eq!(wait.keep_s.is_none(), never);
+            assert_eq!(wait.interruption.is_some(), plan.terminals.len() == 3);
+            if let Some(Interruption { nominal, slowest, at_isolation }) = &wait.interruption {
+                assert!([nominal, slowest, at_isolation].iter().all(|order| order.contains(&plan.terminals[0])));
+            }
             assert!(never || (wait.keep_s >= wait.slowest_s && wait.keep_s >= wait.nominal_s));
             assert!(wait.settles_at_v >= 0.0 && wait.at_isolation_v >= 0.0);
             assert!(wait.slowest_s.is_some() || wait.settles_at_v > plan.touch_voltage_v);

@@ -45,13 +45,30 @@ fn a_wait_of_never_with_every_part_healthy_is_status_1() {
 }
 
 #[test]
-fn a_part_that_is_not_computed_is_status_3_under_a_heading_that_says_so() {
+fn a_three_phase_bank_is_judged_from_the_worst_that_its_poles_leave() {
     let run = run_with(&["plan", "-"], THREE_PHASES.as_bytes());
-    assert_eq!((run.status, run.err.as_str()), (3, ""));
-    assert!(run.out.starts_with("*** INCOMPLETE ***\n"), "{}", run.out);
-    for part in ["NOT TO BE RELIED ON", "three-phase bank", "Verdict: INCOMPLETE."] {
-        assert!(run.out.contains(part), "{part}: {}", run.out);
+    assert_eq!((run.status, run.err.as_str()), (1, ""));
+    let text = run.out.split_whitespace().collect::<Vec<_>>().join(" ");
+    for part in
+        ["NOT MET iec-60831-1", "of the crest from line to line (623 V)", "(+) first, then", "Verdict: NOT MET."]
+    {
+        assert!(text.contains(part), "{part}: {}", run.out);
     }
+    assert_eq!(status(&THREE_PHASES.replace("268 kohm", "150 kohm")), 0);
+}
+
+#[test]
+fn a_three_phase_bank_expands_to_plain_parts_with_the_same_figures() {
+    let expanded = run_with(&["plan", "-", "--expand"], THREE_PHASES.as_bytes());
+    assert_eq!((expanded.status, expanded.err.as_str()), (0, ""));
+    assert!(expanded.out.contains("id: CB.CA") && !expanded.out.contains("connection"), "{}", expanded.out);
+    let figures = |text: &str| {
+        let run = run_with(&["plan", "-", "--format", "json"], text.as_bytes());
+        let mut plan: serde_json::Value = serde_json::from_str(&run.out).expect("JSON");
+        plan["bank"]["input_sha256"] = serde_json::Value::Null;
+        plan
+    };
+    assert_eq!(figures(THREE_PHASES), figures(&expanded.out));
 }
 
 #[test]

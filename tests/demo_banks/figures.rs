@@ -129,6 +129,37 @@ fn the_filter_is_as_worked_out_by_hand() {
 }
 
 #[test]
+fn the_power_factor_bank_is_as_worked_out_by_hand() {
+    let plan = &bare_plans()["power-factor"];
+    let farads = 50e3 / (3.0 * std::f64::consts::TAU * 50.0 * 400.0 * 400.0);
+    let crest = 2f64.sqrt() * 400.0;
+    let factor = (1.0 + 3f64.sqrt()) / 2.0;
+    equals("crest", plan.charged_to.nominal.si(), crest);
+    // Across two terminals one unit, and beside it two in series: one and a half.
+    equals("capacitance", plan.stored.as_ref().and_then(|s| s.capacitance).expect("charged").si(), 1.5 * farads);
+    for tau in &plan.time_constants {
+        equals("time constant", tau.si(), 150e3 * farads);
+    }
+    for pair in [["A", "B"], ["B", "C"], ["A", "C"]] {
+        let [nominal, slowest] = waits(plan, pair);
+        equals("nominal", nominal, 150e3 * farads * (factor * crest / 50.0).ln());
+        shows("nominal", nominal, 136.0, 1.0);
+        shows("slowest", slowest, 163.0, 1.0);
+        // Equal units at their highest are one point of the box; the worst is no less.
+        let equal = 150e3 * 1.05 * farads * 1.1 * (factor * 1.1 * crest / 50.0).ln();
+        assert!(slowest >= equal * (1.0 - 1e-12), "{slowest} {equal}");
+        let point = plan.waits.iter().find(|w| w.across == pair).expect("a test point");
+        shows("left by the poles", point.at_isolation.si(), 874.0, 1.0);
+    }
+    // The unit itself at the crest, and then at what the poles leave of it.
+    let bleeder = &plan.resistors[0];
+    equals("standing", bleeder.continuous_power.expect("connected").si(), 440.0 * 440.0 / (150e3 * 0.95));
+    for fault in ["RD.AB open", "RD.BC open", "RD.CA open"] {
+        assert!(under(plan, fault) > 8.0 * 60.0 && under(plan, fault) < 8.0 * 60.0 + 15.0, "{}", under(plan, fault));
+    }
+}
+
+#[test]
 fn the_pump_drive_is_as_worked_out_by_hand() {
     let plan = &bare_plans()["pump-drive"];
     equals("capacitance", plan.stored.as_ref().and_then(|s| s.capacitance).expect("charged").si(), 3300e-6);

@@ -60,7 +60,7 @@ fn every_bank_and_the_draft_meet_their_limits_and_ratings() {
 
 /// Where the plans of these banks may have null: what the file does not give, a wait that never ends under a fault, and
 /// figures of a resistor that only a step connects. Anywhere else it would stand for a figure that is lost.
-const MAY_BE_NULL: [&str; 31] = [
+const MAY_BE_NULL: [&str; 34] = [
     ".bank.location",
     ".bank.notes",
     ".bank.prepared_by",
@@ -75,8 +75,11 @@ const MAY_BE_NULL: [&str; 31] = [
     ".equipment.parts.rated_voltage_v",
     ".hold_energy_j",
     ".limits.allowed_voltage_v",
+    ".limits.met",
+    ".limits.single_fault_met",
     ".limits.single_fault_missed_by",
     ".limits.source",
+    ".limits.within_s",
     ".notice.left_v",
     ".recovery.at_s",
     ".recovery.passes_touch_at_s",
@@ -110,6 +113,13 @@ fn the_json_of_every_plan_has_finite_numbers_only() {
     for (name, plan) in plans() {
         let json: Value = serde_json::from_str(&plan_json(plan).expect("finite")).expect("JSON");
         check_numbers("", &json);
+        // Only a limit that names no time is neither met nor missed; the bank's own time is there all the same.
+        for limit in json["limits"].as_array().expect("a list") {
+            let timeless = limit["within_s"].is_null();
+            assert_eq!(limit["met"].is_null(), timeless, "{name}: {limit}");
+            assert_eq!(limit["single_fault_met"].is_null(), timeless, "{name}: {limit}");
+            assert!(limit["holds_from_s"].is_number(), "{name}: {limit}");
+        }
         // A part that a step connects has no standing load; all others have their figures.
         for resistor in json["resistors"].as_array().expect("a list") {
             let connected = !["tool", "strap", "meter"].contains(&resistor["role"].as_str().expect("a role"));

@@ -50,7 +50,8 @@ const LIMITS: [(&str, f64, f64, Or); 23] = [
 ];
 
 /// Entries of another kind than the table above, each with its own test here.
-const OTHERS: [&str; 3] = ["osha-1910-269-w1", "iec-62368-1-es1", "iec-60335-1-part-up-to-450v"];
+const OTHERS: [&str; 4] =
+    ["osha-1910-269-w1", "iec-62368-1-es1", "iec-60335-1-part-up-to-450v", "iec-60831-1-switching-in"];
 
 /// IEC 62368-1, table 5, charged capacitor, class ES1: farad, volt.
 const ES1: [(f64, f64); 15] = [

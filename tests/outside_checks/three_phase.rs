@@ -1,11 +1,12 @@
 //! Discharge resistors of three-phase capacitors, and nameplates in reactive power.
 //!
-//! The tool reads three-phase banks but does not plan them yet. The circuit itself is three terminals with plain parts,
-//! and that is planned here: the pair from A to C at the crest of the line voltage, which it was charged to.
+//! The note's formula begins at the crest of the line voltage. Its rows are found with three terminals and plain parts,
+//! the pair from A to C charged to that crest; then with three phases, where the poles of the switch leave more.
 
 use crate::banks::{planned, read, si};
 use crate::rows::{Row, confirm, refute};
 use ebbvolt::circuit::{Edge, LastExit, Modes, Network};
+use ebbvolt::plan::Plan;
 use ebbvolt::quantity::Quantity;
 use std::sync::Arc;
 
@@ -116,4 +117,209 @@ fn nameplates_in_kvar_are_read_right_where_a_conversion_page_is_wrong() {
         Row { source, figure: "100 kvar, 480 V, 60 Hz, delta", stated: "386e-6", found: delta },
         Row { source, figure: "25 kvar, 240 V, 60 Hz", stated: "1.15e-6", found: single },
     ]);
+}
+
+/// A three-phase bank (invented): 50 kvar, 400 V, 50 Hz in delta with three-phase resistors, no tolerance anywhere.
+fn bank(touch: &str, ohms: f64, connection: &str, more: &str) -> Plan {
+    planned(&format!(
+        "ebbvolt: 1\ntag: SM-CHECK\ntouch_voltage: {touch}\nterminals: [A, B, C]\n\
+         charged_to: {{ac_rms: 400 V, rise: 0 %, phases: 3, neutral: isolated}}\ncapacitors:\n  \
+         - {{id: CB, kvar: {{power: 50 kvar, voltage: 400 V, frequency: 50 Hz}}, phases: 3, connection: delta}}\n\
+         resistors:\n  - {{id: RD, role: bleeder, value: {}, phases: 3, connection: {connection}}}\n{more}",
+        si(ohms, "ohm")
+    ))
+}
+
+/// The same note by the tool's own three-phase parts: k and the resistance come out of the engine.
+#[test]
+fn k_is_1_in_delta_and_3_in_open_delta_and_in_star_by_the_engine_itself() {
+    let farads = plate("50 kvar", "400 V", "50 Hz", Some("delta"));
+    let ohms = 100e3;
+    let crest = 2f64.sqrt() * 400.0;
+    for (connection, k) in [("delta", 1.0), ("open-delta", 3.0), ("star", 3.0)] {
+        let plan = bank("75 V", ohms, connection, "");
+        let found = plan.time_constants[0].si() / (ohms * farads);
+        assert!((found / k - 1.0f64).abs() < 1e-12, "{connection}: k = {found}");
+        // From the crest to the voltage of the note at the slowest rate that the engine finds.
+        let resistance = |seconds: f64, volts: f64| seconds / (found * farads * (crest / volts).ln());
+        let source = "TS 03-010 on IEC 831, its formula with every digit";
+        // The note states R for k = 1; each resistor of the other connections is a third of it.
+        confirm(&[
+            Row { source, figure: "75 V in 180 s", stated: "268.67e3", found: k * resistance(180.0, 75.0) },
+            Row { source, figure: "50 V in 60 s", stated: "74.59e3", found: k * resistance(60.0, 50.0) },
+        ]);
+        // What the poles leave is 1.366 times as much, and the wait is longer by as much.
+        let factor = (1.0 + 3f64.sqrt()) / 2.0;
+        let longest = plan.waits.iter().map(|w| w.nominal.expect("it ends").si()).fold(0.0, f64::max);
+        let by_hand = k * ohms * farads * (factor * crest / 75.0).ln();
+        assert!((longest / by_hand - 1.0).abs() < 1e-9, "{connection}: {longest} s, by hand {by_hand} s");
+    }
+}
+
+#[test]
+fn an_isolated_bank_keeps_1_366_times_the_line_crest_whichever_pole_is_first() {
+    let plan = bank("50 V", 268e3, "delta", "");
+    let crest = 2f64.sqrt() * 400.0;
+    for wait in &plan.waits {
+        let found = wait.at_isolation.si() / crest;
+        confirm(&[Row {
+            source: "derivation on the project's page of published figures",
+            figure: "isolated bank, one pair, over the line crest",
+            stated: "1.366",
+            found,
+        }]);
+        assert!((found / ((1.0 + 3f64.sqrt()) / 2.0) - 1.0).abs() < 1e-12);
+        // The pole that opens first is at one end of the worst pair.
+        let order = wait.interruption.as_ref().expect("three phases");
+        assert!(wait.across.iter().any(|node| order.at_isolation.starts_with(node.as_str())), "{wait:?}");
+    }
+}
+
+/// A grounded star (invented) of 600 uF and 60 kohm a leg.
+fn star(neutral: &str) -> Plan {
+    planned(&format!(
+        "ebbvolt: 1\ntag: SM-CHECK\ntouch_voltage: 50 V\nterminals: [A, B, C]\n\
+         charged_to: {{ac_rms: 400 V, rise: 0 %, phases: 3, neutral: {neutral}}}\n\
+         capacitors: [{{id: CS, value: 600 uF, phases: 3, connection: star}}]\n\
+         resistors: [{{id: RS, role: bleeder, value: 60 kohm, phases: 3, connection: star}}]\n"
+    ))
+}
+
+#[test]
+fn a_grounded_star_keeps_the_phase_crest_on_a_leg_and_1_155_times_the_line_crest_across_a_pair() {
+    let plan = star("grounded");
+    let crest = 2f64.sqrt() * 400.0;
+    for wait in &plan.waits {
+        let to_earth = wait.across.iter().any(|node| node == "G");
+        let source = "derivation on the project's page of published figures";
+        let found = wait.at_isolation.si() / crest;
+        confirm(&[if to_earth {
+            Row { source, figure: "leg over the phase crest", stated: "1.000", found: found * 3f64.sqrt() }
+        } else {
+            Row { source, figure: "pair over the line crest", stated: "1.155", found }
+        }]);
+        // Both ends of a pair fall with R C = 36 s of a leg.
+        let by_hand = 36.0 * (wait.at_isolation.si() / 50.0).ln();
+        assert!((wait.nominal.expect("it ends").si() / by_hand - 1.0).abs() < 1e-9, "{wait:?}");
+    }
+}
+
+/// With one leg of an isolated star open, the other two are in series on the line voltage: half of its crest each, 2 R
+/// on C / 2. (By hand.)
+#[test]
+fn a_blown_fuse_leaves_two_legs_in_series_on_the_line_voltage() {
+    let plan = star("isolated");
+    let crest = 2f64.sqrt() * 400.0;
+    let pair = plan.waits.iter().find(|w| w.across == ["B", "C"]).expect("a test point");
+    let open = pair.faults.iter().find(|f| f.fault == "CS.A open").expect("a fault");
+    let by_hand = 36.0 * (crest / 50.0).ln();
+    assert!((open.wait.expect("it ends").si() / by_hand - 1.0).abs() < 1e-9, "{open:?}");
+    let leg = plan.waits.iter().find(|w| w.across == ["B", "CS.star"]).expect("a test point");
+    let open = leg.faults.iter().find(|f| f.fault == "CS.A open").expect("a fault");
+    let by_hand = 36.0 * (crest / 2.0 / 50.0).ln();
+    assert!((open.wait.expect("it ends").si() / by_hand - 1.0).abs() < 1e-9, "{open:?}");
+}
+
+/// IEC 60831-1 as the project's page quotes it: below 10 % of the rated voltage before switching in again.
+#[test]
+fn the_voltage_before_switching_in_again_has_a_time_of_the_bank_itself() {
+    let farads = plate("50 kvar", "400 V", "50 Hz", Some("delta"));
+    let plan = bank("50 V", 150e3, "delta", "limits: [{use: iec-60831-1-switching-in}]\n");
+    let limit = &plan.limits[0];
+    let factor = (1.0 + 3f64.sqrt()) / 2.0;
+    let by_hand = 150e3 * farads * (factor * 2f64.sqrt() * 400.0 / 40.0).ln();
+    let from = limit.holds_from.expect("it comes").si();
+    assert!((from / by_hand - 1.0).abs() < 1e-9, "{from} s, by hand {by_hand} s");
+    assert_eq!((limit.met, limit.within), (None, None));
+    assert!(limit.rule.contains("40 V (10 % of 400 V)"), "{}", limit.rule);
+}
+
+/// One pole open and the other two at their crest, over and over: an independent simulation in time steps. The network of
+/// charges is solved by Gaussian elimination at every instant, with currents by differences, and each pole opens where
+/// its current changes its sign.
+#[test]
+fn unequal_capacitors_keep_what_a_simulation_in_time_steps_leaves() {
+    let farads = [1.1e-4, 0.95e-4, 1.02e-4];
+    let plan = planned(&format!(
+        "ebbvolt: 1\ntag: SM-CHECK\ntouch_voltage: 50 V\nterminals: [A, B, C]\n\
+         charged_to: {{ac_rms: 400 V, rise: 0 %, phases: 3, neutral: isolated}}\ncapacitors:\n  \
+         - {{id: C1, value: {}, across: [A, B]}}\n  - {{id: C2, value: {}, across: [B, C]}}\n  \
+         - {{id: C3, value: {}, across: [C, A]}}\nresistors:\n  \
+         - {{id: RD, role: bleeder, value: 150 kohm, phases: 3, connection: delta}}\n",
+        si(farads[0], "F"),
+        si(farads[1], "F"),
+        si(farads[2], "F")
+    ));
+    let mut greatest = [0.0f64; 3];
+    for first in 0..3 {
+        // Both polarities of the second: the first current zero after the first pole, and the one after that.
+        for skip in 0..2 {
+            let left = simulated(farads, first, skip);
+            greatest.iter_mut().zip(left).for_each(|(g, v)| *g = g.max(v));
+        }
+    }
+    for (pair, simulated) in [["A", "B"], ["B", "C"], ["A", "C"]].into_iter().zip(greatest) {
+        let found = plan.waits.iter().find(|w| w.across == pair).expect("a test point").at_isolation.si();
+        // A step of 0.002 degrees around a crest: cos of it is 6e-10 below 1.
+        assert!((found / simulated - 1.0).abs() < 1e-6, "{pair:?}: {found} V, simulated {simulated} V");
+    }
+}
+
+/// Voltages AB, BC, CA that are left where pole `first` opens first, and the other two `skip` half cycles after their
+/// next current zero.
+fn simulated(farads: [f64; 3], first: usize, skip: usize) -> [f64; 3] {
+    let [ab, bc, ca] = farads;
+    let source = |pole: usize, angle: f64| {
+        2f64.sqrt() * 400.0 / 3f64.sqrt() * (angle - std::f64::consts::TAU / 3.0 * pole as f64).cos()
+    };
+    let between = |i: usize, j: usize| match i + j {
+        1 => ab,
+        3 => bc,
+        _ => ca,
+    };
+    let charge = |v: [f64; 3], i: usize| (0..3).filter(|j| *j != i).map(|j| between(i, j) * (v[i] - v[j])).sum::<f64>();
+    let all = |angle: f64| [0, 1, 2].map(|pole| source(pole, angle));
+    let step = std::f64::consts::TAU / 180_000.0;
+    // Where the charge on a node turns, its current is zero.
+    let turns = |q: &dyn Fn(f64) -> f64, from: f64| {
+        let mut angle = from + step;
+        while (q(angle + step) - q(angle)) * (q(angle) - q(angle - step)) > 0.0 {
+            angle += step;
+        }
+        angle
+    };
+    let opened = turns(&|angle| charge(all(angle), first), 0.0);
+    let kept = charge(all(opened), first);
+    // From then on its node floats with that charge.
+    let with_two = |angle: f64| {
+        let mut v = all(angle);
+        let [i, j] = [(first + 1) % 3, (first + 2) % 3];
+        let (ci, cj) = (between(first, i), between(first, j));
+        v[first] = (kept + ci * v[i] + cj * v[j]) / (ci + cj);
+        v
+    };
+    let second = (first + 1) % 3;
+    let mut at = opened;
+    for _ in 0..=skip {
+        at = turns(&|angle| charge(with_two(angle), second), at + step);
+    }
+    let v = with_two(at);
+    [v[0] - v[1], v[1] - v[2], v[2] - v[0]].map(f64::abs)
+}
+
+#[test]
+fn a_capacitor_on_one_phase_has_a_time_before_switching_in_again_and_a_bank_on_direct_voltage_has_none() {
+    let limit = |charged_to: &str| {
+        let text = format!(
+            "ebbvolt: 1\ntag: SM-CHECK\ntouch_voltage: 50 V\ncharged_to: {charged_to}\n\
+             capacitors: [{{id: C1, value: 100 uF}}]\nresistors: [{{id: R1, role: bleeder, value: 100 kohm}}]\n\
+             limits: [{{use: iec-60831-1-switching-in}}]\n"
+        );
+        planned(&text).limits.remove(0)
+    };
+    let from = limit("{ac_rms: 230 V, rise: 0 %}").holds_from.expect("it comes").si();
+    let by_hand = 10.0 * (2f64.sqrt() * 10.0).ln();
+    assert!((from / by_hand - 1.0).abs() < 1e-9, "{from} s, by hand {by_hand} s");
+    let none = limit("325 V");
+    assert_eq!((none.met, none.holds_from), (None, None));
 }

@@ -15,8 +15,10 @@ mod steps;
 mod syntax;
 mod top;
 mod tree;
+mod write;
 
 pub use source::MAX_BYTES;
+pub use write::write;
 
 use super::problem::{Path, Segment};
 use super::{Bank, validate};

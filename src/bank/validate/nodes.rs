@@ -123,7 +123,8 @@ fn ends(part: &Part<'_>, terminals: &HashSet<&str>, touches: &HashMap<String, To
             continue;
         }
         let path = part.path().then("across").then(end);
-        if !touch.by_fixed {
+        // The middle of a tool with three legs, as a three-phase tool in star expands to, is no slip of the pen.
+        if !touch.by_fixed && touch.times < 3 {
             sink.push("unknown-node", path, || {
                 let text = format!(
                     "{} `{}` is put to node `{node}`, which no capacitor and no always-connected part touches",
@@ -279,6 +280,19 @@ mod tests {
         let mut d = plain();
         d.resistors.push(resistor("T1", Role::Tool, "P", "NN"));
         assert_problem(&d, "unknown-node", "resistors[1].across[1]");
+    }
+
+    #[test]
+    fn a_tool_with_three_legs_has_a_middle_of_its_own() {
+        let mut d = plain();
+        d.capacitors.push(capacitor("C2", "P", "M"));
+        d.resistors.push(resistor("R2", Role::Bleeder, "M", "N"));
+        let legs = [("T1", "P"), ("T2", "M"), ("T3", "N")];
+        d.resistors.extend(legs.map(|(id, node)| resistor(id, Role::Tool, node, "X")));
+        assert_eq!(problems(&d), []);
+        d.resistors.pop();
+        let found = problems(&d);
+        assert!(found.iter().all(|(code, _)| *code == "unknown-node") && found.len() == 2, "{found:?}");
     }
 
     #[test]

@@ -1,9 +1,11 @@
 //! Terminals and phases: two terminals, or three with a three-phase supply, and parts that fit.
 
 use super::super::description::{Connection, Description, Source};
-use super::super::parts::GROUND;
+use super::super::parts::{GROUND, legs};
 use super::super::problem::{Path, Sink};
+use super::nodes::Joined;
 use super::{Doubt, is_known};
+use std::collections::HashMap;
 
 pub(super) fn check(d: &Description, doubt: &Doubt, sink: &mut Sink) {
     let three_phase = matches!(d.charged_to.source, Source::ThreePhase { .. });
@@ -28,11 +30,45 @@ pub(super) fn check(d: &Description, doubt: &Doubt, sink: &mut Sink) {
             }
         }
     }
+    if three_phase && !doubt.phases && !doubt.voltages {
+        own_voltages_in_loops(d, sink);
+    }
     for (i, c) in d.capacitors.iter().enumerate().filter(|(_, c)| c.phases.is_some() && c.charged_to.is_some()) {
         sink.push("own-voltage-of-three-phases", Path::of("capacitors").then(i).then("charged_to"), || {
             let text = format!("the three legs of capacitor `{}` can't have one voltage of their own", c.id);
             (text, String::from("list the legs as three capacitors, each with its `across` and its `charged_to`"))
         });
+    }
+}
+
+/// What the poles leave differs from one opening to the next; a voltage of its own can't add up with that around a loop.
+fn own_voltages_in_loops(d: &Description, sink: &mut Sink) {
+    let mut numbers: HashMap<String, usize> = HashMap::new();
+    let mut number = |node: String| {
+        let next = numbers.len();
+        *numbers.entry(node).or_insert(next)
+    };
+    let (mut all, mut own) = (Joined::default(), Joined::default());
+    for c in d.capacitors.iter().filter(|c| c.charged_to.is_none()) {
+        for (_, [a, b]) in legs(d, &c.id, &c.across, c.phases) {
+            all.join(number(a), number(b));
+        }
+    }
+    for (i, c) in d.capacitors.iter().enumerate().filter(|(_, c)| c.charged_to.is_some() && c.phases.is_none()) {
+        let [a, b] = c.across.clone().map(&mut number);
+        // A loop of voltages that are all given is judged by their sum.
+        if a != b && all.are_joined(a, b) && !own.are_joined(a, b) {
+            sink.push("capacitor-loop", Path::of("capacitors").then(i).then("charged_to"), || {
+                let text = format!(
+                    "`{}` is in a loop with capacitors that take what the poles of the switch leave, and has a voltage of \
+                     its own",
+                    c.id
+                );
+                (text, String::from("leave its `charged_to` out, or give every capacitor of the loop one"))
+            });
+        }
+        all.join(a, b);
+        own.join(a, b);
     }
 }
 
@@ -123,6 +159,19 @@ mod tests {
         assert_eq!(problems(&d), []);
         d.capacitors[0].phases = Some(Connection::OpenDelta);
         assert_problem(&d, "open-delta-capacitor", "capacitors[0].connection");
+    }
+
+    #[test]
+    fn a_voltage_of_its_own_is_in_no_loop_with_what_the_poles_leave() {
+        let mut d = three_phase();
+        d.capacitors.push(capacitor("C1", "A", "B"));
+        assert_eq!(problems(&d), []);
+        d.capacitors[1].charged_to = Some(volt(100.0));
+        assert_problem(&d, "capacitor-loop", "capacitors[1].charged_to");
+        // By themselves: nothing contradicts.
+        d.capacitors.remove(0);
+        d.resistors[0].phases = Some(Connection::Delta);
+        assert_eq!(problems(&d), []);
     }
 
     #[test]

@@ -33,7 +33,8 @@ fn found(limit: &LimitResult) -> String {
     let when = limit.within.map_or_else(|| "At isolation".to_string(), |t| format!("At {}", whole(t)));
     let figures = format!("{when}: up to {}, {}, {}", up(limit.voltage), up(limit.charge), up(limit.energy));
     match (limit.met, limit.holds_from) {
-        (None, _) => format!("{figures}. A waiting time alone: only a procedure can keep it."),
+        (None, Some(from)) => format!("{figures}; reached from {} on, the time to keep.", time(from)),
+        (None, None) => format!("{figures}. A waiting time alone: only a procedure can keep it."),
         (Some(_), Some(from)) => format!("{figures}; holds from {} on.", time(from)),
         (Some(_), None) => format!("{figures}; never holds for good."),
     }

@@ -10,6 +10,7 @@ pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
         return Vec::new();
     }
     let mut blocks = vec![Block::Section("Waits"), Block::Table(healthy(plan))];
+    blocks.extend(interruptions(plan));
     let taus: Vec<String> = plan.time_constants.iter().take(NAMED_TAUS).map(|&tau| time(tau)).collect();
     if !taus.is_empty() {
         let more = plan.time_constants.len().saturating_sub(NAMED_TAUS);
@@ -30,6 +31,19 @@ pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
 
 /// Time constants that are printed; a ladder of a hundred stages has as many.
 const NAMED_TAUS: usize = 6;
+
+/// How the poles of a three-phase switch open in the worst cases.
+fn interruptions(plan: &Plan) -> Option<Block> {
+    let mut grid =
+        Grid::new(&[("Across", Side::Left), ("Poles, slowest wait", Side::Left), ("Poles, at isolation", Side::Left)]);
+    let mut any = false;
+    for (wait, order) in plan.waits.iter().filter_map(|w| Some((w, w.interruption.as_ref()?))) {
+        any = true;
+        let at_isolation = if order.at_isolation == order.slowest { "the same" } else { &order.at_isolation };
+        grid.row([pair(&wait.across), order.slowest.clone(), at_isolation.to_string()]);
+    }
+    any.then_some(Block::Table(grid))
+}
 
 fn healthy(plan: &Plan) -> Grid {
     let mut grid = Grid::new(&[
