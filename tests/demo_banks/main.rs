@@ -60,7 +60,7 @@ fn every_bank_and_the_draft_meet_their_limits_and_ratings() {
 
 /// Where the plans of these banks may have null: what the file does not give, a wait that never ends under a fault, and
 /// figures of a resistor that only a step connects. Anywhere else it would stand for a figure that is lost.
-const MAY_BE_NULL: [&str; 34] = [
+const MAY_BE_NULL: [&str; 35] = [
     ".bank.location",
     ".bank.notes",
     ".bank.prepared_by",
@@ -81,6 +81,7 @@ const MAY_BE_NULL: [&str; 34] = [
     ".limits.source",
     ".limits.within_s",
     ".notice.left_v",
+    ".notice.longest_fault",
     ".recovery.at_s",
     ".recovery.passes_touch_at_s",
     ".resistors.allowed_power_w",
