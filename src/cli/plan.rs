@@ -51,6 +51,7 @@ pub(super) fn run(typed: &PlanArgs, stdin: &mut dyn Read, output: &mut Output) -
         two_faults: typed.faults == 2,
         draws: drawing(typed),
         sensitivity: typed.sensitivity,
+        ..Options::default()
     };
     if options.two_faults {
         match plan::too_many_fault_pairs(&bank) {
@@ -160,7 +161,7 @@ fn save(path: &Path, bytes: &[u8]) -> Result<(), String> {
     file.write_all(bytes).map_err(|e| format!("`{name}` can't be written: {e}"))
 }
 
-fn sha256(bytes: &[u8]) -> String {
+pub(super) fn sha256(bytes: &[u8]) -> String {
     Sha256::digest(bytes).iter().fold(String::new(), |mut hex, byte| {
         // Writing to a string can't fail.
         let _ = write!(hex, "{byte:02x}");
@@ -184,7 +185,7 @@ fn print(plan: &Plan, format: PlanFormat, output: &mut Output) -> u8 {
     }
 }
 
-fn no_verdict(problem: &str, output: &mut Output) -> u8 {
+pub(super) fn no_verdict(problem: &str, output: &mut Output) -> u8 {
     let advice = "No plan is printed: the tool could not certify its own result. Please report it with the bank file.";
     output.problem(&format!("internal error: {problem}\n{advice}"), NO_VERDICT)
 }
