@@ -441,6 +441,10 @@ fn check_notice(plan: &Plan) {
         Some(fault) => assert!(!fault.fault.is_empty() && (fault.delay_s - slowest_fault).abs() < 1e-9),
         None => assert!(plan.notice.delay_s.is_some_and(|delay| slowest_fault <= delay)),
     }
+    for limit in &plan.limits {
+        assert!(limit.allowed_voltage_v.is_none_or(|v| v > 0.0), "{}", limit.id);
+        assert!(!limit.everywhere || plan.waits.iter().any(|w| w.across == limit.across), "{}", limit.id);
+    }
     assert_eq!(plan.notice.left_v.is_some(), !plan.steps.is_empty());
     let Equipment { instrument_voltage_v, parts } = &plan.equipment;
     assert!(plan.waits.iter().all(|w| w.at_isolation_v <= *instrument_voltage_v));

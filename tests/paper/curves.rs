@@ -200,8 +200,8 @@ fn a_sink_draws_its_current_while_it_counts_and_is_left_out_where_nobody_counts_
         format!("{PLAIN}sinks: [{sink}, counted: {counted}}}]\n")
     };
     // C dv/dt = -v/R - I has v = (V + I R) exp(-t/RC) - I R until the sink stops.
-    let (t, ohms, farad, ampere) = (20.0, 22e3, 3300e-6, 0.04);
-    let drawn = (565.0 + ampere * ohms) * (-t / (ohms * farad) as f64).exp() - ampere * ohms;
+    let (t, ohms, farad, ampere) = (20.0f64, 22e3, 3300e-6, 0.04);
+    let drawn = (565.0 + ampere * ohms) * (-t / (ohms * farad)).exp() - ampere * ohms;
     let counted = planned(&with(true), at(&[t]));
     let sample = &curves(&counted).spans[0].samples[0];
     assert_eq!(curves(&counted).parts.iter().map(|p| p.role).collect::<Vec<_>>(), ["capacitor", "bleeder", "sink"]);
@@ -212,7 +212,7 @@ fn a_sink_draws_its_current_while_it_counts_and_is_left_out_where_nobody_counts_
     assert!(sum.abs() < 1e-8 * sample.loads[1].power.si().abs(), "{sum}");
     let uncounted = planned(&with(false), at(&[t]));
     let sample = &curves(&uncounted).spans[0].samples[0];
-    let alone = 565.0 * (-t / (ohms * farad) as f64).exp();
+    let alone = 565.0 * (-t / (ohms * farad)).exp();
     assert_relative_eq!(sample.voltages[0].nominal.si(), alone, max_relative = 1e-9);
     assert_eq!(sample.loads[2].current.si().to_bits(), 0.0f64.to_bits());
 }
