@@ -9,6 +9,9 @@ use crate::discharge::{Model, PartKind, absorption};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{Quantity, Ratio, celsius, exact};
 
+/// More ohms than a cable with its clamps has, however long (common practice): what has more is no short.
+const MOST_OF_A_STRAP: f64 = 10.0;
+
 /// Findings on what the description leaves open.
 pub(crate) fn notes(
     bank: &Bank,
@@ -42,6 +45,29 @@ pub(crate) fn notes(
             Severity::Caution,
             "no-tolerance",
             format!("No tolerance was given for {}: it counts as 0 %, and waits can be longer.", listed(&without)),
+        );
+    }
+    for strap in description.resistors.iter().filter(|r| r.role == Role::Strap && r.value.si() > MOST_OF_A_STRAP) {
+        findings.add(
+            Severity::Warning,
+            "strap-is-no-short",
+            format!(
+                "{} is given {}: that is no short. A strap has milliohms (`mohm`; `Mohm` is a million of ohms).",
+                strap.id,
+                exact(strap.value)
+            ),
+        );
+    }
+    if description.touch_voltage >= description.charged_to.highest && description.charged_to.highest.si() > 0.0 {
+        findings.add(
+            Severity::Caution,
+            "touch-voltage-not-below-bank",
+            format!(
+                "The touch voltage of {} is not below the {} that the bank is charged to at most: little or nothing is \
+                 waited for. Is that what was meant?",
+                exact(description.touch_voltage),
+                exact(description.charged_to.highest)
+            ),
         );
     }
     let leakage: Vec<String> =

@@ -217,7 +217,11 @@ fn shown_at(steps: &[StepResult], fault: &str) -> String {
         || "No hold point shows it: add one.".to_string(),
         |(stage, step)| {
             let below = step.hold.as_ref().map_or_else(String::new, |h| exact(h.below));
-            format!("The hold point of step {} shows it: a reading over {below}.", stage + 1)
+            format!(
+                "The hold point of step {} can show it, by a reading over {below}; within the tolerances a lower one does \
+                 not rule it out.",
+                stage + 1
+            )
         },
     )
 }
@@ -345,23 +349,57 @@ fn comes_back(check: &StepCheck, recovery: &[Recovery], findings: &mut Findings)
     let touch = check.procedure.bank.description().touch_voltage;
     let over: Vec<&Recovery> = recovery.iter().filter(|r| r.voltage > touch).collect();
     let Some(worst) = over.iter().max_by(|x, y| x.voltage.si().total_cmp(&y.voltage.si())) else { return };
+    let end = check.procedure.end();
     let when = worst.passes_touch_at.map_or_else(String::new, |t| {
-        format!(", passing {} from {} after isolation on", exact(touch), duration(t, Direction::Down))
+        if t.si() <= end {
+            format!(" (it is over {} as the last step ends)", exact(touch))
+        } else {
+            format!(", passing {} from {} after isolation on", exact(touch), duration(t, Direction::Down))
+        }
     });
+    let supplies = supplies_left_on(check);
+    let advice = if supplies.is_empty() {
+        "Leave a strap on for as long as anyone works.".to_string()
+    } else {
+        format!(
+            "The procedure ends with {} on and the bank charged: no strap belongs on it as it is.",
+            listed(&supplies)
+        )
+    };
     findings.add(
         Severity::Danger,
         "voltage-comes-back",
         format!(
-            "After the last step up to {} comes back at {}{when}. Leave a strap on for as long as anyone works.",
+            "After the last step up to {} comes back at {}{when}. {advice}",
             show(worst.voltage, Direction::Up),
             worst.across.join(" - ")
         ),
     );
 }
 
+/// Supplies that are still connected at the end.
+fn supplies_left_on(check: &StepCheck) -> Vec<String> {
+    let Some(last) = check.procedure.stages.last() else { return Vec::new() };
+    let sources = check.procedure.model.sources.iter();
+    sources.filter(|s| last.connected.contains(&s.resistor)).map(|s| s.id.clone()).collect()
+}
+
 fn left_on(check: &StepCheck, findings: &mut Findings) {
     let model = check.procedure.model;
     let Some(last) = check.procedure.stages.last() else { return };
+    let supplies = supplies_left_on(check);
+    if !supplies.is_empty() {
+        findings.add(
+            Severity::Danger,
+            "supply-left-on",
+            format!(
+                "{} is on at the end of the procedure: the bank is charged. Before anyone comes near it is isolated and \
+                 goes through a discharge again.",
+                listed(&supplies)
+            ),
+        );
+        return;
+    }
     let straps = last.connected.iter().filter(|r| check.role(&model.resistors[**r].id) == Some(Role::Strap));
     if straps.count() == 0 {
         findings.add(

@@ -298,7 +298,7 @@ impl WaitCheck<'_> {
             code,
             format!(
                 "{}: {why} the wait never ends at {}; {} can stay at {}. The reading does not fall: test before \
-                 touch, and discharge by tool and strap.",
+                 touch, and discharge across that pair, with a tool that is rated for this voltage and energy.",
                 fault_in_words(&fault.fault.name),
                 listed(&pairs),
                 worst.across.join(" - "),

@@ -55,7 +55,9 @@ pub(super) fn read(reader: &mut Reader<'_>, node: &Node) -> Option<Description> 
     let top = reader.group(&spot, TOP.into(), &KEYS)?;
     format(reader, &top);
     let tag = reader.need(&top, "tag", "PU-07").and_then(|spot| reader.text(&spot));
-    let touch_voltage = reader.need(&top, "touch_voltage", "50 V").and_then(|spot| reader.quantity(&spot));
+    let touch_voltage = reader
+        .need(&top, "touch_voltage", "... V` with the voltage that you choose to wait for, such as `60 V")
+        .and_then(|spot| reader.quantity(&spot));
     let terminals = terminals(reader, &top);
     let charged_to = charge::read(reader, &top);
     let three_phase = matches!(charged_to.source, Source::ThreePhase { .. });

@@ -12,8 +12,8 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
         ("90 %", Side::Right),
         ("99 %", Side::Right),
         ("99.9 %", Side::Right),
-        ("Greatest draw", Side::Right),
-        ("Slowest wait", Side::Right),
+        ("Most", Side::Right),
+        ("Slowest", Side::Right),
     ]);
     for w in &draws.waits {
         let times = [w.half, w.ninety, w.ninety_nine, w.ninety_nine_nine, w.greatest, w.slowest].map(wait);
@@ -26,7 +26,7 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
         DrawFrom::Normal => "around the middle of each tolerance, its ends at 3 standard deviations",
     };
     let text = format!(
-        "{} draws at the highest voltage, seed {}: {spread}. So many of them have a wait that is not longer. The wait \
+        "{} draws at the highest voltage, seed {}: {spread}. So many of them have a wait that is not longer; `most` is the greatest of them. The wait \
          to keep is the slowest: nobody knows which draw this bank is.",
         draws.count, draws.seed
     );

@@ -11,12 +11,12 @@ pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
         let text = "None was given. `ebbvolt limits` lists published ones that a bank file can name.";
         blocks.push(Block::Paragraph(text.into()));
     } else {
-        blocks.push(Block::Labelled(plan.limits.iter().map(limit).collect()));
+        blocks.push(Block::Labelled(plan.limits.iter().map(|l| limit(plan, l)).collect()));
     }
     blocks
 }
 
-fn limit(limit: &LimitResult) -> Labelled {
+fn limit(plan: &Plan, limit: &LimitResult) -> Labelled {
     let label = match (limit_missed(limit), limit.met) {
         (true, _) => "NOT MET",
         (false, Some(true)) => "met",
@@ -24,7 +24,8 @@ fn limit(limit: &LimitResult) -> Labelled {
     };
     let mut text =
         vec![format!("{} across {}: {}", limit.id, pair(&limit.across), sentence(&limit.rule)), found(limit)];
-    text.extend(single_fault(limit));
+    let examined = plan.waits.iter().any(|w| !w.faults.is_empty());
+    text.extend(if examined { single_fault(limit) } else { Some("No part's failure was examined.".into()) });
     text.extend(limit.source.as_ref().map(source));
     Labelled::new(label, text)
 }

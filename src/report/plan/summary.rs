@@ -3,8 +3,24 @@
 use super::super::block::{Block, Labelled};
 use super::super::words::{count, glued, list, pair, time, typed, up, whole};
 use super::steps;
+use crate::finding::{Finding, Severity};
 use crate::plan::{FaultWait, LimitResult, Plan, Stored, Verdict, Wait, fault_in_words};
 use crate::quantity::{Quantity, keepable};
+
+/// Findings on the procedure that the first screen counts: people are hurt at these joints.
+const PROCEDURE_DANGERS: [&str; 11] = [
+    "meter-hides-charge",
+    "steps-not-enough-under-fault",
+    "stranded-charge",
+    "strap-current",
+    "strap-on-energy",
+    "supply-left-on",
+    "tool-too-early",
+    "touch-too-early",
+    "touch-without-measuring",
+    "until-never",
+    "voltage-comes-back",
+];
 
 /// Faults that are named one by one on the first screen; the table has them all.
 const NAMED_FAULTS: usize = 3;
@@ -59,7 +75,12 @@ pub(in crate::report) fn holds(plan: &Plan) -> Vec<String> {
     };
     // Compared as shown: a difference in the 13th digit is no second voltage.
     if stored.voltage_highest.si() > highest.si() && up(stored.voltage_highest) != up(highest) {
-        first.push_str(&format!("; up to {} at a test point", up(stored.voltage_highest)));
+        first = format!(
+            "up to {} at a test point at isolation, since the parts divide it so ({} {between} before, nominal {})",
+            up(stored.voltage_highest),
+            up(highest),
+            up(nominal)
+        );
     }
     vec![format!("{first}."), energy(stored)]
 }
@@ -163,7 +184,14 @@ fn keep(plan: &Plan, governing: &Wait) -> Vec<String> {
             time(slowest)
         ),
     };
-    vec![first, second]
+    let mut text = vec![first, second];
+    // A fault that is called so is a sink that the waits rely on.
+    let sinks: Vec<String> =
+        governing.faults.iter().filter_map(|f| Some(f.fault.strip_suffix(" dead")?.to_string())).collect();
+    if !sinks.is_empty() {
+        text.push(format!("It relies on {}, which must work to draw anything.", list(&sinks)));
+    }
+    text
 }
 
 /// A fault at the test point where it is worst.
@@ -228,11 +256,23 @@ pub(in crate::report) fn checks(plan: &Plan) -> String {
         (number(Verdict::NotMet), "EXCEEDED"),
         (number(Verdict::NotChecked), "not checked"),
     ]);
-    let ratings = if verdicts.is_empty() { String::new() } else { format!(" Ratings: {ratings}.") };
+    let broken = plan.capacitors.iter().filter(|c| c.rated.is_some_and(|rated| c.voltage_fault > rated)).count();
+    let under_fault = if broken == 0 { String::new() } else { format!(" {broken} OVER with one part failed.") };
+    let ratings = if verdicts.is_empty() { String::new() } else { format!(" Ratings: {ratings}.{under_fault}") };
+    let is_danger = |f: &&Finding| f.severity == Severity::Danger && PROCEDURE_DANGERS.contains(&f.code);
+    let dangers = match plan.findings.iter().filter(is_danger).count() {
+        0 => String::new(),
+        n => format!(", with {} of DANGER", count(n, "finding", "findings")),
+    };
     let never = plan.waits.iter().filter(|w| w.keep.is_none()).count();
     let never = if never == 0 { String::new() } else { format!(" Waits: {never} NEVER.") };
-    let procedure = steps::total(plan).map_or_else(String::new, |total| format!(" Procedure: {total}."));
-    format!("{limits}{ratings}{never}{procedure} Verdict: {}.", verdict(plan.verdict))
+    let procedure = steps::total(plan).map_or_else(String::new, |total| format!(" Procedure: {total}{dangers}."));
+    let checked = !plan.limits.is_empty() || verdicts.iter().any(|v| *v != Verdict::NotChecked);
+    let verdict = match (plan.verdict, checked) {
+        (Verdict::Met, false) => "nothing was given to check against".to_string(),
+        (other, _) => verdict(other),
+    };
+    format!("{limits}{ratings}{never}{procedure} Verdict: {verdict}.")
 }
 
 /// `2 met, 1 NOT MET`, without what there is none of.

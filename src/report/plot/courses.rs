@@ -256,7 +256,8 @@ pub(super) fn afterwards(plan: &Plan, curves: &Curves) -> Vec<Course> {
             let leader = leader(curves, &group);
             let points = |of: &dyn Fn(&CurveVoltage) -> Voltage| -> Vec<(f64, f64)> {
                 let since = last.samples.iter().map(|s| (s.time.si() - last.start.si(), s));
-                since.filter(|(t, _)| *t > 0.0).map(|(t, s)| (t, of(&s.voltages[leader]).si())).collect()
+                // On an axis by powers the end of the step itself stands at its low end.
+                since.map(|(t, s)| (t, of(&s.voltages[leader]).si())).collect()
             };
             let highest = points(&|v| v.highest);
             let top = highest.iter().map(|(_, v)| *v).fold(10.0 * floor, f64::max).max(plan.touch_voltage.si());

@@ -215,7 +215,7 @@ fn the_worst_failure_of_a_reading_is_listed_and_the_worst_that_it_does_not_show(
         on_one_line(&text[start..])
     };
     assert!(
-        table(&plan).contains("3 R1 open P - N 39.9 V 49.9 V shows it 4 R1 open P - M 5.70 V 5.00 V does not show")
+        table(&plan).contains("3 R1 open P - N 39.9 V 49.9 V can show it 4 R1 open P - M 5.70 V 5.00 V does not show")
     );
     plan.steps[2].faults[1].test_points[2].highest = Voltage::from_si(50.5);
     plan.steps[2].faults[0].test_points[0].highest = Voltage::from_si(700.0);
@@ -223,7 +223,10 @@ fn the_worst_failure_of_a_reading_is_listed_and_the_worst_that_it_does_not_show(
         hold.shown_faults.pop();
     }
     let found = table(&plan);
-    assert!(found.contains("3 R1 open P - N 700 V 49.9 V shows it 3 R2 open M - N 50.5 V 49.9 V does not"), "{found}");
+    assert!(
+        found.contains("3 R1 open P - N 700 V 49.9 V can show it 3 R2 open M - N 50.5 V 49.9 V does not"),
+        "{found}"
+    );
 }
 
 #[test]

@@ -44,9 +44,15 @@ fn first_to_pass(plan: &Plan) -> Option<&Recovery> {
 }
 
 fn passes(plan: &Plan, first: &Recovery) -> Labelled {
-    let when = first.passes_touch_at.map_or_else(String::new, |at| format!(", from {} after isolation on", early(at)));
+    let end = plan.steps.last().map_or(0.0, |step| step.end.si());
+    let when = match first.passes_touch_at {
+        Some(at) if at.si() <= end => " as the last step ends".to_string(),
+        Some(at) => format!(" again, from {} after isolation on", early(at)),
+        None => String::new(),
+    };
+    let verb = if when.starts_with(" as") { "is over" } else { "passes" };
     let text = format!(
-        "With nobody doing anything, {} passes {} again{when}, and comes to up to {}.",
+        "With nobody doing anything, {} {verb} {}{when}, and comes to up to {}.",
         pair(&first.across),
         typed(plan.touch_voltage),
         up(first.voltage)
@@ -54,7 +60,25 @@ fn passes(plan: &Plan, first: &Recovery) -> Labelled {
     Labelled::new(Severity::Danger.word(), vec![text])
 }
 
+/// Supplies that the last step leaves connected: those that charge something once, and are never taken off.
+fn supplies_on(plan: &Plan) -> Vec<&String> {
+    let mut on: Vec<&String> = Vec::new();
+    for step in &plan.steps {
+        on.retain(|id| !step.disconnect.contains(id));
+        on.extend(step.charging.iter().map(|c| &c.supply));
+    }
+    on
+}
+
 fn advice(plan: &Plan) -> Vec<String> {
+    let supplies: Vec<String> = supplies_on(plan).into_iter().cloned().collect();
+    if !supplies.is_empty() {
+        let names = list(&supplies);
+        return vec![format!(
+            "{names} is still on and the bank is charged: no strap belongs on it as it is. Isolate it and discharge it \
+             again, step by step, before anyone comes near."
+        )];
+    }
     let on = straps(plan, plan.steps.len().saturating_sub(1));
     let strap = if on.is_empty() {
         "The last step leaves no strap on. Put one on, and leave it on for as long as anyone works.".into()

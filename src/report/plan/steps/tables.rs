@@ -140,7 +140,7 @@ pub(super) fn worst<'a>(failures: impl Iterator<Item = Failure<'a>>) -> Option<F
 fn row(number: usize, step: &StepResult, failure: &Failure) -> [String; 6] {
     let shown = match (&step.hold, failure.is_shown) {
         (None, _) => "none",
-        (Some(_), true) => "shows it",
+        (Some(_), true) => "can show it",
         (Some(_), false) => "does not show it",
     };
     let allowed = step.hold.as_ref().map_or_else(|| "-".into(), |hold| down(hold.below));
