@@ -257,12 +257,16 @@ pub(in crate::report) fn checks(plan: &Plan) -> String {
         (number(Verdict::NotChecked), "not checked"),
     ]);
     let broken = plan.capacitors.iter().filter(|c| c.rated.is_some_and(|rated| c.voltage_fault > rated)).count();
-    let under_fault = if broken == 0 { String::new() } else { format!(" {broken} OVER with one part failed.") };
+    let under_fault = if broken == 0 {
+        String::new()
+    } else {
+        format!(" {} with one part failed.", glued(&format!("{broken} OVER")))
+    };
     let ratings = if verdicts.is_empty() { String::new() } else { format!(" Ratings: {ratings}.{under_fault}") };
     let is_danger = |f: &&Finding| f.severity == Severity::Danger && PROCEDURE_DANGERS.contains(&f.code);
     let dangers = match plan.findings.iter().filter(is_danger).count() {
         0 => String::new(),
-        n => format!(", with {} of DANGER", count(n, "finding", "findings")),
+        n => format!(", with {}", glued(&format!("{} of DANGER", count(n, "finding", "findings")))),
     };
     let never = plan.waits.iter().filter(|w| w.keep.is_none()).count();
     let never = if never == 0 { String::new() } else { format!(" Waits: {never} NEVER.") };
