@@ -6,6 +6,7 @@ mod input;
 mod limits;
 mod output;
 mod plan;
+mod size;
 mod terminal;
 
 pub use terminal::Terminal;
@@ -49,6 +50,7 @@ pub fn run(
     };
     match typed.command {
         Command::Plan(typed) => plan::run(&typed, stdin, &mut output),
+        Command::Size(typed) => size::run(&typed, stdin, &mut output),
         Command::Limits(typed) => limits::run(&typed, &mut output),
         Command::Draft => draft::run(&mut output),
     }

@@ -21,6 +21,8 @@ pub type Current = si::f64::ElectricCurrent;
 pub type Energy = si::f64::Energy;
 /// Frequency, in hertz.
 pub type Frequency = si::f64::Frequency;
+/// Mass, in kilogram.
+pub type Mass = si::f64::Mass;
 /// Power, in watt; reactive power, in var, is carried by the same type.
 pub type Power = si::f64::Power;
 /// A pure number, such as a tolerance: 20 % is 0.2.
@@ -48,6 +50,7 @@ pub enum Kind {
     Current,
     Energy,
     Frequency,
+    Mass,
     Power,
     ReactivePower,
     Ratio,
@@ -88,6 +91,7 @@ quantities! {
     Current: electric_current::ampere,
     Energy: energy::joule,
     Frequency: frequency::hertz,
+    Mass: mass::kilogram,
     Power: power::watt,
     Ratio: ratio::ratio,
     Resistance: electrical_resistance::ohm,

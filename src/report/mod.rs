@@ -7,6 +7,7 @@ mod json;
 mod limits;
 mod markdown;
 mod plan;
+mod size;
 mod text;
 mod words;
 
@@ -19,4 +20,5 @@ pub use findings::findings_text;
 pub use json::{NotFinite, check_finite, plan_json};
 pub use limits::{limits_csv, limits_json, limits_markdown, limits_text};
 pub use markdown::plan_markdown;
+pub use size::{size_json, size_markdown, size_text};
 pub use text::{message_text, plan_text};
