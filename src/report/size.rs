@@ -6,7 +6,7 @@ use super::words::{count, down, list, pair, time, typed, up, wait, whole};
 use super::{markdown, text};
 use crate::finding::Finding;
 use crate::plan::Verdict;
-use crate::quantity::{Direction, Mass, Quantity, Resistance, celsius, show, show_digits};
+use crate::quantity::{Direction, Mass, Quantity, Resistance, show, show_digits};
 use crate::size::{Candidate, DemandResult, Sizing};
 
 /// A sizing as text, at most `width` columns wide (taken as at least 60 and at most 120).
@@ -103,11 +103,16 @@ fn headline(sizing: &Sizing) -> Vec<Labelled> {
         format!("{} holds from {}{within}", l.id, wait(l.holds_from))
     });
     let text = vec![
-        format!("{}, {} in all, {}.", built(first), value(first.resistance), first.element),
+        format!("{}{}, {}.", built(first), in_all(first), first.element),
         format!("Predicted: {}; standing loss {}.", list(&kept.collect::<Vec<_>>()), up(first.loss_highest)),
         looked,
     ];
     vec![Labelled::new("FIRST DESIGN", text)]
+}
+
+/// The whole array, where that says more than its element.
+fn in_all(c: &Candidate) -> String {
+    if c.elements > 1 { format!(", {} in all", value(c.resistance)) } else { String::new() }
 }
 
 /// `22 kohm`, or `2 in series, 3 such strings of 22 kohm`.
@@ -157,23 +162,19 @@ fn designs(candidates: &[Candidate]) -> Grid {
         ("Element", Side::Left),
         ("Value", Side::Right),
         ("s x p", Side::Right),
-        ("In all", Side::Right),
         ("Wait", Side::Right),
         ("One open", Side::Right),
         ("Loss", Side::Right),
-        ("kWh a year", Side::Right),
     ]);
     for c in candidates {
         grid.row([
             format!("{}{}", c.rank, if c.pareto { "*" } else { "" }),
             c.element.clone(),
             value(c.value),
-            format!("{}x{}", c.series, c.parallel),
-            value(c.resistance),
+            format!("{}\u{a0}x\u{a0}{}", c.series, c.parallel),
             wait(c.wait),
             wait(c.open_wait),
             up(c.loss_highest),
-            energy(c.energy_per_year_kwh),
         ]);
     }
     grid
@@ -189,24 +190,25 @@ fn elements(candidates: &[Candidate]) -> Grid {
     let mut grid = Grid::new(&[
         ("No.", Side::Left),
         ("Power", Side::Right),
-        ("Allowed", Side::Right),
         ("Voltage", Side::Right),
-        ("Allowed", Side::Right),
         ("Body", Side::Right),
-        ("Not checked", Side::Left),
+        ("All of it", Side::Right),
+        ("kWh/year", Side::Right),
         ("Mass", Side::Right),
         ("Price", Side::Right),
     ]);
+    let of = |found: Option<String>, allowed: Option<String>| {
+        let limit = allowed.unwrap_or_else(|| "not\u{a0}given".into());
+        format!("{} of {limit}", found.unwrap_or_default())
+    };
     for c in candidates {
-        let open = c.checks.iter().filter(|check| check.verdict == Verdict::NotChecked).map(|check| check.check.into());
         grid.row([
             c.rank.to_string(),
-            c.element_power.map_or_else(String::new, up),
-            c.allowed_power.map_or_else(|| "not given".into(), down),
-            c.element_voltage.map_or_else(String::new, up),
-            c.allowed_voltage.map_or_else(|| "not given".into(), down),
-            c.body_temperature.map_or_else(|| "not given".into(), |t| format!("{:.0} °C", celsius(t).ceil())),
-            list(&open.collect::<Vec<String>>()),
+            of(c.element_power.map(up), c.allowed_power.map(down)),
+            of(c.element_voltage.map(up), c.allowed_voltage.map(down)),
+            c.body_temperature.map_or_else(String::new, up),
+            value(c.resistance),
+            energy(c.energy_per_year_kwh),
             c.mass.map_or_else(String::new, mass),
             c.price.map_or_else(String::new, |p| format!("{p:.2}")),
         ]);
@@ -237,6 +239,13 @@ fn first_design(c: &Candidate) -> Vec<Labelled> {
         None => "The wait then NEVER ends by itself: test before touch, whatever time has passed.".into(),
     };
     items.push(Labelled::new("one open", vec![open]));
+    let open =
+        c.checks.iter().filter(|check| check.verdict == Verdict::NotChecked).map(|check| check.check.to_string());
+    let open: Vec<String> = open.collect();
+    if !open.is_empty() {
+        let text = format!("For want of a rating: {}.", list(&open));
+        items.push(Labelled::new("not checked", vec![text]));
+    }
     items.push(Labelled::new("current", vec![format!("Up to {} through the array.", up(c.peak_current))]));
     items.push(Labelled::new("plan", vec![format!("Verdict of the whole plan with it: {}.", c.verdict.word())]));
     items

@@ -1,8 +1,8 @@
 //! Invented banks and elements, and the library's public path to a sizing.
 
+use ebbvolt::bank::stock::Values;
 use ebbvolt::bank::{Bank, file, stock::Element};
 use ebbvolt::data::{Series, generic_stock};
-use ebbvolt::bank::stock::Values;
 use ebbvolt::plan::{Options, Plan, plan};
 use ebbvolt::quantity::{Quantity, Time, Voltage};
 use ebbvolt::size::{Ask, Sizing, Target, bleeder};

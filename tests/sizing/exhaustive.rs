@@ -74,14 +74,24 @@ fn everything(bank: &Bank, ask: &Ask) -> Vec<Good> {
                         series,
                         parallel,
                         rating: element.rating,
+                        tempco: None,
+                        ageing: None,
                         phases: None,
                     });
                     let plan = planned(&Bank::new(with).expect("a bank"));
                     let ohms = value.si() * f64::from(series) / f64::from(parallel);
                     let lowest = ohms * element.tolerance.map_or(1.0, |t| t.lowest_factor());
                     if does(&plan, ask, lowest) {
-                        let wait = plan.waits.iter().map(|w| w.keep.map_or(f64::INFINITY, Time::si)).fold(0.0, f64::max);
-                        good.push(Good { name: element.name.clone(), ohms: value.si(), series, parallel, lowest, wait });
+                        let wait =
+                            plan.waits.iter().map(|w| w.keep.map_or(f64::INFINITY, Time::si)).fold(0.0, f64::max);
+                        good.push(Good {
+                            name: element.name.clone(),
+                            ohms: value.si(),
+                            series,
+                            parallel,
+                            lowest,
+                            wait,
+                        });
                     }
                 }
             }
@@ -108,7 +118,10 @@ fn agrees(bank: &Bank, ask: &Ask) -> usize {
         .iter()
         .map(|c| {
             let is = |g: &&Good| {
-                g.name == c.element && g.series == c.series && g.parallel == c.parallel && (g.ohms - c.value.si()).abs() < 1e-6
+                g.name == c.element
+                    && g.series == c.series
+                    && g.parallel == c.parallel
+                    && (g.ohms - c.value.si()).abs() < 1e-6
             };
             let good = all.iter().find(is).unwrap_or_else(|| panic!("{c:?}"));
             assert!((good.wait - c.wait.expect("it ends").si()).abs() <= 1e-9 * good.wait);
