@@ -42,11 +42,11 @@ impl Demand {
     }
 }
 
-/// Resistances per decade at which the engine looks first.
+/// Resistances per decade at which the engine looks first: closely around the middle, more widely far below it.
 const PER_DECADE: i32 = 4;
-/// Decades below and above the middle at which it looks.
-const BELOW: i32 = 4;
-const ABOVE: i32 = 2;
+/// Decades below and above the middle at which it looks closely, and below it at which it looks at all.
+const CLOSE: i32 = 2;
+const FAR: i32 = 6;
 /// Where the search for an upper end gives up: beyond, a resistor is an insulator.
 const HIGHEST: f64 = 1e15;
 
@@ -63,11 +63,12 @@ impl<'a> Scan<'a> {
     pub fn around(middle: f64, probe: &'a Probe, demands: &[Demand]) -> Result<Self, SizeError> {
         let ohms = |step: i32| middle * 10f64.powf(f64::from(step) / f64::from(PER_DECADE));
         let open = probe.at(f64::INFINITY)?;
-        let steps: Vec<i32> = (-BELOW * PER_DECADE..=ABOVE * PER_DECADE).collect();
+        let far = (-FAR * PER_DECADE..-CLOSE * PER_DECADE).step_by(2);
+        let steps: Vec<i32> = far.chain(-CLOSE * PER_DECADE..=CLOSE * PER_DECADE).collect();
         let found: Result<Vec<Point>, EngineError> = steps.par_iter().map(|step| probe.at(ohms(*step))).collect();
         let mut points = found?;
         let limits_met = |p: &Point| demands.iter().filter(|d| matches!(d.kind, Kind::Limit(_))).all(|d| d.is_met(p));
-        let mut step = ABOVE * PER_DECADE;
+        let mut step = CLOSE * PER_DECADE;
         while !limits_met(&open) && points.last().is_some_and(|p| limits_met(p) && p.ohms < HIGHEST) {
             step += PER_DECADE;
             points.push(probe.at(ohms(step))?);

@@ -123,6 +123,8 @@ mod tests {
                 overload: Some(Overload { times: 5.0, duration: Time::from_si(5.0) }),
                 thermal_time: Some(Time::from_si(90.0)),
             },
+            tempco: None,
+            ageing: None,
             phases: None,
         }
     }
