@@ -103,7 +103,7 @@ fn cooler(ask: &Ask, watt: f64) -> Option<f64> {
     let warmest = ask.elements.iter().filter_map(|e| {
         let (power, full, zero) = (e.rating.power?.si(), e.rating.full_to?.si(), e.rating.zero_at?.si());
         let share = watt / (power * elements);
-        (share <= 1.0).then(|| zero - share * (zero - full))
+        (share <= 1.0).then_some(zero - share * (zero - full))
     });
     warmest.fold(None, |most: Option<f64>, t| Some(most.map_or(t, |m| m.max(t)))).filter(|t| *t > COLDEST)
 }
