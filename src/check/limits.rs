@@ -33,6 +33,11 @@ pub struct LimitResult {
     pub single_fault_asked: bool,
     /// The first fault under which it is not met.
     pub single_fault_missed_by: Option<String>,
+    /// True where it has to hold at every test point, and not at a pair of its own.
+    pub everywhere: bool,
+    /// The voltage that it allows at the governing pair; `None` where a voltage is none of its alternatives.
+    #[serde(rename = "allowed_voltage_v", serialize_with = "si_or_null")]
+    pub allowed_voltage: Option<Voltage>,
     /// Voltage at `within`, at its own worst point.
     #[serde(rename = "voltage_v", serialize_with = "si")]
     pub voltage: Voltage,
@@ -183,12 +188,18 @@ impl<'a> LimitChecks<'a> {
             single_fault_met: judged.map(|_| missed_by.is_none()),
             single_fault_asked: prepared.limit.single_fault,
             single_fault_missed_by: judged.and(missed_by),
+            everywhere: prepared.limit.at.is_none(),
+            allowed_voltage: governing.and_then(|r| r.healthy.iter().find_map(allowed_voltage)),
             voltage: Voltage::from_si(healthy.worst(Figure::VoltageAt { pair, t })),
             charge: Charge::from_si(healthy.worst(Figure::ChargeAt { pair, t })),
             energy: Energy::from_si(healthy.worst(Figure::EnergyAt { pair, t })),
             holds_from: bounded.map(held).filter(|t| t.is_finite()).map(Time::from_si),
         }
     }
+}
+
+fn allowed_voltage(bound: &Bound) -> Option<Voltage> {
+    if let Bound::Voltage(level) = bound { Some(*level) } else { None }
 }
 
 /// A check is met only by a comparison of finite numbers that holds.

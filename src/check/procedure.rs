@@ -12,7 +12,7 @@ use crate::quantity::{Quantity, Time, keepable};
 
 /// Beside the healthy bank itself, every corner is tried for up to this many loose values: faults and the elements of
 /// arrays multiply the work, and their figures through the steps are mostly those of one extreme corner.
-const CORNERS_ASIDE: usize = 7;
+pub(super) const CORNERS_ASIDE: usize = 7;
 
 /// A procedure whose `until` steps have a length.
 pub(crate) struct Procedure<'a> {

@@ -37,6 +37,8 @@ pub struct StepResult {
     pub ready_at_start: Energy,
     /// Voltages at its end.
     pub test_points: Vec<StepPoint>,
+    /// The pairs that people read at its end, with what they may find there and what it would mean.
+    pub readings: Vec<StepReading>,
     /// What every resistor and supply that is connected bears during this step.
     pub parts: Vec<StepPart>,
     /// How the supplies that it connects charge an empty bank.
@@ -56,6 +58,35 @@ pub struct StepPoint {
     /// Greatest over the box.
     #[serde(rename = "highest_v", serialize_with = "si")]
     pub highest: Voltage,
+}
+
+/// A pair that people read at a step's end.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct StepReading {
+    /// The pair.
+    pub across: Pair,
+    /// Every value nominal.
+    #[serde(rename = "nominal_v", serialize_with = "si")]
+    pub nominal: Voltage,
+    /// Greatest over the box, every part healthy.
+    #[serde(rename = "highest_v", serialize_with = "si")]
+    pub highest: Voltage,
+    /// The greatest reading with which to go on, where the step's hold point is on this pair; `None` (null) elsewhere.
+    #[serde(rename = "allowed_v", serialize_with = "si_or_null")]
+    pub allowed: Option<Voltage>,
+    /// Failures under which the reading can be higher than the highest predicted, whether or not a hold point would
+    /// stop there.
+    pub points_to: Vec<FaultReading>,
+}
+
+/// A failure that a reading points to.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct FaultReading {
+    /// The failure.
+    pub fault: String,
+    /// The greatest reading with it; `None` (null) where it is not computed.
+    #[serde(rename = "highest_v", serialize_with = "si_or_null")]
+    pub highest: Option<Voltage>,
 }
 
 /// What a resistor or supply bears during one step, all elements of an array at one value.

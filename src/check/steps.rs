@@ -1,7 +1,9 @@
 //! The steps of a procedure: voltages, what parts bear, what comes back.
 
 use super::procedure::{Procedure, StepAnswers};
-use super::step_result::{FaultPoint, Recovery, StepFault, StepHold, StepPart, StepPoint, StepResult};
+use super::step_result::{
+    FaultPoint, FaultReading, Recovery, StepFault, StepHold, StepPart, StepPoint, StepReading, StepResult,
+};
 use super::{Charging, EngineError, Pair, Wait, charging};
 use crate::bank::description::{Lasts, Role, Step};
 use crate::circuit::Course;
@@ -104,6 +106,7 @@ impl<'a> StepCheck<'a> {
             ready_at_start: Energy::from_si(self.healthy.worst(StepFigure::ReadyEnergy { stage })),
             stored_at_start: Energy::from_si(self.healthy.worst(StepFigure::StoredEnergy { stage })),
             test_points: points.map(point).collect(),
+            readings: step.measure.iter().filter_map(|[a, b]| self.reading(stage, step, [a, b], waits)).collect(),
             parts: procedure.connected(stage).into_iter().map(|r| self.part(stage, r)).collect(),
             charging: self.charging[stage].clone(),
             faults: self.under_faults(stage, waits),
@@ -123,6 +126,33 @@ impl<'a> StepCheck<'a> {
             at: pairs.iter().map(|p| self.pair_name(*p)).collect(),
             predicted: Voltage::from_si(greatest(&|pair| self.volts(stage, pair))),
             shown_faults: names.collect(),
+        })
+    }
+
+    /// What a pair that is read at a step's end can show, and which failures would show there.
+    fn reading(&self, stage: usize, step: &Step, [a, b]: [&String; 2], waits: &[Wait]) -> Option<StepReading> {
+        let pair = self.procedure.model.find_pair(a, b)?;
+        let figure = StepFigure::Voltage { stage, pair };
+        let highest = self.volts(stage, pair);
+        let hold = step.hold.as_ref().filter(|hold| self.procedure.pairs(hold).contains(&pair));
+        let allowed = hold.map(|hold| hold.below);
+        // What only differs in the engine's last digits would not be seen on any instrument.
+        let shows = |volts: f64| volts > highest * (1.0 + 1e-6) && volts > 1e-3;
+        let parts = self.faults.iter().map(|(fault, answers)| (fault.name.clone(), answers.worst(figure)));
+        let mut points_to: Vec<FaultReading> = parts
+            .filter(|(_, volts)| shows(*volts))
+            .map(|(fault, volts)| FaultReading { fault, highest: Some(Voltage::from_si(volts)) })
+            .collect();
+        let held = waits.get(pair).map(|wait| wait.at_isolation);
+        if held.is_none_or(|volts| shows(volts.si())) {
+            points_to.push(FaultReading { fault: NOT_ISOLATED.to_string(), highest: held });
+        }
+        Some(StepReading {
+            across: [a.clone(), b.clone()],
+            nominal: Voltage::from_si(self.healthy.nominal(figure)),
+            highest: Voltage::from_si(highest),
+            allowed,
+            points_to,
         })
     }
 

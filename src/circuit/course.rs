@@ -53,6 +53,17 @@ impl Course {
         self.last.value(t)
     }
 
+    /// Value and slope (per second) at `t` seconds; where it jumps, those after the jump.
+    pub fn value_and_slope(&self, mut t: f64) -> (f64, f64) {
+        for (length, piece) in &self.pieces {
+            if t < *length {
+                return piece.value_and_slope(t);
+            }
+            t -= length;
+        }
+        self.last.value_and_slope(t)
+    }
+
     /// The same times a factor.
     #[must_use]
     pub fn times(&self, factor: f64) -> Self {

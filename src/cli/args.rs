@@ -27,12 +27,40 @@ Examples: ebbvolt plan bank.yaml
 Exit status: 0 all limits met and no rating exceeded; 1 a limit not met, a rating exceeded or a wait of never; \
 2 wrong input; 3 no verdict";
 
+const SHEET_EXAMPLES: &str = "\
+Examples: ebbvolt sheet bank.yaml -o sheet.html
+          ebbvolt sheet --example --format text
+
+The exit status is that of `ebbvolt plan`.";
+
+const LABEL_EXAMPLES: &str = "\
+Examples: ebbvolt label bank.yaml -o notice.svg
+          ebbvolt label --size 90x60mm --page a4 one.yaml two.yaml -o notices.svg
+
+The exit status is that of `ebbvolt plan`; of several banks, the highest.";
+
+const TRACE_EXAMPLES: &str = "\
+Examples: ebbvolt trace bank.yaml
+          ebbvolt trace bank.yaml --format csv --times 0s,30s,5min
+
+Loads of parts are nominal and of the whole part; voltages and tools are given nominal and highest. The exit status is \
+that of `ebbvolt plan`.";
+
 #[derive(Subcommand)]
 pub(super) enum Command {
     /// Print the plan of a bank: the wait to keep, stored energy, limits, ratings, findings
     Plan(Box<PlanArgs>),
     /// Find resistors that do a job, from preferred values and parts at hand
     Size(SizeArgs),
+    /// Show voltages, currents and powers against time, as a plot or as figures
+    #[command(after_help = TRACE_EXAMPLES)]
+    Trace(TraceArgs),
+    /// Print the discharge sheet of a bank: a checklist to carry to the cabinet, to fill in and to sign
+    #[command(after_help = SHEET_EXAMPLES)]
+    Sheet(SheetArgs),
+    /// Draw the notice for the cabinet, with the hazard and the delay before opening, as SVG
+    #[command(after_help = LABEL_EXAMPLES)]
+    Label(LabelArgs),
     /// List the published limits that a bank file can name
     #[command(after_help = "Example: ebbvolt limits --format csv")]
     Limits(LimitsArgs),
@@ -76,6 +104,106 @@ pub(super) struct PlanArgs {
     pub format: PlanFormat,
     #[command(flatten)]
     pub quick: QuickArgs,
+}
+
+/// Which bank: of a file, of standard input, or the one that is built in.
+#[derive(Args)]
+pub(super) struct BankArgs {
+    /// The bank file; - reads standard input
+    #[arg(value_name = "BANK.yaml", required_unless_present = "example", conflicts_with = "example")]
+    pub bank: Option<PathBuf>,
+    /// Take the bank that is built in
+    #[arg(long)]
+    pub example: bool,
+}
+
+#[derive(Args)]
+pub(super) struct SheetArgs {
+    #[command(flatten)]
+    pub bank: BankArgs,
+    /// How the sheet is written
+    #[arg(long, value_enum, default_value_t = SheetFormat::Html)]
+    pub format: SheetFormat,
+    /// The date to print on it, as year-month-day; without one, none is printed
+    #[arg(long, value_name = "DATE")]
+    pub date: Option<String>,
+    /// The paper of the HTML
+    #[arg(long, value_enum, default_value_t = SheetPaper::A4)]
+    pub paper: SheetPaper,
+    /// Write to this file instead of standard output; what it held is replaced
+    #[arg(short = 'o', long, value_name = "FILE")]
+    pub output: Option<PathBuf>,
+}
+
+#[derive(Args)]
+pub(super) struct LabelArgs {
+    /// The bank file, or several for several notices on a page; - reads standard input
+    #[arg(value_name = "BANK.yaml", required_unless_present = "example", conflicts_with = "example")]
+    pub banks: Vec<PathBuf>,
+    /// Take the bank that is built in
+    #[arg(long)]
+    pub example: bool,
+    /// Width and height of one notice; 120x80mm if not given
+    #[arg(long, value_name = "SIZE")]
+    pub size: Option<String>,
+    /// Lay the notices out on a page of this paper
+    #[arg(long, value_enum)]
+    pub page: Option<SheetPaper>,
+    /// How many of each, on a page
+    #[arg(long, value_name = "NUMBER", default_value_t = 1, value_parser = clap::value_parser!(u8).range(1..=100))]
+    pub copies: u8,
+    /// Write to this file instead of standard output; what it held is replaced
+    #[arg(short = 'o', long, value_name = "FILE")]
+    pub output: Option<PathBuf>,
+}
+
+impl LabelArgs {
+    /// The banks that were named, one by one.
+    pub fn each(&self) -> Vec<BankArgs> {
+        if self.example {
+            return vec![BankArgs { bank: None, example: true }];
+        }
+        self.banks.iter().map(|bank| BankArgs { bank: Some(bank.clone()), example: false }).collect()
+    }
+}
+
+#[derive(Args)]
+pub(super) struct TraceArgs {
+    #[command(flatten)]
+    pub bank: BankArgs,
+    /// How it is written
+    #[arg(long, value_enum, default_value_t = TraceFormat::Text)]
+    pub format: TraceFormat,
+    /// Only these moments from isolation, such as 0s,30s,5min; without them, moments are chosen where voltages change
+    #[arg(long, value_name = "TIMES", allow_hyphen_values = true)]
+    pub times: Option<String>,
+    /// Write to this file instead of standard output; what it held is replaced
+    #[arg(short = 'o', long, value_name = "FILE")]
+    pub output: Option<PathBuf>,
+}
+
+/// Formats of a trace.
+#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub(super) enum TraceFormat {
+    Text,
+    Csv,
+    Json,
+    Svg,
+}
+
+/// Formats of a sheet.
+#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub(super) enum SheetFormat {
+    Html,
+    Markdown,
+    Text,
+}
+
+/// Papers of a sheet.
+#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
+pub(super) enum SheetPaper {
+    A4,
+    Letter,
 }
 
 /// One capacitance with one bleeder, without a file.

@@ -2,12 +2,16 @@
 
 mod args;
 mod draft;
+mod given;
 mod input;
+mod label;
 mod limits;
 mod output;
 mod plan;
+mod sheet;
 mod size;
 mod terminal;
+mod trace;
 
 pub use terminal::Terminal;
 
@@ -51,6 +55,9 @@ pub fn run(
     match typed.command {
         Command::Plan(typed) => plan::run(&typed, stdin, &mut output),
         Command::Size(typed) => size::run(&typed, stdin, &mut output),
+        Command::Sheet(typed) => sheet::run(&typed, stdin, &mut output),
+        Command::Trace(typed) => trace::run(&typed, stdin, &mut output),
+        Command::Label(typed) => label::run(&typed, stdin, &mut output),
         Command::Limits(typed) => limits::run(&typed, &mut output),
         Command::Draft => draft::run(&mut output),
     }

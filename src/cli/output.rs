@@ -4,6 +4,7 @@ use super::{INPUT_WRONG, Terminal};
 use crate::finding::Findings;
 use crate::report;
 use std::io::{ErrorKind, Write};
+use std::path::Path;
 
 /// Words that stand in bold at the start of a line on a terminal. Nothing depends on it: they are capitals already.
 const SIGNAL_WORDS: [&str; 8] =
@@ -33,6 +34,19 @@ impl<'a> Output<'a> {
             Ok(()) => status,
             Err(e) if e.kind() == ErrorKind::BrokenPipe => status,
             Err(e) => self.problem(&format!("the result can't be written: {e}"), INPUT_WRONG),
+        }
+    }
+
+    /// The same into a file where one is named, and a word about it on standard error.
+    pub fn file_or_result(&mut self, file: Option<&Path>, text: &str, status: u8) -> u8 {
+        let Some(path) = file else { return self.result(text, status) };
+        let name = path.display();
+        match std::fs::write(path, text) {
+            Ok(()) => {
+                self.notice(&format!("Written to `{name}`."));
+                status
+            }
+            Err(e) => self.problem(&format!("`{name}` can't be written: {e}"), INPUT_WRONG),
         }
     }
 

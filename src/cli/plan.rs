@@ -51,6 +51,7 @@ pub(super) fn run(typed: &PlanArgs, stdin: &mut dyn Read, output: &mut Output) -
         two_faults: typed.faults == 2,
         draws: drawing(typed),
         sensitivity: typed.sensitivity,
+        ..Options::default()
     };
     if options.two_faults {
         match plan::too_many_fault_pairs(&bank) {
@@ -186,7 +187,7 @@ fn print(plan: &Plan, format: PlanFormat, output: &mut Output) -> u8 {
     }
 }
 
-fn no_verdict(problem: &str, output: &mut Output) -> u8 {
+pub(super) fn no_verdict(problem: &str, output: &mut Output) -> u8 {
     let advice = "No plan is printed: the tool could not certify its own result. Please report it with the bank file.";
     output.problem(&format!("internal error: {problem}\n{advice}"), NO_VERDICT)
 }

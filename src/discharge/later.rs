@@ -79,7 +79,7 @@ impl<'a> LaterStudy<'a> {
     fn at_worst_moment(&self, index: usize, case: &LaterCase, floor: f64) -> Result<AtMoment, CircuitError> {
         let mut worst = AtMoment { value: 0.0, opens: 0.0 };
         for healthy in &case.healthy {
-            let found = self.from_a_state(index, healthy, &case.without, floor.max(worst.value))?;
+            let found = self.starting_in_a_state(index, healthy, &case.without, floor.max(worst.value))?;
             if found.value > worst.value {
                 worst = found;
             }
@@ -87,7 +87,7 @@ impl<'a> LaterStudy<'a> {
         Ok(worst)
     }
 
-    fn from_a_state(
+    fn starting_in_a_state(
         &self,
         index: usize,
         healthy: &Case,

@@ -127,6 +127,40 @@ impl Timeline {
         across(&self.runs[stage].response, &self.map, a, b)
     }
 
+    /// Resistance in ohm of a resistor during a step; infinite where it is open or not connected.
+    pub fn ohms(&self, stage: usize, resistor: usize) -> f64 {
+        self.runs[stage].ohms[resistor]
+    }
+
+    /// Length of a step in second.
+    pub fn duration(&self, stage: usize) -> f64 {
+        self.runs[stage].duration
+    }
+
+    /// Power in watt of a resistor before isolation.
+    pub fn standing(&self, resistor: usize) -> f64 {
+        self.standing[resistor]
+    }
+
+    /// Which sinks draw at a moment of a step.
+    pub fn drawing(&self, stage: usize, t: f64) -> &[bool] {
+        self.runs[stage].response.drawing_at(t)
+    }
+
+    /// The voltage that counts for the heat of a resistor during a step, from its start.
+    pub fn hottest(&self, model: &Model, stage: usize, resistor: usize) -> Course {
+        self.runs[stage].hottest(model, &self.map, resistor)
+    }
+
+    /// Checks the energy balance of every step.
+    pub fn certify(&self) -> Result<(), CircuitError> {
+        for run in &self.runs {
+            run.response.check_balance(run.duration)?;
+            run.tries.iter().try_for_each(|response| response.check_balance(run.duration))?;
+        }
+        Ok(())
+    }
+
     /// The charge by a supply that a step connects, from an empty bank: the voltage of the bank where the supply is, and
     /// that across its series resistance of so many ohm.
     pub fn charging(&self, model: &Model, stage: usize, source: usize) -> Option<(Course, Course, f64)> {
@@ -345,11 +379,7 @@ impl Objective for ProcedureStudy<'_> {
     }
 
     fn certify(&self, cases: &Vec<Timeline>) -> Result<(), CircuitError> {
-        for run in cases.iter().flat_map(|timeline| &timeline.runs) {
-            run.response.check_balance(run.duration)?;
-            run.tries.iter().try_for_each(|response| response.check_balance(run.duration))?;
-        }
-        Ok(())
+        cases.iter().try_for_each(Timeline::certify)
     }
 
     fn figure(&self, index: usize, cases: &Vec<Timeline>, floor: f64) -> Result<f64, CircuitError> {

@@ -8,15 +8,16 @@ pub use result::*;
 
 use crate::bank::Bank;
 use crate::check::{
-    Answers, CapacitorCheck, FaultAnswers, LimitChecks, Procedure, ResistorChecks, StepCheck, StoredCheck, WaitCheck,
-    assumptions, notes, phase_findings, remaining_energy, sensitivities, spreads, step_assumptions, step_findings,
+    Answers, CapacitorCheck, CurveCheck, FaultAnswers, LimitChecks, Procedure, ResistorChecks, StepCheck, StoredCheck,
+    WaitCheck, assumptions, equipment, notes, notice, phase_findings, remaining_energy, sensitivities, spreads,
+    step_assumptions, step_findings,
 };
 use crate::discharge::{Figure, MOST_CORNERS, Model, faults, pairs_of_faults};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{Quantity, Time};
 
 /// What a plan is to contain beyond the figures.
-#[derive(Debug, Clone, Copy, Default, PartialEq, Eq)]
+#[derive(Debug, Clone, Default, PartialEq)]
 pub struct Options {
     /// The calculation of every wait, for a reviewer to check by hand.
     pub working: bool,
@@ -26,6 +27,8 @@ pub struct Options {
     pub draws: Option<Drawing>,
     /// How the waits depend on every part.
     pub sensitivity: bool,
+    /// Curves at these moments.
+    pub curves: Option<CurveTimes>,
 }
 
 /// So many pairs of faults are examined at most: each is a search over the box of its own.
@@ -61,17 +64,19 @@ pub fn plan(bank: &Bank, input_sha256: &str, noticed: Findings, options: Options
     // From here on every part is a plain one: the plan of a file and that of its expanded form are the same.
     let bank = &bank.expanded();
     let mut plan = blank(bank, input_sha256);
-    compute(bank, &mut plan, &mut findings, options)?;
+    compute(bank, &mut plan, &mut findings, &options)?;
     for missing in &plan.not_computed {
         findings.add(Severity::Warning, "not-computed", format!("Not computed by this version: {missing}."));
     }
+    plan.notice = notice(&plan.waits, &plan.recovery);
+    plan.equipment = equipment(bank, plan.stored.as_ref(), &plan.waits, &plan.steps, &plan.recovery);
     plan.findings = findings.into_sorted();
     plan.verdict = plan.judged();
     Ok(plan)
 }
 
 /// Fills in everything that is computed.
-fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Options) -> Result<(), EngineError> {
+fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: &Options) -> Result<(), EngineError> {
     let model = Model::new(bank).map_err(EngineError::of("absorption"))?;
     let description = bank.description();
     let (first, last) = (description.terminals.first(), description.terminals.last());
@@ -121,6 +126,11 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
         plan.working =
             Some(working::working(bank, &model, &plan.waits, |pair| healthy.worst_scenario(waits.wait(pair)))?);
     }
+    if let Some(times) = &options.curves {
+        let alone = model.passive_only();
+        let followed = if procedure.is_some() { &model } else { &alone };
+        plan.curves = Some(CurveCheck::new(bank, followed, procedure.as_ref(), followed_for(plan))?.curves(times)?);
+    }
     Ok(())
 }
 
@@ -129,9 +139,6 @@ fn compute(bank: &Bank, plan: &mut Plan, findings: &mut Findings, options: Optio
 /// # Errors
 /// Where the absorption of a capacitor can't be calibrated.
 pub fn too_many_fault_pairs(bank: &Bank) -> Result<Option<String>, EngineError> {
-    if bank.is_three_phase() {
-        return Ok(None);
-    }
     let model = Model::new(bank).map_err(EngineError::of("absorption"))?;
     let single = faults(bank, &model);
     Ok(too_many(single.len(), pairs_of_faults(&model, &single).len()))
@@ -169,6 +176,18 @@ fn two_faults(
     Ok(())
 }
 
+/// How long a bank that nobody discharges is followed, in second: somewhat past its longest wait and the times of its
+/// limits; where there is no wait, over its slowest time constant.
+fn followed_for(plan: &Plan) -> f64 {
+    let waits = plan.waits.iter().filter_map(|w| w.keep);
+    let limits = plan.limits.iter().filter_map(|l| l.within);
+    let longest = waits.chain(limits).map(Quantity::si).fold(0.0, f64::max);
+    let slowest = plan.time_constants.first().map_or(0.0, |tau| tau.si());
+    let never = plan.waits.iter().any(|w| w.keep.is_none());
+    let followed = if never || longest <= 0.0 { longest.max(5.0 * slowest) } else { 1.25 * longest };
+    if followed > 0.0 { followed } else { 3600.0 }
+}
+
 /// A plan with everything that needs no engine.
 fn blank(bank: &Bank, input_sha256: &str) -> Plan {
     let description = bank.description();
@@ -200,12 +219,15 @@ fn blank(bank: &Bank, input_sha256: &str) -> Plan {
         capacitors: Vec::new(),
         steps: Vec::new(),
         recovery: Vec::new(),
+        notice: notice(&[], &[]),
+        equipment: equipment(bank, None, &[], &[], &[]),
         findings: Vec::new(),
         assumptions: assumptions(bank),
         worst_case_search: String::new(),
         draws: None,
         sensitivity: None,
         working: None,
+        curves: None,
     }
 }
 

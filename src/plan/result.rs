@@ -9,9 +9,11 @@ use crate::quantity::{Capacitance, Energy, Resistance, Temperature, Time, Voltag
 use serde::Serialize;
 
 pub use crate::check::{
-    Band, CapacitorResult, Charging, ChargingMoment, Check, DrawFrom, Drawing, DrawnWait, Draws, FaultPoint, FaultWait,
-    Interruption, LimitResult, LimitSource, Opens, Pair, PartSensitivity, Recovery, ResistorResult, Sensitivity,
-    SpreadResult, StepFault, StepHold, StepPart, StepPoint, StepResult, Stored, Verdict, Wait, WorstValue,
+    Band, CapacitorResult, Charging, ChargingMoment, Check, CurveLoad, CurvePair, CurvePart, CurveSample, CurveSpan,
+    CurveTimes, CurveTool, CurveVoltage, Curves, DrawFrom, Drawing, DrawnWait, Draws, Equipment, EquipmentPart,
+    FaultPoint, FaultReading, FaultWait, Interruption, LimitResult, LimitSource, Notice, NoticeFault, Opens, Pair,
+    PartSensitivity, Recovery, ResistorResult, Sensitivity, SpreadResult, StepFault, StepHold, StepPart, StepPoint,
+    StepReading, StepResult, Stored, ToolLoad, Verdict, Wait, WorstValue,
 };
 
 /// Everything that a plan says about one bank.
@@ -57,6 +59,10 @@ pub struct Plan {
     pub steps: Vec<StepResult>,
     /// What comes back after the last step.
     pub recovery: Vec<Recovery>,
+    /// What the notice on the cabinet says.
+    pub notice: Notice,
+    /// What is needed to carry out and to check the discharge.
+    pub equipment: Equipment,
     /// What the tool noticed, the gravest first.
     pub findings: Vec<Finding>,
     /// What the plan rests on.
@@ -72,6 +78,9 @@ pub struct Plan {
     /// The calculation in a form that a reviewer can check by hand; only where asked for.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub working: Option<Vec<Working>>,
+    /// Voltages, currents and powers against time; only where asked for, and never in the JSON of a plan.
+    #[serde(skip)]
+    pub curves: Option<Curves>,
 }
 
 /// Which tool and which format of result.

@@ -7,7 +7,7 @@ mod parse;
 mod show;
 
 pub use parse::{QuantityError, Reading, Tolerance, parse, parse_kind};
-pub use show::{Direction, Rounded, duration, exact, keepable, show, show_digits};
+pub use show::{Direction, Rounded, duration, exact, for_a_notice, keepable, show, show_digits};
 
 use uom::si;
 
@@ -23,6 +23,8 @@ pub type Energy = si::f64::Energy;
 pub type Frequency = si::f64::Frequency;
 /// Mass, in kilogram.
 pub type Mass = si::f64::Mass;
+/// Length: of paper, so it is in no bank file.
+pub type Length = si::f64::Length;
 /// Power, in watt; reactive power, in var, is carried by the same type.
 pub type Power = si::f64::Power;
 /// A pure number, such as a tolerance: 20 % is 0.2.
@@ -99,6 +101,11 @@ quantities! {
     TemperatureCoefficient: temperature_coefficient::per_kelvin,
     Time: time::second,
     Voltage: electric_potential::volt,
+}
+
+/// A length of `value` millimetres.
+pub fn millimetres(value: f64) -> Length {
+    Length::new::<si::length::millimeter>(value)
 }
 
 /// A temperature in degree Celsius.

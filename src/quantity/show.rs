@@ -200,6 +200,13 @@ pub fn keepable(time: Time) -> Time {
     Time::from_si((units(s / grid, Direction::Up) as f64) * grid)
 }
 
+/// A time rounded up to one that a notice can carry for years: whole seconds up to 2 min, whole minutes beyond.
+pub fn for_a_notice(time: Time) -> Time {
+    let s = time.si();
+    let seconds = units(s, Direction::Up) as f64;
+    Time::from_si(if seconds > 120.0 { 60.0 * units(s / 60.0, Direction::Up) as f64 } else { seconds })
+}
+
 /// A quantity as a bank file takes it, with every digit of its value.
 pub fn exact<Q: Quantity>(quantity: Q) -> String {
     let si = quantity.si();

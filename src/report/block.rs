@@ -34,6 +34,48 @@ pub(super) enum Block {
     Formula(String),
     /// A table.
     Table(Grid),
+    /// The figures that matter most, to be read from a distance.
+    Large(Vec<LargeFigure>),
+    /// Acts to tick off when they are done.
+    Ticks(Vec<String>),
+    /// What is to be filled in by hand.
+    Blanks(Vec<String>),
+    /// A step to work by: it is not split over pages.
+    Step(Step),
+    /// A plot.
+    Plot(Picture),
+    /// Rows to be signed.
+    Signatures(Vec<&'static str>),
+}
+
+/// A figure in large type.
+pub(super) struct LargeFigure {
+    /// What it is.
+    pub label: &'static str,
+    /// The figure.
+    pub figure: String,
+    /// What belongs to it.
+    pub under: String,
+}
+
+/// A step of a procedure as a person carries it out.
+pub(super) struct Step {
+    /// Its number and its time.
+    pub heading: String,
+    /// What to beware of, what to do, when to stop, in this order.
+    pub items: Vec<Labelled>,
+    /// What is read, with room for what was found; empty where nothing is.
+    pub readings: Grid,
+}
+
+/// A plot with its text alternative.
+pub(super) struct Picture {
+    /// What it shows.
+    pub title: String,
+    /// What can be read from it, for those who can't see it.
+    pub description: String,
+    /// The SVG element.
+    pub svg: String,
 }
 
 /// A label and the paragraphs that belong to it.

@@ -1,6 +1,7 @@
 //! A document as Markdown, for a work order or a repository.
 
-use super::block::{Block, Grid, Labelled, Side};
+use super::block::{Block, Grid, Labelled, LargeFigure, Side};
+use super::paper;
 use super::plan;
 use super::words::{NO_BREAK, clean};
 use crate::plan::Plan;
@@ -38,6 +39,27 @@ fn part(block: &Block) -> String {
         Block::List(items) => items.iter().map(|item| format!("- {}", escape(item))).collect::<Vec<_>>().join("\n"),
         Block::Formula(formula) => format!("    {}", clean(formula)),
         Block::Table(grid) => table(grid),
+        Block::Large(figures) => {
+            let line = |f: &LargeFigure| {
+                format!("> {}: **{}** {}", escape(f.label), escape(&f.figure), escape(&f.under)).trim_end().to_string()
+            };
+            figures.iter().map(line).collect::<Vec<_>>().join("\n>\n")
+        }
+        Block::Ticks(acts) => acts.iter().map(|act| format!("- [ ] {}", escape(act))).collect::<Vec<_>>().join("\n"),
+        Block::Blanks(labels) => {
+            let line = |label: &String| format!("- {} {}", escape(label), escape(paper::LINE));
+            labels.iter().map(line).collect::<Vec<_>>().join("\n")
+        }
+        Block::Step(step) => {
+            let mut parts = vec![format!("### {}", escape(&step.heading)), labelled(&step.items).join("\n")];
+            if !step.readings.rows.is_empty() {
+                parts.push(table(&paper::with_room(&step.readings)));
+            }
+            parts.push(format!("- [ ] {}", escape(&paper::done())));
+            parts.join("\n\n")
+        }
+        Block::Plot(picture) => format!("### {}\n\n{}", escape(&picture.title), escape(&picture.description)),
+        Block::Signatures(roles) => table(&paper::signatures(roles)),
     }
 }
 

@@ -3,10 +3,15 @@
 
 mod block;
 mod findings;
+mod html;
 mod json;
+mod label;
 mod limits;
 mod markdown;
+mod paper;
 mod plan;
+mod plot;
+mod sheet;
 mod size;
 mod text;
 mod words;
@@ -18,7 +23,10 @@ mod tests;
 
 pub use findings::findings_text;
 pub use json::{NotFinite, check_finite, plan_json};
+pub use label::{LabelError, LabelSize, label_svg, labels_page_svg};
 pub use limits::{limits_csv, limits_json, limits_markdown, limits_text};
 pub use markdown::plan_markdown;
+pub use plot::{trace_csv, trace_json, trace_svg, trace_text};
+pub use sheet::{Paper, Sheet, sheet_html, sheet_markdown, sheet_text};
 pub use size::{size_json, size_markdown, size_text};
 pub use text::{message_text, plan_text};

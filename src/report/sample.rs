@@ -102,6 +102,8 @@ fn limits() -> Vec<LimitResult> {
         single_fault_met: Some(false),
         single_fault_asked: true,
         single_fault_missed_by: Some("R1 open".into()),
+        everywhere: true,
+        allowed_voltage: Some(v(50.0)),
         voltage: v(41.2),
         charge: Charge::from_si(0.0816),
         energy: Energy::from_si(1.69),
@@ -202,9 +204,12 @@ pub fn plan() -> Plan {
         capacitors: vec![capacitor("C1"), capacitor("C2")],
         steps: Vec::new(),
         recovery: Vec::new(),
+        notice: Notice { delay: Some(s(300.0)), longest_fault: None, never_faults: vec!["R1 open".into()], left: None },
+        equipment: Equipment { instrument_voltage: v(750.0), parts: Vec::new() },
         findings,
         assumptions: vec!["Air at the resistors is 40 °C: the file gives none.".into()],
         worst_case_search: "all 16 corners of 4 loose values, then a search inside the box from the best.".into(),
         working: Some(working()),
+        curves: None,
     }
 }

@@ -1,6 +1,7 @@
 //! A document as plain text for a terminal, a pipe or paper: no colour, at most the given number of columns.
 
 use super::block::{Block, Column, Grid, Labelled, Side};
+use super::paper;
 use super::plan;
 use super::words::{NO_BREAK, clean};
 use crate::plan::Plan;
@@ -83,6 +84,38 @@ fn add(lines: &mut Vec<String>, block: &Block, width: usize) {
         }
         Block::Formula(formula) => hanging(lines, "", 2, std::slice::from_ref(formula), width),
         Block::Table(grid) => lines.extend(table(grid, width)),
+        Block::Large(figures) => {
+            lines.push("=".repeat(width));
+            for figure in figures {
+                hanging(lines, figure.label, 2 * LABEL, &[figure.figure.clone(), figure.under.clone()], width);
+            }
+            lines.push("=".repeat(width));
+        }
+        Block::Ticks(acts) => {
+            for act in acts {
+                hanging(lines, paper::TICK, LABEL, std::slice::from_ref(act), width);
+            }
+        }
+        Block::Blanks(labels) => {
+            for label in labels {
+                lines.extend(wrap(&format!("{label} {}", paper::LINE), width));
+            }
+        }
+        Block::Step(step) => {
+            lines.push(String::new());
+            lines.extend(wrap(&format!("{} {}", paper::TICK, step.heading), width));
+            labelled(lines, &step.items, width);
+            if !step.readings.rows.is_empty() {
+                lines.extend(table(&paper::with_room(&step.readings), width));
+            }
+            lines.extend(wrap(&paper::done(), width));
+        }
+        Block::Plot(picture) => {
+            lines.push(String::new());
+            lines.extend(wrap(&picture.title, width));
+            lines.extend(wrap(&picture.description, width));
+        }
+        Block::Signatures(roles) => lines.extend(table(&paper::signatures(roles), width)),
     }
 }
 

@@ -12,7 +12,9 @@ fn without_arguments_it_prints_help_and_ends_with_status_2() {
 
 #[test]
 fn help_goes_to_standard_output_within_80_columns_and_shows_an_example() {
-    for words in [&["--help"][..], &["-h"], &["plan", "--help"], &["limits", "--help"], &["draft", "--help"]] {
+    let of = ["plan", "sheet", "label", "trace", "limits", "draft"].map(|command| vec![command, "--help"]);
+    for words in [vec!["--help"], vec!["-h"]].into_iter().chain(of) {
+        let words = &words[..];
         let run = run(words);
         assert_eq!((run.status, run.err.as_str()), (0, ""), "{words:?}");
         assert!(run.out.contains("xample"), "{}", run.out);
@@ -23,7 +25,7 @@ fn help_goes_to_standard_output_within_80_columns_and_shows_an_example() {
 #[test]
 fn help_names_only_commands_that_exist() {
     let help = run(&["--help"]).out;
-    for command in ["trace", "sheet", "label", "readings", "clock", "register", "schema"] {
+    for command in ["readings", "clock", "register", "schema"] {
         assert_eq!(run(&[command]).status, 2, "{command} exists: give it a place in these tests");
         assert!(!help.lines().any(|line| line.trim_start().starts_with(command)), "{help}");
     }

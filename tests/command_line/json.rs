@@ -26,6 +26,8 @@ struct Plan {
     capacitors: Vec<Capacitor>,
     steps: Vec<Step>,
     recovery: Vec<Recovery>,
+    notice: Notice,
+    equipment: Equipment,
     findings: Vec<Finding>,
     assumptions: Vec<String>,
     worst_case_search: String,
@@ -36,6 +38,63 @@ struct Plan {
     _sensitivity: Option<Vec<serde_json::Value>>,
     #[serde(rename = "spreads")]
     _spreads: Vec<serde_json::Value>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Notice {
+    delay_s: Option<f64>,
+    longest_fault: Option<NoticeFault>,
+    never_faults: Vec<String>,
+    left_v: Option<f64>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct NoticeFault {
+    fault: String,
+    delay_s: f64,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct Equipment {
+    instrument_voltage_v: f64,
+    parts: Vec<EquipmentPart>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct EquipmentPart {
+    id: String,
+    role: String,
+    across: Pair,
+    value_ohm: f64,
+    series: u32,
+    parallel: u32,
+    rated_power_w: Option<f64>,
+    rated_voltage_v: Option<f64>,
+    rated_pulse_j: Option<f64>,
+    overload_times: Option<f64>,
+    overload_for_s: Option<f64>,
+    steps: Vec<usize>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct StepReading {
+    across: Pair,
+    nominal_v: f64,
+    highest_v: f64,
+    allowed_v: Option<f64>,
+    points_to: Vec<FaultReading>,
+}
+
+#[derive(Deserialize)]
+#[serde(deny_unknown_fields)]
+struct FaultReading {
+    fault: String,
+    highest_v: Option<f64>,
 }
 
 #[derive(Deserialize)]
@@ -147,6 +206,8 @@ struct Limit {
     single_fault_met: Option<bool>,
     single_fault_asked: bool,
     single_fault_missed_by: Option<String>,
+    everywhere: bool,
+    allowed_voltage_v: Option<f64>,
     voltage_v: f64,
     charge_c: f64,
     energy_j: f64,
@@ -209,6 +270,7 @@ struct Step {
     stored_at_start_j: f64,
     ready_at_start_j: f64,
     test_points: Vec<StepPoint>,
+    readings: Vec<StepReading>,
     parts: Vec<StepPart>,
     charging: Vec<Charging>,
     faults: Vec<StepFault>,
@@ -332,6 +394,7 @@ fn every_example_bank_has_the_documented_keys_and_finite_numbers() {
         );
         assert!(plan.not_computed.is_empty());
         check_steps(&plan);
+        check_notice(&plan);
         assert!(plan.time_constants_s.windows(2).all(|pair| pair[0] >= pair[1]), "slowest first");
         assert!(!plan.worst_case_search.is_empty() && !plan.assumptions.is_empty());
         assert!(plan.working.is_some_and(|working| !working.is_empty()));
@@ -361,6 +424,38 @@ fn every_example_bank_has_the_documented_keys_and_finite_numbers() {
         }
         check_parts(&plan.resistors, &plan.capacitors);
         check_findings(&plan.findings);
+    }
+}
+
+/// What holds of the notice and the equipment of any plan.
+fn check_notice(plan: &Plan) {
+    let longest = plan.waits.iter().map(|w| w.keep_s.unwrap_or(f64::INFINITY)).fold(0.0, f64::max);
+    let whole = |s: f64| if s > 120.0 { (s / 60.0).ceil() * 60.0 } else { s.ceil() };
+    assert_eq!(plan.notice.delay_s, longest.is_finite().then(|| whole(longest)));
+    let faults = plan.waits.iter().flat_map(|w| &w.faults);
+    let endless = faults.clone().filter(|f| f.wait_s.is_none());
+    assert!(endless.clone().all(|f| plan.notice.never_faults.contains(&f.fault)));
+    assert!(plan.notice.never_faults.iter().all(|name| endless.clone().any(|f| f.fault == *name)));
+    let slowest_fault = whole(faults.filter_map(|f| f.wait_s).fold(0.0, f64::max));
+    match &plan.notice.longest_fault {
+        Some(fault) => assert!(!fault.fault.is_empty() && (fault.delay_s - slowest_fault).abs() < 1e-9),
+        None => assert!(plan.notice.delay_s.is_some_and(|delay| slowest_fault <= delay)),
+    }
+    for limit in &plan.limits {
+        assert!(limit.allowed_voltage_v.is_none_or(|v| v > 0.0), "{}", limit.id);
+        assert!(!limit.everywhere || plan.waits.iter().any(|w| w.across == limit.across), "{}", limit.id);
+    }
+    assert_eq!(plan.notice.left_v.is_some(), !plan.steps.is_empty());
+    let Equipment { instrument_voltage_v, parts } = &plan.equipment;
+    assert!(plan.waits.iter().all(|w| w.at_isolation_v <= *instrument_voltage_v));
+    assert!(plan.stored.as_ref().is_some_and(|s| s.voltage_highest_v <= *instrument_voltage_v));
+    for part in parts {
+        assert!(["tool", "strap", "meter", "supply"].contains(&part.role.as_str()), "{}", part.role);
+        assert!(part.across[0] != part.across[1] && part.value_ohm > 0.0 && part.series >= 1 && part.parallel >= 1);
+        let ratings = [part.rated_power_w, part.rated_voltage_v, part.rated_pulse_j];
+        assert!(ratings.iter().flatten().all(|rating| *rating > 0.0));
+        assert_eq!(part.overload_times.is_some(), part.overload_for_s.is_some());
+        assert!(part.steps.iter().all(|number| plan.steps[number - 1].connect.contains(&part.id)), "{}", part.id);
     }
 }
 
@@ -418,6 +513,17 @@ fn check_steps(plan: &Plan) {
         let here = |id: &String| step.parts.iter().any(|part| part.id == *id);
         assert!(step.connect.iter().all(here), "what is connected bears something: {}", step.step);
         assert!(!step.disconnect.iter().any(here), "what was taken off bears nothing: {}", step.step);
+        assert_eq!(
+            step.readings.iter().map(|r| &r.across).collect::<Vec<_>>(),
+            step.measure.iter().collect::<Vec<_>>()
+        );
+        for reading in &step.readings {
+            assert!(reading.nominal_v >= 0.0 && reading.highest_v >= reading.nominal_v);
+            let held = step.hold.as_ref().filter(|hold| hold.at.contains(&reading.across));
+            assert_eq!(reading.allowed_v, held.map(|hold| hold.below_v));
+            assert!(reading.points_to.iter().all(|f| f.highest_v.is_none_or(|v| v > reading.highest_v)));
+            assert!(reading.points_to.iter().all(|f| step.faults.iter().any(|known| known.fault == f.fault)));
+        }
         for fault in &step.faults {
             assert!(fault.fault.contains(' '));
             assert_eq!(fault.test_points.iter().map(|point| &point.across).collect::<Vec<_>>(), points);

@@ -60,7 +60,7 @@ fn every_bank_and_the_draft_meet_their_limits_and_ratings() {
 
 /// Where the plans of these banks may have null: what the file does not give, a wait that never ends under a fault, and
 /// figures of a resistor that only a step connects. Anywhere else it would stand for a figure that is lost.
-const MAY_BE_NULL: [&str; 26] = [
+const MAY_BE_NULL: [&str; 35] = [
     ".bank.location",
     ".bank.notes",
     ".bank.prepared_by",
@@ -68,12 +68,20 @@ const MAY_BE_NULL: [&str; 26] = [
     ".bank.title",
     ".capacitors.rated_v",
     ".capacitors.worst_fault",
+    ".equipment.parts.overload_for_s",
+    ".equipment.parts.overload_times",
+    ".equipment.parts.rated_power_w",
+    ".equipment.parts.rated_pulse_j",
+    ".equipment.parts.rated_voltage_v",
     ".hold_energy_j",
+    ".limits.allowed_voltage_v",
     ".limits.met",
     ".limits.single_fault_met",
     ".limits.single_fault_missed_by",
     ".limits.source",
     ".limits.within_s",
+    ".notice.left_v",
+    ".notice.longest_fault",
     ".recovery.at_s",
     ".recovery.passes_touch_at_s",
     ".resistors.allowed_power_w",
@@ -85,6 +93,7 @@ const MAY_BE_NULL: [&str; 26] = [
     ".resistors.peak_current_a",
     ".resistors.peak_power_w",
     ".steps.hold",
+    ".steps.readings.allowed_v",
     ".waits.faults.wait_s",
     ".working.single",
 ];

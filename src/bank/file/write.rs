@@ -83,6 +83,7 @@ const FARAD: [(&str, f64); 4] = [("uF", 1e-6), ("nF", 1e-9), ("pF", 1e-12), ("F"
 const COULOMB: [(&str, f64); 3] = [("C", 1.0), ("mC", 1e-3), ("uC", 1e-6)];
 const SECOND: [(&str, f64); 4] = [("s", 1.0), ("min", 60.0), ("h", 3600.0), ("ms", 1e-3)];
 const PERCENT: [(&str, f64); 1] = [("%", 1e-2)];
+const PER_KELVIN: [(&str, f64); 2] = [("ppm/K", 1e-6), ("%/K", 1e-2)];
 const CELSIUS: [(&str, f64); 1] = [("°C", 1.0)];
 const HERTZ: [(&str, f64); 1] = [("Hz", 1.0)];
 const VAR: [(&str, f64); 2] = [("kvar", 1e3), ("var", 1.0)];
@@ -145,10 +146,15 @@ fn flag(key: &'static str, set: bool) -> Option<(&'static str, String)> {
 }
 
 fn tolerance(tolerance: Option<Tolerance>) -> Option<(&'static str, String)> {
+    spread("tolerance", tolerance)
+}
+
+/// How far a value can lie from the marked one, each way.
+fn spread(key: &'static str, tolerance: Option<Tolerance>) -> Option<(&'static str, String)> {
     let tolerance = tolerance?;
     let (low, high) = (figure(tolerance.low(), &PERCENT), figure(tolerance.high(), &PERCENT));
     let text = if low == high { low } else { mapping([Some(("low", low)), Some(("high", high))]) };
-    Some(("tolerance", text))
+    Some((key, text))
 }
 
 fn counts(key: &'static str, series: u32, parallel: u32) -> Option<(&'static str, String)> {
@@ -217,6 +223,8 @@ fn capacitor(c: &Capacitor) -> String {
         Some(("id", word(&c.id))),
         Some(value),
         tolerance(c.tolerance),
+        c.tempco.map(|t| ("tempco", figure(t, &PER_KELVIN))),
+        spread("ageing", c.ageing),
         place,
         connection,
         counts("units", c.series, c.parallel),
@@ -235,6 +243,8 @@ pub(super) fn resistor(r: &Resistor) -> String {
         Some(("role", r.role.word().to_string())),
         Some(("value", figure(r.value, &OHM))),
         tolerance(r.tolerance),
+        r.tempco.map(|t| ("tempco", figure(t, &PER_KELVIN))),
+        spread("ageing", r.ageing),
         place,
         connection,
         counts("array", r.series, r.parallel),
@@ -355,9 +365,9 @@ terminals: ["null", "1", "~x"]
 charged_to: {ac_rms: 398.7 V, rise: 7.3 %, phases: 3, neutral: grounded}
 capacitors:
   - {id: "true", kvar: {power: 12.5 kvar, voltage: 440 V, frequency: 60 Hz}, tolerance: {low: 5 %, high: 10.3 %}, phases: 3, connection: star}
-  - {id: C.2, value: 0.1 uF, across: ["null", "1"], units: {series: 3, parallel: 2}, rated: 1.7 kV, absorption: 0.07 %}
+  - {id: C.2, value: 0.1 uF, across: ["null", "1"], units: {series: 3, parallel: 2}, rated: 1.7 kV, absorption: 0.07 %, tempco: -750.3 ppm/K, ageing: {low: 20.7 %}}
 resistors:
-  - {id: R 1, role: bleeder, value: 4k7, tolerance: 0.3 %, phases: 3, connection: star, array: {series: 2}, rating: {power: 0.3 W, full_to: 70.1 °C, zero_at: 155 °C, voltage: 333 V, pulse: 0.7 J, overload: {times: 2.5, for: 5 s}, thermal_time: 1.1 min}}
+  - {id: R 1, role: bleeder, value: 4k7, tolerance: 0.3 %, tempco: 0.39 %/K, ageing: 2.3 %, phases: 3, connection: star, array: {series: 2}, rating: {power: 0.3 W, full_to: 70.1 °C, zero_at: 155 °C, voltage: 333 V, pulse: 0.7 J, overload: {times: 2.5, for: 5 s}, thermal_time: 1.1 min}}
   - {id: T1, role: tool, value: 33 ohm, across: ["1", "~x"]}
 sinks:
   - {id: K1, kind: constant-power, value: 0.3 W, across: ["null", G], stops_below: 11.1 V, counted: true}

@@ -11,7 +11,7 @@ pub struct NotFinite(String);
 
 impl NotFinite {
     /// An error with this text.
-    pub(super) fn new(text: String) -> Self {
+    pub(in crate::report) fn new(text: String) -> Self {
         NotFinite(text)
     }
 }

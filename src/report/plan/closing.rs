@@ -5,7 +5,7 @@ use crate::finding::Finding;
 use crate::plan::Plan;
 
 /// Findings, the gravest first, and the assumptions.
-pub(super) fn findings(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn findings(plan: &Plan) -> Vec<Block> {
     let mut blocks = Vec::new();
     if !plan.findings.is_empty() {
         let mut sorted: Vec<&Finding> = plan.findings.iter().collect();
@@ -33,7 +33,7 @@ fn finding(finding: &Finding) -> Labelled {
 }
 
 /// Which tool and input made this, how the worst cases were found, and who decides.
-pub(super) fn footer(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn footer(plan: &Plan) -> Vec<Block> {
     let text = "Times run from isolation. Times, voltages, currents, energies and powers are rounded up, allowed values \
                 and margins down. Local electrical codes, the equipment maker's instructions and qualified persons \
                 decide; this plan overrides none of them.";

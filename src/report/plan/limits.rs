@@ -5,7 +5,7 @@ use super::super::words::{pair, time, up, whole};
 use super::summary::limit_missed;
 use crate::plan::{LimitResult, LimitSource, Plan};
 
-pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
     let mut blocks = vec![Block::Section("Limits")];
     if plan.limits.is_empty() {
         let text = "None was given. `ebbvolt limits` lists published ones that a bank file can name.";

@@ -1,15 +1,15 @@
 //! What a plan says, in the order in which a person needs it.
 
-mod closing;
+pub(super) mod closing;
 mod draws;
-mod limits;
-mod ratings;
+pub(super) mod limits;
+pub(super) mod ratings;
 mod sensitivity;
 mod spreads;
-mod steps;
-mod summary;
-mod waits;
-mod working;
+pub(super) mod steps;
+pub(super) mod summary;
+pub(super) mod waits;
+pub(super) mod working;
 
 use super::block::Block;
 use crate::plan::Plan;

@@ -5,7 +5,7 @@ use super::super::words::{down, glued, list, typed, up, whole};
 use crate::plan::{CapacitorResult, Check, Plan, ResistorResult, Verdict};
 use crate::quantity::{CELSIUS_ZERO_K, Direction, Energy, Power, Quantity, Ratio, Temperature, Voltage, show};
 
-pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
     if plan.resistors.is_empty() && plan.capacitors.is_empty() {
         return Vec::new();
     }

@@ -9,7 +9,7 @@ use crate::quantity::{Quantity, keepable};
 /// Faults that are named one by one on the first screen; the table has them all.
 const NAMED_FAULTS: usize = 3;
 
-pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
     let mut blocks = Vec::new();
     if !plan.not_computed.is_empty() {
         blocks.push(incomplete(plan));
@@ -27,7 +27,7 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
     blocks
 }
 
-fn incomplete(plan: &Plan) -> Block {
+pub(in crate::report) fn incomplete(plan: &Plan) -> Block {
     let missing: Vec<String> = plan.not_computed.iter().map(|part| format!("Not computed: {part}.")).collect();
     let mut text = vec![
         "This version does not compute everything that the file asks for. What follows leaves it out, \
@@ -50,7 +50,7 @@ fn title(plan: &Plan) -> Block {
     Block::Title { title, under: if under.is_empty() { under } else { vec![under.join("; ")] } }
 }
 
-fn holds(plan: &Plan) -> Vec<String> {
+pub(in crate::report) fn holds(plan: &Plan) -> Vec<String> {
     let (nominal, highest) = (plan.charged_to.nominal, plan.charged_to.highest);
     let between = format!("between {}", list(&plan.terminals));
     let mut first = format!("up to {} {between} at isolation (nominal {})", up(highest), up(nominal));
@@ -77,7 +77,7 @@ fn energy(stored: &Stored) -> String {
     text + "."
 }
 
-fn hazard(plan: &Plan) -> Labelled {
+pub(in crate::report) fn hazard(plan: &Plan) -> Labelled {
     let Some(stored) = &plan.stored else {
         return Labelled::new("DANGER", vec!["Treat the bank as charged: its hazard band is not computed.".into()]);
     };
@@ -91,14 +91,14 @@ fn hazard(plan: &Plan) -> Labelled {
     Labelled::new("DANGER", vec![format!("Hazardous stored energy: {}. Check the edition in force.", bands.join("; "))])
 }
 
-fn caution() -> String {
+pub(in crate::report) fn caution() -> String {
     "This is a prediction from the parts listed, their tolerances and the state at isolation. Before anyone touches: \
      prove a rated instrument on a known source, test, prove it again."
         .into()
 }
 
 /// What is waited for, such as `below 50 V`.
-fn target(plan: &Plan) -> String {
+pub(in crate::report) fn target(plan: &Plan) -> String {
     let voltage = glued(&format!("below {}", typed(plan.touch_voltage)));
     match plan.hold_energy {
         Some(energy) => format!("{voltage} with at most {} stored", typed(energy)),
@@ -209,11 +209,11 @@ fn stays(failure: &Failure) -> String {
 }
 
 /// True where a limit decides against the plan.
-pub(super) fn limit_missed(limit: &LimitResult) -> bool {
+pub(in crate::report) fn limit_missed(limit: &LimitResult) -> bool {
     limit.met == Some(false) || (limit.single_fault_asked && limit.single_fault_met == Some(false))
 }
 
-fn checks(plan: &Plan) -> String {
+pub(in crate::report) fn checks(plan: &Plan) -> String {
     let missed = plan.limits.iter().filter(|l| limit_missed(l)).count();
     let met = plan.limits.iter().filter(|l| l.met == Some(true) && !limit_missed(l)).count();
     let limits = match plan.limits.len() {

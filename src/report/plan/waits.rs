@@ -5,7 +5,7 @@ use super::super::words::{glued, pair, time, up, wait};
 use crate::plan::{FaultWait, Plan, Wait, fault_in_words};
 use crate::quantity::{Direction, Quantity, duration};
 
-pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
     if plan.waits.is_empty() {
         return Vec::new();
     }

@@ -8,7 +8,7 @@ use crate::quantity::{Direction, Quantity, Voltage, show_digits};
 /// Significant digits: enough to follow a wait to the second over days.
 const DIGITS: u32 = 6;
 
-pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
     let Some(working) = &plan.working else { return Vec::new() };
     let text = "Figures have six digits, rounded away from zero. t counts from isolation; x is a value over the marked \
                 one, where it is not the same. A wait ends when |v| stays at or below the voltage waited for.";

@@ -28,6 +28,7 @@ fn step(name: &str, from: f64, to: f64, stored: f64, volts: [(f64, f64); 3]) -> 
         connect: vec![],
         disconnect: vec![],
         measure: vec![],
+        readings: vec![],
         hold: None,
         touch: false,
         stored_at_start: Energy::from_si(stored),

@@ -10,7 +10,7 @@ use crate::plan::{Plan, StepPart, StepPoint, StepResult, fault_in_words};
 use crate::quantity::Quantity;
 
 /// One caution for each kind of part that goes on, and one where hands may come near.
-pub(super) fn cautions(plan: &Plan, at: usize, step: &StepResult) -> Vec<Labelled> {
+pub(in crate::report) fn cautions(plan: &Plan, at: usize, step: &StepResult) -> Vec<Labelled> {
     let of = |wanted: &str| -> Vec<&String> { step.connect.iter().filter(|id| role(plan, id) == wanted).collect() };
     let mut items = Vec::new();
     for kind in ["supply", "tool", "strap"] {

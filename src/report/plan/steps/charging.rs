@@ -6,7 +6,7 @@ use crate::plan::{Charging, ChargingMoment, Plan};
 use crate::quantity::{Quantity, Time};
 
 /// One table for all supplies that steps connect.
-pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
     let mut grid = Grid::new(&[
         ("Step", Side::Right),
         ("Supply", Side::Left),

@@ -1,10 +1,10 @@
 //! The procedure: every step as an entry to work by, then what the parts bear, what a failed part changes, and what
 //! comes back afterwards.
 
-mod caution;
-mod charging;
-mod recovery;
-mod tables;
+pub(in crate::report) mod caution;
+pub(in crate::report) mod charging;
+pub(in crate::report) mod recovery;
+pub(in crate::report) mod tables;
 
 use super::super::block::{Block, Labelled};
 use super::super::words::{count, down, list, pair, up, whole};
@@ -16,9 +16,9 @@ const NAMED_FAULTS: usize = 6;
 
 /// The name under which the steps carry a source that stays connected. It is no part that failed: where it is so,
 /// every reading stays as it was.
-const NOT_ISOLATED: &str = "source not isolated";
+pub(in crate::report) const NOT_ISOLATED: &str = "source not isolated";
 
-pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
     if plan.steps.is_empty() {
         return Vec::new();
     }
@@ -36,7 +36,7 @@ pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
 }
 
 /// `7 steps, 15 min`, for the first screen; `None` without a procedure.
-pub(super) fn total(plan: &Plan) -> Option<String> {
+pub(in crate::report) fn total(plan: &Plan) -> Option<String> {
     let steps = count(plan.steps.len(), "step", "steps");
     let end = whole(plan.steps.last()?.end);
     Some(endless(plan).map_or_else(|| format!("{steps}, {end}"), |endless| format!("{steps}, {endless}")))
@@ -52,7 +52,7 @@ fn endless(plan: &Plan) -> Option<String> {
     }
 }
 
-fn introduction(plan: &Plan) -> Vec<String> {
+pub(in crate::report) fn introduction(plan: &Plan) -> Vec<String> {
     let steps = count(plan.steps.len(), "step", "steps");
     let end = plan.steps.last().map_or_else(String::new, |last| whole(last.end));
     let whole = match endless(plan) {
@@ -65,7 +65,7 @@ fn introduction(plan: &Plan) -> Vec<String> {
     vec![whole, rule.into()]
 }
 
-fn heading(plan: &Plan, at: usize, step: &StepResult) -> String {
+pub(in crate::report) fn heading(plan: &Plan, at: usize, step: &StepResult) -> String {
     let number = format!("Step\u{a0}{} of\u{a0}{}", at + 1, plan.steps.len());
     let start = whole(step.start);
     let lasts = Time::from_si(step.end.si() - step.start.si());
@@ -110,12 +110,12 @@ fn entry(plan: &Plan, at: usize, step: &StepResult) -> Vec<Labelled> {
 }
 
 /// A part with what it is there for.
-fn part(plan: &Plan, id: &str) -> String {
+pub(in crate::report) fn part(plan: &Plan, id: &str) -> String {
     format!("{id}\u{a0}({})", role(plan, id))
 }
 
 /// What a part that a step connects is there for. Resistors are listed with their role; what is not is a supply.
-fn role(plan: &Plan, id: &str) -> &'static str {
+pub(in crate::report) fn role(plan: &Plan, id: &str) -> &'static str {
     plan.resistors.iter().find(|r| is_of(&r.id, id)).map_or("supply", |r| r.role)
 }
 
@@ -144,12 +144,12 @@ fn connected(plan: &Plan, at: usize) -> Vec<&String> {
 }
 
 /// The straps among them.
-fn straps(plan: &Plan, at: usize) -> Vec<String> {
+pub(in crate::report) fn straps(plan: &Plan, at: usize) -> Vec<String> {
     connected(plan, at).into_iter().filter(|id| role(plan, id) == "strap").cloned().collect()
 }
 
 /// Voltages at the step's end; test points that are shown with the same figures share a line.
-fn predicted(step: &StepResult) -> Vec<String> {
+pub(in crate::report) fn predicted(step: &StepResult) -> Vec<String> {
     let mut lines: Vec<(String, Vec<String>)> = Vec::new();
     for point in &step.test_points {
         let figures = format!("up to {} (nominal {}).", up(point.highest), up(point.nominal));
@@ -173,11 +173,11 @@ fn read(step: &StepResult) -> Vec<String> {
 }
 
 /// True for the same two nodes, either way round.
-fn is_same([a, b]: &Pair, [c, d]: &Pair) -> bool {
+pub(in crate::report) fn is_same([a, b]: &Pair, [c, d]: &Pair) -> bool {
     (a == c && b == d) || (a == d && b == c)
 }
 
-fn held(step: &StepResult, hold: &StepHold) -> Vec<String> {
+pub(in crate::report) fn held(step: &StepResult, hold: &StepHold) -> Vec<String> {
     let everywhere = hold.at.len() > 1 && hold.at.len() == step.test_points.len();
     let place =
         if everywhere { "every test point".into() } else { list(&hold.at.iter().map(pair).collect::<Vec<_>>()) };

@@ -7,7 +7,7 @@ use crate::finding::Severity;
 use crate::plan::{Plan, Recovery};
 use crate::quantity::Quantity;
 
-pub(super) fn blocks(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
     let mut blocks = vec![Block::Section("What comes back")];
     if !plan.recovery.is_empty() {
         let text = "Greatest voltages from the end of the last step on, the bank left as it then is. Times count from \

@@ -8,7 +8,7 @@ use crate::quantity::Quantity;
 use std::collections::{HashMap, HashSet};
 
 /// What every part bears, step by step.
-pub(super) fn loads(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn loads(plan: &Plan) -> Vec<Block> {
     let by_a_step: HashSet<&str> = plan.steps.iter().flat_map(|step| &step.connect).map(String::as_str).collect();
     let greatest = greatest(plan);
     let mut grid = Grid::new(&[
@@ -81,7 +81,7 @@ fn greatest(plan: &Plan) -> HashMap<&str, [Most; 3]> {
 
 /// The worst failure at the end of each step that has people read, and the worst that its hold point lets pass; where
 /// hands come near, the worst that is above the touch voltage.
-pub(super) fn faults(plan: &Plan) -> Vec<Block> {
+pub(in crate::report) fn faults(plan: &Plan) -> Vec<Block> {
     let mut grid = Grid::new(&[
         ("Step", Side::Right),
         ("Failed", Side::Left),
