@@ -5,7 +5,8 @@
 //! the voltage with a rated instrument, proved before and after.
 //!
 //! The rooms, from the ground up; imports go down this list, never up: [`quantity`], [`finding`], [`circuit`],
-//! [`data`], [`bank`], `discharge`, [`check`], [`plan`], `report`, `cli`.
+//! [`data`], [`bank`], `discharge`, [`check`], [`plan`], [`size`], `report`,
+//! `cli`.
 
 pub mod bank;
 pub mod check;
@@ -17,3 +18,4 @@ pub mod finding;
 pub mod plan;
 pub mod quantity;
 pub mod report;
+pub mod size;

@@ -15,6 +15,7 @@ pub const CODES: &[(&str, &str)] = &[
     ("capacitor-loop", "voltages of capacitors that contradict each other around a loop"),
     ("connected-and-disconnected", "a step that connects and disconnects one part"),
     ("count-out-of-range", "units in series or in parallel: none, or far too many"),
+    ("csv-syntax", "a line that can't be read as CSV"),
     ("dangling-node", "a node that one part alone touches"),
     ("derating-order", "a resistor that bears nothing at a temperature at which it bears all"),
     ("duplicate-id", "two parts of one id"),

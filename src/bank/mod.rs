@@ -11,6 +11,7 @@ mod near;
 mod parts;
 mod problem;
 pub mod quick;
+pub mod stock;
 mod validate;
 
 pub use problem::{Path, Problem, Segment};

@@ -117,6 +117,36 @@ impl<'a> LimitChecks<'a> {
         requirements.flat_map(|r| r.fault.iter().map(|b| figure(r.pair, b))).collect()
     }
 
+    /// What the bounds alone need: whether the limits hold, without the figures that are only shown.
+    pub fn bound_figures(&self) -> Vec<Figure> {
+        let requirements = self.limits.iter().flat_map(|l| &l.requirements);
+        requirements.flat_map(|r| r.healthy.iter().map(|b| figure(r.pair, b))).collect()
+    }
+
+    /// For every limit, in the order of the file: from when on it holds at all its pairs, and by when it has to, in
+    /// second. `None` for a limit without a bound.
+    pub fn holds(&self, healthy: &Answers) -> Vec<Option<(f64, f64)>> {
+        self.latest(|r| holds_from(&r.healthy, |b| healthy.worst(figure(r.pair, b))))
+    }
+
+    /// The same under every one of these faults.
+    pub fn holds_under(&self, faults: &[FaultAnswers]) -> Vec<Option<(f64, f64)>> {
+        let under = |r: &Requirement, f: &FaultAnswers| holds_from(&r.fault, |b| f.worst(figure(r.pair, b)));
+        let number = |t: f64| if t.is_nan() { f64::INFINITY } else { t };
+        self.latest(|r| faults.iter().map(|f| number(under(r, f))).fold(0.0, f64::max))
+    }
+
+    fn latest(&self, held: impl Fn(&Requirement) -> f64) -> Vec<Option<(f64, f64)>> {
+        let one = |l: &Prepared| {
+            let bounded: Vec<&Requirement> = l.requirements.iter().filter(|r| !r.healthy.is_empty()).collect();
+            // What is no number holds never.
+            let held = |r: &&Requirement| Some(held(r)).filter(|t| !t.is_nan()).unwrap_or(f64::INFINITY);
+            let latest = bounded.iter().map(held).fold(0.0, f64::max);
+            bounded.first().map(|r| (latest, r.within))
+        };
+        self.limits.iter().map(one).collect()
+    }
+
     /// The limits, in the order of the file, each at the pair that governs it.
     pub fn conclude(&self, healthy: &Answers, faults: &[FaultAnswers], findings: &mut Findings) -> Vec<LimitResult> {
         let results: Vec<LimitResult> = self.limits.iter().map(|l| self.result(l, healthy, faults)).collect();

@@ -9,6 +9,7 @@ mod limits;
 mod output;
 mod plan;
 mod sheet;
+mod size;
 mod terminal;
 mod trace;
 
@@ -53,6 +54,7 @@ pub fn run(
     };
     match typed.command {
         Command::Plan(typed) => plan::run(&typed, stdin, &mut output),
+        Command::Size(typed) => size::run(&typed, stdin, &mut output),
         Command::Sheet(typed) => sheet::run(&typed, stdin, &mut output),
         Command::Trace(typed) => trace::run(&typed, stdin, &mut output),
         Command::Label(typed) => label::run(&typed, stdin, &mut output),

@@ -38,7 +38,7 @@ pub(super) fn run(typed: &PlanArgs, stdin: &mut dyn Read, output: &mut Output) -
         Err(findings) => return output.findings(&findings),
     };
     if let Some(path) = &typed.quick.save {
-        match save(path, &input.bytes) {
+        match save("--save", path, &input.bytes) {
             Ok(()) => output.notice(&format!("The bank file was written to `{}`.", path.display())),
             Err(problem) => return output.problem(&problem, INPUT_WRONG),
         }
@@ -149,10 +149,11 @@ fn read(source: Source, stdin: &mut dyn Read) -> Result<Input, Refused> {
     }
 }
 
-fn save(path: &Path, bytes: &[u8]) -> Result<(), String> {
+/// Writes a new file; one that exists is never overwritten. `flag` is what asked for it.
+pub(super) fn save(flag: &str, path: &Path, bytes: &[u8]) -> Result<(), String> {
     let name = path.display();
     if path.as_os_str() == "-" {
-        return Err("`--save` needs the name of a new file; the plan itself goes to standard output".into());
+        return Err(format!("`{flag}` needs the name of a new file; the result itself goes to standard output"));
     }
     let mut file = OpenOptions::new().write(true).create_new(true).open(path).map_err(|e| match e.kind() {
         ErrorKind::AlreadyExists => format!("`{name}` exists and is not overwritten; choose another name"),
@@ -161,6 +162,7 @@ fn save(path: &Path, bytes: &[u8]) -> Result<(), String> {
     file.write_all(bytes).map_err(|e| format!("`{name}` can't be written: {e}"))
 }
 
+/// The hash of an input, in hexadecimal digits.
 pub(super) fn sha256(bytes: &[u8]) -> String {
     Sha256::digest(bytes).iter().fold(String::new(), |mut hex, byte| {
         // Writing to a string can't fail.

@@ -23,6 +23,11 @@ pub fn draft() -> &'static str {
     include_str!("../../data/draft.yaml")
 }
 
+/// Generic styles of resistor elements as a stock file: invented, for a search without parts at hand.
+pub fn generic_stock() -> &'static str {
+    include_str!("../../data/generic-elements.yaml")
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;

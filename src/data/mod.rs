@@ -8,8 +8,10 @@ mod banks;
 mod dielectrics;
 mod limits;
 mod raw;
+mod series;
 
 pub use bands::{EnergyBand, energy_bands};
-pub use banks::{demo_banks, draft, example_bank};
+pub use banks::{demo_banks, draft, example_bank, generic_stock};
 pub use dielectrics::{Dielectric, Range, dielectric, dielectrics};
 pub use limits::{Alternative, LimitKind, PublishedLimit, published_limit, published_limits};
+pub use series::Series;

@@ -21,6 +21,8 @@ pub type Current = si::f64::ElectricCurrent;
 pub type Energy = si::f64::Energy;
 /// Frequency, in hertz.
 pub type Frequency = si::f64::Frequency;
+/// Mass, in kilogram.
+pub type Mass = si::f64::Mass;
 /// Length: of paper, so it is in no bank file.
 pub type Length = si::f64::Length;
 /// Power, in watt; reactive power, in var, is carried by the same type.
@@ -50,6 +52,7 @@ pub enum Kind {
     Current,
     Energy,
     Frequency,
+    Mass,
     Power,
     ReactivePower,
     Ratio,
@@ -90,6 +93,7 @@ quantities! {
     Current: electric_current::ampere,
     Energy: energy::joule,
     Frequency: frequency::hertz,
+    Mass: mass::kilogram,
     Power: power::watt,
     Ratio: ratio::ratio,
     Resistance: electrical_resistance::ohm,

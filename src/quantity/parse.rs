@@ -140,6 +140,14 @@ const fn grammar(kind: Kind) -> Grammar {
             least: 1e-6,
             greatest: 1e9,
         },
+        Kind::Mass => Grammar {
+            name: "a mass",
+            units: &["g"],
+            prefixes: &[("m", -6), ("", -3), ("k", 0)],
+            example: "50 g",
+            least: 0.0,
+            greatest: 1e6,
+        },
         Kind::Power => Grammar {
             name: "a power",
             units: &["W"],
@@ -208,7 +216,7 @@ const fn grammar(kind: Kind) -> Grammar {
     }
 }
 
-const ALL_KINDS: [Kind; 13] = [
+const ALL_KINDS: [Kind; 14] = [
     Kind::Capacitance,
     Kind::Resistance,
     Kind::Voltage,
@@ -221,6 +229,7 @@ const ALL_KINDS: [Kind; 13] = [
     Kind::Frequency,
     Kind::Temperature,
     Kind::TemperatureCoefficient,
+    Kind::Mass,
     Kind::Ratio,
 ];
 

@@ -94,6 +94,7 @@ fn unit_of(kind: Kind) -> (&'static str, i32, i32) {
         Kind::Current => ("A", -9, 6),
         Kind::Energy => ("J", -6, 9),
         Kind::Frequency => ("Hz", 0, 6),
+        Kind::Mass => ("kg", 0, 0),
         Kind::Power => ("W", -6, 9),
         Kind::ReactivePower => ("var", 0, 6),
         Kind::Ratio => ("%", 0, 0),

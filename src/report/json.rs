@@ -5,14 +5,20 @@ mod finite;
 pub use finite::{NotFinite, check_finite};
 
 use crate::plan::Plan;
+use serde::Serialize;
 
 /// A plan as indented JSON with a newline at its end. Keys keep their order from one run to the next.
 ///
 /// # Errors
 /// Where a figure of the plan is not a finite number: JSON has no such number, and `null` would read as "never".
 pub fn plan_json(plan: &Plan) -> Result<String, NotFinite> {
-    check_finite(plan)?;
-    let mut text = serde_json::to_string_pretty(plan).map_err(|e| NotFinite::new(e.to_string()))?;
+    json(plan)
+}
+
+/// Any result as indented JSON with a newline at its end.
+pub(super) fn json<T: Serialize>(result: &T) -> Result<String, NotFinite> {
+    check_finite(result)?;
+    let mut text = serde_json::to_string_pretty(result).map_err(|e| NotFinite::new(e.to_string()))?;
     text.push('\n');
     Ok(text)
 }

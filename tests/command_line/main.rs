@@ -5,5 +5,6 @@ mod input;
 mod json;
 mod review;
 mod run;
+mod size;
 mod text;
 mod verdict;

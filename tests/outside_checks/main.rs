@@ -12,6 +12,7 @@ mod closed_forms;
 mod courses;
 mod published_limits;
 mod rows;
+mod sizing;
 mod textbook_energies;
 mod textbook_times;
 mod three_phase;

@@ -5,6 +5,7 @@
 
 mod brackets;
 mod charge;
+mod insert;
 mod limits;
 mod log;
 mod parts;
@@ -12,12 +13,15 @@ mod rating;
 mod reader;
 mod source;
 mod steps;
+mod stock;
 mod syntax;
 mod top;
 mod tree;
 mod write;
 
+pub use insert::{resistor_text, with_resistor};
 pub use source::MAX_BYTES;
+pub use stock::read_stock;
 pub use write::write;
 
 use super::problem::{Path, Segment};

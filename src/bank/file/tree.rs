@@ -51,6 +51,11 @@ pub(super) struct Key {
 }
 
 impl Node {
+    /// A value that was read from something else than YAML.
+    pub(super) fn made(content: Content, span: Span) -> Self {
+        Node { content, span, height: 0, size: 1 }
+    }
+
     /// True for a value that is not there: nothing, `~` or `null` without quotes.
     pub(super) fn is_null(&self) -> bool {
         match &self.content {

@@ -235,7 +235,8 @@ fn capacitor(c: &Capacitor) -> String {
     ])
 }
 
-fn resistor(r: &Resistor) -> String {
+/// One entry of `resistors`, in braces.
+pub(super) fn resistor(r: &Resistor) -> String {
     let [place, connection] = place(&r.across, r.phases);
     mapping([
         Some(("id", word(&r.id))),

@@ -1,0 +1,90 @@
+//! The bank with a resistor of any actual value at the place in question: what every demand comes to there.
+//!
+//! The resistor has no tolerance of its own here. A design's worst case over its own tolerance is the worst over the
+//! actual values that it may have, so a design does the job where ALL of these do; no law of how a figure changes with
+//! resistance is relied on.
+
+use super::request::SizeError;
+use crate::bank::Bank;
+use crate::bank::description::{Description, Resistor};
+use crate::check::{Answers, EngineError, FaultAnswers, LimitChecks};
+use crate::discharge::{Figure, Model, faults};
+use crate::quantity::{Quantity, Resistance};
+
+/// What was found at one actual resistance, in SI base units, greatest over the tolerances of all other parts.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) struct Point {
+    pub ohms: f64,
+    /// For every limit that counts: from when on it holds and by when it has to; infinite where it never holds. Single
+    /// faults are in it where the limit asks for them.
+    pub limits: Vec<(f64, f64)>,
+    /// Power in the resistor before isolation, all legs of a three-phase one together.
+    pub standing: f64,
+    /// Greatest current through it.
+    pub current: f64,
+    /// Greatest voltage across it.
+    pub voltage: f64,
+}
+
+/// A bank with the new resistor in it, its value still open.
+pub(super) struct Probe {
+    bank: Bank,
+    model: Model,
+    /// The resistor, or its legs in a three-phase bank.
+    legs: Vec<usize>,
+    /// Which limits of the bank count.
+    counted: Vec<usize>,
+}
+
+impl Probe {
+    /// The bank of `description` with `part` in it; of the part's array only the number of strings matters, for what
+    /// one open element leaves.
+    pub fn new(description: &Description, part: &Resistor, counted: Vec<usize>) -> Result<Self, SizeError> {
+        let mut with = description.clone();
+        // A marked value that leaves the whole array at 1 ohm.
+        let value = Resistance::from_si(f64::from(part.parallel));
+        with.resistors.push(Resistor { value, tolerance: None, series: 1, ..part.clone() });
+        let bank = Bank::new(with).map_err(SizeError::Placed)?;
+        let ids: Vec<String> = bank.legs(&part.id).into_iter().map(|(id, _)| id).collect();
+        // As a plan does: from here on every part is a plain one.
+        let bank = bank.expanded();
+        let failed = EngineError::of("absorption");
+        let model = Model::new(&bank).map_err(failed)?;
+        let legs = ids.iter().filter_map(|id| model.find_resistor(id)).collect();
+        Ok(Probe { bank, model, legs, counted })
+    }
+
+    /// Finds what the demands come to with `ohms` in place; infinite is without the part.
+    pub fn at(&self, ohms: f64) -> Result<Point, EngineError> {
+        let mut model = self.model.clone();
+        for leg in &self.legs {
+            model.resistors[*leg].nominal = ohms;
+        }
+        let limits = LimitChecks::new(&self.bank, &model)?;
+        let standing = |leg: &usize| Figure::StandingPower { resistor: *leg };
+        let current = |leg: &usize| Figure::PeakCurrent { resistor: *leg };
+        let voltage = |leg: &usize| Figure::ResistorVoltage { resistor: *leg };
+        let own = self.legs.iter().flat_map(|leg| [standing(leg), current(leg), voltage(leg)]).collect();
+        let bounds = limits.bound_figures();
+        let healthy = Answers::healthy(&self.bank, &model, [bounds, own].concat())?;
+        let mut found = limits.holds(&healthy);
+        let asked: Vec<bool> = self.bank.description().limits.iter().map(|l| l.single_fault).collect();
+        if self.counted.iter().any(|i| asked.get(*i) == Some(&true)) {
+            let all = faults(&self.bank, &model);
+            let under = FaultAnswers::all(&self.bank, &model, all, &limits.fault_figures(), &healthy)?;
+            for ((one, other), asked) in found.iter_mut().zip(limits.holds_under(&under)).zip(asked) {
+                if let Some((held, _)) = one.as_mut().filter(|_| asked) {
+                    *held = held.max(other.map_or(f64::INFINITY, |(held, _)| held));
+                }
+            }
+        }
+        let counted = self.counted.iter().filter_map(|i| found.get(*i).copied().flatten());
+        Ok(Point {
+            ohms,
+            limits: counted.collect(),
+            standing: self.legs.iter().map(|leg| healthy.worst(standing(leg))).sum(),
+            current: self.legs.iter().map(|leg| healthy.worst(current(leg))).fold(0.0, f64::max),
+            voltage: self.legs.iter().map(|leg| healthy.worst(voltage(leg))).fold(0.0, f64::max),
+        })
+    }
+}

@@ -1,0 +1,7 @@
+//! Sizing: windows against closed forms, designs against plans of the bank file with the part pasted in, rankings
+//! against a search through everything.
+
+mod banks;
+mod exhaustive;
+mod placed;
+mod window;
