@@ -41,7 +41,7 @@ h1, h2, h3, p, li, dd, dt, figcaption { overflow-wrap: anywhere; }
 header { margin-bottom: 4mm; }
 .short { break-inside: avoid; }
 .columns { columns: 2; column-gap: 7mm; break-before: page; }
-.introduced > p { break-after: avoid; }
+.introduced > p { break-after: avoid; break-inside: avoid; }
 .columns h2 { column-span: all; }
 .kind { font-size: 12pt; letter-spacing: .14em; text-transform: uppercase; }
 h1 { font-size: 21pt; line-height: 1.15; margin-bottom: 3mm; }
