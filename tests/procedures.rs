@@ -5,6 +5,7 @@ use ebbvolt::bank::file;
 use ebbvolt::finding::Severity;
 use ebbvolt::plan::{Options, Plan, plan};
 use ebbvolt::quantity::Quantity;
+use ebbvolt::report;
 use proptest::prelude::*;
 
 fn planned(text: &str) -> Plan {
@@ -119,4 +120,40 @@ fn a_low_impedance_meter_hides_what_a_common_one_reads() {
     assert!(!codes(&common).contains(&"meter-hides-charge"), "{:?}", codes(&common));
     let found = low.findings.iter().find(|f| f.code == "meter-hides-charge").expect("it is told");
     assert!(found.text.contains("M1") && found.severity == Severity::Danger, "{}", found.text);
+}
+
+/// A bleeder, a strap and a supply that the last step connects.
+fn charged_again(strap: &str, touch: &str) -> Plan {
+    planned(&format!(
+        "{{ebbvolt: 1, tag: T, touch_voltage: {touch}, charged_to: {{nominal: 565 V, highest: 750 V}}, \
+         capacitors: [{{id: C1, value: 3300 uF, tolerance: 0 %}}], \
+         resistors: [{{id: R1, role: bleeder, value: 22 kohm, tolerance: 0 %}}, \
+                     {{id: ST1, role: strap, value: {strap}, tolerance: 0 %}}], \
+         supplies: [{{id: S1, voltage: 325 V, series: 100 ohm, across: [P, N]}}], \
+         procedure: [{{step: Isolate, for: 0 s}}, {{step: Wait, for: 5 min}}, \
+                     {{step: Charge, connect: [S1], for: 60 s}}]}}"
+    ))
+}
+
+#[test]
+fn a_procedure_that_ends_with_a_supply_on_asks_for_no_strap() {
+    let plan = charged_again("10 mohm", "50 V");
+    let found = plan.findings.iter().find(|f| f.code == "supply-left-on").expect("it is told");
+    assert!(found.severity == Severity::Danger && found.text.contains("S1"), "{}", found.text);
+    assert!(!codes(&plan).contains(&"no-strap-left-on"), "{:?}", codes(&plan));
+    // One line of words, whatever the width.
+    let text = report::plan_text(&plan, 80).split_whitespace().collect::<Vec<_>>().join(" ");
+    assert!(text.contains("S1 is still on and the bank is charged: no strap belongs on it"), "{text}");
+    assert!(!text.contains("Put one on") && text.contains("is over 50 V as the last step ends"), "{text}");
+    // The dangers of the procedure stand on the first screen: the supply, and the voltage that comes back.
+    assert!(text.contains("with 2 findings of DANGER"), "{text}");
+}
+
+#[test]
+fn a_strap_of_megohms_and_a_touch_voltage_above_the_bank_are_questioned() {
+    let odd = charged_again("10 Mohm", "50 kV");
+    assert!(codes(&odd).contains(&"strap-is-no-short") && codes(&odd).contains(&"touch-voltage-not-below-bank"));
+    let usual = charged_again("10 mohm", "50 V");
+    assert!(!codes(&usual).contains(&"strap-is-no-short"), "{:?}", codes(&usual));
+    assert!(!codes(&usual).contains(&"touch-voltage-not-below-bank"), "{:?}", codes(&usual));
 }
