@@ -20,7 +20,8 @@ const HEIGHT: u32 = 240 * FINE;
 const LEFT: u32 = 72 * FINE;
 const BELOW: u32 = 48 * FINE;
 const ABOVE: u32 = 50 * FINE;
-const RIGHT: u32 = 14 * FINE;
+/// Half of the last figure of an axis stands here: up to `1000000 s`.
+const RIGHT: u32 = 34 * FINE;
 /// Size of the type; the library writes it by a factor of 1.24 smaller.
 const TYPE: f64 = 1.24 * 14.0 * FINE as f64;
 /// Distance of two rows of text.
