@@ -7,7 +7,7 @@ fn without_arguments_it_prints_help_and_ends_with_status_2() {
     let run = run(&[]);
     assert_eq!(run.status, 2);
     assert!(run.out.is_empty());
-    assert!(run.err.contains("ebbvolt plan --example"), "{}", run.err);
+    assert!(run.tells("ebbvolt plan --example"), "{}", run.err);
 }
 
 #[test]
@@ -42,7 +42,7 @@ fn a_misspelt_flag_or_command_is_refused_and_the_near_one_named() {
     for (words, near) in [(&["plan", "--exampel"][..], "--example"), (&["plam"], "plan")] {
         let run = run(words);
         assert_eq!((run.status, run.out.as_str()), (2, ""), "{words:?}");
-        assert!(run.err.contains(near), "{}", run.err);
+        assert!(run.tells(near), "{}", run.err);
     }
 }
 
@@ -50,7 +50,7 @@ fn a_misspelt_flag_or_command_is_refused_and_the_near_one_named() {
 fn a_plan_has_no_csv_and_the_error_lists_what_it_has() {
     let run = run(&["plan", "--example", "--format", "csv"]);
     assert_eq!((run.status, run.out.as_str()), (2, ""));
-    assert!(["text", "json", "markdown"].iter().all(|format| run.err.contains(format)), "{}", run.err);
+    assert!(["text", "json", "markdown"].iter().all(|format| run.tells(format)), "{}", run.err);
 }
 
 #[test]

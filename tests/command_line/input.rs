@@ -7,7 +7,7 @@ use std::time::{Duration, Instant};
 fn refusal(words: &[&str], stdin: &[u8]) -> String {
     let run = run_with(words, stdin);
     assert_eq!((run.status, run.out.as_str()), (2, ""), "{words:?}: {}", run.err);
-    assert!(!run.err.contains("panicked"), "{}", run.err);
+    assert!(!run.tells("panicked"), "{}", run.err);
     run.err
 }
 
@@ -67,7 +67,7 @@ fn save_writes_the_file_that_the_flags_stand_for_and_never_overwrites() {
     let words = [&["plan", "--format", "json"][..], &flags, &["--save", name]].concat();
     let quick = run(&words);
     assert_eq!(quick.status, 0, "{}", quick.err);
-    assert!(quick.err.contains(name), "{}", quick.err);
+    assert!(quick.tells(name), "{}", quick.err);
     let saved = std::fs::read(&path).expect("the file is there");
     let from_file = run(&["plan", "--format", "json", name]);
     assert_eq!((from_file.status, from_file.out), (quick.status, quick.out));
@@ -102,8 +102,8 @@ fn bad_bytes_of_any_kind_are_refused_at_once() {
     for (name, bytes) in cases {
         let start = Instant::now();
         let err = refusal(&["plan", "-"], &bytes);
-        // A second in release; a debug build on a busy machine gets more.
-        assert!(start.elapsed() < Duration::from_secs(5), "{name}: {:?}", start.elapsed());
+        // It takes milliseconds; this only tells a program that hangs from a machine that is busy.
+        assert!(start.elapsed() < Duration::from_secs(60), "{name}: {:?}", start.elapsed());
         assert!(err.contains("ERROR in standard input:"), "{name}: {err}");
         assert!(!err.contains('\u{1b}'), "{name}: {err}");
         assert!(err.len() < 100_000, "{name}: {} bytes", err.len());

@@ -12,6 +12,13 @@ pub struct Run {
     pub err: String,
 }
 
+impl Run {
+    /// Whether standard error says this, wherever its lines break: where they do depends on how long a path is.
+    pub fn tells(&self, part: &str) -> bool {
+        self.err.split_whitespace().collect::<Vec<_>>().join(" ").contains(part)
+    }
+}
+
 /// The program with these words, its environment without anything that changes colours.
 pub fn program(words: &[&str]) -> Command {
     let mut command = Command::new(env!("CARGO_BIN_EXE_ebbvolt"));

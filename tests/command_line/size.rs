@@ -59,14 +59,14 @@ fn the_part_pasted_and_the_file_written_pass_the_plan() {
     let commented = bare().replace("limits:", "# Kept: about limits.\nlimits:");
     let words = ["size", "bleeder", "-", "--pick", "2", "--write", &name];
     let written = run_with(&words, commented.as_bytes());
-    assert!(written.status == 0 && written.err.contains("written"), "{}", written.err);
+    assert!(written.status == 0 && written.tells("written"), "{}", written.err);
     let text = std::fs::read_to_string(&path).expect("it is there");
     assert!(text.contains("# Kept: about limits.") && text.contains(part.out.trim_end()), "{text}");
     let plan = run(&["plan", &name]);
     assert_eq!((plan.status, plan.err.as_str()), (0, ""));
     // It exists now.
     let again = run_with(&words, commented.as_bytes());
-    assert!(again.status == 2 && again.err.contains("not overwritten"), "{}", again.err);
+    assert!(again.status == 2 && again.tells("not overwritten"), "{}", again.err);
     let overwritten = run_with(&[&words[..], &["--overwrite"]].concat(), commented.as_bytes());
     assert_eq!(overwritten.status, 0);
     std::fs::remove_file(&path).expect("it is removed");
@@ -92,7 +92,7 @@ fn a_stock_file_is_searched_with_its_prices_and_its_errors_have_places() {
     std::fs::write(&path, "name,value\nshelf 4,22\n").expect("it is written");
     let wrong = run_with(&["size", "bleeder", "-", "--stock", &path], bare().as_bytes());
     assert_eq!(wrong.status, 2);
-    assert!(wrong.err.contains(":2:9") || wrong.err.contains("line 2"), "{}", wrong.err);
+    assert!(wrong.tells(":2:9") || wrong.tells("line 2"), "{}", wrong.err);
     std::fs::remove_file(&path).expect("it is removed");
 }
 
@@ -114,7 +114,7 @@ fn a_request_that_makes_no_sense_is_refused_with_what_to_write_instead() {
     ] {
         let run = run_with(&[&["size", "bleeder", "-"], words].concat(), bank.as_bytes());
         assert_eq!((run.status, run.out.as_str()), (2, ""), "{words:?}");
-        assert!(run.err.contains(told), "{words:?}: {}", run.err);
+        assert!(run.tells(told), "{words:?}: {}", run.err);
     }
 }
 
