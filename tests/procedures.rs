@@ -157,3 +157,19 @@ fn a_strap_of_megohms_and_a_touch_voltage_above_the_bank_are_questioned() {
     assert!(!codes(&usual).contains(&"strap-is-no-short"), "{:?}", codes(&usual));
     assert!(!codes(&usual).contains(&"touch-voltage-not-below-bank"), "{:?}", codes(&usual));
 }
+
+#[test]
+fn a_bank_that_has_been_shorted_for_hundreds_of_time_constants_still_has_a_plan() {
+    // 100 uF through 10 ohm is 1 ms: after 0.36 s some 1e-154 V are left, the square of which is a denormal number.
+    for milliseconds in 350..370 {
+        let plan = planned(&format!(
+            "{{ebbvolt: 1, tag: T, touch_voltage: 50 V, charged_to: {{nominal: 565 V, highest: 750 V}}, \
+             capacitors: [{{id: C1, value: 100 uF, tolerance: 10 %}}], \
+             resistors: [{{id: R1, role: bleeder, value: 22 kohm, tolerance: 5 %}}, \
+                         {{id: T1, role: tool, value: 10 ohm}}], \
+             procedure: [{{step: Isolate, for: 0 s}}, {{step: Tool, connect: [T1], for: {milliseconds} ms}}, \
+                         {{step: Lift, disconnect: [T1], for: 60 s}}, {{step: Again, connect: [T1], for: 20 ms}}]}}"
+        ));
+        assert!(plan.steps.iter().skip(1).all(|s| s.test_points.iter().all(|p| p.highest.si() < 1e-130)));
+    }
+}

@@ -89,7 +89,7 @@ impl fmt::Display for CircuitError {
             CircuitError::RatesNotFound => write!(f, "the decay rates of the network were not found"),
             CircuitError::SearchNotClosed => write!(f, "the search for a crossing or a greatest value did not close"),
             CircuitError::Unbalanced { before, after } => {
-                write!(f, "the energy balance failed: {before} J before, {after} J after")
+                write!(f, "the energy balance failed: {before:e} J before, {after:e} J after")
             }
             CircuitError::Exceeded { value, greatest } => {
                 write!(f, "a value of {value:?} exceeds the worst case that was found, {greatest:?}")

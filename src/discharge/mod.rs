@@ -14,6 +14,7 @@ mod body;
 mod case;
 mod element;
 mod figure;
+mod flips;
 mod gradient;
 mod later;
 mod model;

@@ -5,11 +5,13 @@
 //! one section lends to another.
 //!
 //! With more loose values, those whose direction is proven for a figure are pinned ([`super::pinned`]). Where few
-//! enough are left, all corners of these are tried. Otherwise corners are searched by flipping single values, and
-//! the box is climbed from several starts along the gradient ([`super::ascent`]): a search and no proof. Both are
+//! enough are left, all corners of these are tried. Otherwise corners are searched by flipping values
+//! ([`super::flips`]), and the box is climbed from several starts along the gradient ([`super::ascent`]): a search and
+//! no proof. Both are
 //! followed by the same search inside the box. A plan says which of them gave a figure.
 
 use super::ascent;
+use super::flips;
 use super::model::Parameter;
 use super::pinned::Pin;
 use crate::circuit::CircuitError;
@@ -19,11 +21,14 @@ use std::collections::{BTreeMap, HashSet};
 /// Up to this many loose values every corner is tried.
 pub(crate) const MOST_CORNERS: usize = 12;
 
+/// Beyond this many loose values the way into the box is looked at next to a corner only.
+const MANY: usize = 24;
+
 /// Random starts of the search beyond that, besides the two extreme corners and the middle.
 pub(super) const RANDOM_STARTS: usize = 8;
 
 /// A gain below this share is not worth another round: a crossing is bracketed to little less.
-const NOTABLE: f64 = 1e-12;
+pub(super) const NOTABLE: f64 = 1e-12;
 
 /// The greatest value of a figure and where it was found.
 #[derive(Debug, Clone)]
@@ -174,7 +179,7 @@ impl<O: Objective> Search<'_, O> {
             return Ok(());
         }
         searched.sort_unstable();
-        self.flip_from_many_starts(&searched, best)?;
+        flips::flip_from_many_starts(self, &searched, best)?;
         searched.retain(|index| self.objective.has_gradient(*index));
         ascent::climb_from_many_starts(self, &searched, best)
     }
@@ -220,7 +225,7 @@ impl<O: Objective> Search<'_, O> {
         self.objective.figure(index, &self.objective.case_for(index, point)?, 0.0)
     }
 
-    fn corner(&self, high: impl Fn(usize) -> bool) -> Vec<f64> {
+    pub fn corner(&self, high: impl Fn(usize) -> bool) -> Vec<f64> {
         let parameters = self.parameters().iter().enumerate();
         parameters.map(|(p, range)| if high(p) { range.high } else { range.low }).collect()
     }
@@ -232,7 +237,7 @@ impl<O: Objective> Search<'_, O> {
     }
 
     /// Tries a point for some figures.
-    fn offer_to(&self, figures: &[usize], point: &[f64], best: &mut [Worst]) -> Result<(), CircuitError> {
+    pub fn offer_to(&self, figures: &[usize], point: &[f64], best: &mut [Worst]) -> Result<(), CircuitError> {
         let case = self.objective.case(point)?;
         for index in figures.iter().copied() {
             let worst = &mut best[index];
@@ -247,92 +252,73 @@ impl<O: Objective> Search<'_, O> {
         Ok(())
     }
 
-    /// From each start flip single values for as long as one of the figures grows.
-    fn flip_from_many_starts(&self, figures: &[usize], best: &mut [Worst]) -> Result<(), CircuitError> {
-        let count = self.parameters().len();
-        self.offer_to(figures, &self.corner(|_| true), best)?;
-        self.offer_to(figures, &self.corner(|_| false), best)?;
-        // A fixed sequence (xorshift; Marsaglia 2003), so that the same input gives the same plan.
-        let mut state = 0x9e37_79b9_7f4a_7c15_u64;
-        for _ in 0..self.objective.random_starts() {
-            let bits: Vec<bool> = (0..count)
-                .map(|_| {
-                    state ^= state << 13;
-                    state ^= state >> 7;
-                    state ^= state << 17;
-                    state & 1 == 1
-                })
-                .collect();
-            self.offer_to(figures, &self.corner(|p| bits[p]), best)?;
-        }
-        // Corners one flip away from each figure's best corner, until no best corner is new.
-        let mut tried: HashSet<Vec<u64>> = HashSet::new();
-        loop {
-            let reached: Vec<Worst> = figures.iter().map(|i| best[*i].clone()).collect();
-            let fresh: Vec<Vec<f64>> = distinct(&reached).into_iter().filter(|p| !tried.contains(&bits(p))).collect();
-            if fresh.is_empty() {
-                return Ok(());
-            }
-            for corner in fresh {
-                tried.insert(bits(&corner));
-                for p in 0..count {
-                    let range = &self.parameters()[p];
-                    let mut flipped = corner.clone();
-                    flipped[p] = if flipped[p] < range.high { range.high } else { range.low };
-                    self.offer_to(figures, &flipped, best)?;
-                }
-            }
-        }
-    }
-
     /// Searches inside the box, for every figure that grows on the way there from its best corner.
     fn refine_all(&self, best: &mut [Worst]) -> Result<(), CircuitError> {
-        for corner in distinct(best) {
-            // Figures with the same best corner share the solved neighbours.
-            let matters = |i: &usize| {
-                let worst = &best[*i];
-                worst.point == corner && worst.value.is_finite() && worst.value > self.objective.negligible(*i)
-            };
-            let here: Vec<usize> = (0..best.len()).filter(matters).collect();
-            if here.is_empty() {
-                continue;
-            }
-            // For every figure, along which values it rises.
-            let mut rises = vec![vec![false; corner.len()]; best.len()];
-            for (p, point) in self.inwards(&corner) {
-                let case = self.objective.case(&point)?;
-                for i in &here {
-                    let bar = best[*i].value * (1.0 + NOTABLE);
-                    rises[*i][p] |= self.objective.figure(*i, &case, bar.max(0.0))? > bar;
-                }
-            }
-            let rising: Vec<usize> = here.into_iter().filter(|i| rises[*i].contains(&true)).collect();
-            let refined: Vec<Worst> = rising
-                .par_iter()
-                .map(|i| self.refine(*i, best[*i].clone(), rises[*i].clone()))
-                .collect::<Result<_, CircuitError>>()?;
-            rising.into_iter().zip(refined).for_each(|(i, worst)| best[i] = worst);
-        }
+        // Figures with the same best corner share the solved neighbours.
+        let corners = distinct(best);
+        let rising: Vec<(usize, Vec<bool>)> = corners
+            .par_iter()
+            .map(|corner| self.rising(corner, best))
+            .collect::<Result<Vec<_>, CircuitError>>()?
+            .into_iter()
+            .flatten()
+            .collect();
+        let refined: Vec<(usize, Worst)> = rising
+            .into_par_iter()
+            .map(|(i, along)| Ok((i, self.refine(i, best[i].clone(), along)?)))
+            .collect::<Result<_, CircuitError>>()?;
+        refined.into_iter().for_each(|(i, worst)| best[i] = worst);
         Ok(())
     }
 
-    /// Points on the way from a corner into the box along each value: short, half way, long.
-    fn inwards(&self, corner: &[f64]) -> Vec<(usize, Vec<f64>)> {
-        let mut points = Vec::with_capacity(3 * corner.len());
-        for p in 0..corner.len() {
-            points.extend([1e-3, 0.5, 0.9].map(|share| (p, self.moved(corner, p, share))));
+    /// The figures that have their best corner here and grow on the way from it into the box, and along which values.
+    fn rising(&self, corner: &[f64], best: &[Worst]) -> Result<Vec<(usize, Vec<bool>)>, CircuitError> {
+        let matters = |i: &usize| {
+            let worst = &best[*i];
+            worst.point == corner && worst.value.is_finite() && worst.value > self.objective.negligible(*i)
+        };
+        let mut here: Vec<(usize, Vec<bool>)> =
+            (0..best.len()).filter(matters).map(|i| (i, vec![false; corner.len()])).collect();
+        if !here.is_empty() {
+            for (p, point) in self.inwards(corner) {
+                let case = self.objective.case(&point)?;
+                for (i, rises) in &mut here {
+                    let bar = best[*i].value * (1.0 + NOTABLE);
+                    rises[p] |= self.objective.figure(*i, &case, bar.max(0.0))? > bar;
+                }
+            }
+        }
+        here.retain(|(_, rises)| rises.contains(&true));
+        Ok(here)
+    }
+
+    /// Points on the way from a best point along each value, both ways where it lies inside: short, half way, long; of
+    /// many values short only.
+    #[allow(clippy::float_cmp)] // Whether the point is at the very end.
+    fn inwards(&self, point: &[f64]) -> Vec<(usize, Vec<f64>)> {
+        let shares: &[f64] = if point.len() <= MANY { &[1e-3, 0.5, 0.9] } else { &[1e-3] };
+        let mut points = Vec::with_capacity(2 * shares.len() * point.len());
+        for (p, range) in self.parameters().iter().enumerate() {
+            for end in [range.low, range.high] {
+                if end != point[p] {
+                    points.extend(shares.iter().map(|share| (p, toward(point, p, end, *share))));
+                }
+            }
         }
         points
     }
 
-    /// A point moved along one value by a share of the longer way.
-    fn moved(&self, point: &[f64], p: usize, share: f64) -> Vec<f64> {
+    /// Does a figure grow on a short way from its best point along one value?
+    #[allow(clippy::float_cmp)] // As above.
+    fn leads_on(&self, index: usize, worst: &Worst, p: usize) -> Result<bool, CircuitError> {
         let range = &self.parameters()[p];
-        let here = point[p];
-        let away = if here - range.low > range.high - here { range.low } else { range.high };
-        let mut moved = point.to_vec();
-        moved[p] = here + share * (away - here);
-        moved
+        for end in [range.low, range.high] {
+            let next = toward(&worst.point, p, end, 1e-3);
+            if end != worst.point[p] && self.value(index, &next)? > worst.value {
+                return Ok(true);
+            }
+        }
+        Ok(false)
     }
 
     /// Searches inside the box from the best corner of one figure, at first along the values that it rises with.
@@ -355,7 +341,7 @@ impl<O: Objective> Search<'_, O> {
             for (p, goes_on) in along.iter_mut().enumerate() {
                 let range = &self.parameters()[p];
                 let inside = worst.point[p] > range.low && worst.point[p] < range.high;
-                *goes_on = inside || self.value(index, &self.moved(&worst.point, p, 1e-3))? > worst.value;
+                *goes_on = inside || self.leads_on(index, &worst, p)?;
             }
             if worst.value.is_infinite() || worst.value <= start.value * (1.0 + NOTABLE) {
                 break;
@@ -457,12 +443,19 @@ impl<O: Objective> Search<'_, O> {
     }
 }
 
-fn bits(point: &[f64]) -> Vec<u64> {
+/// A point moved along one value by a share of the way to `end`.
+fn toward(point: &[f64], p: usize, end: f64, share: f64) -> Vec<f64> {
+    let mut moved = point.to_vec();
+    moved[p] += share * (end - point[p]);
+    moved
+}
+
+pub(super) fn bits(point: &[f64]) -> Vec<u64> {
     point.iter().map(|x| x.to_bits()).collect()
 }
 
 /// The best points of all figures, each once.
-fn distinct(best: &[Worst]) -> Vec<Vec<f64>> {
+pub(super) fn distinct(best: &[Worst]) -> Vec<Vec<f64>> {
     let mut seen = HashSet::new();
     best.iter().filter(|w| seen.insert(bits(&w.point))).map(|w| w.point.clone()).collect()
 }

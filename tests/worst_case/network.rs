@@ -55,9 +55,7 @@ impl Bank {
     }
 
     pub fn plan(&self) -> Plan {
-        let text = self.text();
-        let (bank, noticed) = file::read("worst.yaml", text.as_bytes()).unwrap_or_else(|e| panic!("{text}{e:?}"));
-        plan(&bank, "", noticed, Options::default()).unwrap_or_else(|e| panic!("{text}{e}"))
+        plan_of(&self.text())
     }
 
     /// The wait in second between two nodes with the parts' values at `factors` of the marked ones: the operating
@@ -76,4 +74,10 @@ impl Bank {
         let voltage = response.across(node(across[0]), node(across[1]));
         voltage.last_outside(self.touch, 0.0).expect("closes").seconds()
     }
+}
+
+/// The plan of a bank file, by the library's public path.
+pub fn plan_of(text: &str) -> Plan {
+    let (bank, noticed) = file::read("bank.yaml", text.as_bytes()).unwrap_or_else(|e| panic!("{text}{e:?}"));
+    plan(&bank, "", noticed, Options::default()).unwrap_or_else(|e| panic!("{text}{e}"))
 }
