@@ -1,0 +1,120 @@
+//! What is told with the designs of a tool: what they rest on, and what else people have to know.
+
+use super::applied::Applied;
+use super::request::ToolAsk;
+use super::result::{Placement, ToolFigures};
+use super::trial::at_once;
+use crate::bank::Bank;
+use crate::bank::description::{Description, Role};
+use crate::finding::{Finding, Severity};
+use crate::quantity::{Direction, Quantity, celsius, exact, show};
+use crate::size::error::SizeError;
+use crate::size::result::Candidate;
+
+/// Does anything that is always connected take the voltage down?
+pub(super) fn drains(description: &Description) -> bool {
+    let path = |role| matches!(role, Role::Bleeder | Role::Balancing | Role::Leakage);
+    description.resistors.iter().any(|r| path(r.role)) || description.sinks.iter().any(|s| s.counted)
+}
+
+/// What was noticed about the first design.
+pub(super) fn findings(
+    bank: &Bank,
+    ask: &ToolAsk,
+    applied: &Applied,
+    first: &Candidate<ToolFigures>,
+    drains: bool,
+) -> Result<Vec<Finding>, SizeError> {
+    let mut findings = Vec::new();
+    if first.figures.applied_at.si() > 0.0 && drains {
+        let met = at_once(bank, ask, applied, &first.figures.resistor)?;
+        let figures = format!(
+            "The figures rely on what discharges the bank before the tool is applied. Where that has failed and nobody \
+             measures, the first design meets up to {}, {} and {}",
+            show(applied.description.charged_to.highest, Direction::Up),
+            show(met.current, Direction::Up),
+            show(met.energy, Direction::Up)
+        );
+        let help = "measure before it is applied, and do not apply it where the voltage is higher than predicted; or size \
+                    it for the bank as it was isolated: `--after 0s`";
+        findings.push(if met.missed.is_empty() {
+            Finding::new(Severity::Note, "tool-relies-on-bleeders", format!("{figures}. The ratings that were given bear that."))
+        } else {
+            let text = format!("{figures}. Its ratings do NOT bear that ({}).", met.missed.join(", "));
+            Finding::new(Severity::Warning, "tool-relies-on-bleeders", text).with_help(help)
+        });
+    }
+    if !first.not_met.is_empty() {
+        let whose = if applied.as_filed { "file" } else { "file, with the steps of this trial," };
+        let text = format!(
+            "The plan with the first design does not meet everything else in the {whose}: {}. `ebbvolt plan` tells more.",
+            first.not_met.join(", ")
+        );
+        findings.push(Finding::new(Severity::Warning, "rest-of-plan-not-met", text));
+    }
+    let names: Vec<String> = applied.steps.iter().map(|s| format!("`{}`", s.name)).collect();
+    if first.figures.placement != Placement::WithSteps && !applied.steps.is_empty() {
+        let text = format!(
+            "The figures are those of steps that the file does not have as they are here: {}. Until it has them, the plan of \
+             the file tells something else.",
+            names.join(", ")
+        );
+        findings.push(Finding::new(Severity::Caution, "steps-not-in-file", text));
+    }
+    Ok(findings)
+}
+
+/// What the answer rests on.
+pub(super) fn assumptions(bank: &Bank, ask: &ToolAsk, applied: &Applied) -> Vec<String> {
+    let held = exact(applied.held);
+    let mut list = vec![
+        "The window is one of the tool's actual resistance, all other parts anywhere in their tolerances, from the highest \
+         voltage. A design fits where all of its tolerance does."
+            .to_string(),
+        if applied.as_filed {
+            let (first, to) = (applied.first + 1, applied.held_to + 1);
+            let steps = if first == to { format!("step {first}") } else { format!("steps {first} to {to}") };
+            format!("When it is applied and how long it is held ({held}): {steps} of the file's own procedure.")
+        } else {
+            let after = ask.after.map_or_else(|| "0 s".into(), exact);
+            format!(
+                "It is applied {after} after isolation and held for {held}, in steps of their own: `Lock out and isolate` \
+                 and `Apply the discharge tool`."
+            )
+        },
+        "It is applied from cold, its body as warm as the air. In a row: banks like this one, each at its highest voltage, \
+         and the body of one element as one first-order mass."
+            .to_string(),
+        "With every part healthy: what a failed part leaves is in the plan.".to_string(),
+    ];
+    list.extend(ask.build.assumptions());
+    if ask.build.margin > 0.0 {
+        list.push(
+            "The margin is kept on pulse energy, overload, average power in a row and the rise of the body over the air."
+                .into(),
+        );
+    }
+    if let Some(lead) = ask.lead {
+        list.push(format!(
+            "Cable and contact: anywhere from nothing to {}, least for current and ratings, most for the time. In the part \
+             they stand as a higher upper end of its tolerance.",
+            exact(lead)
+        ));
+        list.push(
+            "Energy of cable and contact: what flows through tool, cable and contact in one discharge heats them in \
+             proportion to their resistances; an arc while the contact closes or opens is not computed."
+                .into(),
+        );
+    }
+    match ask.ambient {
+        Some(ambient) => list.push(format!(
+            "Air at the resistors: {:.0} °C as asked, whatever the file says; the plan of the file itself uses its own.",
+            celsius(ambient)
+        )),
+        None if !bank.ambient_given() => {
+            list.push(format!("Air at the resistors: {:.0} °C, since the file gives none.", celsius(bank.ambient())));
+        }
+        None => {}
+    }
+    list
+}
