@@ -55,7 +55,11 @@ impl InARow {
         let (mut low, mut high) = (0.0, end);
         for _ in 0..60 {
             let middle = 0.5 * (low + high);
-            if self.once(part, middle)?.greatest <= allowed { low = middle } else { high = middle }
+            if self.once(part, middle)?.greatest <= allowed {
+                low = middle
+            } else {
+                high = middle
+            }
             if high - low <= 1e-11 * high {
                 break;
             }

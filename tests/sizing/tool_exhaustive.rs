@@ -109,11 +109,9 @@ fn everything(bank: &Bank, ask: &ToolAsk) -> Vec<(String, f64, u32, u32, f64)> {
 #[test]
 fn a_ranked_list_of_tools_has_all_that_do_the_job_in_their_order_and_no_other() {
     let build = |rank, margin| Build { elements: elements(STOCK), show: 1000, rank, margin, ..Build::default() };
-    for (halves, rank, margin, current) in [
-        (false, Rank::Elements, 0.0, None),
-        (false, Rank::Wait, 0.25, Some(1.0)),
-        (true, Rank::Loss, 0.0, Some(1.5)),
-    ] {
+    for (halves, rank, margin, current) in
+        [(false, Rank::Elements, 0.0, None), (false, Rank::Wait, 0.25, Some(1.0)), (true, Rank::Loss, 0.0, Some(1.5))]
+    {
         let bank = bank(&file(halves));
         let max_current = current.map(Current::from_si);
         let ask = ToolAsk { build: build(rank, margin), within: seconds(5.0), max_current, ..ToolAsk::default() };

@@ -58,7 +58,14 @@ fn written(text: &str, f: &ToolFigures) -> String {
         Placement::WithSteps => file::with_resistor_and_steps("bank.yaml", bytes, &f.resistor, &f.steps),
         Placement::Alone => file::with_resistor("bank.yaml", bytes, &f.resistor),
     };
-    written.unwrap_or_else(|e| panic!("{e}\n{text}"))
+    let written = written.unwrap_or_else(|e| panic!("{e}\n{text}"));
+    if f.placement == Placement::WithSteps || f.steps.is_empty() {
+        return written;
+    }
+    // Sized for steps that the file does not have: it gets them here.
+    let (before, _) = written.split_once("procedure:").expect("the file has steps");
+    let steps: String = file::steps_text(&f.steps).lines().map(|line| format!("  {line}\n")).collect();
+    format!("{before}procedure:\n{steps}")
 }
 
 fn agrees(plan: &Plan, ask: &ToolAsk, sizing: &Sizing<ToolFigures>, rank: usize) {

@@ -17,8 +17,9 @@ pub fn with_resistor_exchanged(name: &str, bytes: &[u8], resistor: &Resistor) ->
     let mut log = Log::default();
     let source = Source::new(name, bytes).map_err(|e| by_hand(&e.text))?;
     let tree = tree::parse(&source, &mut log).ok_or_else(|| by_hand("the file can't be read"))?;
-    let text = exchanged(&source, &tree, resistor)
-        .ok_or_else(|| by_hand(&format!("the entry of `{}` can't be told apart from what is around it", resistor.id)))?;
+    let text = exchanged(&source, &tree, resistor).ok_or_else(|| {
+        by_hand(&format!("the entry of `{}` can't be told apart from what is around it", resistor.id))
+    })?;
     given_out(name, bytes, text, |before| {
         let mut after = before.clone();
         after.resistors.iter_mut().filter(|r| r.id == resistor.id).for_each(|r| *r = resistor.clone());

@@ -14,6 +14,15 @@ pub(super) struct Goal {
     pub at: Option<Pair>,
 }
 
+/// What a tool is sized for whose steps leave it nothing to do.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) enum Instead {
+    /// The bank as it was isolated, at once.
+    AtIsolation,
+    /// The same without what discharges it for good: its bleeders, and sinks that count.
+    WithoutBleeders,
+}
+
 /// The bank with the steps that apply the tool, and what they ask of it.
 pub(super) struct Applied {
     /// With the ambient that was asked for and with the steps; a tool that is sized anew is still the old one in it.
@@ -24,6 +33,10 @@ pub(super) struct Applied {
     pub replaces: Option<usize>,
     /// True where the steps are those of the file, at their own times.
     pub as_filed: bool,
+    /// When it is applied in steps of its own, from isolation on.
+    pub after: Time,
+    /// What it is sized for instead, where the steps that were asked for leave it nothing to do.
+    pub nothing_to_do: Option<Instead>,
     /// True where the file has steps at all.
     pub file_has_steps: bool,
     /// Steps of the trial that the file does not have; empty where it has all.
@@ -35,6 +48,11 @@ pub(super) struct Applied {
     pub first: usize,
     pub held_to: usize,
     pub last: usize,
+}
+
+/// The voltage that was asked for, or the touch voltage.
+fn below(bank: &Bank, ask: &ToolAsk) -> Voltage {
+    ask.voltage.unwrap_or(bank.description().touch_voltage)
 }
 
 fn asked(text: impl Into<String>) -> SizeError {
@@ -55,12 +73,96 @@ impl Applied {
                 // A tool that the file's steps apply is held as long as they hold it, whenever it is applied.
                 let filed = first.map(|first| held(&description.procedure, first, ask.within)).transpose()?;
                 let within = ask.within.or(filed.map(|(time, _)| time)).ok_or_else(|| {
-                    asked("how long the tool is held is not known; write `--within 20s`, or name with `--id` a tool that \
-                           the file's steps apply")
+                    asked(
+                        "how long the tool is held is not known; write `--within 20s`, or name with `--id` a tool that \
+                           the file's steps apply",
+                    )
                 })?;
-                on_its_own(bank, description, place, replaces, within, ask)
+                let after = ask.after.unwrap_or_else(|| Time::from_si(0.0));
+                Ok(on_its_own(
+                    bank,
+                    description,
+                    place,
+                    replaces,
+                    (after, within),
+                    Goal { below: below(bank, ask), at: None },
+                ))
             }
         }
+    }
+
+    /// The tool on the bank as it was isolated, held as long, for steps that leave it nothing to do: what discharges the
+    /// bank before it is applied may have failed, and a tool has to do its work then. The voltage counts where it is
+    /// applied. Where the bleeders would still do it by themselves, `gone` takes them out as well.
+    pub fn at_isolation(&self, bank: &Bank, ask: &ToolAsk, gone: bool) -> Self {
+        let mut description = bank.description().clone();
+        description.ambient = ask.ambient.or(description.ambient);
+        if gone {
+            description.resistors.retain(|r| r.role != Role::Bleeder);
+            description.sinks.retain(|s| !s.counted);
+        }
+        let replaces = self.replaces.and_then(|_| description.resistors.iter().position(|r| r.id == self.place.id));
+        let own = Some(self.place.across.clone()).filter(|_| self.place.phases.is_none());
+        let goal = Goal { below: below(bank, ask), at: own };
+        let times = (Time::from_si(0.0), self.held);
+        let applied = on_its_own(bank, description, self.place.clone(), replaces, times, goal);
+        let nothing_to_do = Some(if gone { Instead::WithoutBleeders } else { Instead::AtIsolation });
+        Applied { nothing_to_do, file_has_steps: self.file_has_steps, ..applied }
+    }
+}
+
+/// The voltage that was asked for, or the touch voltage.
+fn below(bank: &Bank, ask: &ToolAsk) -> Voltage {
+    ask.voltage.unwrap_or(bank.description().touch_voltage)
+}
+
+fn asked(text: impl Into<String>) -> SizeError {
+    SizeError::Asked(text.into())
+}
+
+impl Applied {
+    pub fn of(bank: &Bank, ask: &ToolAsk) -> Result<Self, SizeError> {
+        let mut description = bank.description().clone();
+        description.ambient = ask.ambient.or(description.ambient);
+        let replaces = existing(&description, ask)?;
+        let place = place(bank, &description, replaces, ask)?;
+        let connects = |step: &Step| step.connect.contains(&place.id);
+        let first = replaces.and_then(|_| description.procedure.iter().position(connects));
+        match first.filter(|_| ask.after.is_none()) {
+            Some(first) => in_file(description, place, replaces, first, ask),
+            None => {
+                // A tool that the file's steps apply is held as long as they hold it, whenever it is applied.
+                let filed = first.map(|first| held(&description.procedure, first, ask.within)).transpose()?;
+                let within = ask.within.or(filed.map(|(time, _)| time)).ok_or_else(|| {
+                    asked(
+                        "how long the tool is held is not known; write `--within 20s`, or name with `--id` a tool that \
+                           the file's steps apply",
+                    )
+                })?;
+                let after = ask.after.unwrap_or_else(|| Time::from_si(0.0));
+                Ok(on_its_own(
+                    bank,
+                    description,
+                    place,
+                    replaces,
+                    (after, within),
+                    Goal { below: below(bank, ask), at: None },
+                ))
+            }
+        }
+    }
+
+    /// The tool on the bank as it was isolated, held as long, for steps that leave it nothing to do: what discharges the
+    /// bank before it is applied may have failed, and a tool has to do its work then. The voltage counts where it is
+    /// applied.
+    pub fn at_isolation(&self, bank: &Bank, ask: &ToolAsk) -> Self {
+        let mut description = bank.description().clone();
+        description.ambient = ask.ambient.or(description.ambient);
+        let own = Some(self.place.across.clone()).filter(|_| self.place.phases.is_none());
+        let goal = Goal { below: below(bank, ask), at: own };
+        let times = (Time::from_si(0.0), self.held);
+        let applied = on_its_own(bank, description, self.place.clone(), self.replaces, times, goal);
+        Applied { nothing_to_do: true, ..applied }
     }
 
     /// The bank with a tool in it.
@@ -115,7 +217,9 @@ fn place(
     let old = replaces.map(|index| &description.resistors[index]);
     let three_legs = old.map_or(bank.is_three_phase() && ask.across.is_none(), |r| r.phases.is_some());
     if !three_legs && ask.connection.is_some() {
-        return Err(asked("`--connection` is for a tool with three legs, at a three-phase bank's terminals; leave it out"));
+        return Err(asked(
+            "`--connection` is for a tool with three legs, at a three-phase bank's terminals; leave it out",
+        ));
     }
     let before = old.and_then(|r| r.phases).unwrap_or(Connection::Delta);
     let across = match (old, &ask.across, description.terminals.as_slice()) {
@@ -220,6 +324,8 @@ fn in_file(
         place,
         replaces,
         as_filed: true,
+        after: Time::from_si(0.0),
+        nothing_to_do: None,
         file_has_steps: true,
         steps,
         goals,
@@ -243,10 +349,9 @@ fn on_its_own(
     mut description: Description,
     place: Resistor,
     replaces: Option<usize>,
-    within: Time,
-    ask: &ToolAsk,
-) -> Result<Applied, SizeError> {
-    let below = ask.voltage.unwrap_or(description.touch_voltage);
+    (after, held): (Time, Time),
+    goal: Goal,
+) -> Applied {
     let step = |name: &str, lasts: Time| Step {
         name: name.into(),
         lasts: Lasts::For(lasts),
@@ -257,27 +362,29 @@ fn on_its_own(
         touch: false,
     };
     let steps = vec![
-        step("Lock out and isolate", ask.after.unwrap_or_else(|| Time::from_si(0.0))),
+        step("Lock out and isolate", after),
         Step {
             connect: vec![place.id.clone()],
             measure: bank.test_points(),
-            hold: Some(Hold { below, at: None }),
-            ..step("Apply the discharge tool", within)
+            hold: Some(Hold { below: goal.below, at: goal.at.clone() }),
+            ..step("Apply the discharge tool", held)
         },
     ];
     let file_has_steps = !description.procedure.is_empty();
     description.procedure = steps.clone();
-    Ok(Applied {
+    Applied {
         description,
         place,
         replaces,
         as_filed: false,
+        after,
+        nothing_to_do: None,
         file_has_steps,
         steps,
-        goals: vec![Goal { below, at: None }],
-        held: within,
+        goals: vec![goal],
+        held,
         first: 1,
         held_to: 1,
         last: 1,
-    })
+    }
 }

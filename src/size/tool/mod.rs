@@ -13,7 +13,7 @@ mod words;
 pub use request::ToolAsk;
 pub use result::{AskedRow, InARowResult, Placement, ToolFigures};
 
-use super::arrays::{Design, listed};
+use super::arrays::{Design, Listed, listed};
 use super::collision::{self, Ways};
 use super::error::SizeError;
 use super::result::Sizing;
@@ -24,9 +24,8 @@ use super::window::{demand_results, nothing_fits, searched, window_result};
 use crate::bank::Bank;
 use crate::bank::description::Lasts;
 use crate::discharge::InARow;
-use crate::finding::{Finding, Severity};
 use crate::plan::{ChargedTo, Stamp};
-use crate::quantity::{Quantity, exact};
+use crate::quantity::{Direction, Quantity, Time, duration, exact};
 use applied::Applied;
 use bearing::{Bearing, taus};
 use demands::{Kind, demands, instead, nowhere, way_for};
@@ -60,37 +59,48 @@ use trial::Setup;
 /// ```
 pub fn tool(bank: &Bank, input_sha256: &str, ask: &ToolAsk) -> Result<Sizing<ToolFigures>, SizeError> {
     ask.build.check()?;
-    let applied = Applied::of(bank, ask)?;
-    let row = row(&applied, ask)?;
     let ambient = ask.ambient.unwrap_or_else(|| bank.ambient());
     let lead = ask.lead.map_or(0.0, Quantity::si);
-    let taus = taus(&ask.build.elements);
+    let fitted = |applied: &Applied| Fitted::new(applied, lead, taus(&ask.build.elements), row(applied, ask)?);
+    let mut applied = Applied::of(bank, ask)?;
+    let mut probe = fitted(&applied)?;
+    for gone in [false, true] {
+        if !probe.reached_without(applied.held)? {
+            break;
+        }
+        let harder = applied.at_isolation(bank, ask, gone);
+        // A bank may be no bank any more without its bleeders.
+        if harder.with(harder.place.clone()).is_ok() {
+            probe = fitted(&harder)?;
+            applied = harder;
+        }
+    }
+    let row = row(&applied, ask)?;
     // Without a distance that was asked for, one discharge follows the other as soon as the tool is lifted.
     let apart = ask.banks.map(|_| row.every.max(connected(&applied)));
-    let bearing = Bearing { ambient, margin: ask.build.margin, row: apart, taus: taus.clone() };
-    let probe = Fitted::new(&applied, lead, taus, row)?;
+    let bearing = Bearing { ambient, margin: ask.build.margin, row: apart, taus: taus(&ask.build.elements) };
     let demands = demands(&applied, ask, &bearing);
     let scan = Scan::around(middle(&applied), &probe, &demands)?;
     let spans: Vec<Spans> = demands.par_iter().map(|d| scan.spans(d)).collect::<Result<_, _>>()?;
     let window = spans.iter().fold(Spans::all(), |w, s| w.and(s));
     let points = closely(&scan, &probe, &window)?;
     let setup = Setup { applied: &applied, ask, probe: &probe, bearing: &bearing, row, lead };
-    let found =
-        listed(&ask.build, |_| window.clone(), |design, element| bearing.overload(design, element, &points));
+    let found = listed(&ask.build, |_| window.clone(), |design, element| bearing.overload(design, element, &points));
+    let without = demands.iter().zip(scan.without(&demands)).filter(|(d, _)| matches!(d.kind, Kind::Goal(..)));
+    // What the bank does by itself asks nothing of a tool: any would do, and none is given.
+    let by_itself = without.into_iter().all(|(_, met)| met);
+    let found = if by_itself { Listed::default() } else { found };
     let (candidates, refused) = planned(&ask.build, &found, |design: &Design| setup.tried(design))?;
 
     let mut findings = Vec::new();
     let drains = words::drains(&applied.description);
-    if window.is_empty() {
+    if by_itself {
+        findings.push(words::by_itself());
+    } else if window.is_empty() {
         let ways = Ways { allow: &way_for, instead: &instead(drains), nowhere: &nowhere };
         findings.extend(collision::explained(&demands, &spans, &scan, &ways)?);
     } else if candidates.is_empty() {
         findings.push(nothing_fits(&ask.build, &found, refused, &window));
-    }
-    let goals = demands.iter().zip(scan.without(&demands)).filter(|(d, _)| matches!(d.kind, Kind::Goal(..)));
-    if goals.into_iter().all(|(_, met)| met) {
-        let text = "The bank is there in that time without a tool.";
-        findings.push(Finding::new(Severity::Note, "already-met", text));
     }
     if let Some(first) = candidates.first() {
         findings.extend(words::findings(bank, ask, &applied, first, drains)?);
@@ -129,9 +139,10 @@ fn row(applied: &Applied, ask: &ToolAsk) -> Result<InARow, SizeError> {
     let connected = connected(applied);
     if let Some(asked) = ask.every.filter(|t| t.si() < connected) {
         let text = format!(
-            "`--every {}` is shorter than the {connected} s for which the tool is connected each time; write a longer one, \
-             or leave it out for one right after the other",
-            exact(asked)
+            "`--every {}` is shorter than the {} for which the tool is connected each time; write a longer one, or leave \
+             it out for one right after the other",
+            exact(asked),
+            duration(Time::from_si(connected), Direction::Up)
         );
         return Err(SizeError::Asked(text));
     }

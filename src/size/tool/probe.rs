@@ -5,9 +5,9 @@
 
 use super::applied::{Applied, Goal};
 use crate::bank::Bank;
-use crate::check::{EngineError, Procedure};
+use crate::check::{EngineError, Procedure, Verdict};
 use crate::discharge::{InARow, Model, StepFigure, rise_per_kelvin_per_watt};
-use crate::quantity::Quantity;
+use crate::quantity::{Quantity, Time};
 use crate::size::error::SizeError;
 use crate::size::scan::Probe;
 
@@ -58,6 +58,12 @@ impl Fitted {
         let legs = ids.iter().filter_map(|id| model.find_resistor(id)).collect();
         let (goals, first) = (applied.goals.clone(), applied.first);
         Ok(Fitted { bank, model, legs, goals, first, lead, taus, once: InARow { count: 1.0, ..row }, row })
+    }
+
+    /// Is every goal reached in time without the tool?
+    pub fn reached_without(&self, held: Time) -> Result<bool, EngineError> {
+        let found = self.at(f64::INFINITY)?;
+        Ok(found.times.iter().all(|time| Verdict::at_most(*time, held.si()) == Verdict::Met))
     }
 
     fn model(&self, ohms: f64) -> Model {

@@ -13,7 +13,9 @@ use crate::check::{EngineError, Procedure, Verdict};
 use crate::discharge::{InARow, Model, StepFigure};
 use crate::finding::Findings;
 use crate::plan::{Options, ResistorResult, plan};
-use crate::quantity::{Current, Energy, Power, Quantity, Temperature, Time, Tolerance, Voltage};
+use crate::quantity::{
+    CELSIUS_ZERO_K, Current, Energy, Power, Quantity, Ratio, Temperature, Time, Tolerance, Voltage, parse,
+};
 use crate::size::arrays::Design;
 use crate::size::error::SizeError;
 use crate::size::scan::Probe;
@@ -38,8 +40,7 @@ impl Setup<'_> {
         }
         let own = part.tolerance.unwrap_or(Tolerance::NONE);
         let share = self.lead * f64::from(design.parallel) / (f64::from(design.series) * design.value);
-        let tolerance = Tolerance::new(own.low(), own.high() + crate::quantity::Ratio::from_si(share)).ok();
-        Resistor { tolerance, ..part }
+        Resistor { tolerance: Tolerance::new(own.low(), written_up(own.high().si() + share)).ok(), ..part }
     }
 
     /// Puts a design into the bank and makes the full plan.
@@ -116,6 +117,13 @@ impl Setup<'_> {
     }
 }
 
+/// A share rounded up to one that a bank file says in a few digits, so that the part reads back as the very one that was
+/// planned.
+fn written_up(share: f64) -> Ratio {
+    let percent = (share * 1e12).ceil() / 1e10;
+    parse(&format!("{percent:.10} %")).map_or(Ratio::from_si(share), |reading| reading.value)
+}
+
 fn lowest(goals: &[Goal]) -> Voltage {
     let all = goals.iter().map(|g| g.below.si());
     Voltage::from_si(all.fold(f64::INFINITY, f64::min))
@@ -123,7 +131,7 @@ fn lowest(goals: &[Goal]) -> Voltage {
 
 /// Are the ratings of one element kept, with the margin, and does one of them tell of the pulse where there is one?
 fn bears(result: &ResistorResult, bearing: &Bearing) -> bool {
-    let air = bearing.ambient.si() - crate::quantity::CELSIUS_ZERO_K;
+    let air = bearing.ambient.si() - CELSIUS_ZERO_K;
     let used = 1.0 - bearing.margin;
     let kept = result.checks.iter().all(|check| {
         let with_margin = match (check.check, check.found, check.allowed) {
@@ -134,9 +142,8 @@ fn bears(result: &ResistorResult, bearing: &Bearing) -> bool {
         };
         with_margin && check.verdict != Verdict::NotMet
     });
-    let pulse = result.allowed_power.is_none_or(|most| {
-        result.peak_power.is_none_or(|found| !at_most(found.si(), most.si()))
-    });
+    let pulse =
+        result.allowed_power.is_none_or(|most| result.peak_power.is_none_or(|found| !at_most(found.si(), most.si())));
     let told = result.checks.iter().any(|c| c.check != "element voltage" && c.verdict == Verdict::Met);
     kept && (told || !pulse)
 }

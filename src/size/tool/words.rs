@@ -1,11 +1,12 @@
 //! What is told with the designs of a tool: what they rest on, and what else people have to know.
 
-use super::applied::Applied;
+use super::applied::{Applied, Instead};
 use super::request::ToolAsk;
 use super::result::{Placement, ToolFigures};
 use super::trial::at_once;
 use crate::bank::Bank;
 use crate::bank::description::{Description, Role};
+use crate::check::{Check, Verdict};
 use crate::finding::{Finding, Severity};
 use crate::quantity::{Direction, Quantity, celsius, exact, show};
 use crate::size::error::SizeError;
@@ -17,6 +18,14 @@ pub(super) fn drains(description: &Description) -> bool {
     description.resistors.iter().any(|r| path(r.role)) || description.sinks.iter().any(|s| s.counted)
 }
 
+/// Nothing is asked of a tool.
+pub(super) fn by_itself() -> Finding {
+    let text = "What is always connected brings the bank there in that time without a tool, from isolation on and without \
+                its bleeders. That bounds no tool, and any would pass: none is given.";
+    let help = "ask for less time (`--within`) or a lower voltage (`--voltage`)";
+    Finding::new(Severity::Warning, "already-met", text).with_help(help)
+}
+
 /// What was noticed about the first design.
 pub(super) fn findings(
     bank: &Bank,
@@ -26,6 +35,21 @@ pub(super) fn findings(
     drains: bool,
 ) -> Result<Vec<Finding>, SizeError> {
     let mut findings = Vec::new();
+    if let Some(instead) = applied.nothing_to_do {
+        let (bleeders, rest) = match instead {
+            Instead::AtIsolation => ("", ""),
+            Instead::WithoutBleeders => (
+                " without its bleeders and counted sinks, which would be there in time by themselves",
+                " All figures, and the verdict of the plan, are those of that bank.",
+            ),
+        };
+        let text = format!(
+            "When the tool is applied as was asked, every test point is there in that time without it. That would let any \
+             tool pass, so it is sized for the bank as it was isolated{bleeders}: applied at once, held as long, and the \
+             voltage counts where it is applied. That is what it meets where a bleeder has failed.{rest}"
+        );
+        findings.push(Finding::new(Severity::Note, "sized-from-isolation", text));
+    }
     if first.figures.applied_at.si() > 0.0 && drains {
         let met = at_once(bank, ask, applied, &first.figures.resistor)?;
         let figures = format!(
@@ -38,13 +62,25 @@ pub(super) fn findings(
         let help = "measure before it is applied, and do not apply it where the voltage is higher than predicted; or size \
                     it for the bank as it was isolated: `--after 0s`";
         findings.push(if met.missed.is_empty() {
-            Finding::new(Severity::Note, "tool-relies-on-bleeders", format!("{figures}. The ratings that were given bear that."))
+            Finding::new(
+                Severity::Note,
+                "tool-relies-on-bleeders",
+                format!("{figures}. The ratings that were given bear that."),
+            )
         } else {
             let text = format!("{figures}. Its ratings do NOT bear that ({}).", met.missed.join(", "));
             Finding::new(Severity::Warning, "tool-relies-on-bleeders", text).with_help(help)
         });
     }
-    if !first.not_met.is_empty() {
+    let pulse = |check: &Check| ["pulse energy", "overload power"].contains(&check.check);
+    let asked = first.checks.iter().any(pulse);
+    if asked && !first.checks.iter().any(|check| pulse(check) && check.verdict == Verdict::Met) {
+        let text = "No rating of the first design's element tells what it bears in a pulse. Its body is followed as one mass, \
+                    which says nothing of the film or wire that takes up the heat first.";
+        let finding = Finding::new(Severity::Warning, "pulse-not-checked", text);
+        findings.push(finding.with_help("take an element with a pulse or overload rating, or ask its maker"));
+    }
+    if !first.not_met.is_empty() && applied.nothing_to_do != Some(Instead::WithoutBleeders) {
         let whose = if applied.as_filed { "file" } else { "file, with the steps of this trial," };
         let text = format!(
             "The plan with the first design does not meet everything else in the {whose}: {}. `ebbvolt plan` tells more.",
@@ -76,7 +112,7 @@ pub(super) fn assumptions(bank: &Bank, ask: &ToolAsk, applied: &Applied) -> Vec<
             let steps = if first == to { format!("step {first}") } else { format!("steps {first} to {to}") };
             format!("When it is applied and how long it is held ({held}): {steps} of the file's own procedure.")
         } else {
-            let after = ask.after.map_or_else(|| "0 s".into(), exact);
+            let after = exact(applied.after);
             format!(
                 "It is applied {after} after isolation and held for {held}, in steps of their own: `Lock out and isolate` \
                  and `Apply the discharge tool`."
