@@ -109,61 +109,6 @@ impl Applied {
         let nothing_to_do = Some(if gone { Instead::WithoutBleeders } else { Instead::AtIsolation });
         Applied { nothing_to_do, file_has_steps: self.file_has_steps, ..applied }
     }
-}
-
-/// The voltage that was asked for, or the touch voltage.
-fn below(bank: &Bank, ask: &ToolAsk) -> Voltage {
-    ask.voltage.unwrap_or(bank.description().touch_voltage)
-}
-
-fn asked(text: impl Into<String>) -> SizeError {
-    SizeError::Asked(text.into())
-}
-
-impl Applied {
-    pub fn of(bank: &Bank, ask: &ToolAsk) -> Result<Self, SizeError> {
-        let mut description = bank.description().clone();
-        description.ambient = ask.ambient.or(description.ambient);
-        let replaces = existing(&description, ask)?;
-        let place = place(bank, &description, replaces, ask)?;
-        let connects = |step: &Step| step.connect.contains(&place.id);
-        let first = replaces.and_then(|_| description.procedure.iter().position(connects));
-        match first.filter(|_| ask.after.is_none()) {
-            Some(first) => in_file(description, place, replaces, first, ask),
-            None => {
-                // A tool that the file's steps apply is held as long as they hold it, whenever it is applied.
-                let filed = first.map(|first| held(&description.procedure, first, ask.within)).transpose()?;
-                let within = ask.within.or(filed.map(|(time, _)| time)).ok_or_else(|| {
-                    asked(
-                        "how long the tool is held is not known; write `--within 20s`, or name with `--id` a tool that \
-                           the file's steps apply",
-                    )
-                })?;
-                let after = ask.after.unwrap_or_else(|| Time::from_si(0.0));
-                Ok(on_its_own(
-                    bank,
-                    description,
-                    place,
-                    replaces,
-                    (after, within),
-                    Goal { below: below(bank, ask), at: None },
-                ))
-            }
-        }
-    }
-
-    /// The tool on the bank as it was isolated, held as long, for steps that leave it nothing to do: what discharges the
-    /// bank before it is applied may have failed, and a tool has to do its work then. The voltage counts where it is
-    /// applied.
-    pub fn at_isolation(&self, bank: &Bank, ask: &ToolAsk) -> Self {
-        let mut description = bank.description().clone();
-        description.ambient = ask.ambient.or(description.ambient);
-        let own = Some(self.place.across.clone()).filter(|_| self.place.phases.is_none());
-        let goal = Goal { below: below(bank, ask), at: own };
-        let times = (Time::from_si(0.0), self.held);
-        let applied = on_its_own(bank, description, self.place.clone(), self.replaces, times, goal);
-        Applied { nothing_to_do: true, ..applied }
-    }
 
     /// The bank with a tool in it.
     pub fn with(&self, tool: Resistor) -> Result<Bank, SizeError> {
