@@ -128,7 +128,8 @@ fn steps_that_leave_a_tool_nothing_to_do_do_not_let_any_tool_pass() {
     // What remains even then asks nothing of any tool, and none is given.
     let fast = one("resistors: [{id: R1, role: leakage, value: 100 ohm, tolerance: 5 %}]\n");
     let sizing = tooled(&bank(&fast), &ask());
-    assert_eq!((sizing.candidates.len(), sizing.exit_code(), sizing.findings[0].code), (0, 1, "already-met"));
+    assert_eq!((sizing.candidates.len(), sizing.exit_code()), (0, 1));
+    assert!(sizing.findings.iter().any(|f| f.code == "already-met"), "{:?}", sizing.findings);
 }
 
 #[test]

@@ -24,6 +24,7 @@ use super::window::{demand_results, nothing_fits, searched, window_result};
 use crate::bank::Bank;
 use crate::bank::description::Lasts;
 use crate::discharge::InARow;
+use crate::finding::Finding;
 use crate::plan::{ChargedTo, Stamp};
 use crate::quantity::{Direction, Quantity, Time, duration, exact};
 use applied::Applied;
@@ -92,7 +93,7 @@ pub fn tool(bank: &Bank, input_sha256: &str, ask: &ToolAsk) -> Result<Sizing<Too
     let found = if by_itself { Listed::default() } else { found };
     let (candidates, refused) = planned(&ask.build, &found, |design: &Design| setup.tried(design))?;
 
-    let mut findings = Vec::new();
+    let mut findings: Vec<Finding> = words::from_isolation(&applied).into_iter().collect();
     let drains = words::drains(&applied.description);
     if by_itself {
         findings.push(words::by_itself());

@@ -26,6 +26,23 @@ pub(super) fn by_itself() -> Finding {
     Finding::new(Severity::Warning, "already-met", text).with_help(help)
 }
 
+/// What it was sized for instead, where the steps that were asked for leave it nothing to do.
+pub(super) fn from_isolation(applied: &Applied) -> Option<Finding> {
+    let (bleeders, rest) = match applied.nothing_to_do? {
+        Instead::AtIsolation => ("", ""),
+        Instead::WithoutBleeders => (
+            " without its bleeders and counted sinks, which would be there in time by themselves",
+            " All figures, and the verdict of the plan, are those of that bank.",
+        ),
+    };
+    let text = format!(
+        "When the tool is applied as was asked, every test point is there in that time without it. That would let any tool \
+         pass, so it is sized for the bank as it was isolated{bleeders}: applied at once, held as long, and the voltage \
+         counts where it is applied. That is what it meets where a bleeder has failed.{rest}"
+    );
+    Some(Finding::new(Severity::Note, "sized-from-isolation", text))
+}
+
 /// What was noticed about the first design.
 pub(super) fn findings(
     bank: &Bank,
@@ -35,21 +52,6 @@ pub(super) fn findings(
     drains: bool,
 ) -> Result<Vec<Finding>, SizeError> {
     let mut findings = Vec::new();
-    if let Some(instead) = applied.nothing_to_do {
-        let (bleeders, rest) = match instead {
-            Instead::AtIsolation => ("", ""),
-            Instead::WithoutBleeders => (
-                " without its bleeders and counted sinks, which would be there in time by themselves",
-                " All figures, and the verdict of the plan, are those of that bank.",
-            ),
-        };
-        let text = format!(
-            "When the tool is applied as was asked, every test point is there in that time without it. That would let any \
-             tool pass, so it is sized for the bank as it was isolated{bleeders}: applied at once, held as long, and the \
-             voltage counts where it is applied. That is what it meets where a bleeder has failed.{rest}"
-        );
-        findings.push(Finding::new(Severity::Note, "sized-from-isolation", text));
-    }
     if first.figures.applied_at.si() > 0.0 && drains {
         let met = at_once(bank, ask, applied, &first.figures.resistor)?;
         let figures = format!(
