@@ -104,8 +104,10 @@ pub(super) fn run(typed: &ToolArgs, stdin: &mut dyn Read, output: &mut Output) -
     };
     let status = conclude(&typed.build, &typed.given, &sizing, &report::size_tool(&sizing), &write, output);
     let picked = sizing.candidates.get(typed.build.pick as usize - 1).map(|c| &c.figures);
-    let lacking = picked.filter(|f| f.placement != Placement::WithSteps && !f.steps.is_empty());
-    if let Some(figures) = lacking.filter(|_| status == 0 && (typed.given.write.is_some() || typed.given.part)) {
+    // What is pasted by hand lacks all of its steps, and what is written those that the file's procedure does not have.
+    let (pasted, written) = (typed.given.part, typed.given.write.is_some());
+    let lacking = picked.filter(|f| !f.steps.is_empty() && (pasted || written && f.placement != Placement::WithSteps));
+    if let Some(figures) = lacking.filter(|_| status == 0) {
         output.notice(&format!(
             "The figures are those of these steps, which the procedure of the file does not have:\n{}",
             file::steps_text(&figures.steps).trim_end()
