@@ -205,6 +205,23 @@ fn a_capacitor_that_the_tool_does_not_reach_is_met_nowhere() {
 }
 
 #[test]
+fn charge_that_the_tool_does_not_reach_is_told_of() {
+    // Two unequal halves: bled for an hour, the bank is at nothing; sized for the bank as it was isolated, the middle keeps
+    // what the halves differ by.
+    let text = format!(
+        "{HEAD}{PLAIN}capacitors: [{{id: C1, value: 100 uF, across: [P, M]}}, {{id: C2, value: 300 uF, across: [M, \
+         N]}}]\nresistors:\n  - {{id: R1, role: balancing, value: 100 kohm, across: [P, M]}}\n  - {{id: R2, role: balancing, \
+         value: 100 kohm, across: [M, N]}}\n  - {{id: T1, role: tool, value: 1 kohm}}\nprocedure:\n  - {{step: Wait, for: 1 \
+         h}}\n  - {{step: Apply, connect: [T1], for: 5 s}}\n"
+    );
+    let sizing = tooled(&bank(&text), &ToolAsk { within: None, ..ask() });
+    let c = sizing.candidates.first().unwrap_or_else(|| panic!("{:?}", sizing.findings));
+    // Half of 750 V on each; joined, 100 uF and 300 uF settle at 187.5 V against each other, and lose little in 5 s.
+    assert!((150.0..187.5).contains(&c.figures.left.si()), "{c:?}");
+    assert!(sizing.findings.iter().any(|f| f.code == "left-at-test-point"), "{:?}", sizing.findings);
+}
+
+#[test]
 fn what_makes_no_sense_is_refused() {
     let refused = |ask: ToolAsk, text: &str| {
         let error = ebbvolt::size::tool(&bank(text), "", &ask).expect_err("it is refused");

@@ -4,6 +4,7 @@ use super::applied::{Applied, Goal};
 use super::bearing::Bearing;
 use super::probe::Point;
 use super::request::ToolAsk;
+use super::words::spoken;
 use crate::bank::stock::Element;
 use crate::quantity::{Current, Direction, Energy, Power, Quantity, Time, celsius, duration, exact, show};
 use crate::size::scan::{Demand, Measure, ratio};
@@ -52,7 +53,7 @@ impl Measure<Point> for Kind {
 }
 
 pub(super) fn demands(applied: &Applied, ask: &ToolAsk, bearing: &Bearing) -> Vec<Demand<Kind>> {
-    let held = exact(applied.held);
+    let held = spoken(applied.held);
     let goals = applied.goals.iter().enumerate().map(|(index, goal)| Demand {
         name: format!("{} within {held} of holding it", goal_in_words(goal)),
         kind: Kind::Goal(index, applied.held.si()),

@@ -163,6 +163,8 @@ fn middle(applied: &Applied) -> f64 {
 
 /// Points per decade of the window between which the figures of elements are interpolated.
 const CLOSE_PER_DECADE: f64 = 12.0;
+/// And how many of them at most: each is a procedure solved over the tolerance box.
+const MOST_CLOSE: f64 = 32.0;
 
 /// The points that were looked at, and more of them inside the window.
 fn closely(scan: &Scan<Fitted>, probe: &Fitted, window: &Spans) -> Result<Vec<Point>, SizeError> {
@@ -171,7 +173,7 @@ fn closely(scan: &Scan<Fitted>, probe: &Fitted, window: &Spans) -> Result<Vec<Po
     let Some(((first, last), ends)) = ends else { return Ok(points) };
     let (low, high) = (ends.low.max(first), ends.high.min(last));
     if low < high {
-        let count = ((high / low).log10() * CLOSE_PER_DECADE).ceil().clamp(1.0, 60.0);
+        let count = ((high / low).log10() * CLOSE_PER_DECADE).ceil().clamp(1.0, MOST_CLOSE);
         let at = |k: u32| low * (high / low).powf(f64::from(k) / count);
         let more: Vec<u32> = (0..=count as u32).collect();
         let found: Result<Vec<Point>, _> = more.par_iter().map(|k| probe.at(at(*k))).collect();

@@ -8,9 +8,14 @@ use crate::bank::Bank;
 use crate::bank::description::{Description, Role};
 use crate::check::{Check, Verdict};
 use crate::finding::{Finding, Severity};
-use crate::quantity::{Direction, Quantity, celsius, exact, show};
+use crate::quantity::{Direction, Quantity, Time, celsius, duration, exact, show};
 use crate::size::error::SizeError;
 use crate::size::result::Candidate;
+
+/// A time that was typed, as people say it.
+pub(super) fn spoken(time: Time) -> String {
+    if time.si() < 120.0 { exact(time) } else { duration(time, Direction::Down) }
+}
 
 /// Does anything that is always connected take the voltage down?
 pub(super) fn drains(description: &Description) -> bool {
@@ -82,6 +87,16 @@ pub(super) fn findings(
         let finding = Finding::new(Severity::Warning, "pulse-not-checked", text);
         findings.push(finding.with_help("take an element with a pulse or overload rating, or ask its maker"));
     }
+    if first.figures.left > first.figures.below {
+        let text = format!(
+            "When the first design has been held, up to {} is still at a test point other than where it is applied: it does \
+             not reach what is charged there, such as one unit of a string.",
+            show(first.figures.left, Direction::Up)
+        );
+        let finding = Finding::new(Severity::Warning, "left-at-test-point", text);
+        findings
+            .push(finding.with_help("apply it to every unit in turn (`--across`), and short every unit on its own"));
+    }
     if !first.not_met.is_empty() && applied.nothing_to_do != Some(Instead::WithoutBleeders) {
         let whose = if applied.as_filed { "file" } else { "file, with the steps of this trial," };
         let text = format!(
@@ -104,7 +119,7 @@ pub(super) fn findings(
 
 /// What the answer rests on.
 pub(super) fn assumptions(bank: &Bank, ask: &ToolAsk, applied: &Applied) -> Vec<String> {
-    let held = exact(applied.held);
+    let held = spoken(applied.held);
     let mut list = vec![
         "The window is one of the tool's actual resistance, all other parts anywhere in their tolerances, from the highest \
          voltage. A design fits where all of its tolerance does."
@@ -114,7 +129,7 @@ pub(super) fn assumptions(bank: &Bank, ask: &ToolAsk, applied: &Applied) -> Vec<
             let steps = if first == to { format!("step {first}") } else { format!("steps {first} to {to}") };
             format!("When it is applied and how long it is held ({held}): {steps} of the file's own procedure.")
         } else {
-            let after = exact(applied.after);
+            let after = spoken(applied.after);
             format!(
                 "It is applied {after} after isolation and held for {held}, in steps of their own: `Lock out and isolate` \
                  and `Apply the discharge tool`."
