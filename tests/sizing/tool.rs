@@ -216,8 +216,9 @@ fn charge_that_the_tool_does_not_reach_is_told_of() {
     );
     let sizing = tooled(&bank(&text), &ToolAsk { within: None, ..ask() });
     let c = sizing.candidates.first().unwrap_or_else(|| panic!("{:?}", sizing.findings));
-    // Half of 750 V on each; joined, 100 uF and 300 uF settle at 187.5 V against each other, and lose little in 5 s.
-    assert!((150.0..187.5).contains(&c.figures.left.si()), "{c:?}");
+    // Half of 750 V on each; joined, 100 uF and 300 uF settle at 187.5 V against each other, and lose a quarter of it in 5 s
+    // through what is 50 kohm then.
+    assert!((120.0..187.5).contains(&c.figures.left.si()), "{c:?}");
     assert!(sizing.findings.iter().any(|f| f.code == "left-at-test-point"), "{:?}", sizing.findings);
 }
 
