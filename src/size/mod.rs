@@ -23,4 +23,4 @@ pub use bleeder::{BleederAsk, BleederFigures, LimitHeld, Target, bleeder};
 pub use build::{Build, Rank};
 pub use error::SizeError;
 pub use result::{Candidate, DemandResult, Searched, SetAside, Sizing, Window};
-pub use tool::{AskedRow, InARowResult, Placement, ToolAsk, ToolFigures, tool};
+pub use tool::{AskedRow, FaultLeft, InARowResult, Placement, ToolAsk, ToolFigures, tool};

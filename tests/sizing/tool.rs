@@ -205,6 +205,18 @@ fn a_capacitor_that_the_tool_does_not_reach_is_met_nowhere() {
 }
 
 #[test]
+fn a_failed_bleeder_that_leaves_the_tool_too_little_time_is_told_of() {
+    let there = "resistors: [{id: R1, role: bleeder, value: 10 kohm, tolerance: 5 %}]\n";
+    let sizing = tooled(&bank(&one(there)), &ToolAsk { build: shelf("1.9 kohm", "5 %", STRONG), ..ask() });
+    let c = sizing.candidates.first().unwrap_or_else(|| panic!("{:?}", sizing.findings));
+    let worst = c.figures.worst_fault.as_ref().expect("a bleeder can fail");
+    assert_eq!(worst.fault, "R1 open");
+    assert_relative_eq!(worst.left.si(), VOLTS * (-20.0 / (1.05 * 1900.0 * FARAD)).exp(), max_relative = 1e-9);
+    assert!(worst.left.si() > 50.0 && c.figures.left.si() <= 50.0);
+    assert!(sizing.findings.iter().any(|f| f.code == "not-enough-under-fault"), "{:?}", sizing.findings);
+}
+
+#[test]
 fn charge_that_the_tool_does_not_reach_is_told_of() {
     // Two unequal halves: bled for an hour, the bank is at nothing; sized for the bank as it was isolated, the middle keeps
     // what the halves differ by.

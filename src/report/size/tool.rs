@@ -1,7 +1,7 @@
 //! What a discharge tool's report says of its designs.
 
 use super::{SizeReport, Told, bought, document, of, rank, strings, value};
-use crate::plan::{Check, Verdict};
+use crate::plan::{Check, Verdict, fault_in_words};
 use crate::quantity::{CELSIUS_ZERO_K, Energy, Power, Quantity, Temperature, celsius};
 use crate::report::block::{Grid, Labelled, Side};
 use crate::report::words::{down, list, pair, time, typed, up, wait, whole};
@@ -132,6 +132,7 @@ fn first_design(c: &Candidate<ToolFigures>, ambient: Temperature) -> Vec<Labelle
                 up(f.left)
             )],
         ),
+        Labelled::new("one failed", vec![one_failed(c)]),
         Labelled::new(
             "load",
             vec![format!(
@@ -162,6 +163,14 @@ fn first_design(c: &Candidate<ToolFigures>, ambient: Temperature) -> Vec<Labelle
         Labelled::new("as asked", vec![text])
     }));
     items
+}
+
+/// What is left with the worst part failed.
+fn one_failed(c: &Candidate<ToolFigures>) -> String {
+    match &c.figures.worst_fault {
+        Some(worst) => format!("With {} up to {} is left then.", fault_in_words(&worst.fault), up(worst.left)),
+        None => "No other part of this bank can fail by the plan's own list.".into(),
+    }
 }
 
 /// What of an element's pulse was checked against what.

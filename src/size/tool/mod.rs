@@ -11,7 +11,7 @@ mod trial;
 mod words;
 
 pub use request::ToolAsk;
-pub use result::{AskedRow, InARowResult, Placement, ToolFigures};
+pub use result::{AskedRow, FaultLeft, InARowResult, Placement, ToolFigures};
 
 use super::arrays::{Design, Listed, listed};
 use super::collision::{self, Ways};

@@ -24,6 +24,8 @@ pub struct ToolFigures {
     /// Greatest voltage that is left at a test point when it has been held.
     #[serde(rename = "left_v", serialize_with = "si")]
     pub left: Voltage,
+    /// The failed part that then leaves most, and how much; `None` where no part can fail.
+    pub worst_fault: Option<FaultLeft>,
     /// Greatest current.
     #[serde(rename = "peak_current_a", serialize_with = "si")]
     pub peak_current: Current,
@@ -52,6 +54,16 @@ pub struct ToolFigures {
     /// Steps that its figures rest on and that the file does not have.
     #[serde(skip)]
     pub steps: Vec<Step>,
+}
+
+/// What is left at a test point when a tool has been held, with one part failed.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct FaultLeft {
+    /// The failed part.
+    pub fault: String,
+    /// The greatest voltage at a test point.
+    #[serde(rename = "left_v", serialize_with = "si")]
+    pub left: Voltage,
 }
 
 /// How many banks can be discharged in a row from cold, by the body of one element.

@@ -5,14 +5,14 @@ use super::bearing::Bearing;
 use super::in_a_row::{Bodies, asked_row, in_a_row};
 use super::probe::{Fitted, figures_of, no_steps};
 use super::request::ToolAsk;
-use super::result::{Placement, ToolFigures};
+use super::result::{FaultLeft, Placement, ToolFigures};
 use crate::bank::Bank;
 use crate::bank::description::Resistor;
 use crate::bank::file::resistor_text;
 use crate::check::{EngineError, Procedure, Verdict};
 use crate::discharge::{InARow, Model, StepFigure};
 use crate::finding::Findings;
-use crate::plan::{Options, ResistorResult, plan};
+use crate::plan::{Options, Plan, ResistorResult, StepFault, plan};
 use crate::quantity::{
     CELSIUS_ZERO_K, Current, Energy, Power, Quantity, Ratio, Temperature, Time, Tolerance, Voltage, parse,
 };
@@ -82,6 +82,7 @@ impl Setup<'_> {
                 .filter(|t| t.is_finite())
                 .map(Time::from_si),
             left: Voltage::from_si(whole.left),
+            worst_fault: worst_fault(&plan, applied.held_to),
             peak_current: Current::from_si(whole.current),
             peak_power: Power::from_si(whole.power),
             energy: Energy::from_si(whole.energy),
@@ -115,6 +116,14 @@ impl Setup<'_> {
         let (low, high) = (self.probe.at(design.lowest)?, self.probe.at(design.highest)?);
         Ok(Some(low.contact.max(high.contact)))
     }
+}
+
+/// The failed part that leaves most at the end of a step. A source that was not isolated is none: no tool helps there.
+fn worst_fault(plan: &Plan, stage: usize) -> Option<FaultLeft> {
+    let parts = plan.steps.get(stage)?.faults.iter().filter(|f| f.fault != "source not isolated");
+    let left = |f: &StepFault| f.test_points.iter().map(|p| p.highest.si()).fold(0.0, f64::max);
+    let worst = parts.max_by(|x, y| left(x).total_cmp(&left(y)))?;
+    Some(FaultLeft { fault: worst.fault.clone(), left: Voltage::from_si(left(worst)) })
 }
 
 /// A share rounded up to one that a bank file says in a few digits, so that the part reads back as the very one that was

@@ -6,7 +6,7 @@ use super::result::{Placement, ToolFigures};
 use super::trial::at_once;
 use crate::bank::Bank;
 use crate::bank::description::{Description, Role};
-use crate::check::{Check, Verdict};
+use crate::check::{Check, Verdict, fault_in_words};
 use crate::finding::{Finding, Severity};
 use crate::quantity::{Direction, Quantity, Time, celsius, duration, exact, show};
 use crate::size::error::SizeError;
@@ -87,7 +87,19 @@ pub(super) fn findings(
         let finding = Finding::new(Severity::Warning, "pulse-not-checked", text);
         findings.push(finding.with_help("take an element with a pulse or overload rating, or ask its maker"));
     }
-    if first.figures.left > first.figures.below {
+    let below = first.figures.below;
+    if let Some(worst) = first.figures.worst_fault.as_ref().filter(|w| w.left > below && w.left > first.figures.left) {
+        let text = format!(
+            "With {} up to {} is left when the first design has been held, not {}: only the reading after it shows that.",
+            fault_in_words(&worst.fault),
+            show(worst.left, Direction::Up),
+            exact(below)
+        );
+        let finding = Finding::new(Severity::Warning, "not-enough-under-fault", text);
+        findings
+            .push(finding.with_help("read before anything else is done; less resistance or a longer hold leaves room"));
+    }
+    if first.figures.left > below {
         let text = format!(
             "When the first design has been held, up to {} is still at a test point other than where it is applied: it does \
              not reach what is charged there, such as one unit of a string.",
@@ -138,7 +150,8 @@ pub(super) fn assumptions(bank: &Bank, ask: &ToolAsk, applied: &Applied) -> Vec<
         "It is applied from cold, its body as warm as the air. In a row: banks like this one, each at its highest voltage, \
          and the body of one element as one first-order mass."
             .to_string(),
-        "With every part healthy: what a failed part leaves is in the plan.".to_string(),
+        "With every part healthy; what the worst failed part leaves is told with the first design, and all of them in the plan."
+            .to_string(),
     ];
     list.extend(ask.build.assumptions());
     if ask.build.margin > 0.0 {
