@@ -108,10 +108,8 @@ pub(super) fn run(typed: &ToolArgs, stdin: &mut dyn Read, output: &mut Output) -
     let (pasted, written) = (typed.given.part, typed.given.write.is_some());
     let lacking = picked.filter(|f| !f.steps.is_empty() && (pasted || written && f.placement != Placement::WithSteps));
     if let Some(figures) = lacking.filter(|_| status == 0) {
-        output.notice(&format!(
-            "The figures are those of these steps, which the procedure of the file does not have:\n{}",
-            file::steps_text(&figures.steps).trim_end()
-        ));
+        output.notice("The figures are those of these steps, which the procedure of the file does not have:");
+        output.to_paste(&file::steps_text(&figures.steps));
     }
     status
 }
