@@ -115,6 +115,17 @@ pub enum Connection {
     OpenDelta,
 }
 
+impl Connection {
+    /// The word of the bank file.
+    pub fn word(self) -> &'static str {
+        match self {
+            Connection::Delta => "delta",
+            Connection::Star => "star",
+            Connection::OpenDelta => "open-delta",
+        }
+    }
+}
+
 /// A capacitor, or an array of identical units lumped into one.
 #[derive(Debug, Clone, PartialEq)]
 pub struct Capacitor {

@@ -61,6 +61,11 @@ impl<'a> Output<'a> {
         let _ = self.stderr.write_all(report::message_text(text, self.terminal.width).as_bytes());
     }
 
+    /// Tells lines to paste on standard error, as they stand: where one breaks it would be another text.
+    pub fn to_paste(&mut self, lines: &str) {
+        let _ = self.stderr.write_all(lines.as_bytes());
+    }
+
     /// Tells what is wrong and returns `status`.
     pub fn problem(&mut self, text: &str, status: u8) -> u8 {
         self.notice(&format!("ERROR: {text}"));

@@ -6,6 +6,7 @@
 use super::body::Thermal;
 use super::case::{Start, State};
 use super::model::{Model, Parameter, PartKind};
+use super::repeated::{Followed, InARow};
 use super::scenario::Scenario;
 use super::study::greatest;
 use super::worst::Objective;
@@ -261,6 +262,19 @@ pub(crate) enum StepFigure {
         resistor: usize,
         body: Thermal,
     },
+    /// The same in the last of several such discharges in a row, from cold before the first.
+    RiseInARow {
+        resistor: usize,
+        body: Thermal,
+        row: InARow,
+    },
+    /// How long the body then has to cool until one more leaves it at `allowed` K over the air at most.
+    CoolingAfter {
+        resistor: usize,
+        body: Thermal,
+        row: InARow,
+        allowed: f64,
+    },
     /// Greatest voltage from the end of the last step on.
     Recovery {
         pair: usize,
@@ -356,8 +370,8 @@ impl Objective for ProcedureStudy<'_> {
             | StepFigure::StoredEnergy { .. } => {
                 1e-10 * model.capacitors.iter().map(|c| 0.5 * c.nominal * small * volts).sum::<f64>()
             }
-            StepFigure::BodyRise { .. } => 1e-6,
-            StepFigure::LastOver { .. } | StepFigure::ChargedTo { .. } => 0.0,
+            StepFigure::BodyRise { .. } | StepFigure::RiseInARow { .. } => 1e-6,
+            StepFigure::LastOver { .. } | StepFigure::ChargedTo { .. } | StepFigure::CoolingAfter { .. } => 0.0,
         }
     }
 
@@ -453,6 +467,12 @@ impl StepFigure {
                     rise = heated.end;
                 }
                 greatest
+            }
+            StepFigure::RiseInARow { resistor, body, row } => {
+                row.greatest(Followed { model, timeline, resistor, body })?
+            }
+            StepFigure::CoolingAfter { resistor, body, row, allowed } => {
+                row.cooling(Followed { model, timeline, resistor, body }, allowed)?
             }
             StepFigure::Recovery { pair } => {
                 let (a, b) = model.pairs[pair];

@@ -15,6 +15,7 @@ mod error;
 mod result;
 mod scan;
 mod spans;
+mod tool;
 mod trial;
 mod window;
 
@@ -22,3 +23,4 @@ pub use bleeder::{BleederAsk, BleederFigures, LimitHeld, Target, bleeder};
 pub use build::{Build, Rank};
 pub use error::SizeError;
 pub use result::{Candidate, DemandResult, Searched, SetAside, Sizing, Window};
+pub use tool::{AskedRow, FaultLeft, InARowResult, Placement, ToolAsk, ToolFigures, tool};

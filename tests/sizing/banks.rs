@@ -5,7 +5,7 @@ use ebbvolt::bank::{Bank, file, stock::Element};
 use ebbvolt::data::{Series, generic_stock};
 use ebbvolt::plan::{Options, Plan, plan};
 use ebbvolt::quantity::{Quantity, Time, Voltage};
-use ebbvolt::size::{BleederAsk, BleederFigures, Build, Sizing, Target, bleeder};
+use ebbvolt::size::{BleederAsk, BleederFigures, Build, Sizing, Target, ToolAsk, ToolFigures, bleeder, tool};
 
 pub fn bank(text: &str) -> Bank {
     file::read("bank.yaml", text.as_bytes()).unwrap_or_else(|e| panic!("{text}{e:?}")).0
@@ -52,4 +52,18 @@ pub const HEAD: &str = "ebbvolt: 1\ntag: SM-SIZE\nlocation: Saltmarsh pumping st
 /// Generic elements of a series, and nothing else asked of the build.
 pub fn of(series: Series) -> Build {
     Build { elements: generic(series), ..Build::default() }
+}
+
+pub fn tooled(bank: &Bank, ask: &ToolAsk) -> Sizing<ToolFigures> {
+    tool(bank, "", ask).unwrap_or_else(|e| panic!("{e}"))
+}
+
+pub fn seconds(s: f64) -> Option<Time> {
+    Some(Time::from_si(s))
+}
+
+/// One element as a stock of its own: exactly this value, with this rating.
+pub fn shelf(value: &str, tolerance: &str, rating: &str) -> Build {
+    let text = format!("elements: [{{name: a, value: {value}, tolerance: {tolerance}, rating: {{{rating}}}}}]\n");
+    Build { elements: elements(&text), series_up_to: 1, parallel_up_to: 1, ..Build::default() }
 }

@@ -4,4 +4,8 @@
 mod banks;
 mod exhaustive;
 mod placed;
+mod tool;
+mod tool_exhaustive;
+mod tool_placed;
+mod tool_row;
 mod window;

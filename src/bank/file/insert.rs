@@ -6,7 +6,7 @@ use super::log::Log;
 use super::source::Source;
 use super::tree::{self, Content};
 use super::write;
-use crate::bank::description::{Description, Resistor};
+use crate::bank::description::{Description, Resistor, Step};
 
 /// A resistor as an entry of a bank file's `resistors`, ready to paste: a line without indentation.
 pub fn resistor_text(resistor: &Resistor) -> String {
@@ -19,18 +19,59 @@ pub fn resistor_text(resistor: &Resistor) -> String {
 /// # Errors
 /// A sentence that says why the part can't be placed, and what to do instead.
 pub fn with_resistor(name: &str, bytes: &[u8], resistor: &Resistor) -> Result<String, String> {
-    let by_hand = |why: &str| format!("{why}; `--part` prints the part, to be put in by hand");
+    placed_with(name, bytes, resistor, &[])
+}
+
+/// The same with the steps of a procedure, for a file that has none: they come at its end.
+///
+/// # Errors
+/// As [`with_resistor`].
+pub fn with_resistor_and_steps(
+    name: &str,
+    bytes: &[u8],
+    resistor: &Resistor,
+    steps: &[Step],
+) -> Result<String, String> {
+    placed_with(name, bytes, resistor, steps)
+}
+
+/// Steps as entries of a bank file's `procedure`, ready to paste: lines without indentation.
+pub fn steps_text(steps: &[Step]) -> String {
+    steps.iter().map(|step| format!("- {}\n", write::step(step))).collect()
+}
+
+/// Why a part is not put into a file.
+pub(super) fn by_hand(why: &str) -> String {
+    format!("{why}; `--part` prints the part, to be put in by hand")
+}
+
+fn placed_with(name: &str, bytes: &[u8], resistor: &Resistor, steps: &[Step]) -> Result<String, String> {
     let mut log = Log::default();
     let source = Source::new(name, bytes).map_err(|e| by_hand(&e.text))?;
     let tree = tree::parse(&source, &mut log).ok_or_else(|| by_hand("the file can't be read"))?;
     let (text, at_head) = placed(&source, &tree, resistor).ok_or_else(|| {
         by_hand("the part can't be placed: the list `resistors` stands neither in lines of its own nor in brackets")
     })?;
-    let expected = |before: &Description| {
+    let text = match steps {
+        [] => text,
+        _ if tree.get("procedure").is_some() => return Err(by_hand("the file has a `procedure` already")),
+        _ => format!("{}\n\nprocedure:\n{}", text.trim_end(), indented(&steps_text(steps), 2)),
+    };
+    given_out(name, bytes, text, |before| {
         let mut after = before.clone();
         after.resistors.insert(if at_head { 0 } else { after.resistors.len() }, resistor.clone());
+        after.procedure.extend_from_slice(steps);
         after
-    };
+    })
+}
+
+/// A text that was made from a file, where it reads as the bank that is expected of it.
+pub(super) fn given_out(
+    name: &str,
+    bytes: &[u8],
+    text: String,
+    expected: impl Fn(&Description) -> Description,
+) -> Result<String, String> {
     let before = super::read(name, bytes).map_err(|_| by_hand("the file is no bank file"))?.0;
     match super::read(name, text.as_bytes()) {
         Ok((bank, _)) if *bank.description() == expected(before.description()) => Ok(restored(bytes, text)),
@@ -72,7 +113,7 @@ fn placed(source: &Source, tree: &tree::Node, resistor: &Resistor) -> Option<(St
 
 /// The number of lines up to the last before `before` that is neither empty nor a comment: what follows belongs to
 /// what comes after.
-fn end_of(lines: &[&str], before: usize) -> usize {
+pub(super) fn end_of(lines: &[&str], before: usize) -> usize {
     let said = |line: &&str| !line.trim().is_empty() && !line.trim_start().starts_with('#');
     lines.iter().take(before).rposition(said).map_or(0, |last| last + 1)
 }
@@ -150,6 +191,24 @@ mod tests {
             let text = format!("{BANK}{more}");
             assert!(keeps(&text, &with(&text)));
         }
+    }
+
+    #[test]
+    fn steps_come_at_the_end_of_a_file_that_has_none() {
+        let tool = Resistor { id: "T1".into(), role: Role::Tool, ..part() };
+        let (bank, _) = super::super::read(
+            "steps",
+            format!("{BANK}resistors: [{{id: T1, role: tool, value: 1 ohm}}]\nprocedure:\n  - {{step: Wait, for: 5 s}}\n  - \
+                     {{step: 'Apply: now', connect: [T1], for: 20 s, hold: {{below: 50 V}}}}\n")
+                .as_bytes(),
+        )
+        .expect("a bank");
+        let steps = &bank.description().procedure;
+        let written = |text: &str| with_resistor_and_steps("bank.yaml", text.as_bytes(), &tool, steps);
+        let after = written(&format!("{BANK}# the end")).expect("it is placed");
+        assert!(after.ends_with(&format!("\nprocedure:\n{}", indented(&steps_text(steps), 2))), "{after}");
+        assert!(after.contains("# the end") && after.contains("  - {step: \"Apply: now\", connect: [T1]"), "{after}");
+        assert!(written(&after.replace("T1", "T2")).is_err_and(|e| e.contains("`procedure` already")));
     }
 
     #[test]

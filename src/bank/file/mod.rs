@@ -5,6 +5,7 @@
 
 mod brackets;
 mod charge;
+mod exchange;
 mod insert;
 mod limits;
 mod log;
@@ -19,7 +20,8 @@ mod top;
 mod tree;
 mod write;
 
-pub use insert::{resistor_text, with_resistor};
+pub use exchange::with_resistor_exchanged;
+pub use insert::{resistor_text, steps_text, with_resistor, with_resistor_and_steps};
 pub use source::MAX_BYTES;
 pub use stock::read_stock;
 pub use write::write;

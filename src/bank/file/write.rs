@@ -307,7 +307,8 @@ fn hold(hold: &Hold) -> String {
     mapping([Some(("below", figure(hold.below, &VOLT))), hold.at.as_ref().map(|at| ("at", pair(at)))])
 }
 
-fn step(step: &Step) -> String {
+/// One entry of `procedure`, in braces.
+pub(super) fn step(step: &Step) -> String {
     let lasts = match &step.lasts {
         Lasts::For(time) => ("for", figure(*time, &SECOND)),
         Lasts::Until(until) => ("until", hold(until)),

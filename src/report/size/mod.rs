@@ -2,8 +2,10 @@
 //! tables of designs, findings, what the answer rests on. What the tables say is each job's own.
 
 mod bleeder;
+mod tool;
 
 pub use bleeder::size_bleeder;
+pub use tool::size_tool;
 
 use super::block::{Block, Grid, Labelled, Side};
 use super::json::{NotFinite, json};
@@ -91,8 +93,9 @@ fn document<F>(sizing: &Sizing<F>, told: Told) -> SizeReport {
     blocks.push(Block::List(sizing.assumptions.clone()));
     blocks.push(Block::Section("About this result"));
     blocks.push(Block::Paragraph(
-        "Times run from isolation. Times, voltages, currents, powers and losses are rounded up, allowed values down. \
-         Local electrical codes, the equipment maker's instructions and qualified persons decide."
+        "Times run from isolation, those of a tool from when it is applied. Times, voltages, currents, powers and losses \
+         are rounded up, allowed values down. Local electrical codes, the equipment maker's instructions and qualified \
+         persons decide."
             .into(),
     ));
     blocks.push(Block::Paragraph(format!("ebbvolt {}; SHA-256 of the input:", sizing.ebbvolt.version)));
