@@ -167,9 +167,8 @@ impl Timeline {
         let source = &model.sources[source];
         let run = &self.runs[stage];
         let from_empty = run.tries.first()?;
-        let series = &model.resistors[source.resistor];
-        let bank = across(from_empty, &self.map, series.b, source.b);
-        Some((bank, across(from_empty, &self.map, series.a, series.b), run.ohms[source.resistor]))
+        let bank = across(from_empty, &self.map, source.a, source.b);
+        Some((bank, across(from_empty, &self.map, source.inside, source.a), run.ohms[source.resistor]))
     }
 
     /// What is to come at a pair after the last step, from its end.

@@ -289,6 +289,7 @@ fn supply(s: &Supply) -> String {
         Some(("voltage", figure(s.voltage, &VOLT))),
         Some(("series", figure(s.series, &OHM))),
         tolerance(s.tolerance),
+        counts("array", s.array_series, s.array_parallel),
         Some(("across", pair(&s.across))),
         rating(&s.rating),
     ])
@@ -372,7 +373,7 @@ resistors:
 sinks:
   - {id: K1, kind: constant-power, value: 0.3 W, across: ["null", G], stops_below: 11.1 V, counted: true}
 supplies:
-  - {id: S1, voltage: 565.3 V, series: 0.1 kohm, tolerance: 1.7 %, across: ["null", "1"]}
+  - {id: S1, voltage: 565.3 V, series: 0.1 kohm, tolerance: 1.7 %, array: {series: 2, parallel: 3}, across: ["null", "1"]}
 test_points: [["null", G], ["1", "~x"]]
 limits:
   - {use: iec-60831-1, at: ["null", "1"], single_fault: true}
