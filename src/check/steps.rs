@@ -258,7 +258,8 @@ fn figures(procedure: &Procedure) -> Vec<StepFigure> {
     let mut figures = voltages(procedure);
     let capacitors = procedure.bank.description().capacitors.len();
     for stage in 0..procedure.stages.len() {
-        figures.extend(charging::figures(stage, procedure.new_sources(stage).into_iter()));
+        let seconds = procedure.stages[stage].duration;
+        figures.extend(charging::figures(stage, seconds, &procedure.new_sources(stage)));
         figures.push(StepFigure::ReadyEnergy { stage });
         figures.push(StepFigure::StoredEnergy { stage });
         figures.extend((0..capacitors).map(|capacitor| StepFigure::CapacitorVoltage { stage, capacitor }));

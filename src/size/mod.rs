@@ -12,6 +12,7 @@ mod bleeder;
 mod build;
 mod collision;
 mod error;
+mod precharge;
 mod result;
 mod scan;
 mod spans;
@@ -21,4 +22,7 @@ mod window;
 pub use bleeder::{BleederAsk, BleederFigures, LimitHeld, Target, bleeder};
 pub use build::{Build, Rank};
 pub use error::SizeError;
+pub use precharge::{
+    Attempts, Inrush, MainContactor, PrechargeAsk, PrechargeFigures, Repeated, Shorted, USUAL_SHARE, precharge,
+};
 pub use result::{Candidate, DemandResult, Searched, SetAside, Sizing, Window};

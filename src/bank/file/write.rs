@@ -283,16 +283,33 @@ fn sink(s: &Sink) -> String {
     ])
 }
 
-fn supply(s: &Supply) -> String {
+/// One entry of `supplies`, in braces.
+pub(super) fn supply(s: &Supply) -> String {
+    let [series, tolerance, array, rating] = series_resistance(s);
     mapping([
         Some(("id", word(&s.id))),
         Some(("voltage", figure(s.voltage, &VOLT))),
-        Some(("series", figure(s.series, &OHM))),
-        tolerance(s.tolerance),
-        counts("array", s.array_series, s.array_parallel),
+        given(series),
+        given(tolerance),
+        given(array),
         Some(("across", pair(&s.across))),
-        rating(&s.rating),
+        given(rating),
     ])
+}
+
+/// The keys that describe the series resistance of a supply; `None` for one that is left out.
+pub(super) fn series_resistance(s: &Supply) -> [(&'static str, Option<String>); 4] {
+    let text = |pair: Option<(&'static str, String)>| pair.map(|(_, text)| text);
+    [
+        ("series", Some(figure(s.series, &OHM))),
+        ("tolerance", text(tolerance(s.tolerance))),
+        ("array", text(counts("array", s.array_series, s.array_parallel))),
+        ("rating", text(rating(&s.rating))),
+    ]
+}
+
+fn given((key, text): (&'static str, Option<String>)) -> Option<(&'static str, String)> {
+    text.map(|text| (key, text))
 }
 
 fn bound(bound: &Bound) -> (&'static str, String) {
@@ -308,7 +325,8 @@ fn hold(hold: &Hold) -> String {
     mapping([Some(("below", figure(hold.below, &VOLT))), hold.at.as_ref().map(|at| ("at", pair(at)))])
 }
 
-fn step(step: &Step) -> String {
+/// One entry of `procedure`, in braces.
+pub(super) fn step(step: &Step) -> String {
     let lasts = match &step.lasts {
         Lasts::For(time) => ("for", figure(*time, &SECOND)),
         Lasts::Until(until) => ("until", hold(until)),

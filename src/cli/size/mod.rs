@@ -1,6 +1,7 @@
 //! `size`: resistors that do a job, from preferred values and parts at hand. One file per job; here is what they share.
 
 mod bleeder;
+mod precharge;
 mod typed;
 
 use super::input::{self, Input};
@@ -34,12 +35,15 @@ pub(super) struct SizeArgs {
 enum SizeJob {
     /// A resistor that drains the bank for good, from isolation on
     Bleeder(Box<bleeder::BleederArgs>),
+    /// The resistor through which a supply charges the bank before its main contactor closes
+    Precharge(Box<precharge::PrechargeArgs>),
 }
 
 /// Reads, searches and prints.
 pub(super) fn run(typed: &SizeArgs, stdin: &mut dyn Read, output: &mut Output) -> u8 {
     match &typed.job {
         SizeJob::Bleeder(typed) => bleeder::run(typed, stdin, output),
+        SizeJob::Precharge(typed) => precharge::run(typed, stdin, output),
     }
 }
 
