@@ -6,5 +6,6 @@ mod json;
 mod review;
 mod run;
 mod size;
+mod size_precharge;
 mod text;
 mod verdict;

@@ -4,4 +4,5 @@
 mod banks;
 mod exhaustive;
 mod placed;
+mod precharge;
 mod window;
