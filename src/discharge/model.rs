@@ -213,6 +213,12 @@ impl Model {
         })
     }
 
+    /// One more node, whatever names there are.
+    pub fn new_node(&mut self, name: &str) -> usize {
+        self.node_names.push(name.to_string());
+        self.node_names.len() - 1
+    }
+
     /// A node by name, where there is one.
     pub fn find_node(&self, name: &str) -> Option<usize> {
         self.node_names.iter().position(|n| n == name)
@@ -247,7 +253,7 @@ impl Model {
 
     fn supply(&mut self, s: &Supply) {
         let (a, b) = (self.node(&s.across[0]), self.node(&s.across[1]));
-        let inside = self.node(&format!("{} inside", s.id));
+        let inside = self.new_node(&format!("{} inside", s.id));
         let parameter = self.parameter(&s.id, s.tolerance);
         let nominal = s.series.si() * f64::from(s.array_series) / f64::from(s.array_parallel);
         let kind = PartKind::Switched;

@@ -68,7 +68,7 @@ fn the_text_says_what_it_is_within_80_columns() {
         "WARNING",
         "This charges the bank",
         "shorted bank",
-        "3 charges from empty, one every 1 min",
+        "3 charges from empty, one every 60 s",
         "over 20 mohm",
         "connected to an empty bank",
         "SHA-256",
@@ -162,7 +162,8 @@ fn an_array_as_series_resistance_is_understood_by_plan_and_its_errors_have_place
     // One element high and the other of its string low: 750 V * 1.05/2.
     assert!(supply["element_voltage_v"].as_f64().is_some_and(|v| (v - 393.75).abs() < 1e-6), "{supply:#}");
     // All of the array at its lowest: 750 V / 190 ohm, a third of it in each string.
-    let part = plan["steps"][0]["parts"].as_array().expect("a list").iter().find(|p| p["id"] == "S1").expect("it is on");
+    let part =
+        plan["steps"][0]["parts"].as_array().expect("a list").iter().find(|p| p["id"] == "S1").expect("it is on");
     assert!(part["peak_current_a"].as_f64().is_some_and(|a| (a - 750.0 / 190.0 / 3.0).abs() < 1e-9), "{part:#}");
     let wrong = text.replace("{series: 2, parallel: 3}", "{series: 0, parallel: 3}");
     let refused = run_with(&["plan", "-"], wrong.as_bytes());

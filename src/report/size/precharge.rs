@@ -75,19 +75,15 @@ fn designs(candidates: &[Candidate<PrechargeFigures>]) -> Grid {
         (if share.is_some() { "In time" } else { "Reached" }, Side::Right),
         ("Current", Side::Right),
     ];
-    if main {
-        columns.push(("Inrush", Side::Right));
-    }
-    columns.push(("Energy", Side::Right));
+    // A charge leaves much the same energy in every resistor, so that it gives way where columns are short.
+    columns.push((if main { "Inrush" } else { "Energy" }, Side::Right));
     let mut grid = Grid::new(&columns);
     for c in candidates {
         let f = &c.figures;
         let charge = if share.is_some() { wait(f.to_share_slowest) } else { down(f.reached_lowest) };
         let mut row = vec![rank(c), c.element.clone(), value(c.value), strings(c), charge, up(f.peak_current)];
-        if main {
-            row.push(f.inrush.as_ref().map_or_else(String::new, |i| up(i.current)));
-        }
-        row.push(up(f.attempt_energy));
+        let last = f.inrush.as_ref().map(|i| up(i.current));
+        row.push(if main { last.unwrap_or_default() } else { up(f.attempt_energy) });
         grid.row(row);
     }
     grid
@@ -104,7 +100,6 @@ fn elements(candidates: &[Candidate<PrechargeFigures>]) -> Grid {
         ("Voltage", Side::Right),
         ("Body", Side::Right),
         ("Shorted", Side::Right),
-        ("All of it", Side::Right),
     ];
     let bought = bought(&mut columns, candidates);
     let mut grid = Grid::new(&columns);
@@ -124,7 +119,6 @@ fn elements(candidates: &[Candidate<PrechargeFigures>]) -> Grid {
             of(c.element_voltage.map(up), c.allowed_voltage.map(down)),
             c.body_temperature.map_or_else(String::new, |t| of(Some(up(t)), allowed)),
             too_hot(&c.figures.shorted),
-            value(c.resistance),
         ];
         row.extend(bought(c));
         grid.row(row);

@@ -4,9 +4,12 @@ use crate::bank::Bank;
 use crate::bank::description::{Description, Lasts, Step, Supply};
 use crate::check::{EngineError, Procedure, StepAnswers};
 use crate::discharge::{Model, StepFigure};
-use crate::quantity::{Quantity, Resistance, Time};
+use crate::quantity::{Quantity, Time};
 use crate::size::error::SizeError;
 use crate::size::scan::Probe;
+
+/// Less resistance than this, in ohm, is looked at as this much: the engine certifies its figures from here on.
+pub(super) const LEAST: f64 = 1e-3;
 
 /// Two steps that charge a bank through a supply.
 pub(super) fn steps(supply: &str, within: Time) -> Vec<Step> {
@@ -137,7 +140,7 @@ impl Probe for Charge {
             return Ok(Point { seconds, short: volts, settles_short: volts, current: 0.0, power: 0.0, energy: 0.0 });
         }
         let mut model = self.model.clone();
-        model.resistors[model.sources[self.source].resistor].nominal = Resistance::from_si(ohms).si();
+        model.resistors[model.sources[self.source].resistor].nominal = ohms.max(LEAST);
         let figures = self.figures();
         let answers = self.answers(&model, figures.clone())?;
         Ok(point(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>()))

@@ -1,6 +1,6 @@
 //! What is demanded of a precharge resistor, how a point compares with it, and what each demand would have to allow.
 
-use super::charge::Point;
+use super::charge::{LEAST, Point};
 use super::request::PrechargeAsk;
 use crate::quantity::{Current, Direction, Quantity, Ratio, Resistance, Time, Voltage, duration, exact, show};
 use crate::size::scan::{Demand, Measure, ratio};
@@ -104,7 +104,7 @@ pub(super) fn instead(demand: &Demand<Kind>) -> Option<String> {
 /// found there.
 pub(super) fn nowhere(demand: &Demand<Kind>, least: Option<&(f64, Point)>, volts: f64) -> Option<String> {
     let (ohms, point) = least?;
-    let at = show(Resistance::from_si(*ohms), Direction::Up);
+    let at = show(Resistance::from_si(ohms.max(LEAST)), Direction::Up);
     let ways = way_for(demand, point, volts);
     Some(format!(
         "Even with {at} it takes {}. Look at what the bank itself puts in the way: series resistors in front of its \
