@@ -3,7 +3,8 @@
 use crate::bank::Bank;
 use crate::bank::description::{Description, Lasts, Step, Supply};
 use crate::check::{EngineError, Procedure, StepAnswers};
-use crate::discharge::{Model, StepFigure};
+use crate::circuit::CircuitError;
+use crate::discharge::{Model, StepFigure, element_model};
 use crate::quantity::{Quantity, Time};
 use crate::size::error::SizeError;
 use crate::size::scan::Probe;
@@ -32,13 +33,16 @@ pub(super) fn steps(supply: &str, within: Time) -> Vec<Step> {
 pub(super) struct Charge {
     bank: Bank,
     model: Model,
-    source: usize,
     share: Option<f64>,
     within: f64,
 }
 
+/// The one supply of the bank that is charged, and the step that connects it.
+const SOURCE: usize = 0;
+const STAGE: usize = 0;
+
 /// What was found at one actual resistance, in SI base units, greatest over the tolerances of all other parts.
-#[derive(Debug, Clone, Copy, PartialEq)]
+#[derive(Debug, Clone, Copy, Default, PartialEq)]
 pub(super) struct Point {
     /// Until the share is reached for good; infinite for never, and 0 where none was asked for.
     pub seconds: f64,
@@ -70,12 +74,12 @@ impl Charge {
         alone.test_points = Some(vec![supply.across.clone()]);
         let bank = Bank::new(alone).map_err(SizeError::Placed)?.expanded();
         let model = Model::new(&bank).map_err(EngineError::of("absorption"))?;
-        Ok(Charge { bank, model, source: 0, share, within: within.si() })
+        Ok(Charge { bank, model, share, within: within.si() })
     }
 
     /// The figures of the charge, in the order of [`Point`].
     fn figures(&self) -> Vec<StepFigure> {
-        let (stage, source, resistor) = (0, self.source, self.model.sources[self.source].resistor);
+        let (stage, source, resistor) = (STAGE, SOURCE, self.model.sources[SOURCE].resistor);
         let short = |after| StepFigure::ShortOfSupply { stage, source, after };
         let mut figures = vec![
             short(self.within),
@@ -90,7 +94,8 @@ impl Charge {
 
     fn answers(&self, model: &Model, figures: Vec<StepFigure>) -> Result<StepAnswers, EngineError> {
         let Some(procedure) = Procedure::resolve(&self.bank, model)? else {
-            return Err(EngineError::of("the charge")(crate::circuit::CircuitError::SearchNotClosed));
+            // The bank was made with steps.
+            return Err(EngineError::of("a charge without steps")(CircuitError::SearchNotClosed));
         };
         procedure.healthy(model, figures)
     }
@@ -110,7 +115,7 @@ impl Charge {
         supply: &Supply,
         figures: impl Fn(usize) -> Vec<StepFigure>,
     ) -> Result<Vec<f64>, EngineError> {
-        let Some((model, element)) = crate::discharge::element_model(&self.model, &supply.resistor()) else {
+        let Some((model, element)) = element_model(&self.model, &supply.resistor()) else {
             return Ok(Vec::new());
         };
         let figures = figures(element);
@@ -134,13 +139,13 @@ impl Probe for Charge {
     type Point = Point;
 
     fn at(&self, ohms: f64) -> Result<Point, EngineError> {
-        let volts = self.model.sources[self.source].volts;
+        let volts = self.model.sources[SOURCE].volts;
         if ohms.is_infinite() {
             let seconds = if self.share.is_some() { f64::INFINITY } else { 0.0 };
             return Ok(Point { seconds, short: volts, settles_short: volts, current: 0.0, power: 0.0, energy: 0.0 });
         }
         let mut model = self.model.clone();
-        model.resistors[model.sources[self.source].resistor].nominal = ohms.max(LEAST);
+        model.resistors[model.sources[SOURCE].resistor].nominal = ohms.max(LEAST);
         let figures = self.figures();
         let answers = self.answers(&model, figures.clone())?;
         Ok(point(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>()))

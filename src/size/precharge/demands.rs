@@ -51,13 +51,9 @@ pub(super) fn demands(ask: &PrechargeAsk, share: Option<f64>) -> Vec<Demand<Kind
     reached.into_iter().chain(inrush).chain(current).collect()
 }
 
-/// A time that was typed: `2 s` rather than `2.00 s`.
+/// A time as it was typed: `2 s` rather than `2.00 s`.
 fn whole(time: Time) -> String {
-    let text = duration(time, Direction::Up);
-    match text.split_once('.').and_then(|(whole, rest)| Some((whole, rest.split_once(' ')?))) {
-        Some((whole, (fraction, unit))) if fraction.trim_matches('0').is_empty() => format!("{whole} {unit}"),
-        _ => text,
-    }
+    if time.si() < 120.0 { exact(time) } else { duration(time, Direction::Up) }
 }
 
 /// A share that is really reached, never shown higher.

@@ -76,19 +76,8 @@ impl Point {
 /// What is found at a resistance, between the two that were looked at on either side.
 fn between(scan: &Scan<'_, Charge>, ohms: f64) -> Point {
     let points = scan.points();
-    let after = points.partition_point(|(at, _)| *at < ohms).clamp(1, points.len().saturating_sub(1).max(1));
-    let (Some((low, a)), Some((high, b))) = (points.get(after - 1), points.get(after)) else {
-        let nothing = 0.0;
-        let found = points.first().map(|(_, p)| *p);
-        return found.unwrap_or(Point {
-            seconds: nothing,
-            short: nothing,
-            settles_short: nothing,
-            current: nothing,
-            power: nothing,
-            energy: nothing,
-        });
-    };
+    let after = points.partition_point(|(at, _)| *at < ohms).clamp(1, points.len().max(2) - 1);
+    let (Some((low, a)), Some((high, b))) = (points.get(after - 1), points.get(after)) else { return Point::default() };
     let share = (ohms / low).ln() / (high / low).ln();
     let mix = |x: f64, y: f64| if x > 0.0 && y > 0.0 { x * (y / x).powf(share) } else { x.min(y) };
     Point {

@@ -6,7 +6,7 @@ use super::request::PrechargeAsk;
 use super::result::{Inrush, PrechargeFigures, Repeated};
 use super::{Job, placed};
 use crate::bank::Bank;
-use crate::bank::description::Supply;
+use crate::bank::description::{Step, Supply};
 use crate::bank::file::{steps_text, supply_text};
 use crate::check::{Check, EngineError, Verdict, body, derated};
 use crate::discharge::StepFigure;
@@ -78,13 +78,9 @@ fn figures(
     ask: &PrechargeAsk,
     design: &Design,
     supply: &Supply,
-    own_steps: Vec<crate::bank::description::Step>,
-) -> Result<PrechargeFigures, EngineError> {
-    let charge = Charge::new(&job.description, supply, job.share, ask.within).map_err(|e| match e {
-        SizeError::Engine(e) => e,
-        // The scan was made with the same bank.
-        _ => EngineError::of("the charge")(crate::circuit::CircuitError::SearchNotClosed),
-    })?;
+    own_steps: Vec<Step>,
+) -> Result<PrechargeFigures, SizeError> {
+    let charge = Charge::new(&placed(&job.description, supply), supply, job.share, ask.within)?;
     let (worst, nominal) = charge.both()?;
     let volts = supply.voltage.si();
     let finite = |t: f64| (job.share.is_some() && t.is_finite()).then(|| Time::from_si(t));
