@@ -9,8 +9,14 @@ use crate::quantity::{Quantity, Time};
 use crate::size::error::SizeError;
 use crate::size::scan::Probe;
 
-/// Less resistance than this, in ohm, is looked at as this much: the engine certifies its figures from here on.
-pub(super) const LEAST: f64 = 1e-3;
+/// No network of the engine has less resistance than this, in ohm.
+const LEAST: f64 = 1e-3;
+
+/// A supply that holds a charged bank through little resistance has a current that is the small difference of two great
+/// voltages: over T seconds rounding moves its energy by some 2e-16 V^2 T/R, which has to stay far below the 1e-9 to which
+/// energies balance, of C V^2/2 and what the bank's own resistors take. Below this share of T over both no resistance is
+/// looked at.
+const ROUNDING: f64 = 1e-5;
 
 /// Two steps that charge a bank through a supply.
 pub(super) fn steps(supply: &str, within: Time) -> Vec<Step> {
@@ -35,6 +41,8 @@ pub(super) struct Charge {
     model: Model,
     share: Option<f64>,
     within: f64,
+    /// Less resistance in ohm than this is looked at as this much.
+    pub least: f64,
 }
 
 /// The one supply of the bank that is charged, and the step that connects it.
@@ -74,7 +82,18 @@ impl Charge {
         alone.test_points = Some(vec![supply.across.clone()]);
         let bank = Bank::new(alone).map_err(SizeError::Placed)?.expanded();
         let model = Model::new(&bank).map_err(EngineError::of("absorption"))?;
-        Ok(Charge { bank, model, share, within: within.si() })
+        Ok(Charge { bank, model, share, within: within.si(), least: LEAST })
+    }
+
+    /// The same with the least resistance that the engine can certify over `seconds`; `middle` is one that it can.
+    pub fn certified(mut self, middle: f64, seconds: f64) -> Result<Self, EngineError> {
+        let farad: f64 = self.model.capacitors.iter().map(|c| c.nominal).sum();
+        let volts = self.model.sources[SOURCE].volts;
+        let short = self.at(middle)?.settles_short.clamp(0.0, volts);
+        // What the bank's own resistors come to: with `middle` in front they leave the pair so much.
+        let siemens = short / (middle * (volts - short));
+        self.least = (ROUNDING * seconds / (0.5 * farad + seconds * siemens)).max(LEAST);
+        Ok(self)
     }
 
     /// The figures of the charge, in the order of [`Point`].
@@ -145,7 +164,7 @@ impl Probe for Charge {
             return Ok(Point { seconds, short: volts, settles_short: volts, current: 0.0, power: 0.0, energy: 0.0 });
         }
         let mut model = self.model.clone();
-        model.resistors[model.sources[SOURCE].resistor].nominal = ohms.max(LEAST);
+        model.resistors[model.sources[SOURCE].resistor].nominal = ohms.max(self.least);
         let figures = self.figures();
         let answers = self.answers(&model, figures.clone())?;
         Ok(point(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>()))

@@ -1,6 +1,6 @@
 //! What is demanded of a precharge resistor, how a point compares with it, and what each demand would have to allow.
 
-use super::charge::{LEAST, Point};
+use super::charge::Point;
 use super::request::PrechargeAsk;
 use crate::quantity::{Current, Direction, Quantity, Ratio, Resistance, Time, Voltage, duration, exact, show};
 use crate::size::scan::{Demand, Measure, ratio};
@@ -96,11 +96,10 @@ pub(super) fn instead(demand: &Demand<Kind>) -> Option<String> {
         .then(|| "a charge in two stages, or a supply that limits its own current".to_string())
 }
 
-/// What to look at where nothing meets a demand. `least` is the least resistance that was looked at, with what was
-/// found there.
-pub(super) fn nowhere(demand: &Demand<Kind>, least: Option<&(f64, Point)>, volts: f64) -> Option<String> {
-    let (ohms, point) = least?;
-    let at = show(Resistance::from_si(ohms.max(LEAST)), Direction::Up);
+/// What to look at where nothing meets a demand: `point` was found at the `least` resistance that was looked at.
+pub(super) fn nowhere(demand: &Demand<Kind>, least: f64, point: Option<&Point>, volts: f64) -> Option<String> {
+    let point = point?;
+    let at = show(Resistance::from_si(least), Direction::Up);
     let ways = way_for(demand, point, volts);
     Some(format!(
         "Even with {at} it takes {}. Look at what the bank itself puts in the way: series resistors in front of its \

@@ -19,12 +19,16 @@ const SLACK: f64 = 0.05;
 
 /// What one element of a design would clearly carry too much of.
 pub(super) fn overload(
+    charge: &Charge,
     scan: &Scan<'_, Charge>,
     ask: &PrechargeAsk,
     ambient: Temperature,
     design: &Design,
     element: &Element,
 ) -> Option<&'static str> {
+    if design.lowest < charge.least {
+        return Some("far less resistance than is of use");
+    }
     let ends = [between(scan, design.lowest), between(scan, design.highest)];
     let volts = ends.iter().map(|p| (p.power * p.resistance()).sqrt()).fold(0.0, f64::max) * (1.0 - SLACK);
     let joule = ends.iter().map(|p| p.energy).fold(f64::INFINITY, f64::min) * (1.0 - SLACK) / f64::from(design.count());

@@ -20,6 +20,7 @@ use super::spans::Spans;
 use super::trial::planned;
 use super::window::{demand_results, nothing_fits, searched, window_result};
 use crate::bank::Bank;
+use crate::bank::description::Lasts;
 use crate::bank::stock::Element;
 use crate::finding::{Finding, Severity};
 use crate::plan::{ChargedTo, Stamp};
@@ -59,17 +60,19 @@ pub fn precharge(bank: &Bank, input_sha256: &str, ask: &PrechargeAsk) -> Result<
     let Job { description, supply, share, ambient, .. } = &job;
     let volts = supply.voltage.si();
     let demands = demands(ask, *share);
-    let charge = Charge::new(&placed(description, supply), supply, *share, ask.within)?;
-    let scan = Scan::around(middle(&job, ask), &charge, &demands)?;
+    let middle = middle(&job, ask);
+    let charge =
+        Charge::new(&placed(description, supply), supply, *share, ask.within)?.certified(middle, longest(&job, ask))?;
+    let scan = Scan::around(middle, &charge, &demands)?;
     let met: Vec<Spans> = demands.iter().map(|d| scan.spans(d)).collect::<Result<_, SizeError>>()?;
     let window = met.iter().fold(Spans::all(), |w, s| w.and(s));
-    let overload = |design: &Design, element: &Element| load::overload(&scan, ask, *ambient, design, element);
+    let overload = |design: &Design, element: &Element| load::overload(&charge, &scan, ask, *ambient, design, element);
     let found = listed(&ask.build, |_| window.clone(), overload);
     let (candidates, refused) = planned(&ask.build, &found, |design: &Design| tried(&job, ask, design))?;
 
     let mut findings = Vec::new();
     if window.is_empty() {
-        let least = scan.points().first();
+        let point = scan.points().first().map(|(_, point)| point);
         findings.extend(collision::explained(
             &demands,
             &met,
@@ -77,7 +80,7 @@ pub fn precharge(bank: &Bank, input_sha256: &str, ask: &PrechargeAsk) -> Result<
             &Ways {
                 allow: &|demand, point| way_for(demand, point, volts),
                 instead: &instead,
-                nowhere: &|demand| nowhere(demand, least, volts),
+                nowhere: &|demand| nowhere(demand, charge.least, point, volts),
             },
         )?);
     } else if candidates.is_empty() {
@@ -118,6 +121,15 @@ fn middle(job: &Job, ask: &PrechargeAsk) -> f64 {
     let farad: f64 = capacitors.map(|c| c.value.si() * f64::from(c.parallel) / f64::from(c.series)).sum();
     let share = job.share.unwrap_or(USUAL_SHARE);
     ask.within.si() / (farad * -(-share).ln_1p())
+}
+
+/// How long the supply may be connected in a trial's plan, in second: for the precharge, or in the file's own steps.
+fn longest(job: &Job, ask: &PrechargeAsk) -> f64 {
+    let steps = job.description.procedure.iter().map(|step| match step.lasts {
+        Lasts::For(time) => time.si(),
+        Lasts::Until(_) => 0.0,
+    });
+    steps.sum::<f64>().max(ask.within.si())
 }
 
 /// What the file's voltages say of each other.
