@@ -44,9 +44,10 @@ fn what_is_found_ends_with_0_and_nothing_with_1() {
     let (status, none) = json(&["--within", "2s", "--max-current", "3A"], &supplied());
     assert_eq!((status, codes(&none)), (1, vec!["demands-collide"]));
     assert!(none["findings"][0]["help"].as_str().is_some_and(|help| help.contains("two stages")), "{none:#}");
-    // Twenty charges a minute for an hour.
-    let (status, hot) = json(&["--within", "2s", "--attempts", "1200", "--every", "3s"], &supplied());
-    assert_eq!((status, codes(&hot)), (1, vec!["no-design"]), "{hot:#}");
+    // One element alone would carry too much.
+    let (status, none) = json(&["--within", "2s", "--series-up-to", "1", "--parallel-up-to", "1"], &supplied());
+    assert_eq!((status, codes(&none)), (1, vec!["no-design"]), "{none:#}");
+    assert!(none["searched"]["set_aside"].as_array().is_some_and(|set| !set.is_empty()), "{none:#}");
 }
 
 #[test]
@@ -174,8 +175,9 @@ fn an_array_as_series_resistance_is_understood_by_plan_and_its_errors_have_place
 }
 
 #[test]
-fn every_demo_bank_is_taken_and_a_supply_of_three_phases_as_well() {
-    for path in demo_banks() {
+fn demo_banks_are_taken_with_dielectrics_and_with_three_phases() {
+    let taken = ["fast-charger.yaml", "power-factor.yaml", "pulse-capacitor.yaml"];
+    for path in demo_banks().iter().filter(|path| taken.iter().any(|name| path.ends_with(name))) {
         let name = path.to_string_lossy().into_owned();
         let run = run(&["size", "precharge", &name, "--within", "5s", "--show", "1"]);
         assert!(run.status <= 1 && run.err.is_empty(), "{name}: {} {}", run.status, run.err);
