@@ -197,7 +197,7 @@ fn assumptions(bank: &Bank, ask: &PrechargeAsk, job: &Job) -> Vec<String> {
     }
     list.push(
         "A shorted bank: all of the supply's voltage across the resistor, from the air's temperature, until somebody \
-         or something opens."
+         or something opens; told by the body's heating alone, not by the overload rating."
             .into(),
     );
     if ask.build.margin > 0.0 {
