@@ -290,14 +290,37 @@ pub struct Supply {
     pub id: String,
     /// Its open-circuit voltage.
     pub voltage: Voltage,
-    /// Its series (precharge) resistance.
+    /// ONE element of its series (precharge) resistance.
     pub series: Resistance,
-    /// Tolerance of the series resistance.
+    /// Tolerance of an element's value.
     pub tolerance: Option<Tolerance>,
+    /// Elements in series in each string of the series resistance.
+    pub array_series: u32,
+    /// Strings in parallel of the series resistance.
+    pub array_parallel: u32,
     /// Its two nodes.
     pub across: Pair,
-    /// Ratings of the series resistance.
+    /// Ratings of one element of the series resistance.
     pub rating: Rating,
+}
+
+impl Supply {
+    /// The series resistance as a resistor, under the name of the supply.
+    pub fn resistor(&self) -> Resistor {
+        Resistor {
+            id: self.id.clone(),
+            role: Role::Series,
+            value: self.series,
+            tolerance: self.tolerance,
+            tempco: None,
+            ageing: None,
+            across: self.across.clone(),
+            series: self.array_series,
+            parallel: self.array_parallel,
+            rating: self.rating,
+            phases: None,
+        }
+    }
 }
 
 /// A limit that the bank has to meet.

@@ -16,6 +16,12 @@ pub struct Charging {
     /// Its voltage.
     #[serde(rename = "voltage_v", serialize_with = "si")]
     pub voltage: Voltage,
+    /// What an empty bank has come to at the step's end, with every value nominal.
+    #[serde(rename = "reached_nominal_v", serialize_with = "si")]
+    pub reached_nominal: Voltage,
+    /// The least of it over the tolerance box.
+    #[serde(rename = "reached_lowest_v", serialize_with = "si")]
+    pub reached_lowest: Voltage,
     /// The moments at which the bank has come to a share of that.
     pub moments: Vec<ChargingMoment>,
 }
@@ -46,9 +52,13 @@ pub struct ChargingMoment {
     pub charge: Option<Charge>,
 }
 
-/// What has to be known of the supplies that a step connects.
-pub(super) fn figures(stage: usize, sources: impl Iterator<Item = usize>) -> Vec<StepFigure> {
-    sources.flat_map(|source| SHARES.map(|share| StepFigure::ChargedTo { stage, source, share })).collect()
+/// What has to be known of the supplies that a step of so many seconds connects.
+pub(super) fn figures(stage: usize, seconds: f64, sources: &[usize]) -> Vec<StepFigure> {
+    let of = |source: usize| {
+        let moments = SHARES.map(|share| StepFigure::ChargedTo { stage, source, share });
+        moments.into_iter().chain([StepFigure::ShortOfSupply { stage, source, after: seconds }])
+    };
+    sources.iter().flat_map(|source| of(*source)).collect()
 }
 
 /// The charge by every supply that a step connects.
@@ -76,9 +86,13 @@ pub(super) fn charging(check: &StepCheck, stage: usize, sources: &[usize]) -> Re
                 charge: at.map(|((_, series, ohm), t)| Charge::from_si(series.integral(t) / ohm)),
             }
         };
+        let volts = model.sources[source].volts;
+        let short = StepFigure::ShortOfSupply { stage, source, after: procedure.stages[stage].duration };
         Charging {
             supply: model.sources[source].id.clone(),
-            voltage: Voltage::from_si(model.sources[source].volts),
+            voltage: Voltage::from_si(volts),
+            reached_nominal: Voltage::from_si(volts - check.healthy.nominal(short)),
+            reached_lowest: Voltage::from_si(volts - check.healthy.worst(short)),
             moments: SHARES.into_iter().map(moment).collect(),
         }
     };

@@ -416,7 +416,7 @@ fn tools(bank: &Bank, model: &Model, procedure: Option<&Procedure>) -> Vec<Tool>
     let description = bank.description();
     let tools = description.resistors.iter().filter(|r| r.role == crate::bank::description::Role::Tool);
     let tools = tools.map(|r| (&r.id, r.series * r.parallel, r.rating));
-    let all = tools.chain(description.supplies.iter().map(|s| (&s.id, 1, s.rating)));
+    let all = tools.chain(description.supplies.iter().map(|s| (&s.id, s.array_series * s.array_parallel, s.rating)));
     all.filter_map(|(id, elements, rating)| {
         let resistor = model.find_resistor(id).filter(|r| procedure.ever_connects(*r))?;
         // The thermal resistance is that of one element; the model's part is all of them.

@@ -197,7 +197,7 @@ impl ResistorChecks<'_> {
             self.fault_findings(resistor, &result, faults, findings);
             results.push(result);
         }
-        for result in self.supplies(through) {
+        for result in self.supplies(through)? {
             rating_findings(&result, findings);
             results.push(result);
         }
@@ -222,7 +222,8 @@ impl ResistorChecks<'_> {
     fn answers_through(&self, procedure: &Procedure) -> Result<StepAnswers, EngineError> {
         let description = self.bank.description();
         let single = description.resistors.iter().filter(|r| is_single(r)).map(|r| (&r.id, &r.rating));
-        let supplies = description.supplies.iter().map(|s| (&s.id, &s.rating));
+        let alone = |s: &&Supply| s.array_series == 1 && s.array_parallel == 1;
+        let supplies = description.supplies.iter().filter(alone).map(|s| (&s.id, &s.rating));
         let figures = single
             .chain(supplies)
             .filter_map(|(id, rating)| Some(load_figures_through(self.model.find_resistor(id)?, rating)))
@@ -239,7 +240,20 @@ impl ResistorChecks<'_> {
     ) -> Result<Option<Load>, EngineError> {
         let always = resistor.role.always_connected();
         let there = |i: &usize| always || procedure.ever_connects(*i);
-        let Some(index) = self.model.find_resistor(&resistor.id).filter(there) else { return Ok(None) };
+        match self.model.find_resistor(&resistor.id).filter(there) {
+            Some(index) => self.borne(resistor, index, procedure, single),
+            None => Ok(None),
+        }
+    }
+
+    /// What one element bears. A single element stands in the answers that all have in common; an array is opened up.
+    fn borne(
+        &self,
+        resistor: &Resistor,
+        index: usize,
+        procedure: &Procedure,
+        single: &StepAnswers,
+    ) -> Result<Option<Load>, EngineError> {
         let figures = load_figures_through(index, &resistor.rating);
         if is_single(resistor) {
             return Ok(Some(Load::through(&figures, single)));
@@ -249,26 +263,17 @@ impl ResistorChecks<'_> {
     }
 
     /// The series resistances of supplies that a step connects.
-    fn supplies(&self, procedure: Option<(&Procedure, &StepAnswers)>) -> Vec<ResistorResult> {
+    fn supplies(&self, through: Option<(&Procedure, &StepAnswers)>) -> Result<Vec<ResistorResult>, EngineError> {
         let one = |supply: &Supply| {
-            let index = self.model.find_resistor(&supply.id).zip(procedure).filter(|(i, (p, _))| p.ever_connects(*i));
-            let load = index.map(|(i, (_, single))| Load::through(&load_figures_through(i, &supply.rating), single));
-            let part = Resistor {
-                id: supply.id.clone(),
-                role: Role::Series,
-                value: supply.series,
-                tolerance: supply.tolerance,
-                tempco: None,
-                ageing: None,
-                across: supply.across.clone(),
-                series: 1,
-                parallel: 1,
-                rating: supply.rating,
-                phases: None,
+            let part = supply.resistor();
+            let index = self.model.find_resistor(&part.id).zip(through).filter(|(i, (p, _))| p.ever_connects(*i));
+            let load = match index {
+                Some((index, (procedure, single))) => self.borne(&part, index, procedure, single)?,
+                None => None,
             };
             let mut result = self.result(&part, load.as_ref());
             result.checks.retain(|check| check.check != "continuous power");
-            ResistorResult { role: "supply", continuous_power: None, ..result }
+            Ok(ResistorResult { role: "supply", continuous_power: None, ..result })
         };
         self.bank.description().supplies.iter().map(one).collect()
     }

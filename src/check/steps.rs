@@ -159,8 +159,7 @@ impl<'a> StepCheck<'a> {
     /// Figures of ONE element, all elements of an array at one value.
     fn part(&self, stage: usize, resistor: usize) -> StepPart {
         let part = &self.procedure.model.resistors[resistor];
-        let described = self.procedure.bank.description().resistors.iter().find(|r| r.id == part.id);
-        let (series, parallel) = described.map_or((1.0, 1.0), |r| (f64::from(r.series), f64::from(r.parallel)));
+        let (series, parallel) = self.array(&part.id);
         let worst = |figure| self.healthy.worst(figure);
         StepPart {
             id: part.id.clone(),
@@ -168,6 +167,15 @@ impl<'a> StepCheck<'a> {
             peak_power: Power::from_si(worst(StepFigure::Power { stage, resistor }) / (series * parallel)),
             energy: Energy::from_si(worst(StepFigure::Energy { stage, resistor }) / (series * parallel)),
         }
+    }
+
+    /// How many elements in series and in parallel a resistor or the series resistance of a supply has.
+    fn array(&self, id: &str) -> (f64, f64) {
+        let description = self.procedure.bank.description();
+        let resistors = description.resistors.iter().map(|r| (&r.id, r.series, r.parallel));
+        let supplies = description.supplies.iter().map(|s| (&s.id, s.array_series, s.array_parallel));
+        let found = resistors.chain(supplies).find(|(of, _, _)| *of == id);
+        found.map_or((1.0, 1.0), |(_, series, parallel)| (f64::from(series), f64::from(parallel)))
     }
 
     fn under_faults(&self, stage: usize, waits: &[Wait]) -> Vec<StepFault> {
@@ -250,7 +258,8 @@ fn figures(procedure: &Procedure) -> Vec<StepFigure> {
     let mut figures = voltages(procedure);
     let capacitors = procedure.bank.description().capacitors.len();
     for stage in 0..procedure.stages.len() {
-        figures.extend(charging::figures(stage, procedure.new_sources(stage).into_iter()));
+        let seconds = procedure.stages[stage].duration;
+        figures.extend(charging::figures(stage, seconds, &procedure.new_sources(stage)));
         figures.push(StepFigure::ReadyEnergy { stage });
         figures.push(StepFigure::StoredEnergy { stage });
         figures.extend((0..capacitors).map(|capacitor| StepFigure::CapacitorVoltage { stage, capacitor }));

@@ -35,6 +35,22 @@ impl Thermal {
         Ok(body)
     }
 
+    /// The greatest rise during the last of several equal runs: `volts` across `ohms` for `time` seconds each, one
+    /// starting `every` seconds after the other, the first from the air's temperature, nothing in between.
+    ///
+    /// The body is linear, so what earlier runs left adds up: with `left` the rise that one run leaves at the start of
+    /// the next, the last of n starts from left (1 + a + ... + a^(n-2)), a = exp(-every / time constant).
+    pub fn repeated(&self, volts: &Course, ohms: f64, time: f64, runs: u32, every: f64) -> Result<f64, CircuitError> {
+        let first = self.heated(0.0, volts, ohms, time)?;
+        if runs < 2 {
+            return Ok(first.greatest);
+        }
+        let left = first.end * (-(every - time) / self.time_constant).exp();
+        let per_run = every / self.time_constant;
+        let start = left * (-per_run * f64::from(runs - 1)).exp_m1() / (-per_run).exp_m1();
+        Ok(self.heated(start, volts, ohms, time)?.greatest)
+    }
+
     fn through(&self, before: Heated, volts: &ExpSum, ohms: f64, time: f64) -> Result<Heated, CircuitError> {
         if volts.is_driven() {
             return Ok(self.while_a_sink_draws(before, volts, ohms, time));
@@ -109,6 +125,27 @@ mod tests {
         let thermal = Thermal { kelvin_per_watt: 4.0, time_constant: 90.0 };
         let rise = thermal.rise(0.0, &ExpSum::new(10.0, []));
         approx::assert_relative_eq!(rise.value(90.0), 40.0 * (1.0 - (-1f64).exp()), max_relative = 1e-14);
+    }
+
+    #[test]
+    fn repeated_runs_heat_as_a_body_that_is_followed_from_run_to_run() {
+        let thermal = Thermal { kelvin_per_watt: 3.0, time_constant: 40.0 };
+        // 100 V falling with 0.5 s, on 20 ohm, for 2 s; seven runs, 15 s apart.
+        let volts = Course::from(ExpSum::new(0.0, [(100.0, 2.0)]));
+        let (mut start, mut greatest) = (0.0, 0.0f64);
+        for _ in 0..7 {
+            let run = thermal.heated(start, &volts, 20.0, 2.0).expect("closes");
+            greatest = greatest.max(run.greatest);
+            start = run.end * (-13.0f64 / 40.0).exp();
+        }
+        let found = thermal.repeated(&volts, 20.0, 2.0, 7, 15.0).expect("closes");
+        approx::assert_relative_eq!(found, greatest, max_relative = 1e-12);
+        // After very many the start is that of the whole series: left / (1 - a).
+        let first = thermal.heated(0.0, &volts, 20.0, 2.0).expect("closes");
+        let settled = first.end * (-13.0f64 / 40.0).exp() / (1.0 - (-15.0f64 / 40.0).exp());
+        let last = thermal.heated(settled, &volts, 20.0, 2.0).expect("closes").greatest;
+        let found = thermal.repeated(&volts, 20.0, 2.0, 1_000_000, 15.0).expect("closes");
+        approx::assert_relative_eq!(found, last, max_relative = 1e-12);
     }
 
     #[test]

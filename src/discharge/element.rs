@@ -27,7 +27,7 @@ pub(crate) fn element_model(model: &Model, resistor: &Resistor) -> Option<(Model
         opened.resistors.len() - 1
     };
     // The lumped array's own loose value now stands for the other strings; it is used by nothing else.
-    let middle = if resistor.series > 1 { opened.node(&format!("{} inside", whole.id)) } else { whole.b };
+    let middle = if resistor.series > 1 { opened.new_node(&format!("{} between elements", whole.id)) } else { whole.b };
     if resistor.parallel > 1 {
         let strings = f64::from(resistor.parallel - 1);
         add(&mut opened, whole.a, whole.b, unit * f64::from(resistor.series) / strings, whole.parameter);

@@ -65,6 +65,8 @@ pub(crate) struct Source {
     pub id: String,
     /// Node between the ideal source and its series resistance.
     pub inside: usize,
+    /// The nodes that it feeds.
+    pub a: usize,
     pub b: usize,
     pub volts: f64,
     /// The number of its series resistance.
@@ -211,6 +213,12 @@ impl Model {
         })
     }
 
+    /// One more node, whatever names there are.
+    pub fn new_node(&mut self, name: &str) -> usize {
+        self.node_names.push(name.to_string());
+        self.node_names.len() - 1
+    }
+
     /// A node by name, where there is one.
     pub fn find_node(&self, name: &str) -> Option<usize> {
         self.node_names.iter().position(|n| n == name)
@@ -245,14 +253,14 @@ impl Model {
 
     fn supply(&mut self, s: &Supply) {
         let (a, b) = (self.node(&s.across[0]), self.node(&s.across[1]));
-        let inside = self.node(&format!("{} inside", s.id));
+        let inside = self.new_node(&format!("{} inside", s.id));
         let parameter = self.parameter(&s.id, s.tolerance);
-        let nominal = s.series.si();
+        let nominal = s.series.si() * f64::from(s.array_series) / f64::from(s.array_parallel);
         let kind = PartKind::Switched;
         // From the source's own node towards the bank: a positive current charges.
         self.resistors.push(Part { id: s.id.clone(), a: inside, b: a, nominal, parameter, kind });
         let resistor = self.resistors.len() - 1;
-        self.sources.push(Source { id: s.id.clone(), inside, b, volts: s.voltage.si(), resistor });
+        self.sources.push(Source { id: s.id.clone(), inside, a, b, volts: s.voltage.si(), resistor });
     }
 
     fn load(&mut self, s: &description::Sink) -> Load {

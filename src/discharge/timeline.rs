@@ -168,9 +168,8 @@ impl Timeline {
         let source = &model.sources[source];
         let run = &self.runs[stage];
         let from_empty = run.tries.first()?;
-        let series = &model.resistors[source.resistor];
-        let bank = across(from_empty, &self.map, series.b, source.b);
-        Some((bank, across(from_empty, &self.map, series.a, series.b), run.ohms[source.resistor]))
+        let bank = across(from_empty, &self.map, source.a, source.b);
+        Some((bank, across(from_empty, &self.map, source.inside, source.a), run.ohms[source.resistor]))
     }
 
     /// What is to come at a pair after the last step, from its end.
@@ -215,6 +214,13 @@ pub(crate) enum StepFigure {
         stage: usize,
         source: usize,
         share: f64,
+    },
+    /// How far an empty bank is below the voltage of a supply that the step connects, so many seconds after its start;
+    /// for infinite ones, where it settles.
+    ShortOfSupply {
+        stage: usize,
+        source: usize,
+        after: f64,
     },
     /// Energy in the capacitors themselves at a step's start, without what their dielectrics give back slowly.
     ReadyEnergy {
@@ -274,6 +280,15 @@ pub(crate) enum StepFigure {
         body: Thermal,
         row: InARow,
         allowed: f64,
+    },
+    /// The same rise during the last of several runs of one step, each from air temperature before the first of them and
+    /// so many seconds after the one before.
+    RepeatedRise {
+        stage: usize,
+        resistor: usize,
+        body: Thermal,
+        times: u32,
+        every: f64,
     },
     /// Greatest voltage from the end of the last step on.
     Recovery {
@@ -359,7 +374,8 @@ impl Objective for ProcedureStudy<'_> {
             | StepFigure::CapacitorVoltage { .. }
             | StepFigure::VoltageAtStart { .. }
             | StepFigure::PartVoltage { .. }
-            | StepFigure::Recovery { .. } => small,
+            | StepFigure::Recovery { .. }
+            | StepFigure::ShortOfSupply { .. } => small,
             StepFigure::Current { resistor, .. } | StepFigure::PartCurrent { resistor } => small / ohms(resistor),
             StepFigure::Power { resistor, .. }
             | StepFigure::PartPower { resistor }
@@ -370,7 +386,7 @@ impl Objective for ProcedureStudy<'_> {
             | StepFigure::StoredEnergy { .. } => {
                 1e-10 * model.capacitors.iter().map(|c| 0.5 * c.nominal * small * volts).sum::<f64>()
             }
-            StepFigure::BodyRise { .. } | StepFigure::RiseInARow { .. } => 1e-6,
+            StepFigure::BodyRise { .. } | StepFigure::RiseInARow { .. } | StepFigure::RepeatedRise { .. } => 1e-6,
             StepFigure::LastOver { .. } | StepFigure::ChargedTo { .. } | StepFigure::CoolingAfter { .. } => 0.0,
         }
     }
@@ -382,6 +398,8 @@ impl Objective for ProcedureStudy<'_> {
             | StepFigure::VoltageAtStart { stage, .. }
             | StepFigure::LastOver { stage, .. }
             | StepFigure::ChargedTo { stage, .. }
+            | StepFigure::ShortOfSupply { stage, .. }
+            | StepFigure::RepeatedRise { stage, .. }
             | StepFigure::ReadyEnergy { stage }
             | StepFigure::StoredEnergy { stage }
             | StepFigure::Current { stage, .. }
@@ -429,6 +447,13 @@ impl StepFigure {
                 }
                 None => 0.0,
             },
+            StepFigure::ShortOfSupply { stage, source, after } => match timeline.charging(model, stage, source) {
+                Some((bank, _, _)) => {
+                    let short = bank.short_of(model.sources[source].volts);
+                    if after.is_finite() { short.value(after) } else { short.constant() }
+                }
+                None => 0.0,
+            },
             StepFigure::ReadyEnergy { stage } => {
                 let network = runs[stage].response.network();
                 let there = model.capacitors.iter().zip(present).filter(|(_, there)| **there).map(|(c, _)| c);
@@ -473,6 +498,11 @@ impl StepFigure {
             }
             StepFigure::CoolingAfter { resistor, body, row, allowed } => {
                 row.cooling(Followed { model, timeline, resistor, body }, allowed)?
+            }
+            StepFigure::RepeatedRise { stage, resistor, body, times, every } => {
+                let run = &runs[stage];
+                let volts = run.hottest(model, map, resistor);
+                body.repeated(&volts, run.ohms[resistor], run.duration, times, every)?
             }
             StepFigure::Recovery { pair } => {
                 let (a, b) = model.pairs[pair];

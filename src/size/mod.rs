@@ -12,6 +12,7 @@ mod bleeder;
 mod build;
 mod collision;
 mod error;
+mod precharge;
 mod result;
 mod scan;
 mod spans;
@@ -22,5 +23,8 @@ mod window;
 pub use bleeder::{BleederAsk, BleederFigures, LimitHeld, Target, bleeder};
 pub use build::{Build, Rank};
 pub use error::SizeError;
+pub use precharge::{
+    Attempts, Inrush, MainContactor, PrechargeAsk, PrechargeFigures, Repeated, Shorted, USUAL_SHARE, precharge,
+};
 pub use result::{Candidate, DemandResult, Searched, SetAside, Sizing, Window};
 pub use tool::{AskedRow, FaultLeft, InARowResult, Placement, ToolAsk, ToolFigures, tool};

@@ -73,10 +73,11 @@ pub(super) fn nothing_fits(build: &Build, found: &Listed, refused: usize, window
             "a finer series, a closer tolerance, other values, or more elements in an array",
         )
     } else if refused == 0 {
-        let set_aside = found.set_aside.iter().map(|(of, arrays)| format!("too much {of} in {arrays} of them"));
+        let set_aside = found.set_aside.iter().map(|(of, arrays)| format!("{arrays} for {of}"));
         (
             format!(
-                "{} arrays lie in the window ({range}); one element would carry {}.",
+                "{} arrays lie in the window ({range}); left out, by what one element would carry or what its rating \
+                 says: {}.",
                 found.inside,
                 set_aside.collect::<Vec<_>>().join(" and ")
             ),

@@ -281,6 +281,8 @@ struct Step {
 struct Charging {
     supply: String,
     voltage_v: f64,
+    reached_nominal_v: f64,
+    reached_lowest_v: f64,
     moments: Vec<ChargingMoment>,
 }
 

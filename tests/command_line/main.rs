@@ -6,6 +6,7 @@ mod json;
 mod review;
 mod run;
 mod size;
+mod size_precharge;
 mod size_tool;
 mod text;
 mod verdict;

@@ -5,8 +5,8 @@ use crate::rows::{Row, confirm, refute};
 use ebbvolt::bank::description::Connection;
 use ebbvolt::bank::file::read_stock;
 use ebbvolt::data::generic_stock;
-use ebbvolt::quantity::{Quantity, Time, Voltage};
-use ebbvolt::size::{BleederAsk, Build, Target, ToolAsk, bleeder, tool};
+use ebbvolt::quantity::{Quantity, Ratio, Time, Voltage};
+use ebbvolt::size::{BleederAsk, Build, PrechargeAsk, Target, ToolAsk, bleeder, precharge, tool};
 
 /// The greatest resistance with which a bank is at a voltage in time, in ohm.
 fn greatest(text: &str, volts: f64, seconds: f64, connection: Option<Connection>) -> f64 {
@@ -17,6 +17,56 @@ fn greatest(text: &str, volts: f64, seconds: f64, connection: Option<Connection>
     let sizing = bleeder(&read(text), "", &ask).unwrap_or_else(|e| panic!("{text}{e}"));
     // The demand on time alone: whether elements at hand bear the load is another matter.
     sizing.demands[0].greatest.expect("time bounds it").si()
+}
+
+/// The greatest resistance through which an empty capacitance comes from 0 V to `to` of `supply` volts in time, in ohm.
+fn charging(farads: &str, supply: f64, to: f64, seconds: f64) -> f64 {
+    let text = format!("{}capacitors: [{{id: C1, value: {farads}}}]\n", head("0 V", "1 V"));
+    let elements = read_stock("generic", generic_stock().as_bytes()).expect("a valid list");
+    let ask = PrechargeAsk {
+        build: Build { elements, show: 1, ..Build::default() },
+        voltage: Some(Voltage::from_si(supply)),
+        share: Some(Ratio::from_si(to / supply)),
+        ..PrechargeAsk::within(Time::from_si(seconds))
+    };
+    let sizing = precharge(&read(&text), "", &ask).unwrap_or_else(|e| panic!("{text}{e}"));
+    sizing.demands[0].greatest.expect("time bounds it").si()
+}
+
+#[test]
+fn a_precharge_resistor_is_found_for_a_time() {
+    confirm(&[
+        Row {
+            source: "OpenStax, College Physics 2e, 21.6, two stages",
+            figure: "resistance for 99 % of 24 V in 5.5 s",
+            stated: "1.2e3",
+            found: charging("1 mF", 24.0, 0.99 * 24.0, 5.5),
+        },
+        Row {
+            source: "OpenStax, University Physics 2, example 10.8",
+            figure: "resistance for 80 V of 100 V in 8.13 s",
+            stated: "101",
+            found: charging("50e-3 F", 100.0, 80.0, 8.13),
+        },
+        Row {
+            source: "OpenStax, University Physics 2, example 10.9",
+            figure: "resistance for 10.00 V of 12.00 V in 10.00 s",
+            stated: "558.11",
+            found: charging("10.00e-3 F", 12.0, 10.0, 10.0),
+        },
+        Row {
+            source: "Lessons in Electric Circuits, vol. I, time constants, table",
+            figure: "resistance for 9.482 V of 15 V in 1 s",
+            stated: "10.00e3",
+            found: charging("100 uF", 15.0, 9.482, 1.0),
+        },
+        Row {
+            source: "Lessons in Electric Circuits, vol. I, time constants, table",
+            figure: "resistance for 12.970 V of 15 V in 2 s",
+            stated: "10.0e3",
+            found: charging("100 uF", 15.0, 12.970, 2.0),
+        },
+    ]);
 }
 
 #[test]

@@ -192,6 +192,8 @@ def read(path):
                           quantity(given['value'], 'resistance') * series / parallel,
                           *_tolerance(given.get('tolerance')), None, series, parallel))
     for given in doc.get('supplies') or []:
+        if 'array' in given:
+            raise Refused('array of a supply: not in the subset')
         a, b = given.get('across', terminals)
         extra.append(Part(given['id'], 'S', 'supply', a, b, quantity(given['series'], 'resistance'),
                           *_tolerance(given.get('tolerance')), volt=quantity(given['voltage'], 'voltage')))

@@ -4,6 +4,7 @@
 mod banks;
 mod exhaustive;
 mod placed;
+mod precharge;
 mod tool;
 mod tool_exhaustive;
 mod tool_placed;

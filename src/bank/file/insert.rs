@@ -1,16 +1,26 @@
-//! A resistor put into the text of a bank file, every other character of it kept: comments, order, layout.
+//! A part put into the text of a bank file, every other character of it kept: comments, order, layout.
 //!
 //! The text that comes out is read again and has to describe the bank with the part, or it is not given out at all.
 
 use super::log::Log;
 use super::source::Source;
 use super::tree::{self, Content};
-use super::write;
-use crate::bank::description::{Description, Resistor, Step};
+use super::{keys, replace, write};
+use crate::bank::description::{Capacitor, Description, Resistor, Step, Supply};
 
 /// A resistor as an entry of a bank file's `resistors`, ready to paste: a line without indentation.
 pub fn resistor_text(resistor: &Resistor) -> String {
     format!("- {}\n", write::resistor(resistor))
+}
+
+/// A supply as an entry of a bank file's `supplies`, ready to paste.
+pub fn supply_text(supply: &Supply) -> String {
+    format!("- {}\n", write::supply(supply))
+}
+
+/// Steps as entries of a bank file's `procedure`, ready to paste.
+pub fn steps_text(steps: &[Step]) -> String {
+    steps.iter().map(|step| format!("- {}\n", write::step(step))).collect()
 }
 
 /// The text of a bank file with one more resistor, at the end of the list (at its head where the list stands in
@@ -19,7 +29,7 @@ pub fn resistor_text(resistor: &Resistor) -> String {
 /// # Errors
 /// A sentence that says why the part can't be placed, and what to do instead.
 pub fn with_resistor(name: &str, bytes: &[u8], resistor: &Resistor) -> Result<String, String> {
-    placed_with(name, bytes, resistor, &[])
+    with_resistor_and_steps(name, bytes, resistor, &[])
 }
 
 /// The same with the steps of a procedure, for a file that has none: they come at its end.
@@ -32,70 +42,128 @@ pub fn with_resistor_and_steps(
     resistor: &Resistor,
     steps: &[Step],
 ) -> Result<String, String> {
-    placed_with(name, bytes, resistor, steps)
+    let part = write::resistor(resistor);
+    changed(
+        name,
+        bytes,
+        "the list `resistors` stands neither in lines of its own nor in brackets, or a `procedure` is there already",
+        |source, tree, _| {
+            let (text, at_head) = placed(source, tree, "resistors", &part)?;
+            if steps.is_empty() {
+                return Some((text, at_head));
+            }
+            let procedure = format!("\n\nprocedure:\n{}", indented(&steps_text(steps), 2));
+            tree.get("procedure").is_none().then(|| (text.trim_end().to_string() + &procedure, at_head))
+        },
+        |after, at_head| {
+            after.resistors.insert(if at_head { 0 } else { after.resistors.len() }, resistor.clone());
+            after.procedure.extend_from_slice(steps);
+        },
+    )
 }
 
-/// Steps as entries of a bank file's `procedure`, ready to paste: lines without indentation.
-pub fn steps_text(steps: &[Step]) -> String {
-    steps.iter().map(|step| format!("- {}\n", write::step(step))).collect()
+/// The text of a bank file with the resistor of this id in the place of the one that has it. Comments between the old
+/// one's keys come to stand before the new one, each in a line of its own.
+///
+/// # Errors
+/// As [`with_resistor`].
+pub fn with_resistor_exchanged(name: &str, bytes: &[u8], resistor: &Resistor) -> Result<String, String> {
+    let id = &resistor.id;
+    changed(
+        name,
+        bytes,
+        &format!("the entry of {id} stands neither in lines of its own nor in braces without comments"),
+        |source, tree, _| Some((replace::entry(source, tree, "resistors", id, &[write::resistor(resistor)])?, false)),
+        |after, _| after.resistors.iter_mut().filter(|r| r.id == *id).for_each(|r| *r = resistor.clone()),
+    )
 }
 
-/// Why a part is not put into a file.
-pub(super) fn by_hand(why: &str) -> String {
-    format!("{why}; `--part` prints the part, to be put in by hand")
+/// The text of a bank file with `groups` in place of the capacitor `id`.
+///
+/// # Errors
+/// As [`with_resistor`].
+pub fn with_groups(name: &str, bytes: &[u8], id: &str, groups: &[Capacitor]) -> Result<String, String> {
+    let texts: Vec<String> = groups.iter().map(write::capacitor).collect();
+    changed(
+        name,
+        bytes,
+        &format!("the entry of {id} stands neither in lines of its own nor in braces without comments"),
+        |source, tree, _| Some((replace::entry(source, tree, "capacitors", id, &texts)?, false)),
+        |after, _| {
+            if let Some(at) = after.capacitors.iter().position(|c| c.id == id) {
+                after.capacitors.splice(at..=at, groups.iter().cloned());
+            }
+        },
+    )
 }
 
-fn placed_with(name: &str, bytes: &[u8], resistor: &Resistor, steps: &[Step]) -> Result<String, String> {
+/// The text of a bank file with a supply in it: where the file has one of this name, its series resistance (value,
+/// tolerance, array, rating) is put in place of the old one; else one more supply.
+///
+/// # Errors
+/// As [`with_resistor`].
+pub fn with_supply(name: &str, bytes: &[u8], supply: &Supply) -> Result<String, String> {
+    let part = write::supply(supply);
+    let number = |d: &Description| d.supplies.iter().position(|s| s.id == supply.id);
+    changed(
+        name,
+        bytes,
+        "the list `supplies` is not written in a way that this tool can change",
+        |source, tree, before| match number(before) {
+            Some(index) => {
+                let text = keys::replaced(source, tree, "supplies", index, &write::series_resistance(supply))?;
+                Some((text, false))
+            }
+            None => placed(source, tree, "supplies", &part),
+        },
+        |after, at_head| match number(after) {
+            Some(index) => after.supplies[index] = supply.clone(),
+            None => after.supplies.insert(if at_head { 0 } else { after.supplies.len() }, supply.clone()),
+        },
+    )
+}
+
+/// Changes a text and reads the result back: it is only given out where it describes the bank after `change`, which is
+/// told whether the part came to the head of its list. `no_place` says why there may be no new text.
+fn changed(
+    name: &str,
+    bytes: &[u8],
+    no_place: &str,
+    text: impl FnOnce(&Source, &tree::Node, &Description) -> Option<(String, bool)>,
+    change: impl FnOnce(&mut Description, bool),
+) -> Result<String, String> {
+    let by_hand = |why: &str| format!("{why}; `--part` prints the part, to be put in by hand");
     let mut log = Log::default();
     let source = Source::new(name, bytes).map_err(|e| by_hand(&e.text))?;
     let tree = tree::parse(&source, &mut log).ok_or_else(|| by_hand("the file can't be read"))?;
-    let (text, at_head) = placed(&source, &tree, resistor).ok_or_else(|| {
-        by_hand("the part can't be placed: the list `resistors` stands neither in lines of its own nor in brackets")
-    })?;
-    let text = match steps {
-        [] => text,
-        _ if tree.get("procedure").is_some() => return Err(by_hand("the file has a `procedure` already")),
-        _ => format!("{}\n\nprocedure:\n{}", text.trim_end(), indented(&steps_text(steps), 2)),
-    };
-    given_out(name, bytes, text, |before| {
-        let mut after = before.clone();
-        after.resistors.insert(if at_head { 0 } else { after.resistors.len() }, resistor.clone());
-        after.procedure.extend_from_slice(steps);
-        after
-    })
-}
-
-/// A text that was made from a file, where it reads as the bank that is expected of it.
-pub(super) fn given_out(
-    name: &str,
-    bytes: &[u8],
-    text: String,
-    expected: impl Fn(&Description) -> Description,
-) -> Result<String, String> {
     let before = super::read(name, bytes).map_err(|_| by_hand("the file is no bank file"))?.0;
+    let (text, at_head) = text(&source, &tree, before.description())
+        .ok_or_else(|| by_hand(&format!("the part can't be placed: {no_place}")))?;
+    let mut expected = before.description().clone();
+    change(&mut expected, at_head);
     match super::read(name, text.as_bytes()) {
-        Ok((bank, _)) if *bank.description() == expected(before.description()) => Ok(restored(bytes, text)),
+        Ok((bank, _)) if *bank.description() == expected => Ok(restored(bytes, text)),
         _ => Err(by_hand("the file with the part in it does not read as the bank with the part")),
     }
 }
 
 /// The new text, and whether the part stands at the head of its list; `None` where there is no place for it.
-fn placed(source: &Source, tree: &tree::Node, resistor: &Resistor) -> Option<(String, bool)> {
+fn placed(source: &Source, tree: &tree::Node, key: &str, part: &str) -> Option<(String, bool)> {
     let Content::Mapping(top) = &tree.content else { return None };
     let lines: Vec<&str> = source.text.lines().collect();
-    let Some((key, list)) = tree.get("resistors") else {
+    let entry = format!("- {part}\n");
+    let Some((key, list)) = tree.get(key) else {
         if first_char(&lines, tree.span.line, tree.span.column) == Some('{') {
             return None;
         }
-        let text = format!("resistors:\n{}", indented(&resistor_text(resistor), 2));
+        let text = format!("{key}:\n{}", indented(&entry, 2));
         return Some((joined(&lines, end_of(&lines, lines.len()), &text), false));
     };
     let Content::Sequence(entries) = &list.content else { return None };
     if first_char(&lines, list.span.line, list.span.column) == Some('[') {
         let mut line: Vec<char> = lines.get(list.span.line - 1)?.chars().collect();
         let comma = if entries.is_empty() { "" } else { ", " };
-        let part = format!("{}{comma}", write::resistor(resistor));
-        line.splice(list.span.column..list.span.column, part.chars());
+        line.splice(list.span.column..list.span.column, format!("{part}{comma}").chars());
         let line: String = line.into_iter().collect();
         let mut all = lines;
         *all.get_mut(list.span.line - 1)? = &line;
@@ -108,7 +176,7 @@ fn placed(source: &Source, tree: &tree::Node, resistor: &Resistor) -> Option<(St
     }
     let next = top.iter().map(|(k, _)| k.span.line).filter(|line| *line > key.span.line).min();
     let end = end_of(&lines, next.map_or(lines.len(), |line| line - 1));
-    Some((joined(&lines, end, &indented(&resistor_text(resistor), indent)), false))
+    Some((joined(&lines, end, &indented(&entry, indent)), false))
 }
 
 /// The number of lines up to the last before `before` that is neither empty nor a comment: what follows belongs to
@@ -123,7 +191,7 @@ fn joined(lines: &[&str], at: usize, text: &str) -> String {
     lines[..at].iter().map(line).chain([text.to_string()]).chain(lines[at..].iter().map(line)).collect()
 }
 
-fn first_char(lines: &[&str], line: usize, column: usize) -> Option<char> {
+pub(super) fn first_char(lines: &[&str], line: usize, column: usize) -> Option<char> {
     lines.get(line.checked_sub(1)?)?.chars().nth(column.checked_sub(1)?)
 }
 

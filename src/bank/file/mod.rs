@@ -5,13 +5,14 @@
 
 mod brackets;
 mod charge;
-mod exchange;
 mod insert;
+mod keys;
 mod limits;
 mod log;
 mod parts;
 mod rating;
 mod reader;
+mod replace;
 mod source;
 mod steps;
 mod stock;
@@ -20,8 +21,10 @@ mod top;
 mod tree;
 mod write;
 
-pub use exchange::with_resistor_exchanged;
-pub use insert::{resistor_text, steps_text, with_resistor, with_resistor_and_steps};
+pub use insert::{
+    resistor_text, steps_text, supply_text, with_groups, with_resistor, with_resistor_and_steps,
+    with_resistor_exchanged, with_supply,
+};
 pub use source::MAX_BYTES;
 pub use stock::read_stock;
 pub use write::write;

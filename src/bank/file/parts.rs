@@ -26,7 +26,7 @@ const CAPACITOR: [&str; 14] = [
 const RESISTOR: [&str; 11] =
     ["id", "role", "value", "tolerance", "tempco", "ageing", "across", "array", "rating", "phases", "connection"];
 const SINK: [&str; 6] = ["id", "kind", "value", "across", "stops_below", "counted"];
-const SUPPLY: [&str; 6] = ["id", "voltage", "series", "tolerance", "across", "rating"];
+const SUPPLY: [&str; 7] = ["id", "voltage", "series", "tolerance", "array", "across", "rating"];
 
 /// Where a part lies that names no nodes.
 pub(super) struct Terminals<'a> {
@@ -229,6 +229,8 @@ fn supply(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize) -> Supply {
         voltage: Voltage::from_si(1.0),
         series: Resistance::from_si(1.0),
         tolerance: None,
+        array_series: 1,
+        array_parallel: 1,
         across: unread_pair("supply", i),
         rating: Default::default(),
     };
@@ -238,6 +240,7 @@ fn supply(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize) -> Supply {
     s.series = reader.need(&group, "series", "100 ohm").and_then(|spot| reader.quantity(&spot)).unwrap_or(s.series);
     s.tolerance = reader.may(&group, "tolerance").and_then(|spot| reader.tolerance(&spot));
     s.across = across(reader, &group).unwrap_or(s.across);
+    (s.array_series, s.array_parallel) = counts(reader, &group, "array");
     s.rating = rating::read(reader, &group);
     s
 }
@@ -325,7 +328,7 @@ fn place(reader: &mut Reader<'_>, group: &Group<'_>, terminals: &Terminals<'_>) 
     }
 }
 
-/// `units` of a capacitor or `array` of a resistor: how many in series, how many in parallel.
+/// `units` of a capacitor or `array` of a resistor or a supply: how many in series, how many in parallel.
 fn counts(reader: &mut Reader<'_>, group: &Group<'_>, key: &str) -> (u32, u32) {
     let spot = reader.may(group, key);
     let owner = format!("`{key}` of {}", group.owner);

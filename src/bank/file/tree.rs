@@ -24,6 +24,8 @@ const MAX_VALUES: usize = 500_000;
 pub(super) struct Node {
     pub(super) content: Content,
     pub(super) span: Span,
+    /// Line and column just past its last character; of a list or mapping in lines of its own, somewhere after that.
+    pub(super) end: (usize, usize),
     /// Levels below this one.
     height: usize,
     /// Values in it, itself included.
@@ -53,7 +55,7 @@ pub(super) struct Key {
 impl Node {
     /// A value that was read from something else than YAML.
     pub(super) fn made(content: Content, span: Span) -> Self {
-        Node { content, span, height: 0, size: 1 }
+        Node { content, span, end: (span.line, span.column + span.length), height: 0, size: 1 }
     }
 
     /// True for a value that is not there: nothing, `~` or `null` without quotes.
@@ -75,12 +77,16 @@ impl Node {
 
 /// Reads the one document of a source. Errors go to `log`; `None` where nothing can be made of it.
 pub(super) fn parse(source: &Source, log: &mut Log) -> Option<Rc<Node>> {
-    let mut builder = Builder { source, log, open: vec![], root: None, anchors: HashMap::new(), aliased: 0 };
+    let mut builder =
+        Builder { source, log, open: vec![], root: None, anchors: HashMap::new(), aliased: 0, end: (1, 1) };
     let mut parser = Parser::new_from_str(&source.text);
     let (mut documents, mut values) = (0, 0);
     loop {
         let (event, span) = match parser.next_event()? {
-            Ok((event, span)) => (event, from_parser(source, span)),
+            Ok((event, span)) => {
+                builder.end = (span.end.line(), span.end.col() + 1);
+                (event, from_parser(source, span))
+            }
             Err(e) => {
                 builder.log.push(syntax::explain(source, &e, MAX_DEPTH));
                 return None;
@@ -150,6 +156,8 @@ struct Builder<'a> {
     root: Option<Rc<Node>>,
     anchors: HashMap<usize, Rc<Node>>,
     aliased: usize,
+    /// Where the event that is being taken ends.
+    end: (usize, usize),
 }
 
 impl Builder<'_> {
@@ -195,7 +203,7 @@ impl Builder<'_> {
     fn scalar(&mut self, text: String, plain: bool, anchor: usize, span: Span) {
         if !self.at_key() {
             let content = Content::Scalar { text, plain };
-            return self.complete(Node { content, span, height: 0, size: 1 }, anchor);
+            return self.complete(Node { content, span, end: self.end, height: 0, size: 1 }, anchor);
         }
         let slot = if plain && text == "<<" {
             let help = "write the keys out where they belong";
@@ -238,14 +246,14 @@ impl Builder<'_> {
             Items::Sequence(entries) => Content::Sequence(entries),
             Items::Mapping { entries, .. } => Content::Mapping(entries),
         };
-        self.complete(Node { content, span, height: height + 1, size }, anchor);
+        self.complete(Node { content, span, end: self.end, height: height + 1, size }, anchor);
     }
 
     fn alias(&mut self, anchor: usize, span: Span) -> Option<()> {
         let Some(node) = self.anchors.get(&anchor).cloned() else {
             let help = "write the values out";
             self.refuse("alias-refused", span, "this alias stands inside the value that it repeats", help);
-            self.complete(Node { content: Content::Refused, span, height: 0, size: 1 }, 0);
+            self.complete(Node { content: Content::Refused, span, end: self.end, height: 0, size: 1 }, 0);
             return Some(());
         };
         self.aliased += node.size;

@@ -205,7 +205,7 @@ fn place(across: &Pair, phases: Option<Connection>) -> [Option<(&'static str, St
     }
 }
 
-fn capacitor(c: &Capacitor) -> String {
+pub(super) fn capacitor(c: &Capacitor) -> String {
     let value = match c.kvar {
         None => ("value", figure(c.value, &FARAD)),
         Some(kvar) => {
@@ -283,15 +283,33 @@ fn sink(s: &Sink) -> String {
     ])
 }
 
-fn supply(s: &Supply) -> String {
+/// One entry of `supplies`, in braces.
+pub(super) fn supply(s: &Supply) -> String {
+    let [series, tolerance, array, rating] = series_resistance(s);
     mapping([
         Some(("id", word(&s.id))),
         Some(("voltage", figure(s.voltage, &VOLT))),
-        Some(("series", figure(s.series, &OHM))),
-        tolerance(s.tolerance),
+        given(series),
+        given(tolerance),
+        given(array),
         Some(("across", pair(&s.across))),
-        rating(&s.rating),
+        given(rating),
     ])
+}
+
+/// The keys that describe the series resistance of a supply; `None` for one that is left out.
+pub(super) fn series_resistance(s: &Supply) -> [(&'static str, Option<String>); 4] {
+    let text = |pair: Option<(&'static str, String)>| pair.map(|(_, text)| text);
+    [
+        ("series", Some(figure(s.series, &OHM))),
+        ("tolerance", text(tolerance(s.tolerance))),
+        ("array", text(counts("array", s.array_series, s.array_parallel))),
+        ("rating", text(rating(&s.rating))),
+    ]
+}
+
+fn given((key, text): (&'static str, Option<String>)) -> Option<(&'static str, String)> {
+    text.map(|text| (key, text))
 }
 
 fn bound(bound: &Bound) -> (&'static str, String) {
@@ -373,7 +391,7 @@ resistors:
 sinks:
   - {id: K1, kind: constant-power, value: 0.3 W, across: ["null", G], stops_below: 11.1 V, counted: true}
 supplies:
-  - {id: S1, voltage: 565.3 V, series: 0.1 kohm, tolerance: 1.7 %, across: ["null", "1"]}
+  - {id: S1, voltage: 565.3 V, series: 0.1 kohm, tolerance: 1.7 %, array: {series: 2, parallel: 3}, across: ["null", "1"]}
 test_points: [["null", G], ["1", "~x"]]
 limits:
   - {use: iec-60831-1, at: ["null", "1"], single_fault: true}

@@ -45,6 +45,8 @@ pub(super) fn check(d: &Description, sink: &mut Sink) {
         above_zero(s.voltage, "voltage", &path, sink);
         above_zero(s.series, "series", &path, sink);
         tolerance(s.tolerance, &path, sink);
+        count(s.array_series, "series", &path.then("array"), sink);
+        count(s.array_parallel, "parallel", &path.then("array"), sink);
         rating(&s.rating, &path.then("rating"), sink);
     }
 }
@@ -286,6 +288,8 @@ mod tests {
             voltage: volt(0.0),
             series: Quantity::from_si(100.0),
             tolerance: None,
+            array_series: 1,
+            array_parallel: 1,
             across: pair("P", "N"),
             rating: Rating::default(),
         });

@@ -1,6 +1,7 @@
 //! `size`: resistors that do a job, from preferred values and parts at hand. One file per job; here is what they share.
 
 mod bleeder;
+mod precharge;
 mod tool;
 mod typed;
 
@@ -37,6 +38,8 @@ enum SizeJob {
     Bleeder(Box<bleeder::BleederArgs>),
     /// A resistor that people connect by hand after isolation, until the voltage is down
     Tool(Box<tool::ToolArgs>),
+    /// The resistor through which a supply charges the bank before its main contactor closes
+    Precharge(Box<precharge::PrechargeArgs>),
 }
 
 /// Reads, searches and prints.
@@ -44,6 +47,7 @@ pub(super) fn run(typed: &SizeArgs, stdin: &mut dyn Read, output: &mut Output) -
     match &typed.job {
         SizeJob::Bleeder(typed) => bleeder::run(typed, stdin, output),
         SizeJob::Tool(typed) => tool::run(typed, stdin, output),
+        SizeJob::Precharge(typed) => precharge::run(typed, stdin, output),
     }
 }
 

@@ -20,8 +20,13 @@ pub fn size_bleeder(sizing: &Sizing<BleederFigures>) -> SizeReport {
         ("Designs", designs(&sizing.candidates), Some(explained.into())),
         ("One element", elements(&sizing.candidates), None),
     ];
-    let told =
-        Told { place, predicted: first.map(predicted), tables, first: first.map_or_else(Vec::new, first_design) };
+    let told = Told {
+        place,
+        clock: "Times run from isolation.",
+        predicted: first.map(predicted),
+        tables,
+        first: first.map_or_else(Vec::new, first_design),
+    };
     document(sizing, told)
 }
 

@@ -2,9 +2,11 @@
 //! tables of designs, findings, what the answer rests on. What the tables say is each job's own.
 
 mod bleeder;
+mod precharge;
 mod tool;
 
 pub use bleeder::size_bleeder;
+pub use precharge::size_precharge;
 pub use tool::size_tool;
 
 use super::block::{Block, Grid, Labelled, Side};
@@ -44,6 +46,8 @@ pub fn size_json<F: Serialize>(sizing: &Sizing<F>) -> Result<String, NotFinite> 
 struct Told {
     /// Where the new resistor goes, and from what voltage.
     place: String,
+    /// From when times run, as a sentence.
+    clock: &'static str,
     /// What is predicted of the first design, in a sentence; `None` without one.
     predicted: Option<String>,
     /// Designs side by side, each table with what explains it.
@@ -92,12 +96,11 @@ fn document<F>(sizing: &Sizing<F>, told: Told) -> SizeReport {
     blocks.push(Block::Section("What this rests on"));
     blocks.push(Block::List(sizing.assumptions.clone()));
     blocks.push(Block::Section("About this result"));
-    blocks.push(Block::Paragraph(
-        "Times run from isolation, those of a tool from when it is applied. Times, voltages, currents, powers and losses \
-         are rounded up, allowed values down. Local electrical codes, the equipment maker's instructions and qualified \
-         persons decide."
-            .into(),
-    ));
+    blocks.push(Block::Paragraph(format!(
+        "{} Times, voltages, currents, powers and losses are rounded up, allowed values down. Local electrical codes, \
+         the equipment maker's instructions and qualified persons decide.",
+        told.clock
+    )));
     blocks.push(Block::Paragraph(format!("ebbvolt {}; SHA-256 of the input:", sizing.ebbvolt.version)));
     blocks.push(Block::Formula(sizing.input_sha256.clone()));
     SizeReport(blocks)

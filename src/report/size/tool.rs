@@ -28,6 +28,7 @@ pub fn size_tool(sizing: &Sizing<ToolFigures>) -> SizeReport {
     let ambient = sizing.ambient;
     let told = Told {
         place,
+        clock: "Times run from isolation, those of a tool from when it is applied.",
         predicted: first.map(predicted),
         tables,
         first: first.map_or_else(Vec::new, |c| first_design(c, ambient)),

@@ -1,7 +1,7 @@
 //! How supplies charge the bank.
 
 use super::super::super::block::{Block, Grid, Side};
-use super::super::super::words::{clean, time, typed, up};
+use super::super::super::words::{clean, down, time, typed, up};
 use crate::plan::{ChargingMoment, Plan};
 use crate::quantity::{Quantity, Time};
 
@@ -23,6 +23,11 @@ pub(in crate::report) fn blocks(plan: &Plan) -> Vec<Block> {
             ]);
             charging.moments.iter().for_each(|moment| grid.row(row(moment)));
             tables.push(Block::Table(grid));
+            tables.push(Block::Paragraph(format!(
+                "At the step's end the bank has come to {} or more, nominal {}.",
+                down(charging.reached_lowest),
+                down(charging.reached_nominal)
+            )));
         }
     }
     if tables.is_empty() {
