@@ -6,11 +6,16 @@ use super::log::Log;
 use super::source::Source;
 use super::tree::{self, Content};
 use super::write;
-use crate::bank::description::{Description, Resistor};
+use crate::bank::description::{Capacitor, Description, Resistor};
 
 /// A resistor as an entry of a bank file's `resistors`, ready to paste: a line without indentation.
 pub fn resistor_text(resistor: &Resistor) -> String {
     format!("- {}\n", write::resistor(resistor))
+}
+
+/// A capacitor as an entry of a bank file's `capacitors`, likewise.
+pub fn capacitor_text(capacitor: &Capacitor) -> String {
+    format!("- {}\n", write::capacitor(capacitor))
 }
 
 /// The text of a bank file with one more resistor, at the end of the list (at its head where the list stands in
@@ -72,7 +77,7 @@ fn placed(source: &Source, tree: &tree::Node, resistor: &Resistor) -> Option<(St
 
 /// The number of lines up to the last before `before` that is neither empty nor a comment: what follows belongs to
 /// what comes after.
-fn end_of(lines: &[&str], before: usize) -> usize {
+pub(super) fn end_of(lines: &[&str], before: usize) -> usize {
     let said = |line: &&str| !line.trim().is_empty() && !line.trim_start().starts_with('#');
     lines.iter().take(before).rposition(said).map_or(0, |last| last + 1)
 }
@@ -82,7 +87,7 @@ fn joined(lines: &[&str], at: usize, text: &str) -> String {
     lines[..at].iter().map(line).chain([text.to_string()]).chain(lines[at..].iter().map(line)).collect()
 }
 
-fn first_char(lines: &[&str], line: usize, column: usize) -> Option<char> {
+pub(super) fn first_char(lines: &[&str], line: usize, column: usize) -> Option<char> {
     lines.get(line.checked_sub(1)?)?.chars().nth(column.checked_sub(1)?)
 }
 
@@ -91,7 +96,7 @@ fn indented(text: &str, by: usize) -> String {
 }
 
 /// The line ends and the byte order mark that the file had.
-fn restored(bytes: &[u8], text: String) -> String {
+pub(super) fn restored(bytes: &[u8], text: String) -> String {
     let text = if bytes.windows(2).any(|two| two == b"\r\n") { text.replace('\n', "\r\n") } else { text };
     if bytes.starts_with(b"\xef\xbb\xbf") { format!("\u{feff}{text}") } else { text }
 }

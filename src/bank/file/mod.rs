@@ -11,6 +11,7 @@ mod log;
 mod parts;
 mod rating;
 mod reader;
+mod replace;
 mod source;
 mod steps;
 mod stock;
@@ -19,7 +20,8 @@ mod top;
 mod tree;
 mod write;
 
-pub use insert::{resistor_text, with_resistor};
+pub use insert::{capacitor_text, resistor_text, with_resistor};
+pub use replace::with_groups;
 pub use source::MAX_BYTES;
 pub use stock::read_stock;
 pub use write::write;

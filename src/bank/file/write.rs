@@ -205,7 +205,8 @@ fn place(across: &Pair, phases: Option<Connection>) -> [Option<(&'static str, St
     }
 }
 
-fn capacitor(c: &Capacitor) -> String {
+/// One entry of `capacitors`, in braces.
+pub(super) fn capacitor(c: &Capacitor) -> String {
     let value = match c.kvar {
         None => ("value", figure(c.value, &FARAD)),
         Some(kvar) => {

@@ -1,5 +1,6 @@
 //! `size`: resistors that do a job, from preferred values and parts at hand. One file per job; here is what they share.
 
+mod balancing;
 mod bleeder;
 mod typed;
 
@@ -34,12 +35,15 @@ pub(super) struct SizeArgs {
 enum SizeJob {
     /// A resistor that drains the bank for good, from isolation on
     Bleeder(Box<bleeder::BleederArgs>),
+    /// Resistors across the units of a string, so that none exceeds its rated voltage
+    Balancing(Box<balancing::BalancingArgs>),
 }
 
 /// Reads, searches and prints.
 pub(super) fn run(typed: &SizeArgs, stdin: &mut dyn Read, output: &mut Output) -> u8 {
     match &typed.job {
         SizeJob::Bleeder(typed) => bleeder::run(typed, stdin, output),
+        SizeJob::Balancing(typed) => balancing::run(typed, stdin, output),
     }
 }
 
