@@ -167,7 +167,8 @@ mod tests {
     #[test]
     fn the_greatest_leakage_is_the_rule_of_the_makers_or_that_of_the_insulation() {
         let leak = |id: &str, farad: f64, volt: f64| {
-            let found = dielectric(id).and_then(|d| d.greatest_leakage(Quantity::from_si(farad), Quantity::from_si(volt)));
+            let found =
+                dielectric(id).and_then(|d| d.greatest_leakage(Quantity::from_si(farad), Quantity::from_si(volt)));
             found.map(Quantity::si)
         };
         // 0.01 * 470 * 450 = 2115 uA; 0.01 * 10 * 16 = 1.6 uA is less than 3 uA; 10 uF * 800 V / 30 000 s = 0.27 uA.

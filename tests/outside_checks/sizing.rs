@@ -5,8 +5,8 @@ use crate::rows::{Row, confirm};
 use ebbvolt::bank::description::Connection;
 use ebbvolt::bank::file::read_stock;
 use ebbvolt::data::generic_stock;
-use ebbvolt::quantity::{Quantity, Time, Voltage};
-use ebbvolt::size::{BleederAsk, Build, Target, bleeder};
+use ebbvolt::quantity::{Current, Quantity, Time, Voltage};
+use ebbvolt::size::{BalancingAsk, BleederAsk, Build, Target, balancing, bleeder};
 
 /// The greatest resistance with which a bank is at a voltage in time, in ohm.
 fn greatest(text: &str, volts: f64, seconds: f64, connection: Option<Connection>) -> f64 {
@@ -81,4 +81,24 @@ fn a_three_phase_bank_is_sized_from_what_its_poles_can_leave() {
     // In star three resistors have to be a third each of those in delta.
     let star = greatest(bank, 75.0, 180.0, Some(Connection::Star));
     assert!((star * 3.0 / delta - 1.0).abs() < 1e-8, "{star} {delta}");
+}
+
+#[test]
+fn a_fast_charge_divides_by_capacitance() {
+    let text = format!(
+        "{}capacitors: [{{id: C1, value: 4.00 pF, across: [P, M], rated: 500 V}}, {{id: C2, value: 8.00 pF, across: [M, N], \
+         rated: 500 V}}]\n",
+        head("400 V", "50 V")
+    );
+    let elements = read_stock("generic", generic_stock().as_bytes()).expect("a valid list");
+    let build = Build { elements, show: 1, ..Build::default() };
+    let ask = BalancingAsk { build, leakage: Some(Current::from_si(1e-6)), ..BalancingAsk::default() };
+    let sizing = balancing(&read(&text), "", &ask).unwrap_or_else(|e| panic!("{text}{e}"));
+    let units = &sizing.candidates.first().unwrap_or_else(|| panic!("{:?}", sizing.findings)).figures.units;
+    let divided = |k: usize| units[k].fast_charge.expect("asked").si();
+    let source = "OpenStax, University Physics 2, 8.2, division by capacitance";
+    confirm(&[
+        Row { source, figure: "voltage of 4.00 pF", stated: "267", found: divided(0) },
+        Row { source, figure: "voltage of 8.00 pF", stated: "133", found: divided(1) },
+    ]);
 }

@@ -22,7 +22,8 @@ pub fn with_groups(name: &str, bytes: &[u8], id: &str, groups: &[Capacitor]) -> 
     let text = replaced(&source, &tree, id, groups).ok_or_else(|| {
         by_hand(&format!("the entry of {id} stands neither in lines of its own nor in braces without comments"))
     })?;
-    let mut expected = super::read(name, bytes).map_err(|_| by_hand("the file is no bank file"))?.0.description().clone();
+    let mut expected =
+        super::read(name, bytes).map_err(|_| by_hand("the file is no bank file"))?.0.description().clone();
     if let Some(at) = expected.capacitors.iter().position(|c| c.id == id) {
         expected.capacitors.splice(at..=at, groups.iter().cloned());
     }
@@ -36,7 +37,8 @@ fn replaced(source: &Source, tree: &Node, id: &str, groups: &[Capacitor]) -> Opt
     let Content::Mapping(top) = &tree.content else { return None };
     let (key, list) = tree.get("capacitors")?;
     let Content::Sequence(entries) = &list.content else { return None };
-    let is = |node: &Node| matches!(&node.get("id")?.1.content, Content::Scalar { text, .. } if text == id).then_some(());
+    let is =
+        |node: &Node| matches!(&node.get("id")?.1.content, Content::Scalar { text, .. } if text == id).then_some(());
     let at = entries.iter().position(|node| is(node).is_some())?;
     let entry = entries.get(at)?;
     let lines: Vec<&str> = source.text.lines().collect();
@@ -62,12 +64,7 @@ fn replaced(source: &Source, tree: &Node, id: &str, groups: &[Capacitor]) -> Opt
 }
 
 /// An entry in braces that begins at a line and a column, both from 1.
-fn in_braces(
-    lines: &[&str],
-    (line, column): (usize, usize),
-    texts: &[String],
-    in_brackets: bool,
-) -> Option<String> {
+fn in_braces(lines: &[&str], (line, column): (usize, usize), texts: &[String], in_brackets: bool) -> Option<String> {
     let (last, close) = closing(lines, line - 1, column - 1)?;
     let first = lines.get(line - 1)?;
     let head: String = first.chars().take(column - 1).collect();
@@ -146,7 +143,12 @@ mod tests {
         let (bank, _) = super::super::read("bank.yaml", text.as_bytes()).unwrap_or_else(|e| panic!("{text}{e:?}"));
         let c = bank.description().capacitors.iter().find(|c| c.id == "C1").expect("it is there").clone();
         let node = |at: usize| ["P", "M", "N"][at].to_string();
-        let one = |k: usize| Capacitor { id: format!("C1.{}", k + 1), across: [node(k), node(k + 1)], series: 1, ..c.clone() };
+        let one = |k: usize| Capacitor {
+            id: format!("C1.{}", k + 1),
+            across: [node(k), node(k + 1)],
+            series: 1,
+            ..c.clone()
+        };
         vec![one(0), one(1)]
     }
 
@@ -163,19 +165,30 @@ mod tests {
              {{series: 2}}\n    rated: 450 V # each\n  # the filter\n  - {{id: C2, value: 1 uF}}\n# the end\n"
         );
         let after = with(&text).unwrap_or_else(|e| panic!("{e}"));
-        for kept in ["# A bank.", "  # the bus", "# \u{b5}: two in series", "# inside", "# each", "  # the filter", "# the end"] {
+        for kept in
+            ["# A bank.", "  # the bus", "# \u{b5}: two in series", "# inside", "# each", "  # the filter", "# the end"]
+        {
             assert!(after.contains(kept), "{kept}: {after}");
         }
-        assert!(after.contains("  - {id: C1.1, value: 470 uF, across: [P, M], rated: 450 V}\n  - {id: C1.2"), "{after}");
+        assert!(
+            after.contains("  - {id: C1.1, value: 470 uF, across: [P, M], rated: 450 V}\n  - {id: C1.2"),
+            "{after}"
+        );
         assert!(!after.replace("two in series", "").contains("series"), "{after}");
     }
 
     #[test]
     fn an_entry_in_braces_gives_way_in_its_line() {
         for (list, kept) in [
-            ("\n  - {id: C1, value: 470 uF, units: {series: 2}, rated: 450 V}   # the bus\n  - {id: C2, value: 1 uF}\n", "# the bus"),
+            (
+                "\n  - {id: C1, value: 470 uF, units: {series: 2}, rated: 450 V}   # the bus\n  - {id: C2, value: 1 uF}\n",
+                "# the bus",
+            ),
             (" [{id: C2, value: 1 uF}, {id: C1, value: 470 uF, units: {series: 2}}] # all\n", "}] # all"),
-            ("\n- {id: C1, value: 470 uF,\n   dielectric: 'aluminium-electrolytic', units: {series: 2}} # two lines\n", "# two lines"),
+            (
+                "\n- {id: C1, value: 470 uF,\n   dielectric: 'aluminium-electrolytic', units: {series: 2}} # two lines\n",
+                "# two lines",
+            ),
             (" [{id: \"C1\", value: 470 uF, units: {series: 2}}]\r\n", "]\r\n"),
         ] {
             let text = format!("{HEAD}capacitors:{list}notes: 'a } brace'\n");
@@ -186,9 +199,10 @@ mod tests {
 
     #[test]
     fn an_entry_that_can_not_be_told_apart_is_refused_with_what_to_do() {
-        for list in
-            [" [{id: C1, # inside\n  value: 470 uF, units: {series: 2}}]\n", "\n  -\n    id: C1\n    value: 1 mF\n    units: {series: 2}\n"]
-        {
+        for list in [
+            " [{id: C1, # inside\n  value: 470 uF, units: {series: 2}}]\n",
+            "\n  -\n    id: C1\n    value: 1 mF\n    units: {series: 2}\n",
+        ] {
             let refused = with(&format!("{HEAD}capacitors:{list}"));
             assert!(refused.as_ref().is_err_and(|e| e.contains("--part")), "{refused:?}");
         }

@@ -14,9 +14,8 @@ pub fn size_balancing(sizing: &Sizing<BalancingFigures>) -> SizeReport {
         up(sizing.charged_to.highest)
     );
     let first = sizing.candidates.first();
-    let each = first.map_or_else(String::new, |c| {
-        format!(" across each of {}", count(c.figures.units.len(), "unit", "units"))
-    });
+    let each = first
+        .map_or_else(String::new, |c| format!(" across each of {}", count(c.figures.units.len(), "unit", "units")));
     let explained = "* none other has as few elements, as little loss and as short a wait, and less of one. Unit: the \
                      highest voltage of any unit. Loss: at the highest voltage, all of them. Each design was put into the \
                      bank and planned in full; waits are that plan's.";
@@ -72,7 +71,8 @@ fn designs(candidates: &[Candidate<BalancingFigures>]) -> Grid {
 
 fn units(units: &[UnitShare]) -> Grid {
     let fast = units.iter().any(|u| u.fast_charge.is_some());
-    let mut columns = vec![("Unit", Side::Left), ("Across", Side::Left), ("With", Side::Left), ("Settled", Side::Right)];
+    let mut columns =
+        vec![("Unit", Side::Left), ("Across", Side::Left), ("With", Side::Left), ("Settled", Side::Right)];
     if fast {
         columns.extend([("Fast", Side::Right), ("Then", Side::Right)]);
     }

@@ -3,6 +3,7 @@
 use super::Job;
 use super::probe::Point;
 use super::request::BalancingAsk;
+use super::shares::AfterFastCharge;
 use crate::quantity::{Current, Direction, Power, Quantity, Time, Voltage, celsius, duration, exact, show};
 use crate::size::arrays::usable_power;
 use crate::size::scan::{Demand, Measure, ratio};
@@ -27,13 +28,21 @@ fn greatest_ratio(found: &[f64], allowed: &[f64]) -> f64 {
     found.iter().zip(allowed).map(|(found, allowed)| ratio(*found, *allowed)).fold(0.0, f64::max)
 }
 
+/// Voltages after a fast charge, without the end of the way: where that is the highest of it, the settled division is what
+/// bounds the resistors.
+fn on_the_way(fast: &AfterFastCharge, settled: &[f64]) -> Vec<f64> {
+    let way = fast.greatest.iter().zip(settled).zip(&fast.divided);
+    way.map(|((most, end), start)| if *most > end * (1.0 + 1e-9) { *most } else { *start }).collect()
+}
+
 impl Measure<Point> for Kind {
     fn ratio(&self, point: &Point) -> f64 {
         match self {
             Kind::Settled(rated) => greatest_ratio(&point.settled, rated),
-            Kind::FastCharge(rated) => {
-                point.fast.as_ref().map_or(f64::INFINITY, |fast| greatest_ratio(&fast.greatest, rated))
-            }
+            Kind::FastCharge(rated) => point
+                .fast
+                .as_ref()
+                .map_or(f64::INFINITY, |fast| greatest_ratio(&on_the_way(fast, &point.settled), rated)),
             Kind::Loss(watt) => ratio(point.loss, *watt),
             Kind::Rating(watt) => ratio(point.power, *watt),
             Kind::Limit(index) => {

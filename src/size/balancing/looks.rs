@@ -109,11 +109,10 @@ impl<'a> Looks<'a> {
     }
 
     /// The one that is told of: of the closest tolerance, with the most strings.
-    #[allow(clippy::indexing_slicing)] // A build has elements, or it was refused.
     pub fn shown(&self) -> &Look<'a> {
-        let closest = |x: &&Look, y: &&Look| {
-            x.key.width().total_cmp(&y.key.width()).then(y.key.strings.cmp(&x.key.strings))
-        };
+        let closest =
+            |x: &&Look, y: &&Look| x.key.width().total_cmp(&y.key.width()).then(y.key.strings.cmp(&x.key.strings));
+        // A build without elements was refused.
         self.0.iter().min_by(closest).unwrap_or(&self.0[0])
     }
 }

@@ -75,7 +75,8 @@ pub fn balancing(bank: &Bank, input_sha256: &str, ask: &BalancingAsk) -> Result<
     let looks = Looks::at(&probes, job.middle(), &demands)?;
     let shown = looks.shown();
     let overload = |design: &Design, element: &Element| {
-        let (watt, volt) = element_load(design, element.tolerance, looks.of(element.tolerance, design.parallel).volts(design));
+        let (watt, volt) =
+            element_load(design, element.tolerance, looks.of(element.tolerance, design.parallel).volts(design));
         if clearly_over(watt, usable_power(&element.rating, job.ambient, ask.build.margin)) {
             return Some("power");
         }
@@ -169,7 +170,8 @@ impl Job {
         let none = |leakage: &crate::quantity::Current| leakage.si() <= 0.0;
         if ask.leakage.as_ref().is_some_and(none) {
             return Err(SizeError::Asked(
-                "without leakage there is nothing to balance when settled; write its greatest, such as `--leakage 3mA`".into(),
+                "without leakage there is nothing to balance when settled; write its greatest, such as `--leakage 3mA`"
+                    .into(),
             ));
         }
         let found = string::found(bank.description(), &across, ask.capacitor.as_deref())?;
@@ -211,8 +213,7 @@ impl Job {
             phases: None,
         };
         let (ambient, fast_charge) = (ask.ambient.unwrap_or_else(|| bank.ambient()), ask.fast_charge);
-        let job =
-            Job { description, across, members, bears, written_out, place, counted, ambient, fast_charge };
+        let job = Job { description, across, members, bears, written_out, place, counted, ambient, fast_charge };
         Ok((job, assumptions))
     }
 
@@ -260,7 +261,9 @@ fn prefix(asked: Option<&str>, description: &Description, how_many: usize) -> Re
     if let Some(prefix) = asked {
         return match clash(prefix) {
             None => Ok(prefix.to_string()),
-            Some(id) => Err(SizeError::Asked(format!("the bank has a part `{id}`; write another name, such as `--id RX`"))),
+            Some(id) => {
+                Err(SizeError::Asked(format!("the bank has a part `{id}`; write another name, such as `--id RX`")))
+            }
         };
     }
     let wishes = std::iter::once("RB".to_string()).chain((2..).map(|n| format!("RB{n}.")));

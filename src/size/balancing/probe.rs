@@ -84,8 +84,7 @@ impl<'a> Fitted<'a> {
         let mut found = limits.holds(&healthy);
         let asked: Vec<bool> = bank.description().limits.iter().map(|l| l.single_fault).collect();
         if self.job.counted.iter().any(|i| asked.get(*i) == Some(&true)) {
-            let under =
-                FaultAnswers::all(bank, &model, faults(bank, &model), &limits.fault_figures(), &healthy)?;
+            let under = FaultAnswers::all(bank, &model, faults(bank, &model), &limits.fault_figures(), &healthy)?;
             for ((one, other), asked) in found.iter_mut().zip(limits.holds_under(&under)).zip(asked) {
                 if let Some((held, _)) = one.as_mut().filter(|_| asked) {
                     *held = held.max(other.map_or(f64::INFINITY, |(held, _)| held));

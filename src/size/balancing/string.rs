@@ -48,7 +48,9 @@ pub(super) fn found(description: &Description, across: &Pair, capacitor: Option<
         return asked(format!("the bank has no capacitor `{id}`; it has {}", known.join(", ")));
     }
     if let Some(node) = across.iter().find(|node| !touched(description, node)) {
-        return asked(format!("no capacitor touches a node `{node}`; write the two ends of the string, `--across P,N`"));
+        return asked(format!(
+            "no capacitor touches a node `{node}`; write the two ends of the string, `--across P,N`"
+        ));
     }
     let mut strings = strings(description, across)?;
     if let Some(id) = capacitor {
@@ -74,7 +76,13 @@ pub(super) fn found(description: &Description, across: &Pair, capacitor: Option<
                 "{} strings of capacitors lie between {between}; write a capacitor of the one that is meant: `--capacitor \
                  {}`",
                 several.len(),
-                several.iter().map(name).collect::<BTreeSet<_>>().into_iter().collect::<Vec<_>>().join("` or `--capacitor ")
+                several
+                    .iter()
+                    .map(name)
+                    .collect::<BTreeSet<_>>()
+                    .into_iter()
+                    .collect::<Vec<_>>()
+                    .join("` or `--capacitor ")
             ))
         }
     }
@@ -143,8 +151,12 @@ fn members(
     links: &Links,
     capacitor: Option<&str>,
 ) -> Result<Found, SizeError> {
-    let mut found =
-        Found { description: description.clone(), across: across.clone(), members: Vec::new(), written_out: Vec::new() };
+    let mut found = Found {
+        description: description.clone(),
+        across: across.clone(),
+        members: Vec::new(),
+        written_out: Vec::new(),
+    };
     let mut here = across[0].clone();
     for link in links {
         let of = |i: &usize| &description.capacitors[*i];

@@ -75,7 +75,8 @@ pub(super) fn about_the_first(figures: &BalancingFigures, not_met: &[String]) ->
 pub(super) fn assumptions(bank: &Bank, ask: &BalancingAsk, job: &Job, told: Vec<String>, shown: &Look) -> Vec<String> {
     let percent = |share: f64| show(Ratio::from_si(share), Direction::Up);
     let (low, high) = shown.tolerance();
-    let spread = if low <= 0.0 && high <= 0.0 { "no tolerance".into() } else { format!("-{}/+{}", percent(low), percent(high)) };
+    let spread =
+        if low <= 0.0 && high <= 0.0 { "no tolerance".into() } else { format!("-{}/+{}", percent(low), percent(high)) };
     let mut list = vec![format!(
         "The window is one of MARKED resistance across each unit, for the closest tolerance at hand ({spread}), every one \
          of the resistors anywhere in it on its own. Designs of another tolerance have a window of their own."
@@ -93,7 +94,9 @@ pub(super) fn assumptions(bank: &Bank, ask: &BalancingAsk, job: &Job, told: Vec<
     ));
     if ask.fast_charge {
         let all = shown.scan.points().iter().filter_map(|(_, p)| p.fast.as_ref()).all(|fast| fast.every_corner);
-        let how = if all { "every corner of the tolerances and a search inside them" } else {
+        let how = if all {
+            "every corner of the tolerances and a search inside them"
+        } else {
             "a search from many starts, beside its two ends, which are exact"
         };
         list.push(format!(
@@ -101,7 +104,9 @@ pub(super) fn assumptions(bank: &Bank, ask: &BalancingAsk, job: &Job, told: Vec<
              dielectrics take up slowly (absorption) is left out of it."
         ));
     } else {
-        list.push("No fast charge: the bank is taken to be charged so slowly that the resistors set the division.".into());
+        list.push(
+            "No fast charge: the bank is taken to be charged so slowly that the resistors set the division.".into(),
+        );
     }
     list.push(
         "The power of an element is that at the highest voltage of a unit, the element at the worst end of its tolerance. \
@@ -121,7 +126,9 @@ pub(super) fn assumptions(bank: &Bank, ask: &BalancingAsk, job: &Job, told: Vec<
         None => {}
     }
     if ask.target.is_none() && !ask.limits {
-        list.push("The limits of the file don't bound the resistors (`--limits`); the plan checks them all the same.".into());
+        list.push(
+            "The limits of the file don't bound the resistors (`--limits`); the plan checks them all the same.".into(),
+        );
     }
     list
 }
