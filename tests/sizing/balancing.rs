@@ -186,7 +186,7 @@ fn a_fast_charge_that_breaks_a_rating_is_told_with_how_much_and_no_resistor_help
     assert_eq!((sizing.exit_code(), sizing.window.is_none(), sizing.candidates.len()), (1, true, 0));
     let finding = &sizing.findings[0];
     assert_eq!(finding.code, "fast-charge-over-rated");
-    for part in ["480 V", "450 V", "30 V too much", "No resistor"] {
+    for part in ["480 V", "450 V", "30.0 V too much", "No resistor"] {
         assert!(finding.text.contains(part), "{part}: {}", finding.text);
     }
     for part in ["closer tolerance", "more units", "higher rated", "--slow-charge"] {
@@ -316,7 +316,10 @@ fn an_element_of_2_watt_is_refused_where_a_unit_at_its_rated_voltage_takes_more(
     let refused = balanced(&file, &ask(2.0));
     assert_eq!((refused.exit_code(), refused.candidates.len()), (1, 0));
     let told = format!("{:?}", refused.findings);
-    assert!(told.contains("demands-collide") && told.contains("2.26 W"), "{told}");
+    assert!(
+        told.contains("demands-collide") && told.contains("2.25 W") && told.contains("marked resistance"),
+        "{told}"
+    );
     let taken = balanced(&file, &ask(2.3));
     assert_relative_eq!(taken.candidates[0].figures.element_power.si(), 2.25, max_relative = 1e-9);
     assert!(balanced(&file, &ask(2.2)).candidates.is_empty());
@@ -412,13 +415,18 @@ fn a_string_behind_a_series_resistor_is_charged_through_it() {
          tolerance: 10 %, across: [A, M], rated: 450 V}}\n  - {{id: C2, value: 100 uF, tolerance: 10 %, across: [M, N], rated: \
          450 V}}\nresistors:\n  - {{id: R1, role: series, value: 10 ohm, tolerance: 5 %, across: [P, A]}}\n"
     );
+    let stock = "elements: [{name: a, value: 100 kohm, tolerance: 1 %, rating: {power: 10 W, full_to: 70 °C, zero_at: 155 °C, \
+                 voltage: 1 kV}}]\n";
+    let build = Build { elements: elements(stock), series_up_to: 1, parallel_up_to: 1, ..Build::default() };
     let across = Some(["A".to_string(), "N".to_string()]);
-    let sizing = balanced(&bank(&text), &BalancingAsk { across, ..ask(1.0, 0.2e-3) });
+    let sizing = balanced(&bank(&text), &BalancingAsk { across, build, ..ask(1.0, 0.02e-3) });
     let unit = &sizing.candidates.first().unwrap_or_else(|| panic!("{:?}", sizing.findings)).figures.units[0];
     assert_eq!(unit.fast_charge, Some(Voltage::from_si(0.0)));
-    // 10 ohm is nothing to 100 uF of 10 % at these resistances: 0.55 of 800 V is passed on the way.
+    // 10 ohm is nothing to 100 uF at these resistances: within milliseconds capacitance divides, 0.55 of 800 V, and from
+    // there the way goes down to the settled 1.01 (800 + 0.99 * 2) / 2 V.
     let after = unit.after_fast_charge.expect("asked").si();
-    assert!((439.0..441.0).contains(&after) && unit.settled.si() < after, "{unit:?}");
+    assert!((439.5..440.0).contains(&after), "{unit:?}");
+    assert!((404.0..405.0).contains(&unit.settled.si()), "{unit:?}");
 }
 
 #[test]

@@ -49,6 +49,11 @@ impl Strung<'_> {
         self.model.terminals.iter().map(at).collect()
     }
 
+    /// True where the resistors at the string and its capacitors are a plain chain.
+    pub fn is_chain(&self) -> bool {
+        chain::resistors_are_a_chain(self) && chain::capacitors_are_a_chain(self)
+    }
+
     fn network(&self, point: &[f64]) -> Network {
         self.model.network(self.variation, point, &[])
     }

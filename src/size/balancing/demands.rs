@@ -95,9 +95,16 @@ pub(super) fn demands(job: &Job, ask: &BalancingAsk) -> Vec<Demand<Kind>> {
     demands
 }
 
+/// What could be otherwise at a resistance.
+pub(super) struct Without {
+    /// The highest settled voltage in volt if no unit leaked.
+    pub leakage: f64,
+    /// True where the resistors have a tolerance.
+    pub tolerance: bool,
+}
+
 /// What a demand would have to allow for the resistance at which `point` was found.
-/// `without_leakage` is the highest settled voltage there if no unit leaked, in volt.
-pub(super) fn way_for(job: &Job, demand: &Demand<Kind>, point: &Point, without_leakage: f64) -> Vec<String> {
+pub(super) fn way_for(job: &Job, demand: &Demand<Kind>, point: &Point, without: &Without) -> Vec<String> {
     let rated = |found: &[f64]| {
         let highest = found.iter().copied().fold(0.0, f64::max);
         if highest.is_finite() {
@@ -109,8 +116,8 @@ pub(super) fn way_for(job: &Job, demand: &Demand<Kind>, point: &Point, without_l
     match &demand.kind {
         Kind::Settled(_) => {
             let mut ways = rated(&point.settled);
-            ways.extend(leakage_for(job, without_leakage, point));
-            ways.push("a closer tolerance of the resistors".into());
+            ways.extend(leakage_for(job, without.leakage, point));
+            ways.extend(without.tolerance.then(|| "a closer tolerance of the resistors".to_string()));
             ways
         }
         Kind::FastCharge(_) => point.fast.as_ref().map_or_else(Vec::new, |fast| rated(&fast.greatest)),

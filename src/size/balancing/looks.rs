@@ -2,7 +2,7 @@
 
 use super::Job;
 use super::demands::Kind;
-use super::probe::Fitted;
+use super::probe::{Fitted, Point};
 use super::request::BalancingAsk;
 use crate::quantity::Tolerance;
 use crate::size::arrays::Design;
@@ -70,20 +70,26 @@ impl Look<'_> {
         Spans::of(self.window.as_slice().iter().map(wide).collect())
     }
 
+    /// True where actual values can lie off the marked one.
+    pub fn has_tolerance(&self) -> bool {
+        self.key.width() > 1.0
+    }
+
     /// How far actual values lie from the marked one, as shares below and above.
     pub fn tolerance(&self) -> (f64, f64) {
         (1.0 - self.key.low, self.key.high - 1.0)
     }
 
-    /// A voltage in volt that the highest of all units clearly reaches with a design. In a plain chain the settled
-    /// voltage is a straight line over the resistance, or one that bends upwards where another corner takes over; what
-    /// comes after a fast charge only grows with it.
+    /// A voltage in volt that the highest of all units clearly reaches with a design: the lower one of its neighbours. In
+    /// a plain chain voltages only grow with the resistance.
     pub fn volts(&self, design: &Design) -> f64 {
         let ohms = design.value * f64::from(design.series) / f64::from(design.parallel);
         let points = self.scan.points();
         let after = points.partition_point(|(at, _)| *at < ohms);
-        let below = after.checked_sub(1).and_then(|at| points.get(at)).or(points.first());
-        below.map_or(0.0, |(_, point)| point.highest().into_iter().fold(0.0, f64::max))
+        let (below, above) = (after.checked_sub(1).and_then(|at| points.get(at)), points.get(after));
+        let highest = |(_, point): &(f64, Point)| point.highest().into_iter().fold(0.0, f64::max);
+        let found = below.into_iter().chain(above).map(highest).reduce(f64::min);
+        found.unwrap_or(0.0)
     }
 }
 

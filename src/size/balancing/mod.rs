@@ -32,7 +32,7 @@ use crate::bank::stock::Element;
 use crate::finding::Finding;
 use crate::plan::{ChargedTo, Stamp};
 use crate::quantity::{Quantity, Resistance, Temperature};
-use demands::{Kind, demands, instead, nowhere, way_for};
+use demands::{Kind, Without, demands, instead, nowhere, way_for};
 use looks::{Looks, probes};
 use string::Member;
 use told::{about_the_first, assumptions, over_by_fast_charge, part_text, written_out_text};
@@ -93,11 +93,11 @@ pub fn balancing(bank: &Bank, input_sha256: &str, ask: &BalancingAsk) -> Result<
     let mut findings: Vec<Finding> = over.iter().cloned().collect();
     if shown.window.is_empty() {
         let allow = |demand: &Demand<Kind>, point: &probe::Point| {
-            let without = shown.probe.without_leakage(point.ohms).unwrap_or(f64::NAN);
-            way_for(&job, demand, point, without)
+            let leakage = shown.probe.without_leakage(point.ohms).unwrap_or(f64::NAN);
+            way_for(&job, demand, point, &Without { leakage, tolerance: shown.has_tolerance() })
         };
         let ways = Ways { allow: &allow, instead: &instead, nowhere: &nowhere };
-        findings.extend(collision::explained(&demands, &shown.spans, &shown.scan, &ways)?);
+        findings.extend(collision::explained_over("a marked resistance", &demands, &shown.spans, &shown.scan, &ways)?);
     } else if candidates.is_empty() && over.is_none() {
         findings.push(nothing_fits(&ask.build, &found, refused, &window));
     }

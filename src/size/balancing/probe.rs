@@ -75,6 +75,11 @@ impl<'a> Fitted<'a> {
         Ok(settled.into_iter().fold(0.0, f64::max))
     }
 
+    /// True where the string is a plain chain.
+    pub fn is_chain(&self) -> bool {
+        self.shares.is_chain()
+    }
+
     fn limits(&self, ohms: f64) -> Result<Vec<(f64, f64)>, EngineError> {
         let Some((bank, model, numbers)) = &self.planned else { return Ok(Vec::new()) };
         let mut model = model.clone();

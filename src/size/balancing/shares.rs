@@ -3,7 +3,7 @@
 use super::string::Member;
 use super::units::Bears;
 use crate::bank::Bank;
-use crate::bank::description::{Description, Resistor};
+use crate::bank::description::{Capacitor, Description, Resistor};
 use crate::check::EngineError;
 use crate::discharge::{
     self, Method, Model, Risen, RisenFigure, Settled, SettledFigure, Strung, Unit, Variation, Worst,
@@ -19,6 +19,9 @@ pub(super) struct Shares {
     risen: Model,
     units: Vec<Unit>,
     resistors: Vec<usize>,
+    /// For every unit the first that is like it: in a plain chain what holds of the one holds of the other, since the
+    /// order of units changes nothing.
+    like: Vec<usize>,
 }
 
 /// Greatest voltages in volt of every unit after a fast charge.
@@ -50,7 +53,12 @@ impl Shares {
         };
         let units = members.iter().zip(bears).map(unit).collect();
         let resistors = resistors.iter().filter_map(|r| risen.find_resistor(&r.id)).collect();
-        Ok(Shares { settled, risen, units, resistors })
+        let mut shares = Shares { settled, risen, units, resistors, like: (0..members.len()).collect() };
+        if shares.is_chain() {
+            let parts: Vec<_> = members.iter().zip(bears).map(|(m, b)| (parts_across(description, m), b)).collect();
+            shares.like = parts.iter().map(|this| parts.iter().position(|p| p == this).unwrap_or_default()).collect();
+        }
+        Ok(shares)
     }
 
     /// The same with every new resistor of so many ohm at its marked value; infinite is without them.
@@ -69,6 +77,11 @@ impl Shares {
         shares
     }
 
+    /// True where the string is a plain chain, of which more is proven than of other networks.
+    pub fn is_chain(&self) -> bool {
+        self.strung(&self.risen, 0.0, &Variation::default()).is_chain()
+    }
+
     fn strung<'a>(&'a self, model: &'a Model, volts: f64, variation: &'a Variation) -> Strung<'a> {
         Strung { model, units: &self.units, resistors: &self.resistors, volts, variation }
     }
@@ -78,10 +91,13 @@ impl Shares {
     pub fn settled(&self, volts: f64, open: Option<(usize, f64)>) -> Result<Vec<f64>, EngineError> {
         let resistor = open.and_then(|(number, factor)| Some((*self.resistors.get(number)?, factor)));
         let variation = Variation { resistor, ..Variation::default() };
-        let figures: Vec<SettledFigure> = (0..self.units.len()).map(SettledFigure::Unit).collect();
+        // With a resistor open, units are no longer alike.
+        let asked = if open.is_some() { (0..self.units.len()).collect() } else { self.unlike() };
+        let figures: Vec<SettledFigure> = asked.into_iter().map(SettledFigure::Unit).collect();
         let study = Settled { strung: self.strung(&self.settled, volts, &variation), figures: &figures };
         let found = discharge::worst(&study).map_err(EngineError::of("the settled division"))?;
-        Ok(found.into_iter().map(|w| w.value).collect())
+        let found = found.into_iter().map(|w| w.value).collect();
+        Ok(if open.is_some() { found } else { self.for_all(found) })
     }
 
     /// Greatest power in watt of all new resistors together, without leakage.
@@ -102,20 +118,33 @@ impl Shares {
 
     /// Greatest voltages in volt of every unit right after a fast charge: no resistor has a say in them.
     pub fn divided(&self, volts: f64) -> Result<Vec<f64>, EngineError> {
-        let figures: Vec<RisenFigure> = (0..self.units.len()).map(RisenFigure::Divided).collect();
-        Ok(self.risen(volts, &figures)?.into_iter().map(|w| w.value).collect())
+        let figures: Vec<RisenFigure> = self.unlike().into_iter().map(RisenFigure::Divided).collect();
+        Ok(self.for_all(self.risen(volts, &figures)?.into_iter().map(|w| w.value).collect()))
     }
 
     /// The same, and the greatest from then on.
     pub fn after_fast_charge(&self, volts: f64) -> Result<AfterFastCharge, EngineError> {
         let divided = self.divided(volts)?;
-        let figures: Vec<RisenFigure> = (0..self.units.len()).map(RisenFigure::Greatest).collect();
+        let figures: Vec<RisenFigure> = self.unlike().into_iter().map(RisenFigure::Greatest).collect();
         let found = self.risen(volts, &figures)?;
         let every_corner = !found.iter().any(|w| matches!(w.method, Method::Searched { .. }));
         // The ends of the way count where a search inside the box has not come upon them.
         let ends = divided.iter().zip(self.settled(volts, None)?).map(|(divided, settled)| divided.max(settled));
-        let greatest = found.iter().zip(ends).map(|(w, ends)| w.value.max(ends)).collect();
+        let found = self.for_all(found.into_iter().map(|w| w.value).collect());
+        let greatest = found.into_iter().zip(ends).map(|(found, ends)| found.max(ends)).collect();
         Ok(AfterFastCharge { divided, greatest, every_corner })
+    }
+
+    /// Units of which no other before is like them.
+    fn unlike(&self) -> Vec<usize> {
+        (0..self.units.len()).filter(|k| self.like[*k] == *k).collect()
+    }
+
+    /// Figures of all units from those of the units that are unlike.
+    fn for_all(&self, of_unlike: Vec<f64>) -> Vec<f64> {
+        let unlike = self.unlike();
+        let of = |k: &usize| unlike.iter().position(|u| u == k).and_then(|at| of_unlike.get(at)).copied();
+        self.like.iter().map(|k| of(k).unwrap_or(f64::NAN)).collect()
     }
 
     fn risen(&self, volts: f64, figures: &[RisenFigure]) -> Result<Vec<Worst>, EngineError> {
@@ -123,6 +152,25 @@ impl Shares {
         let study = Risen { strung: self.strung(&self.risen, volts, &variation), figures };
         discharge::worst(&study).map_err(EngineError::of("the way after a fast charge"))
     }
+}
+
+/// What lies across a unit, without the names.
+fn parts_across(description: &Description, member: &Member) -> (Vec<Capacitor>, Vec<Resistor>) {
+    let nameless = || (String::new(), [String::new(), String::new()]);
+    let capacitors = description.capacitors.iter().filter(|c| member.capacitors.contains(&c.id));
+    let of_capacitor = |c: &Capacitor| {
+        let (id, across) = nameless();
+        Capacitor { id, across, ..c.clone() }
+    };
+    let [a, b] = &member.across;
+    let is_across =
+        |r: &&Resistor| (r.across[0] == *a && r.across[1] == *b) || (r.across[0] == *b && r.across[1] == *a);
+    let of_resistor = |r: &Resistor| {
+        let (id, across) = nameless();
+        Resistor { id, across, ..r.clone() }
+    };
+    let resistors = description.resistors.iter().filter(is_across);
+    (capacitors.map(of_capacitor).collect(), resistors.map(of_resistor).collect())
 }
 
 fn model(description: &Description) -> Result<Model, SizeError> {

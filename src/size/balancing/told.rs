@@ -103,6 +103,13 @@ pub(super) fn assumptions(bank: &Bank, ask: &BalancingAsk, job: &Job, told: Vec<
             "A fast charge brings the terminals from 0 V to that at once; the way from there on is the worst of {how}. What \
              dielectrics take up slowly (absorption) is left out of it."
         ));
+        if !shown.probe.is_chain() {
+            list.push(
+                "Other parts lie at the inside of the string. On the way after a fast charge leakages count as they do where \
+                 it has settled, which is proven to be the worst for a plain string only."
+                    .into(),
+            );
+        }
     } else {
         list.push(
             "No fast charge: the bank is taken to be charged so slowly that the resistors set the division.".into(),
