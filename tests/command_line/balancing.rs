@@ -107,7 +107,7 @@ fn a_request_that_makes_no_sense_is_refused_with_what_to_write_instead() {
     let unlimited = BANK.replace("limits: [{id: site, voltage: 50 V, within: 5 min}]\n", "");
     for (words, bank, told) in [
         (&[][..], BANK, "--leakage 3mA"),
-        (&["--leakage", "3"], BANK, "3 mA"),
+        (&["--leakage", "3"], BANK, "40 mA"),
         (&["--leakage", "0A"], BANK, "--leakage"),
         (&["--leakage", "1mA", "--max-loss", "0W"], BANK, "--max-loss"),
         (&["--leakage", "1mA"], &unrated, "--rated 450V"),
