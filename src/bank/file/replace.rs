@@ -191,7 +191,7 @@ mod tests {
             ),
             (" [{id: \"C1\", value: 470 uF, units: {series: 2}}]\r\n", "]\r\n"),
         ] {
-            let text = format!("{HEAD}capacitors:{list}notes: 'a } brace'\n");
+            let text = format!("{HEAD}capacitors:{list}notes: 'a }} brace'\n");
             let after = with(&text).unwrap_or_else(|e| panic!("{e}\n{text}"));
             assert!(after.contains(kept) && after.contains("C1.2") && after.contains("a } brace"), "{after}");
         }
