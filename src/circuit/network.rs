@@ -2,7 +2,7 @@
 
 use super::CircuitError;
 use super::graph::Sets;
-use super::laplacian::{charged_potentials, held_potentials};
+use super::laplacian::{charged_potentials, held_potentials, mixed_potentials};
 
 /// A part between two nodes. The voltage of a part is that of `a` against `b`.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -93,6 +93,20 @@ impl Network {
         let edges = self.capacitances().map(|(a, b, c)| (joined(a), joined(b), c));
         let by_capacitance = held_potentials(self.nodes, edges, &by_resistance);
         (0..self.nodes).map(|n| by_capacitance[joined(n)].unwrap_or(0.0)).collect()
+    }
+
+    /// Potentials in volt of all nodes with some of them held for so long that capacitors carry no current, while
+    /// currents in ampere are drawn: each from its first node, and given back at its second. `None` for a node that no
+    /// resistors tie to a held one.
+    pub fn loaded_point(&self, held: &[(usize, f64)], drawn: &[(usize, usize, f64)]) -> Vec<Option<f64>> {
+        let mut fixed = vec![None; self.nodes];
+        held.iter().for_each(|(node, voltage)| fixed[*node] = Some(*voltage));
+        let mut given = vec![0.0; self.nodes];
+        for (from, to, ampere) in drawn {
+            given[*from] -= ampere;
+            given[*to] += ampere;
+        }
+        mixed_potentials(self.nodes, self.conductances(), &fixed, &given)
     }
 
     /// Capacitor voltages in volt at infinite time: resistors have made their nodes equal, and each such part has

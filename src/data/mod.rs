@@ -12,6 +12,6 @@ mod series;
 
 pub use bands::{EnergyBand, energy_bands};
 pub use banks::{demo_banks, draft, example_bank, generic_stock};
-pub use dielectrics::{Dielectric, Range, dielectric, dielectrics};
+pub use dielectrics::{Dielectric, LeakageRule, Range, dielectric, dielectrics};
 pub use limits::{Alternative, LimitKind, PublishedLimit, published_limit, published_limits};
 pub use series::Series;

@@ -78,11 +78,20 @@ pub(super) fn listed(
     window: impl Fn(u32) -> Spans,
     overload: impl Fn(&Design, &Element) -> Option<&'static str>,
 ) -> Listed {
+    listed_by(build, |parallel, _| window(parallel), overload)
+}
+
+/// The same with spans that depend on the element too.
+pub(super) fn listed_by(
+    build: &Build,
+    window: impl Fn(u32, &Element) -> Spans,
+    overload: impl Fn(&Design, &Element) -> Option<&'static str>,
+) -> Listed {
     let mut found = Listed::default();
     for parallel in 1..=build.parallel_up_to {
-        let spans = window(parallel);
-        for series in 1..=build.series_up_to {
-            for (index, element) in build.elements.iter().enumerate() {
+        for (index, element) in build.elements.iter().enumerate() {
+            let spans = window(parallel, element);
+            for series in 1..=build.series_up_to {
                 for value in values(element, &spans, series, parallel) {
                     let whole = value * f64::from(series) / f64::from(parallel);
                     let (low, high) = factors(element.tolerance);

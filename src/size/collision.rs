@@ -23,6 +23,17 @@ pub(super) fn explained<K: Measure<P::Point>, P: Probe>(
     scan: &Scan<'_, P>,
     ways: &Ways<'_, K, P::Point>,
 ) -> Result<Vec<Finding>, SizeError> {
+    explained_over("an actual resistance", demands, spans, scan, ways)
+}
+
+/// The same for a window that is one of `resistance`, with its article.
+pub(super) fn explained_over<K: Measure<P::Point>, P: Probe>(
+    resistance: &str,
+    demands: &[Demand<K>],
+    spans: &[Spans],
+    scan: &Scan<'_, P>,
+    ways: &Ways<'_, K, P::Point>,
+) -> Result<Vec<Finding>, SizeError> {
     let nowhere: Vec<Finding> =
         demands.iter().zip(spans).filter(|(_, s)| s.is_empty()).map(|(d, _)| met_nowhere(d, ways)).collect();
     if !nowhere.is_empty() {
@@ -43,7 +54,7 @@ pub(super) fn explained<K: Measure<P::Point>, P: Probe>(
     let (upper, lower) = (&demands[*upper], &demands[*lower]);
     let ohm = Resistance::from_si;
     let text = format!(
-        "{} needs an actual resistance of at most {}, {} one of at least {}: {} times as much.",
+        "{} needs {resistance} of at most {}, {} one of at least {}: {} times as much.",
         upper.name,
         show(ohm(*most), Direction::Down),
         lower.name,

@@ -8,6 +8,7 @@
 //! (`result`).
 
 mod arrays;
+mod balancing;
 mod bleeder;
 mod build;
 mod collision;
@@ -20,6 +21,7 @@ mod tool;
 mod trial;
 mod window;
 
+pub use balancing::{BalancingAsk, BalancingFigures, UnitShare, WrittenOut, balancing};
 pub use bleeder::{BleederAsk, BleederFigures, LimitHeld, Target, bleeder};
 pub use build::{Build, Rank};
 pub use error::SizeError;

@@ -1,5 +1,6 @@
 //! The command line as a person or a script meets it: the built program, its streams and its exit status.
 
+mod balancing;
 mod help;
 mod input;
 mod json;

@@ -5,8 +5,10 @@ use crate::rows::{Row, confirm, refute};
 use ebbvolt::bank::description::Connection;
 use ebbvolt::bank::file::read_stock;
 use ebbvolt::data::generic_stock;
-use ebbvolt::quantity::{Quantity, Ratio, Time, Voltage};
-use ebbvolt::size::{BleederAsk, Build, PrechargeAsk, Target, ToolAsk, bleeder, precharge, tool};
+use ebbvolt::quantity::{Current, Quantity, Ratio, Time, Voltage};
+use ebbvolt::size::{
+    BalancingAsk, BleederAsk, Build, PrechargeAsk, Target, ToolAsk, balancing, bleeder, precharge, tool,
+};
 
 /// The greatest resistance with which a bank is at a voltage in time, in ohm.
 fn greatest(text: &str, volts: f64, seconds: f64, connection: Option<Connection>) -> f64 {
@@ -182,4 +184,24 @@ fn a_tool_for_the_flash_has_the_stated_resistance() {
         stated: "1.25e3",
         found: sizing.demands[0].greatest.expect("time bounds it").si(),
     }]);
+}
+
+#[test]
+fn a_fast_charge_divides_by_capacitance() {
+    let text = format!(
+        "{}capacitors: [{{id: C1, value: 4.00 pF, across: [P, M], rated: 500 V}}, {{id: C2, value: 8.00 pF, across: [M, N], \
+         rated: 500 V}}]\n",
+        head("400 V", "50 V")
+    );
+    let elements = read_stock("generic", generic_stock().as_bytes()).expect("a valid list");
+    let build = Build { elements, show: 1, ..Build::default() };
+    let ask = BalancingAsk { build, leakage: Some(Current::from_si(1e-6)), ..BalancingAsk::default() };
+    let sizing = balancing(&read(&text), "", &ask).unwrap_or_else(|e| panic!("{text}{e}"));
+    let units = &sizing.candidates.first().unwrap_or_else(|| panic!("{:?}", sizing.findings)).figures.units;
+    let divided = |k: usize| units[k].fast_charge.expect("asked").si();
+    let source = "OpenStax, University Physics 2, 8.2, division by capacitance";
+    confirm(&[
+        Row { source, figure: "voltage of 4.00 pF", stated: "267", found: divided(0) },
+        Row { source, figure: "voltage of 8.00 pF", stated: "133", found: divided(1) },
+    ]);
 }

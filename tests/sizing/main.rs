@@ -1,6 +1,8 @@
 //! Sizing: windows against closed forms, designs against plans of the bank file with the part pasted in, rankings
 //! against a search through everything.
 
+mod balancing;
+mod balancing_placed;
 mod banks;
 mod exhaustive;
 mod placed;

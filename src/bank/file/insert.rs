@@ -13,6 +13,11 @@ pub fn resistor_text(resistor: &Resistor) -> String {
     format!("- {}\n", write::resistor(resistor))
 }
 
+/// A capacitor as an entry of a bank file's `capacitors`, likewise.
+pub fn capacitor_text(capacitor: &Capacitor) -> String {
+    format!("- {}\n", write::capacitor(capacitor))
+}
+
 /// A supply as an entry of a bank file's `supplies`, ready to paste.
 pub fn supply_text(supply: &Supply) -> String {
     format!("- {}\n", write::supply(supply))
@@ -200,7 +205,7 @@ fn indented(text: &str, by: usize) -> String {
 }
 
 /// The line ends and the byte order mark that the file had.
-fn restored(bytes: &[u8], text: String) -> String {
+pub(super) fn restored(bytes: &[u8], text: String) -> String {
     let text = if bytes.windows(2).any(|two| two == b"\r\n") { text.replace('\n', "\r\n") } else { text };
     if bytes.starts_with(b"\xef\xbb\xbf") { format!("\u{feff}{text}") } else { text }
 }

@@ -22,7 +22,7 @@ mod tree;
 mod write;
 
 pub use insert::{
-    resistor_text, steps_text, supply_text, with_groups, with_resistor, with_resistor_and_steps,
+    capacitor_text, resistor_text, steps_text, supply_text, with_groups, with_resistor, with_resistor_and_steps,
     with_resistor_exchanged, with_supply,
 };
 pub use source::MAX_BYTES;

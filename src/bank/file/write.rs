@@ -205,6 +205,7 @@ fn place(across: &Pair, phases: Option<Connection>) -> [Option<(&'static str, St
     }
 }
 
+/// One entry of `capacitors`, in braces.
 pub(super) fn capacitor(c: &Capacitor) -> String {
     let value = match c.kvar {
         None => ("value", figure(c.value, &FARAD)),

@@ -1,5 +1,6 @@
 //! `size`: resistors that do a job, from preferred values and parts at hand. One file per job; here is what they share.
 
+mod balancing;
 mod bleeder;
 mod precharge;
 mod tool;
@@ -40,6 +41,8 @@ enum SizeJob {
     Tool(Box<tool::ToolArgs>),
     /// The resistor through which a supply charges the bank before its main contactor closes
     Precharge(Box<precharge::PrechargeArgs>),
+    /// Resistors across the units of a string, so that none exceeds its rated voltage
+    Balancing(Box<balancing::BalancingArgs>),
 }
 
 /// Reads, searches and prints.
@@ -48,6 +51,7 @@ pub(super) fn run(typed: &SizeArgs, stdin: &mut dyn Read, output: &mut Output) -
         SizeJob::Bleeder(typed) => bleeder::run(typed, stdin, output),
         SizeJob::Tool(typed) => tool::run(typed, stdin, output),
         SizeJob::Precharge(typed) => precharge::run(typed, stdin, output),
+        SizeJob::Balancing(typed) => balancing::run(typed, stdin, output),
     }
 }
 

@@ -1,10 +1,12 @@
 //! A sizing as text, Markdown and JSON. Every job fills the same frame: the first design, the demands and the window,
 //! tables of designs, findings, what the answer rests on. What the tables say is each job's own.
 
+mod balancing;
 mod bleeder;
 mod precharge;
 mod tool;
 
+pub use balancing::size_balancing;
 pub use bleeder::size_bleeder;
 pub use precharge::size_precharge;
 pub use tool::size_tool;
@@ -56,7 +58,19 @@ struct Told {
     first: Vec<Labelled>,
 }
 
+/// What a window is of, and where a design goes beside the place.
+struct Terms {
+    /// The head of the window's column.
+    resistance: &'static str,
+    /// What follows the design in the headline.
+    each: String,
+}
+
 fn document<F>(sizing: &Sizing<F>, told: Told) -> SizeReport {
+    document_in(sizing, told, Terms { resistance: "Actual resistance", each: String::new() })
+}
+
+fn document_in<F>(sizing: &Sizing<F>, told: Told, terms: Terms) -> SizeReport {
     let under = vec![
         told.place,
         "A prediction from the description in the file. Before anyone touches, prove a rated instrument on a known \
@@ -64,9 +78,9 @@ fn document<F>(sizing: &Sizing<F>, told: Told) -> SizeReport {
             .to_string(),
     ];
     let mut blocks = vec![Block::Title { title: format!("{}: sizing of {}", sizing.tag, sizing.id), under }];
-    blocks.push(Block::Framed(headline(sizing, told.predicted)));
+    blocks.push(Block::Framed(headline(sizing, told.predicted, &terms.each)));
     blocks.push(Block::Section("Demands"));
-    blocks.push(Block::Table(demands(sizing)));
+    blocks.push(Block::Table(demands(sizing, terms.resistance)));
     if let Some(window) = &sizing.window {
         let end = |from: &Option<String>| from.clone().unwrap_or_else(|| "nothing".into());
         blocks.push(Block::Paragraph(format!(
@@ -106,7 +120,7 @@ fn document<F>(sizing: &Sizing<F>, told: Told) -> SizeReport {
     SizeReport(blocks)
 }
 
-fn headline<F>(sizing: &Sizing<F>, predicted: Option<String>) -> Vec<Labelled> {
+fn headline<F>(sizing: &Sizing<F>, predicted: Option<String>, each: &str) -> Vec<Labelled> {
     let searched = &sizing.searched;
     let mut looked = vec![
         format!("Looked at {}", count(searched.elements, "kind of element", "kinds of element")),
@@ -120,7 +134,7 @@ fn headline<F>(sizing: &Sizing<F>, predicted: Option<String>) -> Vec<Labelled> {
             vec!["No design does all that was asked; see Findings.".into(), looked],
         )];
     };
-    let mut text = vec![format!("{}{}, {}.", built(first), in_all(first), first.element)];
+    let mut text = vec![format!("{}{}{each}, {}.", built(first), in_all(first), first.element)];
     text.extend(predicted);
     text.push(looked);
     vec![Labelled::new("FIRST DESIGN", text)]
@@ -210,8 +224,8 @@ fn range(least: Option<Resistance>, greatest: Option<Resistance>) -> String {
     }
 }
 
-fn demands<F>(sizing: &Sizing<F>) -> Grid {
-    let mut grid = Grid::new(&[("Demand", Side::Left), ("Actual resistance", Side::Right)]);
+fn demands<F>(sizing: &Sizing<F>, resistance: &'static str) -> Grid {
+    let mut grid = Grid::new(&[("Demand", Side::Left), (resistance, Side::Right)]);
     for d in &sizing.demands {
         grid.row([d.demand.clone(), met_by(d)]);
     }

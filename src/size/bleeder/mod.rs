@@ -189,7 +189,7 @@ impl Job {
 }
 
 /// A name that no limit has.
-fn free_id(wish: &str, description: &Description) -> String {
+pub(super) fn free_id(wish: &str, description: &Description) -> String {
     let taken = |id: &str| description.limits.iter().any(|l| l.id == id);
     let numbered = (2..).map(|n| format!("{wish}-{n}"));
     std::iter::once(wish.to_string()).chain(numbered).find(|id| !taken(id)).unwrap_or_default()
@@ -204,7 +204,7 @@ fn word(connection: Connection) -> &'static str {
 }
 
 /// False for a limit that is a waiting time alone.
-fn has_bound(limit: &Limit) -> bool {
+pub(super) fn has_bound(limit: &Limit) -> bool {
     match &limit.rule {
         Rule::Own { .. } => true,
         Rule::Published(id) => published_limit(id).is_some_and(|p| !matches!(p.kind, LimitKind::Wait { .. })),
