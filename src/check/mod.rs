@@ -56,7 +56,7 @@ pub use equipment::{Equipment, EquipmentPart};
 pub use fault_words::fault_in_words;
 pub use limits::{LimitResult, LimitSource};
 pub use notice::{Notice, NoticeFault};
-pub use resistors::{Check, ResistorResult};
+pub use resistors::{Check, ContactResult, ResistorResult};
 pub use sensitivity::{PartSensitivity, Sensitivity};
 pub use spreads::SpreadResult;
 pub use step_result::{

@@ -1,11 +1,12 @@
 //! A bank through the steps of a procedure: the state is carried exactly from step to step.
 //!
 //! Capacitor voltages are continuous where a part is connected or lifted; nodes without a capacitor jump. Between
-//! two steps the network is linear, so every voltage is a sum of exponentials of its own.
+//! two steps the network is linear, so every voltage is a sum of exponentials of its own. Where a contact closes during
+//! a step the step goes through one network after the other.
 
-use super::body::Thermal;
+use super::body::{Heated, Thermal};
 use super::case::{Start, State};
-use super::model::{Model, Parameter, PartKind};
+use super::model::{Model, Parameter, Part, PartKind};
 use super::scenario::Scenario;
 use super::study::greatest;
 use super::worst::Objective;
@@ -26,7 +27,10 @@ pub(crate) struct Stage {
 #[derive(Debug)]
 struct Run {
     response: Drain,
+    /// Resistances with all contacts closed.
     ohms: Vec<f64>,
+    /// For every resistor the number of the step's networks with which it comes.
+    comes_with: Vec<usize>,
     duration: f64,
     /// What follows from each voltage that a connected supply is tried from.
     tries: Vec<Drain>,
@@ -40,6 +44,9 @@ pub(crate) struct Timeline {
     standing: Vec<f64>,
     /// Greatest voltage across every resistor before isolation, 0 for one that is not connected.
     standing_volts: Vec<f64>,
+    /// Voltage across every resistor until its contact opens when the bank is fed again, and the energy then.
+    fed_volts: Vec<f64>,
+    fed_energy: Vec<f64>,
     /// Which capacitors of the model are in the network.
     present: Vec<bool>,
     runs: Vec<Run>,
@@ -59,8 +66,10 @@ pub(crate) struct Setting<'a> {
 
 /// What a step is before anything is known of the state in which it begins.
 struct Step {
-    modes: Arc<Modes>,
+    /// One network after the other, with lengths in second from the step's start.
+    networks: Vec<(f64, Arc<Modes>)>,
     ohms: Vec<f64>,
+    comes_with: Vec<usize>,
     /// For each voltage that a connected supply is tried from, the states that it can leave.
     tried_from: Vec<Vec<State>>,
 }
@@ -68,19 +77,29 @@ struct Step {
 impl Setting<'_> {
     fn solved_steps(&self, point: &[f64]) -> Result<Vec<Step>, CircuitError> {
         let Setting { model, scenario, .. } = *self;
-        let mut last: Option<(&[usize], Arc<Modes>)> = None;
+        // A step that connects and lifts nothing goes on with the network of the step before.
+        let mut known: Vec<(Vec<usize>, Arc<Modes>)> = Vec::new();
         let mut steps = Vec::with_capacity(self.stages.len());
+        let mut start = 0.0;
         for stage in self.stages {
-            // A step that connects and lifts nothing goes on with the network of the step before.
-            let modes = match last {
-                Some((connected, modes)) if *connected == stage.connected => modes,
-                _ => Arc::new(Modes::new(model.network(&scenario.after, point, &stage.connected))?),
-            };
-            last = Some((&stage.connected, Arc::clone(&modes)));
+            let spans = model.spans(&scenario.after, start, &stage.connected);
+            let mut networks = Vec::with_capacity(spans.len());
+            for span in &spans {
+                let modes = match known.iter().find(|(connected, _)| *connected == span.connected) {
+                    Some((_, modes)) => Arc::clone(modes),
+                    None => Arc::new(Modes::new(model.network(&scenario.after, point, &span.connected))?),
+                };
+                networks.push((span.length, modes));
+            }
+            known = spans.iter().zip(&networks).map(|(s, (_, m))| (s.connected.clone(), Arc::clone(m))).collect();
             let from = Scenario { drops_own_voltages: true, ..scenario.clone() };
             let volts = if stage.tried { self.tried_from } else { &[] };
             let tried_from = volts.iter().map(|v| Start::at_isolation(model, &from, point, *v).states).collect();
-            steps.push(Step { modes, ohms: model.ohms(&scenario.after, point, &stage.connected), tried_from });
+            let in_the_end = spans.last().map_or(&[][..], |span| &span.connected);
+            let ohms = model.ohms(&scenario.after, point, in_the_end);
+            let comes_with = model.first_spans(&scenario.after, start);
+            steps.push(Step { networks, ohms, comes_with, tried_from });
+            start += stage.duration;
         }
         Ok(steps)
     }
@@ -97,6 +116,12 @@ impl Timeline {
             parts().map(|(a, b, ohm)| if ohm.is_finite() { before.mean_square(a, b) / ohm } else { 0.0 }).collect();
         let standing_volts: Vec<f64> =
             parts().map(|(a, b, ohm)| if ohm.is_finite() { before.greatest(a, b) } else { 0.0 }).collect();
+        let contacts: Vec<usize> = model.contacts.iter().map(|c| c.resistor).collect();
+        let closed = model.ohms(&scenario.after, point, &contacts);
+        let fed_volts = model.fed_volts(&before, &map, &closed);
+        let fed_energy: Vec<f64> = (0..closed.len())
+            .map(|r| model.contact(r).map_or(0.0, |c| per_ohm(fed_volts[r].powi(2) * c.opens_after, closed[r])))
+            .collect();
         let present: Vec<bool> =
             (0..model.capacitors.len()).map(|c| model.is_there(&scenario.after, &map, c)).collect();
         let steps = setting.solved_steps(point)?;
@@ -105,19 +130,21 @@ impl Timeline {
             let mut runs = Vec::with_capacity(steps.len());
             let mut drawing = scenario.drawing(model);
             let State { mut voltages, mut potentials } = state;
-            for (Step { modes, ohms, tried_from }, stage) in steps.iter().zip(setting.stages) {
-                let response = modes.drain(&voltages, &potentials, &sinks, &drawing)?;
+            for (Step { networks, ohms, comes_with, tried_from }, stage) in steps.iter().zip(setting.stages) {
+                let response = Drain::through(networks, &voltages, &potentials, &sinks, &drawing)?;
                 let from = tried_from.iter().filter_map(|states| states.get(number));
                 let tries = from
-                    .map(|start| modes.drain(&start.voltages, &start.potentials, &sinks, &drawing))
+                    .map(|start| Drain::through(networks, &start.voltages, &start.potentials, &sinks, &drawing))
                     .collect::<Result<_, CircuitError>>()?;
                 voltages = response.voltages_at(stage.duration);
                 potentials = response.potentials_at(stage.duration);
                 drawing = response.drawing_at(stage.duration).to_vec();
-                runs.push(Run { response, ohms: ohms.clone(), duration: stage.duration, tries });
+                let (ohms, comes_with) = (ohms.clone(), comes_with.clone());
+                runs.push(Run { response, ohms, comes_with, duration: stage.duration, tries });
             }
             let (map, standing, standing_volts) = (map.clone(), standing.clone(), standing_volts.clone());
-            Ok(Timeline { map, standing, standing_volts, present: present.clone(), runs })
+            let (fed_volts, fed_energy) = (fed_volts.clone(), fed_energy.clone());
+            Ok(Timeline { map, standing, standing_volts, fed_volts, fed_energy, present: present.clone(), runs })
         };
         states.into_iter().enumerate().map(timeline).collect()
     }
@@ -127,7 +154,14 @@ impl Timeline {
         across(&self.runs[stage].response, &self.map, a, b)
     }
 
-    /// Resistance in ohm of a resistor during a step; infinite where it is open or not connected.
+    /// Voltage across a resistor during a step, from its start; 0 V for as long as its contact is open.
+    pub fn on_resistor(&self, model: &Model, stage: usize, resistor: usize) -> Course {
+        let run = &self.runs[stage];
+        on_resistor(&run.response, run.comes_with[resistor], &self.map, &model.resistors[resistor])
+    }
+
+    /// Resistance in ohm of a resistor during a step; infinite where it is open or not connected. A contact that has
+    /// yet to close counts as closed.
     pub fn ohms(&self, stage: usize, resistor: usize) -> f64 {
         self.runs[stage].ohms[resistor]
     }
@@ -150,6 +184,28 @@ impl Timeline {
     /// The voltage that counts for the heat of a resistor during a step, from its start.
     pub fn hottest(&self, model: &Model, stage: usize, resistor: usize) -> Course {
         self.runs[stage].hottest(model, &self.map, resistor)
+    }
+
+    /// A resistor's body from isolation to the end of the procedure, from `start` K over the air; where `until` is
+    /// finite, so many seconds from isolation, with the last step's parts left as they are.
+    fn heated(
+        &self,
+        model: &Model,
+        resistor: usize,
+        body: Thermal,
+        start: f64,
+        until: f64,
+    ) -> Result<Heated, CircuitError> {
+        let mut heat = Heated { greatest: start, end: start };
+        let mut left = until;
+        for (stage, run) in self.runs.iter().enumerate() {
+            let goes_on = stage + 1 == self.runs.len() && until.is_finite();
+            let time = if goes_on { left } else { run.duration.min(left) };
+            let next = body.heated(heat.end, &run.hottest(model, &self.map, resistor), run.ohms[resistor], time)?;
+            heat = Heated { greatest: heat.greatest.max(next.greatest), end: next.end };
+            left -= time;
+        }
+        Ok(heat)
     }
 
     /// Checks the energy balance of every step.
@@ -183,6 +239,11 @@ impl Timeline {
 fn across(response: &Drain, map: &[usize], a: usize, b: usize) -> Course {
     let (a, b) = (map[a], map[b]);
     if a == b { Course::default() } else { response.across(a, b) }
+}
+
+fn on_resistor(response: &Drain, comes_with: usize, map: &[usize], part: &Part) -> Course {
+    let (a, b) = (map[part.a], map[part.b]);
+    if a == b { Course::default() } else { response.across_from(comes_with, a, b) }
 }
 
 /// One figure of a procedure. Stages count from 0, pairs are those of the model.
@@ -272,7 +333,7 @@ impl Run {
     fn voltages(&self, model: &Model, map: &[usize], resistor: usize) -> Vec<Course> {
         let part = &model.resistors[resistor];
         let responses = if self.tries.is_empty() { std::slice::from_ref(&self.response) } else { &self.tries[..] };
-        responses.iter().map(|r| across(r, map, part.a, part.b)).collect()
+        responses.iter().map(|r| on_resistor(r, self.comes_with[resistor], map, part)).collect()
     }
 
     /// Greatest voltage across a resistor that is connected; 0 where it is not.
@@ -389,7 +450,7 @@ impl Objective for ProcedureStudy<'_> {
 
 impl StepFigure {
     fn of(&self, model: &Model, timeline: &Timeline, floor: f64) -> Result<f64, CircuitError> {
-        let Timeline { map, runs, standing, standing_volts, present } = timeline;
+        let Timeline { map, runs, standing, standing_volts, fed_volts, fed_energy, present } = timeline;
         let at_pair = |stage: usize, pair: usize| timeline.across(stage, model.pairs[pair].0, model.pairs[pair].1);
         let all = |of: &dyn Fn(&Run) -> Result<f64, CircuitError>| -> Result<Vec<f64>, CircuitError> {
             runs.iter().map(of).collect()
@@ -433,26 +494,28 @@ impl StepFigure {
             StepFigure::PartVoltage { resistor } => {
                 let peaks = greatest(all(&|run| run.peak(model, map, resistor))?);
                 let fixed = model.resistors[resistor].kind != PartKind::Switched;
-                if fixed { peaks.max(standing_volts[resistor]) } else { peaks }
+                let fed = fed_volts[resistor];
+                if fixed { peaks.max(standing_volts[resistor]).max(fed) } else { peaks }
             }
-            StepFigure::PartCurrent { resistor } => {
-                greatest(all(&|run| Ok(per_ohm(run.peak(model, map, resistor)?, run.ohms[resistor])))?)
+            StepFigure::PartCurrent { resistor } => greatest(all(&|run| {
+                Ok(per_ohm(run.peak(model, map, resistor)?.max(fed_volts[resistor]), run.ohms[resistor]))
+            })?),
+            StepFigure::PartPower { resistor } => greatest(all(&|run| {
+                Ok(per_ohm(run.peak(model, map, resistor)?.max(fed_volts[resistor]).powi(2), run.ohms[resistor]))
+            })?),
+            StepFigure::PartEnergy { resistor } => {
+                runs.iter().map(|run| run.energy(model, map, resistor)).sum::<f64>() + fed_energy[resistor]
             }
-            StepFigure::PartPower { resistor } => {
-                greatest(all(&|run| Ok(per_ohm(run.peak(model, map, resistor)?.powi(2), run.ohms[resistor])))?)
-            }
-            StepFigure::PartEnergy { resistor } => runs.iter().map(|run| run.energy(model, map, resistor)).sum(),
             StepFigure::StandingPower { resistor } => standing[resistor],
             StepFigure::BodyRise { resistor, body } => {
-                let mut rise = body.kelvin_per_watt * standing[resistor];
-                let mut greatest = rise;
-                for run in runs {
-                    let volts = run.hottest(model, map, resistor);
-                    let heated = body.heated(rise, &volts, run.ohms[resistor], run.duration)?;
-                    greatest = greatest.max(heated.greatest);
-                    rise = heated.end;
+                let through = |start: f64, until: f64| timeline.heated(model, resistor, body, start, until);
+                match model.contact(resistor) {
+                    Some(contact) => {
+                        let ohms = runs.last().map_or(f64::INFINITY, |run| run.ohms[resistor]);
+                        contact.greatest_rise(body, per_ohm(fed_volts[resistor].powi(2), ohms), through)?
+                    }
+                    None => through(body.kelvin_per_watt * standing[resistor], f64::INFINITY)?.greatest,
                 }
-                greatest
             }
             StepFigure::Recovery { pair } => {
                 let (a, b) = model.pairs[pair];

@@ -215,6 +215,7 @@ fn stand_in(ask: &Ask, across: &Pair) -> Resistor {
         tempco: None,
         ageing: None,
         phases: None,
+        switched: None,
     }
 }
 

@@ -126,6 +126,7 @@ mod tests {
             tempco: None,
             ageing: None,
             phases: None,
+            switched: None,
         }
     }
 

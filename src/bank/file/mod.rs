@@ -14,6 +14,7 @@ mod reader;
 mod source;
 mod steps;
 mod stock;
+mod switched;
 mod syntax;
 mod top;
 mod tree;
