@@ -51,7 +51,7 @@ pub(super) enum Command {
     /// Print the plan of a bank: the wait to keep, stored energy, limits, ratings, findings
     Plan(Box<PlanArgs>),
     /// Find resistors that do a job, from preferred values and parts at hand
-    Size(SizeArgs),
+    Size(super::size::SizeArgs),
     /// Show voltages, currents and powers against time, as a plot or as figures
     #[command(after_help = TRACE_EXAMPLES)]
     Trace(TraceArgs),
@@ -234,130 +234,6 @@ pub(super) struct QuickArgs {
     /// Also write the bank file that this stands for; an existing file is never overwritten
     #[arg(long, value_name = "FILE")]
     pub save: Option<PathBuf>,
-}
-
-const BLEEDER_EXAMPLES: &str = "\
-Examples: ebbvolt size bleeder bank.yaml --series E24 --parallel-up-to 2
-          ebbvolt size bleeder bank.yaml --within 5min --stock shelf.csv --margin 40%
-          ebbvolt size bleeder bank.yaml --write with-bleeder.yaml
-
-Exit status: 0 found; 1 nothing does the job; 2 wrong input; 3 no verdict";
-
-#[derive(Args)]
-#[command(after_help = "Example: ebbvolt size bleeder bank.yaml --within 5min")]
-pub(super) struct SizeArgs {
-    #[command(subcommand)]
-    pub job: SizeJob,
-}
-
-/// What is to be sized.
-#[derive(Subcommand)]
-pub(super) enum SizeJob {
-    /// A resistor that drains the bank for good, from isolation on
-    Bleeder(Box<BleederArgs>),
-}
-
-#[derive(Args)]
-#[command(after_help = BLEEDER_EXAMPLES)]
-pub(super) struct BleederArgs {
-    /// The bank file; - reads standard input
-    #[arg(value_name = "BANK.yaml")]
-    pub bank: PathBuf,
-    /// Reach this time instead of the limits of the file, such as 5min
-    #[arg(long, value_name = "TIME", allow_hyphen_values = true)]
-    pub within: Option<String>,
-    /// Reach this voltage; without it the touch voltage of the file
-    #[arg(long, value_name = "VOLTAGE", allow_hyphen_values = true, requires = "within")]
-    pub voltage: Option<String>,
-    /// It has to hold with any one part failed as well
-    #[arg(long)]
-    pub single_fault: bool,
-    /// Greatest standing loss at the highest voltage, such as 20W
-    #[arg(long, value_name = "POWER", allow_hyphen_values = true)]
-    pub max_loss: Option<String>,
-    /// Greatest current through the resistor, such as 100mA
-    #[arg(long, value_name = "CURRENT", allow_hyphen_values = true)]
-    pub max_current: Option<String>,
-    /// Air at the resistors, instead of that of the file
-    #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
-    pub ambient: Option<String>,
-    /// Share of the derated power that stays unused, such as 40%
-    #[arg(long, value_name = "SHARE", allow_hyphen_values = true)]
-    pub margin: Option<String>,
-    /// Preferred values: E6, E12, E24, E48, E96 or E192; for elements that come in a series
-    #[arg(long, value_name = "SERIES")]
-    pub series: Option<String>,
-    /// Tolerance of the elements, for those that give none and for the generic ones
-    #[arg(long, value_name = "SHARE", allow_hyphen_values = true)]
-    pub tolerance: Option<String>,
-    /// Elements at hand, YAML or CSV; without it generic ones with invented ratings
-    #[arg(long, value_name = "FILE")]
-    pub stock: Option<PathBuf>,
-    /// The most elements in one string
-    #[arg(long, value_name = "COUNT", default_value_t = 3, value_parser = clap::value_parser!(u32).range(1..=20))]
-    pub series_up_to: u32,
-    /// The most strings side by side
-    #[arg(long, value_name = "COUNT", default_value_t = 3, value_parser = clap::value_parser!(u32).range(1..=20))]
-    pub parallel_up_to: u32,
-    /// What the new resistor is called; without it RB, or RB2 and so on
-    #[arg(long, value_name = "NAME")]
-    pub id: Option<String>,
-    /// Where it goes, such as P,N; without it the terminals
-    #[arg(long, value_name = "NODE,NODE")]
-    pub across: Option<String>,
-    /// How it is connected in a three-phase bank; without it delta
-    #[arg(long, value_enum)]
-    pub connection: Option<Connected>,
-    /// By what designs are put in order
-    #[arg(long, value_enum, default_value_t = RankBy::Elements)]
-    pub rank: RankBy,
-    /// Only designs that none other beats in element count, loss and wait
-    #[arg(long)]
-    pub pareto: bool,
-    /// How many designs are planned and shown
-    #[arg(long, value_name = "COUNT", default_value_t = 5, value_parser = clap::value_parser!(u32).range(1..=100))]
-    pub show: u32,
-    /// Which of them --part and --write take
-    #[arg(long, value_name = "RANK", default_value_t = 1, value_parser = clap::value_parser!(u32).range(1..=100))]
-    pub pick: u32,
-    /// Print the design as a YAML part to paste, and nothing else
-    #[arg(long)]
-    pub part: bool,
-    /// Write the bank file with the design in it, comments kept; a file that exists is not overwritten
-    #[arg(long, value_name = "NEW.yaml")]
-    pub write: Option<PathBuf>,
-    /// Let --write overwrite a file
-    #[arg(long, requires = "write")]
-    pub overwrite: bool,
-    /// How the result is written
-    #[arg(long, value_enum, default_value_t = SizeFormat::Text)]
-    pub format: SizeFormat,
-}
-
-/// How a three-phase resistor is connected.
-#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
-pub(super) enum Connected {
-    Delta,
-    Star,
-    OpenDelta,
-}
-
-/// By what designs are put in order.
-#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
-pub(super) enum RankBy {
-    Elements,
-    Loss,
-    Wait,
-    Price,
-    Mass,
-}
-
-/// Formats of a sizing.
-#[derive(Clone, Copy, PartialEq, Eq, ValueEnum)]
-pub(super) enum SizeFormat {
-    Text,
-    Json,
-    Markdown,
 }
 
 #[derive(Args)]

@@ -126,7 +126,7 @@ impl Grid {
     }
 
     /// Adds a row; missing cells are empty.
-    pub fn row<const N: usize>(&mut self, cells: [String; N]) {
+    pub fn row(&mut self, cells: impl Into<Vec<String>>) {
         self.rows.push(cells.into());
     }
 }

@@ -28,5 +28,5 @@ pub use limits::{limits_csv, limits_json, limits_markdown, limits_text};
 pub use markdown::plan_markdown;
 pub use plot::{trace_csv, trace_json, trace_svg, trace_text};
 pub use sheet::{Paper, Sheet, sheet_html, sheet_markdown, sheet_text};
-pub use size::{size_json, size_markdown, size_text};
+pub use size::{SizeReport, size_bleeder, size_json};
 pub use text::{message_text, plan_text};

@@ -1,6 +1,6 @@
 //! Arrays of elements inside the window: which there are, which bear their load, and their order.
 
-use super::request::{Ask, Rank};
+use super::build::{Build, Rank};
 use super::spans::Spans;
 use crate::bank::description::{Rating, Resistor};
 use crate::bank::stock::{Element, Values};
@@ -31,8 +31,8 @@ impl Design {
     }
 
     /// The resistor of a bank, at a place.
-    pub fn resistor(&self, ask: &Ask, place: &Resistor) -> Resistor {
-        let element = &ask.elements[self.element];
+    pub fn resistor(&self, build: &Build, place: &Resistor) -> Resistor {
+        let element = &build.elements[self.element];
         Resistor {
             value: Resistance::from_si(self.value),
             tolerance: element.tolerance,
@@ -50,9 +50,8 @@ pub(super) struct Listed {
     pub designs: Vec<Design>,
     /// Arrays with a value inside the window.
     pub inside: usize,
-    /// Of these, how many would carry too much power or voltage.
-    pub over_power: usize,
-    pub over_voltage: usize,
+    /// Of these, how many would carry too much of what.
+    pub set_aside: BTreeMap<&'static str, usize>,
 }
 
 /// Greatest power and voltage of one element of an array with `volts` across it. One element lies at one end of the
@@ -71,68 +70,44 @@ pub(super) fn usable_power(rating: &Rating, ambient: Temperature, margin: f64) -
     derated(rating, ambient).map_or(f64::INFINITY, |allowed| allowed.si() * (1.0 - margin))
 }
 
-/// All designs of `ask`, best first. `window` gives the spans for a number of strings, `volts` the voltage across an
-/// array of an actual resistance, and `slack` how far that voltage may be off (as a share).
+/// All designs of `build`, best first. `window` gives the spans for a number of strings; `overload` names what one
+/// element of a design would carry too much of. The plan decides with every digit: only what is CLEARLY over is to be
+/// named, so that nothing is left out that would do.
 pub(super) fn listed(
-    ask: &Ask,
-    ambient: Temperature,
+    build: &Build,
     window: impl Fn(u32) -> Spans,
-    volts: impl Fn(f64) -> f64,
-    slack: f64,
+    overload: impl Fn(&Design, &Element) -> Option<&'static str>,
 ) -> Listed {
     let mut found = Listed::default();
-    for parallel in 1..=ask.parallel_up_to {
+    for parallel in 1..=build.parallel_up_to {
         let spans = window(parallel);
-        for series in 1..=ask.series_up_to {
-            for (index, element) in ask.elements.iter().enumerate() {
+        for series in 1..=build.series_up_to {
+            for (index, element) in build.elements.iter().enumerate() {
                 for value in values(element, &spans, series, parallel) {
-                    found.offer(ask, ambient, index, (value, series, parallel), &volts, slack);
+                    let whole = value * f64::from(series) / f64::from(parallel);
+                    let (low, high) = factors(element.tolerance);
+                    let (lowest, highest) = (whole * low, whole * high);
+                    let design = Design { element: index, value, series, parallel, lowest, highest, pareto: false };
+                    found.inside += 1;
+                    match overload(&design, element) {
+                        Some(of) => *found.set_aside.entry(of).or_default() += 1,
+                        None => found.designs.push(design),
+                    }
                 }
             }
         }
     }
     mark_pareto(&mut found.designs);
-    if ask.pareto_only {
+    if build.pareto_only {
         found.designs.retain(|d| d.pareto);
     }
-    order(&mut found.designs, ask);
+    order(&mut found.designs, build);
     found
 }
 
-impl Listed {
-    fn offer(
-        &mut self,
-        ask: &Ask,
-        ambient: Temperature,
-        index: usize,
-        (value, series, parallel): (f64, u32, u32),
-        volts: impl Fn(f64) -> f64,
-        slack: f64,
-    ) {
-        let element = &ask.elements[index];
-        let whole = value * f64::from(series) / f64::from(parallel);
-        let (low, high) = factors(element.tolerance);
-        let design = Design {
-            element: index,
-            value,
-            series,
-            parallel,
-            lowest: whole * low,
-            highest: whole * high,
-            pareto: false,
-        };
-        self.inside += 1;
-        let volts = volts(design.lowest).max(volts(design.highest)) * (1.0 - slack);
-        let (watt, volt) = element_load(&design, element.tolerance, volts);
-        // The plan decides with every digit; here only what is clearly over is left out.
-        if watt > usable_power(&element.rating, ambient, ask.margin) * (1.0 + 1e-9) {
-            self.over_power += 1;
-        } else if element.rating.voltage.is_some_and(|most| volt > most.si() * (1.0 + 1e-9)) {
-            self.over_voltage += 1;
-        } else {
-            self.designs.push(design);
-        }
-    }
+/// Does what is found clearly exceed what is allowed?
+pub(super) fn clearly_over(found: f64, allowed: f64) -> bool {
+    found > allowed * (1.0 + 1e-9)
 }
 
 fn factors(tolerance: Option<Tolerance>) -> (f64, f64) {
@@ -164,16 +139,16 @@ fn preferred(series: Series, least: f64, greatest: f64) -> Vec<f64> {
 
 /// Puts designs in the order of the rank; what is alike in it is told apart by the other figures, at last by the order
 /// of the list, so that one input always gives one order.
-fn order(designs: &mut [Design], ask: &Ask) {
+fn order(designs: &mut [Design], build: &Build) {
     let per_array = |each: Option<f64>, d: &Design| each.map_or(f64::INFINITY, |each| each * f64::from(d.count()));
-    let price = |d: &Design| per_array(ask.elements[d.element].price, d);
-    let mass = |d: &Design| per_array(ask.elements[d.element].mass.map(Quantity::si), d);
-    let power = |d: &Design| ask.elements[d.element].rating.power.map_or(f64::INFINITY, Quantity::si);
+    let price = |d: &Design| per_array(build.elements[d.element].price, d);
+    let mass = |d: &Design| per_array(build.elements[d.element].mass.map(Quantity::si), d);
+    let power = |d: &Design| build.elements[d.element].rating.power.map_or(f64::INFINITY, Quantity::si);
     designs.sort_by(|x, y| {
         let count = x.count().cmp(&y.count());
         let loss = y.lowest.total_cmp(&x.lowest);
         let wait = x.highest.total_cmp(&y.highest);
-        let rank = match ask.rank {
+        let rank = match build.rank {
             Rank::Elements => count.then(loss).then(wait),
             Rank::Loss => loss.then(count).then(wait),
             Rank::Wait => wait.then(count).then(loss),

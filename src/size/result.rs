@@ -1,19 +1,18 @@
 //! The answer of a search: ONE serialisable struct that every report is written from. SI base units, the unit in the
 //! key, unrounded; `null` stands for "never" in a time and for "not given" elsewhere.
 
-use crate::bank::description::Resistor;
 use crate::check::{Check, Pair, Verdict, celsius_or_null, degrees, si, si_or_null};
 use crate::finding::Finding;
 use crate::plan::{ChargedTo, Stamp};
-use crate::quantity::{Current, Energy, Mass, Power, Resistance, Temperature, Time, Tolerance, Voltage};
+use crate::quantity::{Energy, Mass, Power, Resistance, Temperature, Tolerance, Voltage};
 use serde::{Serialize, Serializer};
 
 /// Resistors that do a job, or why there are none.
 #[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct Sizing {
+pub struct Sizing<F> {
     /// Which tool and which format wrote this.
     pub ebbvolt: Stamp,
-    /// What was sized: `bleeder`.
+    /// What was sized, as in the command: `bleeder`.
     pub size: &'static str,
     /// The bank's tag.
     pub tag: String,
@@ -39,7 +38,7 @@ pub struct Sizing {
     /// What was looked through.
     pub searched: Searched,
     /// Designs, best first, each put into the bank and planned in full.
-    pub candidates: Vec<Candidate>,
+    pub candidates: Vec<Candidate<F>>,
     /// What the tool noticed.
     pub findings: Vec<Finding>,
     /// What the answer rests on.
@@ -85,19 +84,27 @@ pub struct Searched {
     pub elements: usize,
     /// Arrays with a value inside the window.
     pub inside_window: usize,
-    /// Of these, set aside since one element would carry too much power.
-    pub over_power: usize,
-    /// Set aside since one element would carry too much voltage.
-    pub over_voltage: usize,
+    /// Of these, set aside since one element would carry too much.
+    pub set_aside: Vec<SetAside>,
     /// What is left.
     pub designs: usize,
     /// Of these, put into the bank and not found to do the job by the full plan.
     pub refused_by_plan: usize,
 }
 
-/// A design; figures of ONE element where they say so, each at its own worst point.
+/// Arrays that were set aside without a plan.
 #[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct Candidate {
+pub struct SetAside {
+    /// What one element would carry too much of: `power`, `voltage`.
+    pub of: &'static str,
+    /// How many arrays.
+    pub arrays: usize,
+}
+
+/// A design that does the job, put into the bank and planned in full: what it is, what one element carries, and the
+/// figures of the job. Figures of ONE element where they say so, each at its own worst point.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct Candidate<F> {
     /// Its place, from 1.
     pub rank: usize,
     /// The element.
@@ -119,17 +126,6 @@ pub struct Candidate {
     pub resistance: Resistance,
     /// True where no other design is at least as good in element count, loss and wait, and better in one.
     pub pareto: bool,
-    /// Standing loss of the array at the highest voltage.
-    #[serde(rename = "loss_highest_w", serialize_with = "si")]
-    pub loss_highest: Power,
-    /// Standing loss with every value nominal.
-    #[serde(rename = "loss_nominal_w", serialize_with = "si")]
-    pub loss_nominal: Power,
-    /// The nominal loss over 8760 h.
-    pub energy_per_year_kwh: f64,
-    /// Greatest current through the array.
-    #[serde(rename = "peak_current_a", serialize_with = "si")]
-    pub peak_current: Current,
     /// Power of one element before isolation.
     #[serde(rename = "element_power_w", serialize_with = "si_or_null")]
     pub element_power: Option<Power>,
@@ -148,14 +144,6 @@ pub struct Candidate {
     /// Greatest body temperature.
     #[serde(rename = "body_temperature_c", serialize_with = "celsius_or_null")]
     pub body_temperature: Option<Temperature>,
-    /// The longest wait of all test points; `None` is never.
-    #[serde(rename = "wait_s", serialize_with = "si_or_null")]
-    pub wait: Option<Time>,
-    /// The same with one element open; `None` is never.
-    #[serde(rename = "open_wait_s", serialize_with = "si_or_null")]
-    pub open_wait: Option<Time>,
-    /// The limits that were asked for.
-    pub limits: Vec<LimitHeld>,
     /// Checks of one element against its rating.
     pub checks: Vec<Check>,
     /// What the whole plan with it comes to.
@@ -167,30 +155,11 @@ pub struct Candidate {
     pub mass: Option<Mass>,
     /// Price of all elements, in the currency of the list.
     pub price: Option<f64>,
-    /// The part as an entry of `resistors`, ready to paste.
+    /// The part as an entry of the bank file, ready to paste.
     pub part: String,
-    /// The same as a part of a bank.
-    #[serde(skip)]
-    pub resistor: Resistor,
-}
-
-/// A limit that was asked for, as the plan finds it.
-#[derive(Debug, Clone, PartialEq, Serialize)]
-pub struct LimitHeld {
-    /// The limit.
-    pub id: String,
-    /// The pair that governs.
-    pub across: Pair,
-    /// By when it has to hold.
-    #[serde(rename = "within_s", serialize_with = "si_or_null")]
-    pub within: Option<Time>,
-    /// From when on it does; `None` is never.
-    #[serde(rename = "holds_from_s", serialize_with = "si_or_null")]
-    pub holds_from: Option<Time>,
-    /// Every part healthy.
-    pub met: Option<bool>,
-    /// With any one part failed; `None` where that was not asked.
-    pub single_fault_met: Option<bool>,
+    /// The figures of the job.
+    #[serde(flatten)]
+    pub figures: F,
 }
 
 fn shares<S: Serializer>(tolerance: &Option<Tolerance>, to: S) -> Result<S::Ok, S::Error> {
@@ -198,7 +167,7 @@ fn shares<S: Serializer>(tolerance: &Option<Tolerance>, to: S) -> Result<S::Ok, 
     tolerance.map(|t| (t.low().si(), t.high().si())).serialize(to)
 }
 
-impl Sizing {
+impl<F> Sizing<F> {
     /// Exit status: 0 where at least one design does the job, 1 where none does.
     pub fn exit_code(&self) -> u8 {
         u8::from(self.candidates.is_empty())

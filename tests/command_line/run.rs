@@ -15,7 +15,8 @@ pub struct Run {
 impl Run {
     /// Whether standard error says this, wherever its lines break: where they do depends on how long a path is.
     pub fn tells(&self, part: &str) -> bool {
-        self.err.split_whitespace().collect::<Vec<_>>().join(" ").contains(part)
+        let solid = |text: &str| text.split_whitespace().collect::<String>();
+        solid(&self.err).contains(&solid(part))
     }
 }
 

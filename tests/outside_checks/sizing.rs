@@ -6,13 +6,14 @@ use ebbvolt::bank::description::Connection;
 use ebbvolt::bank::file::read_stock;
 use ebbvolt::data::generic_stock;
 use ebbvolt::quantity::{Quantity, Time, Voltage};
-use ebbvolt::size::{Ask, Target, bleeder};
+use ebbvolt::size::{BleederAsk, Build, Target, bleeder};
 
 /// The greatest resistance with which a bank is at a voltage in time, in ohm.
 fn greatest(text: &str, volts: f64, seconds: f64, connection: Option<Connection>) -> f64 {
     let target = Target { voltage: Voltage::from_si(volts), within: Time::from_si(seconds) };
     let elements = read_stock("generic", generic_stock().as_bytes()).expect("a valid list");
-    let ask = Ask { target: Some(target), elements, connection, show: 1, ..Ask::default() };
+    let build = Build { elements, show: 1, ..Build::default() };
+    let ask = BleederAsk { target: Some(target), build, connection, ..BleederAsk::default() };
     let sizing = bleeder(&read(text), "", &ask).unwrap_or_else(|e| panic!("{text}{e}"));
     // The demand on time alone: whether elements at hand bear the load is another matter.
     sizing.demands[0].greatest.expect("time bounds it").si()

@@ -6,7 +6,7 @@ use ebbvolt::bank::description::{Resistor, Role};
 use ebbvolt::bank::stock::Values;
 use ebbvolt::plan::{Plan, Verdict};
 use ebbvolt::quantity::{Power, Quantity, Time};
-use ebbvolt::size::{Ask, Rank};
+use ebbvolt::size::{BleederAsk, Build, Rank};
 
 const STOCK: &str = "elements:
   - {name: a, value: 22 kohm, tolerance: 5 %, rating: {power: 12 W, full_to: 70 °C, zero_at: 155 °C, voltage: 500 V}}
@@ -40,10 +40,10 @@ struct Good {
     wait: f64,
 }
 
-fn does(plan: &Plan, ask: &Ask, lowest: f64) -> bool {
+fn does(plan: &Plan, ask: &BleederAsk, lowest: f64) -> bool {
     let part = plan.resistors.iter().find(|r| r.id == "RB").expect("it is there");
     let power = part.continuous_power.expect("always connected").si();
-    let allowed = part.allowed_power.expect("rated").si() * (1.0 - ask.margin);
+    let allowed = part.allowed_power.expect("rated").si() * (1.0 - ask.build.margin);
     let limit = &plan.limits[0];
     limit.met == Some(true)
         && (!ask.single_fault || limit.single_fault_met == Some(true))
@@ -53,16 +53,21 @@ fn does(plan: &Plan, ask: &Ask, lowest: f64) -> bool {
 }
 
 /// Every array of the stock, each through the full plan.
-fn everything(bank: &Bank, ask: &Ask) -> Vec<Good> {
+/// Every design of the small stock.
+fn all() -> Build {
+    Build { elements: elements(STOCK), show: 1000, ..Build::default() }
+}
+
+fn everything(bank: &Bank, ask: &BleederAsk) -> Vec<Good> {
     let mut good = Vec::new();
-    for element in &ask.elements {
+    for element in &ask.build.elements {
         let values = match element.values {
             Values::One(value) => vec![value],
             Values::Preferred { series, from, to } => series.between(from, to),
         };
         for value in values {
-            for series in 1..=ask.series_up_to {
-                for parallel in 1..=ask.parallel_up_to {
+            for series in 1..=ask.build.series_up_to {
+                for parallel in 1..=ask.build.parallel_up_to {
                     let mut with = bank.description().clone();
                     with.limits[0].single_fault = ask.single_fault;
                     with.resistors.push(Resistor {
@@ -110,7 +115,7 @@ fn key(good: &Good, rank: Rank) -> f64 {
     }
 }
 
-fn agrees(bank: &Bank, ask: &Ask) -> usize {
+fn agrees(bank: &Bank, ask: &BleederAsk) -> usize {
     let all = everything(bank, ask);
     let sizing = sized(bank, ask);
     assert_eq!(sizing.candidates.len(), all.len(), "{:?}\n{all:?}", sizing.candidates);
@@ -125,11 +130,11 @@ fn agrees(bank: &Bank, ask: &Ask) -> usize {
                     && (g.ohms - c.value.si()).abs() < 1e-6
             };
             let good = all.iter().find(is).unwrap_or_else(|| panic!("{c:?}"));
-            assert!((good.wait - c.wait.expect("it ends").si()).abs() <= 1e-9 * good.wait);
+            assert!((good.wait - c.figures.wait.expect("it ends").si()).abs() <= 1e-9 * good.wait);
             good
         })
         .collect();
-    let keys: Vec<f64> = found.iter().map(|g| key(g, ask.rank)).collect();
+    let keys: Vec<f64> = found.iter().map(|g| key(g, ask.build.rank)).collect();
     assert!(keys.windows(2).all(|k| k[0] <= k[1] * (1.0 + 1e-9) || k[0] <= k[1] + 1e-9 * k[1].abs()), "{keys:?}");
     for (c, x) in sizing.candidates.iter().zip(&found) {
         let beats = |y: &&Good| {
@@ -148,15 +153,13 @@ fn a_ranked_list_has_all_that_does_the_job_in_its_order_and_nothing_else() {
     for balanced in [false, true] {
         let bank = bank(&file(balanced));
         for rank in [Rank::Elements, Rank::Loss, Rank::Wait] {
-            let ask = Ask { elements: elements(STOCK), rank, show: 1000, ..Ask::default() };
+            let ask = BleederAsk { build: Build { rank, ..all() }, ..BleederAsk::default() };
             assert!(agrees(&bank, &ask) > 10);
         }
-        let ask = Ask {
-            elements: elements(STOCK),
-            margin: 0.3,
+        let ask = BleederAsk {
+            build: Build { margin: 0.3, ..all() },
             max_loss: Some(Power::from_si(45.0)),
-            show: 1000,
-            ..Ask::default()
+            ..BleederAsk::default()
         };
         assert!(agrees(&bank, &ask) > 0);
     }
@@ -164,6 +167,6 @@ fn a_ranked_list_has_all_that_does_the_job_in_its_order_and_nothing_else() {
 
 #[test]
 fn the_same_with_single_faults() {
-    let ask = Ask { elements: elements(STOCK), single_fault: true, show: 1000, ..Ask::default() };
+    let ask = BleederAsk { build: all(), single_fault: true, ..BleederAsk::default() };
     assert!(agrees(&bank(&file(false)), &ask) > 0);
 }

@@ -1,10 +1,10 @@
 //! The window against closed forms.
 
-use crate::banks::{HEAD, bank, elements, generic, greatest, least, sized, target};
+use crate::banks::{HEAD, bank, elements, greatest, least, of, sized, target};
 use approx::assert_relative_eq;
 use ebbvolt::data::Series;
 use ebbvolt::quantity::{Current, Power, Quantity};
-use ebbvolt::size::Ask;
+use ebbvolt::size::{BleederAsk, Build};
 
 const PLAIN: &str = "touch_voltage: 50 V\ncharged_to: {nominal: 565 V, highest: 750 V}\n";
 
@@ -12,8 +12,12 @@ fn one(more: &str) -> String {
     format!("{HEAD}{PLAIN}capacitors: [{{id: C1, value: 3300 uF, tolerance: 20 %, across: [P, N]}}]\n{more}")
 }
 
-fn ask() -> Ask {
-    Ask { target: target(50.0, 300.0), elements: generic(Series::E24), ..Ask::default() }
+fn strings(parallel_up_to: u32) -> Build {
+    Build { parallel_up_to, ..of(Series::E24) }
+}
+
+fn ask() -> BleederAsk {
+    BleederAsk { target: target(50.0, 300.0), build: of(Series::E24), ..BleederAsk::default() }
 }
 
 /// R = t / (C ln(V/v)) at the highest voltage and the greatest capacitance.
@@ -35,10 +39,10 @@ fn a_bleeder_that_is_there_takes_its_share_at_the_upper_end_of_its_tolerance() {
 
 #[test]
 fn loss_and_current_bound_the_window_from_below() {
-    let with = |ask: Ask| least(&sized(&bank(&one("")), &ask));
-    let loss = with(Ask { max_loss: Some(Power::from_si(40.0)), ..ask() });
+    let with = |ask: BleederAsk| least(&sized(&bank(&one("")), &ask));
+    let loss = with(BleederAsk { max_loss: Some(Power::from_si(40.0)), ..ask() });
     assert_relative_eq!(loss, 750.0 * 750.0 / 40.0, max_relative = 1e-9);
-    let current = with(Ask { max_current: Some(Current::from_si(0.05)), ..ask() });
+    let current = with(BleederAsk { max_current: Some(Current::from_si(0.05)), ..ask() });
     assert_relative_eq!(current, 750.0 / 0.05, max_relative = 1e-9);
 }
 
@@ -50,7 +54,7 @@ fn behind_a_series_resistor_the_power_has_a_greatest_value_and_both_sides_of_it_
         "{HEAD}{PLAIN}capacitors: [{{id: C1, value: 100 uF, across: [P, N]}}, {{id: C2, value: 10 uF, across: [M, \
          N]}}]\nresistors: [{{id: R1, role: series, value: 10 kohm, across: [P, M]}}]\n"
     );
-    let ask = Ask {
+    let ask = BleederAsk {
         target: target(50.0, 3600.0),
         max_loss: Some(Power::from_si(10.0)),
         across: Some(["M".into(), "N".into()]),
@@ -70,7 +74,7 @@ fn behind_a_series_resistor_the_power_has_a_greatest_value_and_both_sides_of_it_
 
 #[test]
 fn demands_that_collide_are_named_with_their_distance_and_what_would_open_the_window() {
-    let sizing = sized(&bank(&one("")), &Ask { max_loss: Some(Power::from_si(10.0)), ..ask() });
+    let sizing = sized(&bank(&one("")), &BleederAsk { max_loss: Some(Power::from_si(10.0)), ..ask() });
     assert_eq!((sizing.window.is_none(), sizing.candidates.len(), sizing.exit_code()), (true, 0, 1));
     let finding = &sizing.findings[0];
     assert_eq!(finding.code, "demands-collide");
@@ -89,7 +93,10 @@ fn ratings_that_collide_tell_the_air_in_which_they_would_do() {
     // One element of 25 W from 25 °C down to nothing at 275 °C bears 23.5 W at 40 °C; 27.97 kohm takes 20.1 W.
     let stock = "elements: [{name: a, series: E192, from: 1 ohm, to: 1 Mohm, tolerance: 1 %, rating: {power: 20.5 W, \
                  full_to: 25 °C, zero_at: 275 °C, voltage: 1 kV}}]\n";
-    let ask = Ask { elements: elements(stock), series_up_to: 1, parallel_up_to: 1, ..ask() };
+    let ask = BleederAsk {
+        build: Build { elements: elements(stock), series_up_to: 1, parallel_up_to: 1, ..Build::default() },
+        ..ask()
+    };
     let sizing = sized(&bank(&one("")), &ask);
     assert!(sizing.candidates.is_empty());
     // 20.5 W * (275 - T)/250 = 750^2/27974 = 20.11 W at 29.8 °C.
@@ -99,22 +106,22 @@ fn ratings_that_collide_tell_the_air_in_which_they_would_do() {
 
 #[test]
 fn single_faults_ask_for_more_strings_and_leave_each_less() {
-    let ask = Ask { single_fault: true, parallel_up_to: 2, ..ask() };
+    let ask = BleederAsk { single_fault: true, build: strings(2), ..ask() };
     let sizing = sized(&bank(&one("")), &ask);
     // With one of two strings open, twice the resistance has to do.
     assert_relative_eq!(greatest(&sizing), by_hand() / 2.0, max_relative = 1e-9);
     assert!(!sizing.candidates.is_empty());
     for c in &sizing.candidates {
-        assert!(c.parallel == 2 && c.open_wait.is_some_and(|t| t.si() <= 300.0), "{c:?}");
+        assert!(c.parallel == 2 && c.figures.open_wait.is_some_and(|t| t.si() <= 300.0), "{c:?}");
     }
-    let single = sized(&bank(&one("")), &Ask { parallel_up_to: 1, ..ask });
+    let single = sized(&bank(&one("")), &BleederAsk { build: strings(1), ..ask });
     assert_eq!(single.findings[0].code, "demand-met-nowhere");
 }
 
 #[test]
 fn a_limit_on_charge_or_energy_bounds_as_a_voltage_does() {
     let limit = |bound: &str| one(&format!("limits: [{{id: a, {bound}, within: 5 min}}]\n"));
-    let find = |text: String| greatest(&sized(&bank(&text), &Ask { target: None, ..ask() }));
+    let find = |text: String| greatest(&sized(&bank(&text), &BleederAsk { target: None, ..ask() }));
     // 0.198 C is 50 V on 3960 uF; for the energy, 4.95 J, likewise.
     assert_relative_eq!(find(limit("charge: 198 mC")), by_hand(), max_relative = 1e-9);
     assert_relative_eq!(find(limit("energy: 4.95 J")), by_hand(), max_relative = 1e-9);
@@ -127,7 +134,7 @@ fn a_limit_that_no_bleeder_meets_is_said_to_be_met_nowhere() {
         "{HEAD}{PLAIN}capacitors: [{{id: C1, value: 100 uF, across: [P, N]}}, {{id: C2, value: 100 uF, across: [M, \
          N]}}]\nresistors: [{{id: R1, role: series, value: 1 Mohm, across: [P, M]}}]\n"
     );
-    let sizing = sized(&bank(&text), &Ask { target: target(50.0, 60.0), ..ask() });
+    let sizing = sized(&bank(&text), &BleederAsk { target: target(50.0, 60.0), ..ask() });
     assert_eq!((sizing.findings[0].code, sizing.exit_code()), ("demand-met-nowhere", 1));
 }
 

@@ -1,24 +1,33 @@
 //! `bleeder`: a resistor that drains the bank for good, from isolation on.
 
-use super::arrays::{Design, Listed, listed, usable_power};
-use super::collision;
-use super::probe::Probe;
-use super::request::{Ask, SizeError};
-use super::result::{Candidate, DemandResult, Searched, Sizing, Window};
+mod demands;
+mod probe;
+mod request;
+mod result;
+mod trial;
+
+pub use request::{BleederAsk, Target};
+pub use result::{BleederFigures, LimitHeld};
+
+use super::arrays::{Design, clearly_over, element_load, listed, usable_power};
+use super::collision::{self, Ways};
+use super::error::SizeError;
+use super::result::Sizing;
+use super::scan::Scan;
 use super::spans::Spans;
-use super::trial::tried;
-use super::window::{Demand, Kind, Scan};
+use super::trial::planned;
+use super::window::{demand_results, nothing_fits, searched, window_result};
 use crate::bank::Bank;
 use crate::bank::description::{Bound, Connection, Description, Limit, Pair, Resistor, Role, Rule};
+use crate::bank::stock::Element;
 use crate::data::{LimitKind, published_limit};
 use crate::finding::{Finding, Severity};
 use crate::plan::{ChargedTo, Stamp};
-use crate::quantity::{Direction, Quantity, Resistance, Time, celsius, duration, exact, show};
+use crate::quantity::{Quantity, Resistance, Time, celsius};
+use demands::{Kind, demands, instead, nowhere, way_for};
+use probe::{Fitted, Point};
 use rayon::prelude::*;
-
-/// Designs that are put into the bank and fail the full plan are passed over, but not more than this many for each
-/// that is to be shown.
-const TRIES: usize = 8;
+use trial::tried;
 
 /// Finds bleeders for `bank`. `input_sha256` is given with the answer, as with a plan.
 ///
@@ -38,13 +47,14 @@ const TRIES: usize = 8;
 /// let (bank, _) = file::read("bank.yaml", text).expect("a valid file");
 /// let target = size::Target { voltage: Voltage::from_si(50.0), within: Time::from_si(60.0) };
 /// let elements = file::read_stock("generic", data::generic_stock().as_bytes()).expect("a valid list");
-/// let ask = size::Ask { target: Some(target), elements, ..size::Ask::default() };
+/// let build = size::Build { elements, ..size::Build::default() };
+/// let ask = size::BleederAsk { build, target: Some(target), ..size::BleederAsk::default() };
 /// let sizing = size::bleeder(&bank, "", &ask).expect("a certified result");
 /// let greatest = sizing.window.and_then(|w| w.greatest).expect("time bounds it").si();
 /// assert!((greatest / (60.0 / (1e-3 * (565.0f64 / 50.0).ln())) - 1.0).abs() < 1e-9);
 /// assert!(!sizing.candidates.is_empty());
 /// ```
-pub fn bleeder(bank: &Bank, input_sha256: &str, ask: &Ask) -> Result<Sizing, SizeError> {
+pub fn bleeder(bank: &Bank, input_sha256: &str, ask: &BleederAsk) -> Result<Sizing<BleederFigures>, SizeError> {
     let Job { description, counted, place } = Job::of(bank, ask)?;
     let ambient = ask.ambient.unwrap_or_else(|| bank.ambient());
     let demands = demands(&description, &counted, ask, ambient);
@@ -52,12 +62,12 @@ pub fn bleeder(bank: &Bank, input_sha256: &str, ask: &Ask) -> Result<Sizing, Siz
 
     // With single faults the number of strings decides what one open element leaves.
     let faults = counted.iter().any(|i| description.limits[*i].single_fault);
-    let strings: Vec<u32> = if faults { (1..=ask.parallel_up_to).collect() } else { vec![1] };
-    let probes: Vec<Probe> = strings
+    let strings: Vec<u32> = if faults { (1..=ask.build.parallel_up_to).collect() } else { vec![1] };
+    let probes: Vec<Fitted> = strings
         .iter()
-        .map(|n| Probe::new(&description, &Resistor { parallel: *n, ..place.clone() }, counted.clone()))
+        .map(|n| Fitted::new(&description, &Resistor { parallel: *n, ..place.clone() }, counted.clone()))
         .collect::<Result<_, _>>()?;
-    let scans: Vec<Scan> =
+    let scans: Vec<Scan<Fitted>> =
         probes.iter().map(|p| Scan::around(middle, p, &demands)).collect::<Result<_, SizeError>>()?;
     let met: Vec<Vec<Spans>> = scans
         .par_iter()
@@ -69,15 +79,29 @@ pub fn bleeder(bank: &Bank, input_sha256: &str, ask: &Ask) -> Result<Sizing, Siz
         return Err(SizeError::Asked("at least one string is needed; write `--parallel-up-to 1` or more".into()));
     };
     let of = |parallel: u32| windows.get(parallel as usize - 1).unwrap_or(window).clone();
-    let slack = if scan.voltage_is_held() { 0.0 } else { 0.05 };
-    let found = listed(ask, ambient, of, |ohms| scan.voltage(ohms), slack);
-    let (candidates, refused) = planned(&description, ask, &found, &place, &counted)?;
+    let slack = if voltage_is_held(scan) { 0.0 } else { 0.05 };
+    let overload = |design: &Design, element: &Element| {
+        let volts = voltage(scan, design.lowest).max(voltage(scan, design.highest)) * (1.0 - slack);
+        let (watt, volt) = element_load(design, element.tolerance, volts);
+        if clearly_over(watt, usable_power(&element.rating, ambient, ask.build.margin)) {
+            return Some("power");
+        }
+        element.rating.voltage.filter(|most| clearly_over(volt, most.si())).map(|_| "voltage")
+    };
+    let found = listed(&ask.build, of, overload);
+    let one = |design: &Design| tried(&description, ask, design, design.resistor(&ask.build, &place), &counted);
+    let (candidates, refused) = planned(&ask.build, &found, one)?;
 
     let mut findings = Vec::new();
     if window.is_empty() {
-        findings.extend(collision::explained(ask, &demands, spans, scan)?);
+        findings.extend(collision::explained(
+            &demands,
+            spans,
+            scan,
+            &Ways { allow: &|demand, point| way_for(ask, demand, point), instead: &instead, nowhere: &nowhere },
+        )?);
     } else if candidates.is_empty() {
-        findings.push(nothing_fits(ask, &found, refused, window));
+        findings.push(nothing_fits(&ask.build, &found, refused, window));
     }
     if demands.iter().zip(scan.without(&demands)).all(|(d, met)| met || !matches!(d.kind, Kind::Limit(_))) {
         let text = "The bank meets these limits without a new resistor.";
@@ -101,17 +125,10 @@ pub fn bleeder(bank: &Bank, input_sha256: &str, ask: &Ask) -> Result<Sizing, Siz
         across: place.across,
         charged_to: ChargedTo { nominal: description.charged_to.nominal, highest: description.charged_to.highest },
         ambient,
-        power_margin: ask.margin,
-        demands: demands.iter().zip(spans).map(|(d, s)| demand_result(d, s)).collect(),
+        power_margin: ask.build.margin,
+        demands: demand_results(&demands, spans),
         window: window_result(&demands, spans, window),
-        searched: Searched {
-            elements: ask.elements.len(),
-            inside_window: found.inside,
-            over_power: found.over_power,
-            over_voltage: found.over_voltage,
-            designs: found.designs.len(),
-            refused_by_plan: refused,
-        },
+        searched: searched(&ask.build, &found, refused),
         candidates,
         findings,
         assumptions: assumptions(bank, ask, faults),
@@ -129,15 +146,8 @@ struct Job {
 }
 
 impl Job {
-    fn of(bank: &Bank, ask: &Ask) -> Result<Self, SizeError> {
-        if ask.elements.is_empty() || ask.series_up_to == 0 || ask.parallel_up_to == 0 || ask.show == 0 {
-            return Err(SizeError::Asked(
-                "there is nothing to build from: give elements, and counts of 1 or more".into(),
-            ));
-        }
-        if !(0.0..1.0).contains(&ask.margin) {
-            return Err(SizeError::Asked("the margin on power has to be under 100 %; write `--margin 40%`".into()));
-        }
+    fn of(bank: &Bank, ask: &BleederAsk) -> Result<Self, SizeError> {
+        ask.build.check()?;
         let mut description = bank.description().clone();
         description.ambient = ask.ambient.or(description.ambient);
         let counted: Vec<usize> = match ask.target {
@@ -202,7 +212,7 @@ fn has_bound(limit: &Limit) -> bool {
 }
 
 /// A resistor whose value is not known yet.
-fn stand_in(ask: &Ask, across: &Pair) -> Resistor {
+fn stand_in(ask: &BleederAsk, across: &Pair) -> Resistor {
     Resistor {
         id: ask.id.clone(),
         role: Role::Bleeder,
@@ -217,44 +227,6 @@ fn stand_in(ask: &Ask, across: &Pair) -> Resistor {
         phases: None,
         switched: None,
     }
-}
-
-fn demands(
-    description: &Description,
-    counted: &[usize],
-    ask: &Ask,
-    ambient: crate::quantity::Temperature,
-) -> Vec<Demand> {
-    let limits = counted.iter().enumerate().map(|(number, index)| {
-        let limit = &description.limits[*index];
-        let rule = match &limit.rule {
-            Rule::Own { any_of, within } => match any_of.as_slice() {
-                [Bound::Voltage(v)] => format!(" ({} within {})", exact(*v), duration(*within, Direction::Down)),
-                _ => String::new(),
-            },
-            Rule::Published(_) => String::new(),
-        };
-        let faults = if limit.single_fault { " with any one part failed" } else { "" };
-        Demand { name: format!("limit {}{rule}{faults}", limit.id), kind: Kind::Limit(number) }
-    });
-    let loss = ask.max_loss.map(|most| Demand {
-        name: format!("a standing loss of at most {}", exact(most)),
-        kind: Kind::Loss(most.si()),
-    });
-    let current = ask
-        .max_current
-        .map(|most| Demand { name: format!("a current of at most {}", exact(most)), kind: Kind::Current(most.si()) });
-    let most = ask.elements.iter().map(|e| usable_power(&e.rating, ambient, ask.margin)).fold(0.0, f64::max)
-        * f64::from(ask.series_up_to * ask.parallel_up_to);
-    let rating = most.is_finite().then(|| Demand {
-        name: format!(
-            "what the largest arrays bear in air of {:.0} °C ({})",
-            celsius(ambient),
-            show(crate::quantity::Power::from_si(most), Direction::Down)
-        ),
-        kind: Kind::Rating(most),
-    });
-    limits.chain(loss).chain(current).chain(rating).collect()
 }
 
 /// A resistance in the middle of what can matter: the time over all the capacitance.
@@ -273,109 +245,7 @@ fn middle(description: &Description, counted: &[usize]) -> f64 {
     if seconds.is_finite() { seconds / farad } else { 1.0 / farad }
 }
 
-/// The first designs that do the job by the full plan, and how many before them did not.
-fn planned(
-    description: &Description,
-    ask: &Ask,
-    found: &Listed,
-    place: &Resistor,
-    counted: &[usize],
-) -> Result<(Vec<Candidate>, usize), SizeError> {
-    let one = |design: &Design| tried(description, ask, design, design.resistor(ask, place), counted);
-    let (mut candidates, mut refused) = (Vec::new(), 0);
-    for some in found.designs.chunks(ask.show).take(TRIES) {
-        let trials: Vec<_> = some.par_iter().map(one).collect::<Result<_, SizeError>>()?;
-        for trial in trials {
-            if trial.passes && candidates.len() < ask.show {
-                candidates.push(trial.candidate);
-            } else if !trial.passes {
-                refused += 1;
-            }
-        }
-        if candidates.len() == ask.show {
-            break;
-        }
-    }
-    for (index, candidate) in candidates.iter_mut().enumerate() {
-        candidate.rank = index + 1;
-    }
-    Ok((candidates, refused))
-}
-
-fn bounded(ohms: f64) -> Option<Resistance> {
-    (ohms > 0.0 && ohms.is_finite()).then(|| Resistance::from_si(ohms))
-}
-
-fn demand_result(demand: &Demand, spans: &Spans) -> DemandResult {
-    let ends = spans.ends();
-    DemandResult {
-        demand: demand.name.clone(),
-        least: ends.and_then(|e| bounded(e.low)),
-        greatest: ends.and_then(|e| bounded(e.high)),
-        nowhere: spans.is_empty(),
-        gaps: spans.as_slice().len() > 1,
-    }
-}
-
-#[allow(clippy::float_cmp)] // An end of the window is the very end of one of the demands.
-fn window_result(demands: &[Demand], spans: &[Spans], window: &Spans) -> Option<Window> {
-    let ends = window.ends()?;
-    let from = |has: &dyn Fn(&super::spans::Span) -> bool| {
-        let found = demands.iter().zip(spans).find(|(_, s)| s.as_slice().iter().any(has));
-        found.map(|(d, _)| d.name.clone())
-    };
-    let (least, greatest) = (bounded(ends.low), bounded(ends.high));
-    Some(Window {
-        least,
-        least_from: least.and_then(|_| from(&|s| s.low == ends.low)),
-        greatest,
-        greatest_from: greatest.and_then(|_| from(&|s| s.high == ends.high)),
-    })
-}
-
-/// The window is open, and no design is in it.
-fn nothing_fits(ask: &Ask, found: &Listed, refused: usize, window: &Spans) -> Finding {
-    let ends = window.ends().map_or((0.0, f64::INFINITY), |e| (e.low, e.high));
-    let range = match (bounded(ends.0), bounded(ends.1)) {
-        (Some(low), Some(high)) => {
-            format!("{} to {}", show(low, Direction::Up), show(high, Direction::Down))
-        }
-        (None, Some(high)) => format!("up to {}", show(high, Direction::Down)),
-        (Some(low), None) => format!("from {} on", show(low, Direction::Up)),
-        (None, None) => "any resistance".into(),
-    };
-    let (text, help) = if found.inside == 0 {
-        (
-            format!("No array of the elements at hand lies in the window ({range}) with all of its tolerance."),
-            "a finer series, a closer tolerance, other values, or more elements in an array",
-        )
-    } else if refused == 0 {
-        (
-            format!(
-                "{} arrays lie in the window ({range}); one element would carry too much power in {} of them and too \
-                 much voltage in {}.",
-                found.inside, found.over_power, found.over_voltage
-            ),
-            "larger elements, a lower ambient, a smaller margin, or more elements in an array",
-        )
-    } else {
-        (
-            format!(
-                "{} arrays lie in the window ({range}); of those that seemed to do, the full plan refused {refused}{}.",
-                found.inside,
-                if found.designs.len() > refused { ", and no more were tried" } else { "" }
-            ),
-            "`--show` with a greater number tries more of them",
-        )
-    };
-    let series = format!(
-        "Arrays of up to {} in series and {} in parallel were looked at. ",
-        ask.series_up_to, ask.parallel_up_to
-    );
-    Finding::new(Severity::Warning, "no-design", text).with_help(format!("{series}What may help: {help}."))
-}
-
-fn assumptions(bank: &Bank, ask: &Ask, faults: bool) -> Vec<String> {
+fn assumptions(bank: &Bank, ask: &BleederAsk, faults: bool) -> Vec<String> {
     let mut list = vec![
         "The window is one of actual resistance: with all other values at the worst end of their tolerances, at the \
          highest voltage. A design fits where all of its tolerance does."
@@ -385,16 +255,7 @@ fn assumptions(bank: &Bank, ask: &Ask, faults: bool) -> Vec<String> {
             .to_string(),
         "The year's energy is that of the nominal voltage, connected for 8760 h.".to_string(),
     ];
-    if ask.generic {
-        list.push(
-            "The elements are generic ones with invented ratings, not parts that can be had: `--stock FILE` gives \
-                   your own."
-                .to_string(),
-        );
-    }
-    if ask.margin <= 0.0 {
-        list.push("No margin on power was asked for: an element may carry all that its derating allows.".to_string());
-    }
+    list.extend(ask.build.assumptions());
     match ask.ambient {
         Some(ambient) => list.push(format!(
             "Air at the resistors: {:.0} °C as asked, whatever the file says; the plan of the file itself uses its own.",
@@ -413,8 +274,30 @@ fn assumptions(bank: &Bank, ask: &Ask, faults: bool) -> Vec<String> {
     if faults {
         list.push(format!(
             "Single faults count: the window is told for {} strings; with fewer, one open element weighs more.",
-            ask.parallel_up_to
+            ask.build.parallel_up_to
         ));
     }
     list
+}
+
+/// The voltage across the resistor at an actual resistance, between the points that were looked at; exact where the
+/// resistance does not move it.
+fn voltage(scan: &Scan<Fitted>, ohms: f64) -> f64 {
+    let points = scan.points();
+    let after = points.partition_point(|(at, _)| *at < ohms);
+    let (left, right) = (points.get(after.saturating_sub(1)), points.get(after));
+    match (left, right) {
+        (Some((low, a)), Some((high, b))) => {
+            let share = ((ohms / low).ln() / (high / low).ln()).clamp(0.0, 1.0);
+            if share.is_finite() { a.voltage + share * (b.voltage - a.voltage) } else { a.voltage.min(b.voltage) }
+        }
+        (one, other) => one.or(other).map_or(f64::NAN, |(_, p)| p.voltage),
+    }
+}
+
+/// True where the resistance does not move the voltage across it, as at the terminals.
+fn voltage_is_held(scan: &Scan<Fitted>) -> bool {
+    let of = |point: &Point| point.voltage;
+    let first = scan.points().first().map_or(f64::NAN, |(_, p)| of(p));
+    scan.points().iter().all(|(_, p)| (of(p) - first).abs() <= 1e-12 * first)
 }

@@ -4,17 +4,17 @@
 //! actual values that it may have, so a design does the job where ALL of these do; no law of how a figure changes with
 //! resistance is relied on.
 
-use super::request::SizeError;
 use crate::bank::Bank;
 use crate::bank::description::{Description, Resistor};
 use crate::check::{Answers, EngineError, FaultAnswers, LimitChecks};
 use crate::discharge::{Figure, Model, faults};
 use crate::quantity::{Quantity, Resistance};
+use crate::size::error::SizeError;
+use crate::size::scan::Probe;
 
 /// What was found at one actual resistance, in SI base units, greatest over the tolerances of all other parts.
 #[derive(Debug, Clone, PartialEq)]
 pub(super) struct Point {
-    pub ohms: f64,
     /// For every limit that counts: from when on it holds and by when it has to; infinite where it never holds. Single
     /// faults are in it where the limit asks for them.
     pub limits: Vec<(f64, f64)>,
@@ -27,7 +27,7 @@ pub(super) struct Point {
 }
 
 /// A bank with the new resistor in it, its value still open.
-pub(super) struct Probe {
+pub(super) struct Fitted {
     bank: Bank,
     model: Model,
     /// The resistor, or its legs in a three-phase bank.
@@ -36,7 +36,7 @@ pub(super) struct Probe {
     counted: Vec<usize>,
 }
 
-impl Probe {
+impl Fitted {
     /// The bank of `description` with `part` in it; of the part's array only the number of strings matters, for what
     /// one open element leaves.
     pub fn new(description: &Description, part: &Resistor, counted: Vec<usize>) -> Result<Self, SizeError> {
@@ -51,11 +51,14 @@ impl Probe {
         let failed = EngineError::of("absorption");
         let model = Model::new(&bank).map_err(failed)?;
         let legs = ids.iter().filter_map(|id| model.find_resistor(id)).collect();
-        Ok(Probe { bank, model, legs, counted })
+        Ok(Fitted { bank, model, legs, counted })
     }
+}
 
-    /// Finds what the demands come to with `ohms` in place; infinite is without the part.
-    pub fn at(&self, ohms: f64) -> Result<Point, EngineError> {
+impl Probe for Fitted {
+    type Point = Point;
+
+    fn at(&self, ohms: f64) -> Result<Point, EngineError> {
         let mut model = self.model.clone();
         for leg in &self.legs {
             model.resistors[*leg].nominal = ohms;
@@ -80,7 +83,6 @@ impl Probe {
         }
         let counted = self.counted.iter().filter_map(|i| found.get(*i).copied().flatten());
         Ok(Point {
-            ohms,
             limits: counted.collect(),
             standing: self.legs.iter().map(|leg| healthy.worst(standing(leg))).sum(),
             current: self.legs.iter().map(|leg| healthy.worst(current(leg))).fold(0.0, f64::max),

@@ -1,0 +1,114 @@
+//! What a bleeder's report says of its designs.
+
+use super::{SizeReport, Told, bought, document, of, rank, strings, value};
+use crate::quantity::{Direction, Quantity, Ratio, show};
+use crate::report::block::{Grid, Labelled, Side};
+use crate::report::words::{down, list, pair, time, up, wait, whole};
+use crate::size::{BleederFigures, Candidate, Sizing};
+
+/// A sizing of a bleeder, ready for people.
+pub fn size_bleeder(sizing: &Sizing<BleederFigures>) -> SizeReport {
+    let place = match sizing.connection {
+        Some(connection) => format!("Three legs in {connection}, from up to {}.", up(sizing.charged_to.highest)),
+        None => format!("Across {}, from up to {}.", pair(&sizing.across), up(sizing.charged_to.highest)),
+    };
+    let first = sizing.candidates.first();
+    let explained = "* none other has as few elements, as little loss and as short a wait, and less of one. Loss: at \
+                     the highest voltage, all of the array. Each design was put into the bank and planned in full; the \
+                     figures are that plan's.";
+    let tables = vec![
+        ("Designs", designs(&sizing.candidates), Some(explained.into())),
+        ("One element", elements(&sizing.candidates), None),
+    ];
+    let told =
+        Told { place, predicted: first.map(predicted), tables, first: first.map_or_else(Vec::new, first_design) };
+    document(sizing, told)
+}
+
+fn predicted(first: &Candidate<BleederFigures>) -> String {
+    let kept = first.figures.limits.iter().map(|l| {
+        let within = l.within.map_or_else(String::new, |t| format!(" (due {})", whole(t)));
+        format!("{} holds from {}{within}", l.id, wait(l.holds_from))
+    });
+    format!("Predicted: {}; standing loss {}.", list(&kept.collect::<Vec<_>>()), up(first.figures.loss_highest))
+}
+
+fn designs(candidates: &[Candidate<BleederFigures>]) -> Grid {
+    let mut grid = Grid::new(&[
+        ("No.", Side::Left),
+        ("Element", Side::Left),
+        ("Value", Side::Right),
+        ("s x p", Side::Right),
+        ("Wait", Side::Right),
+        ("One open", Side::Right),
+        ("Loss", Side::Right),
+    ]);
+    for c in candidates {
+        grid.row([
+            rank(c),
+            c.element.clone(),
+            value(c.value),
+            strings(c),
+            wait(c.figures.wait),
+            wait(c.figures.open_wait),
+            up(c.figures.loss_highest),
+        ]);
+    }
+    grid
+}
+
+/// Kilowatt hours, rounded up to three digits.
+fn energy(kwh: f64) -> String {
+    let text = show(Ratio::from_si(kwh / 100.0), Direction::Up);
+    text.trim_end_matches(" %").to_string()
+}
+
+fn elements(candidates: &[Candidate<BleederFigures>]) -> Grid {
+    let mut columns = vec![
+        ("No.", Side::Left),
+        ("Power", Side::Right),
+        ("Voltage", Side::Right),
+        ("Body", Side::Right),
+        ("All of it", Side::Right),
+        ("kWh/year", Side::Right),
+    ];
+    let bought = bought(&mut columns, candidates);
+    let mut grid = Grid::new(&columns);
+    for c in candidates {
+        let mut row = vec![
+            c.rank.to_string(),
+            of(c.element_power.map(up), c.allowed_power.map(down)),
+            of(c.element_voltage.map(up), c.allowed_voltage.map(down)),
+            c.body_temperature.map_or_else(String::new, up),
+            value(c.resistance),
+            energy(c.figures.energy_per_year_kwh),
+        ];
+        row.extend(bought(c));
+        grid.row(row);
+    }
+    grid
+}
+
+fn first_design(c: &Candidate<BleederFigures>) -> Vec<Labelled> {
+    let mut items: Vec<Labelled> = c
+        .figures
+        .limits
+        .iter()
+        .map(|l| {
+            let faults = match l.single_fault_met {
+                Some(true) => " With any one part failed as well.",
+                Some(false) => " NOT with any one part failed.",
+                None => "",
+            };
+            let text = format!("{}: holds from {} on at {}.{faults}", l.id, wait(l.holds_from), pair(&l.across));
+            Labelled::new("limit", vec![text])
+        })
+        .collect();
+    let open = match c.figures.open_wait {
+        Some(open) => format!("The longest wait is then {}.", time(open)),
+        None => "The wait then NEVER ends by itself: test before touch, whatever time has passed.".into(),
+    };
+    items.push(Labelled::new("one open", vec![open]));
+    items.push(Labelled::new("current", vec![format!("Up to {} through the array.", up(c.figures.peak_current))]));
+    items
+}
