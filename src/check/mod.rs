@@ -36,7 +36,7 @@ pub(crate) use notes::{assumptions, notes};
 pub(crate) use notice::notice;
 pub(crate) use phases::phase_findings;
 pub(crate) use procedure::{Procedure, StepAnswers};
-pub(crate) use resistors::{ResistorChecks, derated};
+pub(crate) use resistors::{ResistorChecks, body, derated};
 pub(crate) use sensitivity::sensitivities;
 pub(crate) use serial::{celsius_or_null, degrees, si, si_list, si_or_null};
 pub(crate) use spreads::spreads;

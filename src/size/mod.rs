@@ -18,7 +18,7 @@ mod spans;
 mod trial;
 mod window;
 
-pub use bleeder::{BleederAsk, BleederFigures, LimitHeld, Target, bleeder};
+pub use bleeder::{BleederAsk, BleederFigures, ContactFigures, LimitHeld, Target, bleeder};
 pub use build::{Build, Rank};
 pub use error::SizeError;
 pub use result::{Candidate, DemandResult, Searched, SetAside, Sizing, Window};

@@ -1,9 +1,11 @@
 //! Bleeders that a contact connects at isolation: closed forms, a matrix exponential, series summed by hand, the plan's
 //! own figures for the plain bleeder.
 
+mod files;
 mod heat;
 mod networks;
 mod passive;
+mod sizing;
 mod steps;
 
 use ebbvolt::bank::file;
