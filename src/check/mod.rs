@@ -32,7 +32,7 @@ pub(crate) use curves::CurveCheck;
 pub(crate) use energy::remaining_energy;
 pub(crate) use equipment::equipment;
 pub(crate) use limits::LimitChecks;
-pub(crate) use notes::{assumptions, notes};
+pub(crate) use notes::{assumptions, contact, notes};
 pub(crate) use notice::notice;
 pub(crate) use phases::phase_findings;
 pub(crate) use procedure::{Procedure, StepAnswers};

@@ -222,8 +222,8 @@ pub(crate) fn assumptions(bank: &Bank) -> Vec<String> {
     list
 }
 
-/// What is taken of a bleeder's contact.
-fn contact(id: &str, contact: &Switched) -> String {
+/// What is taken of a bleeder's contact, in a sentence or two.
+pub(crate) fn contact(id: &str, contact: &Switched) -> String {
     let delay =
         |time: Time| if time.si() > 0.0 { format!("{} after", duration(time, Direction::Up)) } else { "at".into() };
     let opens = match contact.opens_after.si() > 0.0 {

@@ -88,7 +88,7 @@ pub struct ContactResult {
     /// How far apart; `None` (null) where that was not given.
     #[serde(rename = "every_s", serialize_with = "si_or_null")]
     pub every: Option<Time>,
-    /// Energy of one cycle over its length, of one element; `None` (null) without a length.
+    /// Energy from one isolation to the next over that time, of one element; `None` (null) where that was not given.
     #[serde(rename = "average_power_w", serialize_with = "si_or_null")]
     pub average_power: Option<Power>,
 }
@@ -96,7 +96,7 @@ pub struct ContactResult {
 impl ContactResult {
     fn of(contact: &Switched, load: &Load) -> Self {
         let Switched { closes_after, opens_after, discharges, every } = *contact;
-        let average_power = every.map(|every| Power::from_si(load.energy / every.si()));
+        let average_power = every.map(|every| Power::from_si(load.cycle / every.si()));
         ContactResult { closes_after, opens_after, discharges, every, average_power }
     }
 }
@@ -128,6 +128,8 @@ struct Load {
     current: f64,
     power: f64,
     energy: f64,
+    /// Energy of one cycle through a contact.
+    cycle: f64,
     rise: Option<f64>,
 }
 
@@ -135,8 +137,13 @@ fn is_single(resistor: &Resistor) -> bool {
     resistor.series == 1 && resistor.parallel == 1
 }
 
+/// True where a contact connects a resistor every so often.
+fn has_cycle(resistor: &Resistor) -> bool {
+    resistor.switched.is_some_and(|contact| contact.every.is_some())
+}
+
 /// The figures of a load, in the order in which [`Load::from`] takes them.
-fn load_figures(resistor: usize, rating: &Rating) -> Vec<Figure> {
+fn load_figures(resistor: usize, rating: &Rating, cycles: bool) -> Vec<Figure> {
     let mut figures = vec![
         Figure::StandingPower { resistor },
         Figure::ResistorVoltage { resistor },
@@ -144,33 +151,37 @@ fn load_figures(resistor: usize, rating: &Rating) -> Vec<Figure> {
         Figure::PeakPower { resistor },
         Figure::ResistorEnergy { resistor },
     ];
+    figures.extend(cycles.then_some(Figure::CycleEnergy { resistor }));
     figures.extend(body(rating).map(|body| Figure::BodyRise { resistor, body }));
     figures
 }
 
 impl Load {
     fn through(figures: &[StepFigure], answers: &StepAnswers) -> Self {
-        Load::of(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>())
+        let cycles = matches!(figures.get(5), Some(StepFigure::CycleEnergy { .. }));
+        Load::of(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>(), cycles)
     }
 
     fn from(figures: &[Figure], answers: &Answers) -> Self {
-        Load::of(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>())
+        let cycles = matches!(figures.get(5), Some(Figure::CycleEnergy { .. }));
+        Load::of(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>(), cycles)
     }
 
-    fn of(worst: &[f64]) -> Self {
+    fn of(worst: &[f64], cycles: bool) -> Self {
         Load {
             standing: worst[0],
             voltage: worst[1],
             current: worst[2],
             power: worst[3],
             energy: worst[4],
-            rise: worst.get(5).copied(),
+            cycle: if cycles { worst[5] } else { 0.0 },
+            rise: worst.get(if cycles { 6 } else { 5 }).copied(),
         }
     }
 }
 
 /// The figures of a load over a procedure, in the order in which [`Load::through`] takes them.
-fn load_figures_through(resistor: usize, rating: &Rating) -> Vec<StepFigure> {
+fn load_figures_through(resistor: usize, rating: &Rating, cycles: bool) -> Vec<StepFigure> {
     let mut figures = vec![
         StepFigure::StandingPower { resistor },
         StepFigure::PartVoltage { resistor },
@@ -178,6 +189,7 @@ fn load_figures_through(resistor: usize, rating: &Rating) -> Vec<StepFigure> {
         StepFigure::PartPower { resistor },
         StepFigure::PartEnergy { resistor },
     ];
+    figures.extend(cycles.then_some(StepFigure::CycleEnergy { resistor }));
     figures.extend(body(rating).map(|body| StepFigure::BodyRise { resistor, body }));
     figures
 }
@@ -192,7 +204,10 @@ impl ResistorChecks<'_> {
     /// What has to be known of the healthy bank: the load of every resistor that is no array.
     pub fn figures(&self) -> Vec<Figure> {
         let single = self.bank.description().resistors.iter().filter(|r| is_single(r) && r.role.always_connected());
-        single.filter_map(|r| Some(load_figures(self.model.find_resistor(&r.id)?, &r.rating))).flatten().collect()
+        single
+            .filter_map(|r| Some(load_figures(self.model.find_resistor(&r.id)?, &r.rating, has_cycle(r))))
+            .flatten()
+            .collect()
     }
 
     /// What has to be known under every fault: the standing power of every resistor.
@@ -241,10 +256,10 @@ impl ResistorChecks<'_> {
             return Ok(None);
         };
         if is_single(resistor) {
-            return Ok(Some(Load::from(&load_figures(index, &resistor.rating), healthy)));
+            return Ok(Some(Load::from(&load_figures(index, &resistor.rating, has_cycle(resistor)), healthy)));
         }
         let Some((model, element)) = element_model(&self.model.passive_only(), resistor) else { return Ok(None) };
-        let figures = load_figures(element, &resistor.rating);
+        let figures = load_figures(element, &resistor.rating, has_cycle(resistor));
         let answers = Answers::healthy(self.bank, &model, figures.clone())?;
         Ok(Some(Load::from(&figures, &answers)))
     }
@@ -252,11 +267,13 @@ impl ResistorChecks<'_> {
     /// What every single resistor and supply bears until the end of the procedure, answered together.
     fn answers_through(&self, procedure: &Procedure) -> Result<StepAnswers, EngineError> {
         let description = self.bank.description();
-        let single = description.resistors.iter().filter(|r| is_single(r)).map(|r| (&r.id, &r.rating));
-        let supplies = description.supplies.iter().map(|s| (&s.id, &s.rating));
+        let single = description.resistors.iter().filter(|r| is_single(r)).map(|r| (&r.id, &r.rating, has_cycle(r)));
+        let supplies = description.supplies.iter().map(|s| (&s.id, &s.rating, false));
         let figures = single
             .chain(supplies)
-            .filter_map(|(id, rating)| Some(load_figures_through(self.model.find_resistor(id)?, rating)))
+            .filter_map(|(id, rating, cycles)| {
+                Some(load_figures_through(self.model.find_resistor(id)?, rating, cycles))
+            })
             .flatten();
         procedure.healthy(self.model, figures.collect())
     }
@@ -271,7 +288,7 @@ impl ResistorChecks<'_> {
         let always = resistor.role.always_connected();
         let there = |i: &usize| always || procedure.ever_connects(*i);
         let Some(index) = self.model.find_resistor(&resistor.id).filter(there) else { return Ok(None) };
-        let figures = load_figures_through(index, &resistor.rating);
+        let figures = load_figures_through(index, &resistor.rating, has_cycle(resistor));
         if is_single(resistor) {
             return Ok(Some(Load::through(&figures, single)));
         }
@@ -283,7 +300,8 @@ impl ResistorChecks<'_> {
     fn supplies(&self, procedure: Option<(&Procedure, &StepAnswers)>) -> Vec<ResistorResult> {
         let one = |supply: &Supply| {
             let index = self.model.find_resistor(&supply.id).zip(procedure).filter(|(i, (p, _))| p.ever_connects(*i));
-            let load = index.map(|(i, (_, single))| Load::through(&load_figures_through(i, &supply.rating), single));
+            let load =
+                index.map(|(i, (_, single))| Load::through(&load_figures_through(i, &supply.rating, false), single));
             let part = Resistor {
                 id: supply.id.clone(),
                 role: Role::Series,
@@ -328,7 +346,7 @@ impl ResistorChecks<'_> {
                     Some(("continuous power", l.standing))
                 } else {
                     let every = resistor.switched.and_then(|contact| contact.every);
-                    every.map(|every| ("average power", l.energy / every.si()))
+                    every.map(|every| ("average power", l.cycle / every.si()))
                 };
                 let mut checks = checks(&resistor.rating, l, ambient, lasting);
                 if carries_current(self.bank, resistor) {

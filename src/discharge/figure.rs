@@ -43,6 +43,9 @@ pub(crate) enum Figure {
     PeakPower { resistor: usize },
     /// Energy from isolation on.
     ResistorEnergy { resistor: usize },
+    /// Energy of one cycle, where a contact connects it every so often: from isolation to the next one, with the feeding
+    /// in between; 0 where that is not said.
+    CycleEnergy { resistor: usize },
     /// Greatest rise of the body over the air, in K, from the steady temperature before isolation.
     BodyRise { resistor: usize, body: Body },
     /// Greatest voltage before and after isolation.
@@ -108,6 +111,13 @@ impl Figure {
                 let fed = model.contact(r).map_or(0.0, |c| case.fed_volts(r).powi(2) * c.opens_after);
                 per_ohm(resistor(r).integral_of_square(f64::INFINITY) + fed, case.after_ohms[r])
             }
+            Figure::CycleEnergy { resistor: r } => match model.contact(r).and_then(|c| Some((c, c.every?))) {
+                Some((contact, every)) => {
+                    let fed = case.fed_volts(r).powi(2) * contact.opens_after;
+                    per_ohm(resistor(r).integral_of_square(every) + fed, case.after_ohms[r])
+                }
+                None => 0.0,
+            },
             Figure::BodyRise { resistor: r, body } => {
                 let ohms = case.after_ohms[r];
                 let volts = if ohms.is_finite() { resistor(r) } else { Course::default() };

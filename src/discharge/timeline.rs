@@ -197,15 +197,23 @@ impl Timeline {
         until: f64,
     ) -> Result<Heated, CircuitError> {
         let mut heat = Heated { greatest: start, end: start };
-        let mut left = until;
-        for (stage, run) in self.runs.iter().enumerate() {
-            let goes_on = stage + 1 == self.runs.len() && until.is_finite();
-            let time = if goes_on { left } else { run.duration.min(left) };
+        for (time, run) in self.until(until).zip(&self.runs) {
             let next = body.heated(heat.end, &run.hottest(model, &self.map, resistor), run.ohms[resistor], time)?;
             heat = Heated { greatest: heat.greatest.max(next.greatest), end: next.end };
-            left -= time;
         }
         Ok(heat)
+    }
+
+    /// For every step how much of it lies within so many seconds from isolation; where that is finite the last step
+    /// goes on until then.
+    fn until(&self, until: f64) -> impl Iterator<Item = f64> + '_ {
+        let mut left = until;
+        self.runs.iter().enumerate().map(move |(stage, run)| {
+            let goes_on = stage + 1 == self.runs.len() && until.is_finite();
+            let time = if goes_on { left } else { run.duration.min(left) };
+            left -= time;
+            time
+        })
     }
 
     /// Checks the energy balance of every step.
@@ -313,6 +321,10 @@ pub(crate) enum StepFigure {
     PartEnergy {
         resistor: usize,
     },
+    /// Energy of one cycle, as that of a passive discharge; after the last step its parts are left as they are.
+    CycleEnergy {
+        resistor: usize,
+    },
     /// Power before isolation.
     StandingPower {
         resistor: usize,
@@ -348,12 +360,16 @@ impl Run {
     }
 
     fn energy(&self, model: &Model, map: &[usize], resistor: usize) -> f64 {
+        self.energy_within(model, map, resistor, self.duration)
+    }
+
+    fn energy_within(&self, model: &Model, map: &[usize], resistor: usize, time: f64) -> f64 {
         let ohms = self.ohms[resistor];
         if !ohms.is_finite() {
             return 0.0;
         }
         let energies = self.voltages(model, map, resistor).into_iter();
-        energies.map(|v| v.integral_of_square(self.duration) / ohms).fold(0.0, f64::max)
+        energies.map(|v| v.integral_of_square(time) / ohms).fold(0.0, f64::max)
     }
 
     /// The voltage that counts for the temperature of a resistor: of what a supply is tried from, the one that heats
@@ -413,6 +429,7 @@ impl Objective for ProcedureStudy<'_> {
             | StepFigure::StandingPower { resistor } => small * small / ohms(resistor),
             StepFigure::Energy { .. }
             | StepFigure::PartEnergy { .. }
+            | StepFigure::CycleEnergy { .. }
             | StepFigure::ReadyEnergy { .. }
             | StepFigure::StoredEnergy { .. } => {
                 1e-10 * model.capacitors.iter().map(|c| 0.5 * c.nominal * small * volts).sum::<f64>()
@@ -505,6 +522,14 @@ impl StepFigure {
             })?),
             StepFigure::PartEnergy { resistor } => {
                 runs.iter().map(|run| run.energy(model, map, resistor)).sum::<f64>() + fed_energy[resistor]
+            }
+            StepFigure::CycleEnergy { resistor } => {
+                let every = model.contact(resistor).and_then(|contact| contact.every);
+                every.map_or(0.0, |every| {
+                    let spans = timeline.until(every).zip(runs);
+                    let taken: f64 = spans.map(|(time, run)| run.energy_within(model, map, resistor, time)).sum();
+                    taken + fed_energy[resistor]
+                })
             }
             StepFigure::StandingPower { resistor } => standing[resistor],
             StepFigure::BodyRise { resistor, body } => {

@@ -153,7 +153,7 @@ fn a_bleeder_for_a_contact_is_found_told_and_written_with_its_key() {
     }
     assert!(text.out.lines().all(|line| line.chars().count() <= 80), "{}", text.out);
     let part = run_with(&[&["size", "bleeder", "-", "--part"], &words[..]].concat(), bare().as_bytes());
-    let key = "switched: {closes_after: 100 ms, opens_after: 50 ms, discharges: 3, every: 10 min}";
+    let key = "switched: {closes_after: 100 ms, opens_after: 50 ms, discharges: 3, every: 600 s}";
     assert!(part.out.contains(key), "{}", part.out);
     let pasted = bare().replace("limits:", &format!("resistors:\n  {}limits:", part.out));
     let plan = run_with(&["plan", "-"], pasted.as_bytes());

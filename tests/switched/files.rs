@@ -73,7 +73,7 @@ fn a_contact_on_a_three_phase_part_is_that_of_every_leg_and_is_written_so() {
     let (bank, _) = file::read("three.yaml", three.as_bytes()).expect("valid");
     for bank in [bank.expanded(), bank] {
         let written = file::write(&bank);
-        assert!(written.contains("switched: {closes_after: 250 ms, discharges: 3, every: 2 min}"), "{written}");
+        assert!(written.contains("switched: {closes_after: 250 ms, discharges: 3, every: 120 s}"), "{written}");
         let (again, _) = file::read("written.yaml", written.as_bytes()).expect("valid");
         assert_eq!(again, bank);
     }

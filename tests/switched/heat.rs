@@ -60,6 +60,7 @@ fn a_row_of_discharges_is_the_series_of_what_each_has_left() {
         // is left of its power after a cycle (e^-36 at least) is nothing.
         let row = |t: f64| (0..count).map(|k| discharge(t - 2.0 + f64::from(k) * every)).sum::<f64>();
         close(body_rise(&plan), greatest(row, 18.0), 1e-8);
+        // The discharge is over long before the next isolation, to e^-36 of it.
         close(found(&plan, "average power"), 180.0 / every, 1e-10);
     }
 }
@@ -70,6 +71,15 @@ fn a_cycle_shorter_than_the_discharge_cuts_the_heat_that_it_leaves() {
     let plan = planned(&bleeder("discharges: 2, every: 1.5 s"));
     let second = |t: f64| discharge(t) + discharge(1.5) * (-t / BODY.1).exp();
     close(body_rise(&plan), greatest(second, 30.0), 1e-8);
+    // So does the average power: what flows until the next isolation.
+    close(found(&plan, "average power"), 180.0 * (1.0 - f64::exp(-3.0)) / 1.5, 1e-10);
+    let steps = ", procedure: [{step: a, for: 1 s}, {step: b, for: 2 s}, {step: c, for: 1 min}]";
+    let part = format!(
+        "{{id: RS, role: bleeder, value: 1 kohm, tolerance: 0 %, switched: {{discharges: 2, every: 1.5 s}}, {RATING}}}"
+    );
+    let through = planned(&one(&part, steps));
+    close(found(&through, "average power"), 180.0 * (1.0 - f64::exp(-3.0)) / 1.5, 1e-10);
+    close(body_rise(&through), greatest(second, 30.0), 1e-8);
 }
 
 #[test]

@@ -21,10 +21,11 @@ use super::window::{demand_results, nothing_fits, searched, window_result};
 use crate::bank::Bank;
 use crate::bank::description::{Bound, Connection, Description, Limit, Pair, Resistor, Role, Rule};
 use crate::bank::stock::Element;
+use crate::check::contact;
 use crate::data::{LimitKind, published_limit};
 use crate::finding::{Finding, Severity};
 use crate::plan::{ChargedTo, Stamp};
-use crate::quantity::{Direction, Quantity, Resistance, Time, celsius, duration};
+use crate::quantity::{Quantity, Resistance, Time, celsius};
 use bearing::{Bearing, Discharge};
 use demands::{Kind, demands, instead, nowhere, way_for};
 use probe::{Fitted, Point};
@@ -281,12 +282,7 @@ fn assumptions(bank: &Bank, ask: &BleederAsk, faults: bool) -> Vec<String> {
     ];
     list.push(match ask.switched {
         None => "The year's energy is that of the nominal voltage, connected for 8760 h.".to_string(),
-        Some(contact) => format!(
-            "The contact closes {} after isolation and opens {} after the bank is fed again: the slowest contact, as \
-             asked. A contact that stays closed while the bank is fed is not computed.",
-            duration(contact.closes_after, Direction::Up),
-            duration(contact.opens_after, Direction::Up)
-        ),
+        Some(asked) => contact(&ask.id, &asked),
     });
     list.extend(ask.build.assumptions());
     match ask.ambient {

@@ -85,7 +85,8 @@ impl Fitted {
         }
         let of = |resistor: usize| {
             let own = [Figure::PeakPower { resistor }, Figure::ResistorEnergy { resistor }].into_iter();
-            own.chain(self.bodies().map(move |body| Figure::BodyRise { resistor, body }))
+            let cycle = self.every.map(|_| Figure::CycleEnergy { resistor });
+            own.chain(cycle).chain(self.bodies().map(move |body| Figure::BodyRise { resistor, body }))
         };
         self.legs.iter().flat_map(|leg| of(*leg)).collect()
     }
@@ -133,7 +134,7 @@ impl Probe for Fitted {
         }
         let counted = self.counted.iter().filter_map(|i| found.get(*i).copied().flatten());
         let discharge = self.discharge(&healthy);
-        let energy = |leg: &usize| healthy.worst(Figure::ResistorEnergy { resistor: *leg });
+        let energy = |leg: &usize| healthy.worst(Figure::CycleEnergy { resistor: *leg });
         Ok(Point {
             burden: self.bearing.as_ref().map_or(0.0, |bearing| bearing.ratio(&discharge)),
             average: self.every.map_or(0.0, |every| self.legs.iter().map(energy).fold(0.0, f64::max) / every),
