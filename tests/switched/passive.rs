@@ -205,3 +205,23 @@ fn two_faults_random_draws_and_sensitivity_know_the_contact() {
     assert!(plan.sensitivity.expect("asked for")[0].parts.iter().any(|p| p.id == "RS"));
     assert!(plan.draws.is_some());
 }
+
+#[test]
+fn a_sink_that_draws_goes_on_as_the_contact_closes() {
+    let bleeder = "{id: RS, role: bleeder, value: 1 kohm, tolerance: 0 %, switched: {closes_after: 1 s}}";
+    let with = |kind: &str, value: &str| {
+        let sink =
+            format!("{{id: K1, kind: {kind}, value: {value}, across: [P, N], stops_below: 30 V, counted: true}}");
+        planned(&one(bleeder, &format!(", sinks: [{sink}]")))
+    };
+    // 40 mA alone take 40 V in the first second; then v + I R falls with R C.
+    let current = with("constant-current", "40 mA");
+    close(slowest(&current), 1.0 + f64::ln((560.0 + 40.0) / (50.0 + 40.0)), 1e-11);
+    // 20 W alone: v^2 falls by 2 P t / C; then v^2 + P R falls with R C / 2.
+    let power = with("constant-power", "20 W");
+    close(slowest(&power), 1.0 + 0.5 * f64::ln((320e3 + 20e3) / (2500.0 + 20e3)), 1e-9);
+    // What the sink does not draw is left to the contact, and the other way round.
+    close(fault_wait(&current, "K1 dead").expect("it ends"), 1.0 + f64::ln(12.0), 1e-12);
+    let alone = fault_wait(&current, "RS contact does not close").expect("it ends");
+    close(alone, 1e-3 * 550.0 / 0.04, 1e-12);
+}
