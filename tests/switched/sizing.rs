@@ -113,7 +113,7 @@ fn the_pulse_decides_how_many_elements_it_takes() {
     let none = sized(BANK, &ask);
     assert!(none.candidates.is_empty() && none.window.is_none());
     let finding = &none.findings[0];
-    assert!(finding.code == "demands-collide" && finding.text.contains("at least 9 kohm"), "{finding:?}");
+    assert!(finding.code == "demands-collide" && finding.text.contains("at least 9.01 kohm"), "{finding:?}");
     assert!(finding.help.as_ref().is_some_and(|help| help.contains("bear a discharge of 21")), "{finding:?}");
 }
 
