@@ -199,7 +199,7 @@ impl Role {
         }
     }
 
-    /// True for parts that stay connected at all times; a tool, a strap or a meter is connected by a step only.
+    /// True for parts that no step has to connect; a tool, a strap or a meter is connected by a step only.
     pub fn always_connected(self) -> bool {
         !matches!(self, Role::Tool | Role::Strap | Role::Meter)
     }
@@ -230,6 +230,36 @@ pub struct Resistor {
     pub rating: Rating,
     /// Set for a three-phase part.
     pub phases: Option<Connection>,
+    /// Set for a bleeder that a contact connects at isolation.
+    pub switched: Option<Switched>,
+}
+
+impl Resistor {
+    /// True for a part that carries current before isolation: no step and no contact has to connect it.
+    pub fn stands_before_isolation(&self) -> bool {
+        self.role.always_connected() && self.switched.is_none()
+    }
+}
+
+/// A bleeder's contact: open while the bank is fed, closed from isolation on until it is fed again.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Switched {
+    /// How long after isolation it has closed, the slowest contact.
+    pub closes_after: Time,
+    /// How long after the bank is fed again it has opened, the slowest contact.
+    pub opens_after: Time,
+    /// Discharges in a row that the bleeder has to bear, from cold.
+    pub discharges: u32,
+    /// How far apart they begin; `None` for a bank that is discharged now and then.
+    pub every: Option<Time>,
+}
+
+impl Default for Switched {
+    /// A contact without delay, and one discharge.
+    fn default() -> Self {
+        let none = <Time as crate::quantity::Quantity>::from_si(0.0);
+        Switched { closes_after: none, opens_after: none, discharges: 1, every: None }
+    }
 }
 
 /// Ratings of one resistor element; what is absent can't be checked.
@@ -319,6 +349,7 @@ impl Supply {
             parallel: self.array_parallel,
             rating: self.rating,
             phases: None,
+            switched: None,
         }
     }
 }

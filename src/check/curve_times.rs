@@ -13,6 +13,19 @@ const EVEN: usize = 40;
 const BY_FACTORS: usize = 80;
 const SHORTEST: f64 = 1e-7;
 
+/// A course of so many phases bends where they meet; with more (a power is taken in steps) they are no bends.
+const MOST_BENDS: usize = 16;
+
+/// Where phases meet: sinks stop, contacts close.
+fn bends(course: &Course) -> Vec<f64> {
+    let mut end = 0.0;
+    let ends = course.pieces().iter().map(|(length, _)| {
+        end += length;
+        end
+    });
+    if course.pieces().len() <= MOST_BENDS { ends.collect() } else { Vec::new() }
+}
+
 /// Moments in second from the start of a step of length `duration`, its start and end included. `floor` is the
 /// voltage below which a curve is of no interest.
 pub(super) fn chosen(courses: &[Course], duration: f64, floor: f64) -> Vec<f64> {
@@ -21,6 +34,7 @@ pub(super) fn chosen(courses: &[Course], duration: f64, floor: f64) -> Vec<f64> 
     }
     let mut times: Vec<f64> = (0..=EVEN).map(|k| duration * k as f64 / EVEN as f64).collect();
     times.extend((0..BY_FACTORS).map(|k| duration * SHORTEST.powf(1.0 - k as f64 / BY_FACTORS as f64)));
+    times.extend(courses.iter().flat_map(bends).filter(|t| *t < duration));
     times.sort_by(f64::total_cmp);
     times.dedup();
     let values: Vec<Vec<f64>> = courses.iter().map(|c| times.iter().map(|t| c.value(*t).abs()).collect()).collect();

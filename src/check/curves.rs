@@ -366,7 +366,7 @@ impl<'a> CurveCheck<'a> {
     }
 
     fn resistors(&self) -> impl Iterator<Item = usize> + '_ {
-        let there = |kind: PartKind| matches!(kind, PartKind::Fixed | PartKind::Switched);
+        let there = |kind: PartKind| matches!(kind, PartKind::Fixed | PartKind::Switched | PartKind::Contact);
         self.model.resistors.iter().enumerate().filter(move |(_, r)| there(r.kind)).map(|(i, _)| i)
     }
 

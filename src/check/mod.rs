@@ -32,7 +32,7 @@ pub(crate) use curves::CurveCheck;
 pub(crate) use energy::remaining_energy;
 pub(crate) use equipment::equipment;
 pub(crate) use limits::LimitChecks;
-pub(crate) use notes::{assumptions, notes};
+pub(crate) use notes::{assumptions, contact, notes};
 pub(crate) use notice::notice;
 pub(crate) use phases::phase_findings;
 pub(crate) use procedure::{Procedure, StepAnswers};
@@ -56,7 +56,7 @@ pub use equipment::{Equipment, EquipmentPart};
 pub use fault_words::fault_in_words;
 pub use limits::{LimitResult, LimitSource};
 pub use notice::{Notice, NoticeFault};
-pub use resistors::{Check, ResistorResult};
+pub use resistors::{Check, ContactResult, ResistorResult};
 pub use sensitivity::{PartSensitivity, Sensitivity};
 pub use spreads::SpreadResult;
 pub use step_result::{

@@ -3,11 +3,11 @@
 use super::waits::listed;
 use super::{CapacitorResult, ResistorResult, SpreadResult, Verdict, spreads};
 use crate::bank::Bank;
-use crate::bank::description::{Neutral, Role, Source};
+use crate::bank::description::{Neutral, Role, Source, Switched};
 use crate::circuit::Network;
 use crate::discharge::{Model, PartKind, absorption};
 use crate::finding::{Findings, Severity};
-use crate::quantity::{Quantity, Ratio, celsius, exact};
+use crate::quantity::{Direction, Quantity, Ratio, Time, celsius, duration, exact};
 
 /// More ohms than a cable with its clamps has, however long (common practice): what has more is no short.
 const MOST_OF_A_STRAP: f64 = 10.0;
@@ -88,6 +88,20 @@ pub(crate) fn notes(
                 "The waits rest on {}, a circuit that must work to draw anything: it needs its supply, its control and \
                  its parts. What follows where it does not is among the faults.",
                 listed(&counted)
+            ),
+        );
+    }
+    let switched: Vec<String> =
+        description.resistors.iter().filter(|r| r.switched.is_some()).map(|r| r.id.clone()).collect();
+    if !switched.is_empty() {
+        findings.add(
+            Severity::Warning,
+            "wait-rests-on-contact",
+            format!(
+                "The waits rest on a contact that must close at isolation, on its drive and on its wiring ({}): a contact \
+                 can wear, corrode or stick, a wire can come off, and nobody sees it. What follows where it does not \
+                 close is among the faults.",
+                listed(&switched)
             ),
         );
     }
@@ -199,12 +213,37 @@ pub(crate) fn assumptions(bank: &Bank) -> Vec<String> {
                 .to_string(),
         );
     }
+    list.extend(description.resistors.iter().filter_map(|r| Some(contact(&r.id, r.switched.as_ref()?))));
     let own: Vec<String> =
         description.capacitors.iter().filter(|c| c.charged_to.is_some()).map(|c| c.id.clone()).collect();
     if !own.is_empty() {
         list.push(format!("At isolation {} at the voltage given, in every case.", stands(&own)));
     }
     list
+}
+
+/// What is taken of a bleeder's contact, in a sentence or two.
+pub(crate) fn contact(id: &str, contact: &Switched) -> String {
+    let delay =
+        |time: Time| if time.si() > 0.0 { format!("{} after", duration(time, Direction::Up)) } else { "at".into() };
+    let opens = match contact.opens_after.si() > 0.0 {
+        true => format!("opens {} the bank is fed again, with the highest voltage there", delay(contact.opens_after)),
+        false => "is open again before the bank is fed".into(),
+    };
+    let apart = |every: Time| duration(every, Direction::Down);
+    let row = match contact.every {
+        Some(every) if contact.discharges > 1 => {
+            format!(" {} discharges in a row, {} apart, the first from cold.", contact.discharges, apart(every))
+        }
+        Some(every) => format!(" One discharge from cold; on average one every {}.", apart(every)),
+        None => " One discharge from cold.".into(),
+    };
+    format!(
+        "{id}: its contact is open before isolation, closes {} isolation, stays closed, and {opens}; the delays are those \
+         of the slowest contact, as given. What a contact does that stays closed while the bank is fed is not \
+         computed.{row}",
+        delay(contact.closes_after)
+    )
 }
 
 /// What the voltages at isolation rest on.

@@ -206,12 +206,16 @@ impl<'a> Procedure<'a> {
         self.start(self.stages.len())
     }
 
-    /// The resistors of the file and of supplies that are connected during a step.
+    /// The resistors of the file and of supplies that are connected during a step, or for some of it.
     pub fn connected(&self, stage: usize) -> Vec<usize> {
         let model = self.model;
         let there = |r: &usize| match model.resistors[*r].kind {
             PartKind::Fixed => true,
             PartKind::Switched => self.stages[stage].connected.contains(r),
+            PartKind::Contact => {
+                let closes = model.contact(*r).map_or(f64::INFINITY, |c| c.closes_after);
+                closes <= self.start(stage) || closes < self.start(stage + 1)
+            }
             PartKind::Absorbing(_) | PartKind::With(_) => false,
         };
         (0..model.resistors.len()).filter(there).collect()

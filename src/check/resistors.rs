@@ -5,11 +5,11 @@ use super::{
     si_or_null,
 };
 use crate::bank::Bank;
-use crate::bank::description::{Rating, Resistor, Role, Supply};
+use crate::bank::description::{Rating, Resistor, Role, Supply, Switched};
 use crate::discharge::{Body, Figure, Model, StepFigure, element_model};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{
-    Current, Direction, Energy, Power, Quantity, Resistance, Temperature, Voltage, celsius, exact, show,
+    Current, Direction, Energy, Power, Quantity, Resistance, Temperature, Time, Voltage, celsius, exact, show,
 };
 use rayon::prelude::*;
 use serde::Serialize;
@@ -17,8 +17,8 @@ use serde::Serialize;
 /// One check against a rating.
 #[derive(Debug, Clone, PartialEq, Serialize)]
 pub struct Check {
-    /// What is checked: `continuous power`, `element voltage`, `pulse energy`, `overload power`, `overload energy`,
-    /// `body temperature`.
+    /// What is checked: `continuous power`, `average power`, `element voltage`, `pulse energy`, `overload power`,
+    /// `overload energy`, `body temperature`.
     pub check: &'static str,
     /// The unit of `found` and `allowed`: `W`, `V`, `J` or `C` (degree Celsius).
     pub unit: &'static str,
@@ -45,7 +45,7 @@ pub struct ResistorResult {
     pub value: Resistance,
     /// How many elements the array has.
     pub elements: u32,
-    /// Power before isolation at the highest voltage; `None` for a part that only a step connects.
+    /// Power before isolation at the highest voltage; `None` for a part that a step or a contact connects.
     #[serde(rename = "continuous_power_w", serialize_with = "si_or_null")]
     pub continuous_power: Option<Power>,
     /// Derated power at the ambient; `None` where the rating does not give it.
@@ -60,14 +60,45 @@ pub struct ResistorResult {
     /// Greatest power from isolation on.
     #[serde(rename = "peak_power_w", serialize_with = "si_or_null")]
     pub peak_power: Option<Power>,
-    /// Energy from isolation on.
+    /// Energy from isolation on; with a contact, that of the feeding until it opens counts too, as it does in the figures
+    /// above.
     #[serde(rename = "energy_j", serialize_with = "si_or_null")]
     pub energy: Option<Energy>,
     /// Greatest body temperature; `None` where the rating does not give it.
     #[serde(rename = "body_temperature_c", serialize_with = "celsius_or_null")]
     pub body_temperature: Option<Temperature>,
+    /// For a bleeder that a contact connects: what it was asked.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub contact: Option<ContactResult>,
     /// Checks against the ratings.
     pub checks: Vec<Check>,
+}
+
+/// The contact of a bleeder, and how often it discharges the bank.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct ContactResult {
+    /// How long after isolation it has closed.
+    #[serde(rename = "closes_after_s", serialize_with = "si")]
+    pub closes_after: Time,
+    /// How long after the bank is fed again it has opened.
+    #[serde(rename = "opens_after_s", serialize_with = "si")]
+    pub opens_after: Time,
+    /// Discharges in a row, from cold.
+    pub discharges: u32,
+    /// How far apart; `None` (null) where that was not given.
+    #[serde(rename = "every_s", serialize_with = "si_or_null")]
+    pub every: Option<Time>,
+    /// Energy from one isolation to the next over that time, of one element; `None` (null) where that was not given.
+    #[serde(rename = "average_power_w", serialize_with = "si_or_null")]
+    pub average_power: Option<Power>,
+}
+
+impl ContactResult {
+    fn of(contact: &Switched, load: &Load) -> Self {
+        let Switched { closes_after, opens_after, discharges, every } = *contact;
+        let average_power = every.map(|every| Power::from_si(load.cycle / every.si()));
+        ContactResult { closes_after, opens_after, discharges, every, average_power }
+    }
 }
 
 /// Power that a rating allows at an ambient temperature: full up to `full_to`, then linearly to nothing at
@@ -97,6 +128,8 @@ struct Load {
     current: f64,
     power: f64,
     energy: f64,
+    /// Energy of one cycle through a contact.
+    cycle: f64,
     rise: Option<f64>,
 }
 
@@ -104,8 +137,13 @@ fn is_single(resistor: &Resistor) -> bool {
     resistor.series == 1 && resistor.parallel == 1
 }
 
+/// True where a contact connects a resistor every so often.
+fn has_cycle(resistor: &Resistor) -> bool {
+    resistor.switched.is_some_and(|contact| contact.every.is_some())
+}
+
 /// The figures of a load, in the order in which [`Load::from`] takes them.
-fn load_figures(resistor: usize, rating: &Rating) -> Vec<Figure> {
+fn load_figures(resistor: usize, rating: &Rating, cycles: bool) -> Vec<Figure> {
     let mut figures = vec![
         Figure::StandingPower { resistor },
         Figure::ResistorVoltage { resistor },
@@ -113,33 +151,37 @@ fn load_figures(resistor: usize, rating: &Rating) -> Vec<Figure> {
         Figure::PeakPower { resistor },
         Figure::ResistorEnergy { resistor },
     ];
+    figures.extend(cycles.then_some(Figure::CycleEnergy { resistor }));
     figures.extend(body(rating).map(|body| Figure::BodyRise { resistor, body }));
     figures
 }
 
 impl Load {
     fn through(figures: &[StepFigure], answers: &StepAnswers) -> Self {
-        Load::of(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>())
+        let cycles = matches!(figures.get(5), Some(StepFigure::CycleEnergy { .. }));
+        Load::of(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>(), cycles)
     }
 
     fn from(figures: &[Figure], answers: &Answers) -> Self {
-        Load::of(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>())
+        let cycles = matches!(figures.get(5), Some(Figure::CycleEnergy { .. }));
+        Load::of(&figures.iter().map(|f| answers.worst(*f)).collect::<Vec<f64>>(), cycles)
     }
 
-    fn of(worst: &[f64]) -> Self {
+    fn of(worst: &[f64], cycles: bool) -> Self {
         Load {
             standing: worst[0],
             voltage: worst[1],
             current: worst[2],
             power: worst[3],
             energy: worst[4],
-            rise: worst.get(5).copied(),
+            cycle: if cycles { worst[5] } else { 0.0 },
+            rise: worst.get(if cycles { 6 } else { 5 }).copied(),
         }
     }
 }
 
 /// The figures of a load over a procedure, in the order in which [`Load::through`] takes them.
-fn load_figures_through(resistor: usize, rating: &Rating) -> Vec<StepFigure> {
+fn load_figures_through(resistor: usize, rating: &Rating, cycles: bool) -> Vec<StepFigure> {
     let mut figures = vec![
         StepFigure::StandingPower { resistor },
         StepFigure::PartVoltage { resistor },
@@ -147,6 +189,7 @@ fn load_figures_through(resistor: usize, rating: &Rating) -> Vec<StepFigure> {
         StepFigure::PartPower { resistor },
         StepFigure::PartEnergy { resistor },
     ];
+    figures.extend(cycles.then_some(StepFigure::CycleEnergy { resistor }));
     figures.extend(body(rating).map(|body| StepFigure::BodyRise { resistor, body }));
     figures
 }
@@ -161,7 +204,10 @@ impl ResistorChecks<'_> {
     /// What has to be known of the healthy bank: the load of every resistor that is no array.
     pub fn figures(&self) -> Vec<Figure> {
         let single = self.bank.description().resistors.iter().filter(|r| is_single(r) && r.role.always_connected());
-        single.filter_map(|r| Some(load_figures(self.model.find_resistor(&r.id)?, &r.rating))).flatten().collect()
+        single
+            .filter_map(|r| Some(load_figures(self.model.find_resistor(&r.id)?, &r.rating, has_cycle(r))))
+            .flatten()
+            .collect()
     }
 
     /// What has to be known under every fault: the standing power of every resistor.
@@ -210,10 +256,10 @@ impl ResistorChecks<'_> {
             return Ok(None);
         };
         if is_single(resistor) {
-            return Ok(Some(Load::from(&load_figures(index, &resistor.rating), healthy)));
+            return Ok(Some(Load::from(&load_figures(index, &resistor.rating, has_cycle(resistor)), healthy)));
         }
         let Some((model, element)) = element_model(&self.model.passive_only(), resistor) else { return Ok(None) };
-        let figures = load_figures(element, &resistor.rating);
+        let figures = load_figures(element, &resistor.rating, has_cycle(resistor));
         let answers = Answers::healthy(self.bank, &model, figures.clone())?;
         Ok(Some(Load::from(&figures, &answers)))
     }
@@ -221,12 +267,14 @@ impl ResistorChecks<'_> {
     /// What every single resistor and supply bears until the end of the procedure, answered together.
     fn answers_through(&self, procedure: &Procedure) -> Result<StepAnswers, EngineError> {
         let description = self.bank.description();
-        let single = description.resistors.iter().filter(|r| is_single(r)).map(|r| (&r.id, &r.rating));
+        let single = description.resistors.iter().filter(|r| is_single(r)).map(|r| (&r.id, &r.rating, has_cycle(r)));
         let alone = |s: &&Supply| s.array_series == 1 && s.array_parallel == 1;
-        let supplies = description.supplies.iter().filter(alone).map(|s| (&s.id, &s.rating));
+        let supplies = description.supplies.iter().filter(alone).map(|s| (&s.id, &s.rating, false));
         let figures = single
             .chain(supplies)
-            .filter_map(|(id, rating)| Some(load_figures_through(self.model.find_resistor(id)?, rating)))
+            .filter_map(|(id, rating, cycles)| {
+                Some(load_figures_through(self.model.find_resistor(id)?, rating, cycles))
+            })
             .flatten();
         procedure.healthy(self.model, figures.collect())
     }
@@ -254,7 +302,7 @@ impl ResistorChecks<'_> {
         procedure: &Procedure,
         single: &StepAnswers,
     ) -> Result<Option<Load>, EngineError> {
-        let figures = load_figures_through(index, &resistor.rating);
+        let figures = load_figures_through(index, &resistor.rating, has_cycle(resistor));
         if is_single(resistor) {
             return Ok(Some(Load::through(&figures, single)));
         }
@@ -287,7 +335,7 @@ impl ResistorChecks<'_> {
             value: resistor.value,
             elements: resistor.series * resistor.parallel,
             continuous_power: load
-                .filter(|_| resistor.role.always_connected() && !carries_current(self.bank, resistor))
+                .filter(|_| resistor.stands_before_isolation() && !carries_current(self.bank, resistor))
                 .map(|l| Power::from_si(l.standing)),
             allowed_power: derated(&resistor.rating, ambient),
             element_voltage: load.map(|l| Voltage::from_si(l.voltage)),
@@ -295,8 +343,15 @@ impl ResistorChecks<'_> {
             peak_power: load.map(|l| Power::from_si(l.power)),
             energy: load.map(|l| Energy::from_si(l.energy)),
             body_temperature: temperature.filter(|_| !carries_current(self.bank, resistor)),
+            contact: resistor.switched.as_ref().zip(load).map(|(contact, l)| ContactResult::of(contact, l)),
             checks: load.map_or_else(Vec::new, |l| {
-                let mut checks = checks(&resistor.rating, l, ambient, resistor.role.always_connected());
+                let lasting = if resistor.stands_before_isolation() {
+                    Some(("continuous power", l.standing))
+                } else {
+                    let every = resistor.switched.and_then(|contact| contact.every);
+                    every.map(|every| ("average power", l.cycle / every.si()))
+                };
+                let mut checks = checks(&resistor.rating, l, ambient, lasting);
                 if carries_current(self.bank, resistor) {
                     checks.iter_mut().filter(|c| ALTERNATING.contains(&c.check)).for_each(not_computed);
                 }
@@ -313,7 +368,7 @@ impl ResistorChecks<'_> {
         faults: &[FaultAnswers],
         findings: &mut Findings,
     ) {
-        let index = self.model.find_resistor(&resistor.id).filter(|_| resistor.role.always_connected());
+        let index = self.model.find_resistor(&resistor.id).filter(|_| resistor.stands_before_isolation());
         let Some((index, allowed)) = index.zip(result.allowed_power) else { return };
         let per_element = |fault: &FaultAnswers| {
             let own = fault.fault.id == resistor.id && resistor.parallel > 1;
@@ -355,8 +410,8 @@ fn not_computed(check: &mut Check) {
     check.remark = Some("the alternating current of its capacitors is not computed".into());
 }
 
-/// The checks that apply to a load.
-fn checks(rating: &Rating, load: &Load, ambient: Temperature, always: bool) -> Vec<Check> {
+/// The checks that apply to a load; `lasting` is a power in watt that it bears for ever, with what to call it.
+fn checks(rating: &Rating, load: &Load, ambient: Temperature, lasting: Option<(&'static str, f64)>) -> Vec<Check> {
     let compare = |check, unit, found: f64, allowed: Option<f64>| Check {
         check,
         unit,
@@ -367,8 +422,8 @@ fn checks(rating: &Rating, load: &Load, ambient: Temperature, always: bool) -> V
     };
     let allowed = derated(rating, ambient).map(Quantity::si);
     let mut checks = Vec::new();
-    if always {
-        let mut standing = compare("continuous power", "W", load.standing, allowed);
+    if let Some((name, watt)) = lasting {
+        let mut standing = compare(name, "W", watt, allowed);
         standing.remark = match (allowed, rating.power) {
             (Some(_), _) => None,
             (None, None) => Some("no power rating given".into()),

@@ -3,7 +3,7 @@
 use super::{Answers, FaultAnswers, Moment, Pair, fault_in_words, si, si_or_null};
 use crate::bank::Bank;
 use crate::bank::description::Role;
-use crate::discharge::{Figure, Method, Model};
+use crate::discharge::{CONTACT_FAULT, Figure, Method, Model};
 use crate::finding::{Findings, Severity};
 use crate::quantity::{Direction, Quantity, Time, Voltage, duration, exact, show};
 use serde::Serialize;
@@ -65,7 +65,7 @@ pub struct WorstValue {
 /// The wait with one part failed.
 #[derive(Debug, Clone, PartialEq, Serialize)]
 pub struct FaultWait {
-    /// `R1 open`, `C1 shorted`, `C1 one unit shorted`, `R2 absent`, `K1 dead`.
+    /// `R1 open`, `RS contact does not close`, `C1 shorted`, `C1 one unit shorted`, `R2 absent`, `K1 dead`.
     pub fault: String,
     /// The longest wait over the box; `None` is never.
     #[serde(rename = "wait_s", serialize_with = "si_or_null")]
@@ -287,6 +287,9 @@ impl WaitCheck<'_> {
         let is_sink = self.model.loads.iter().any(|l| l.id == fault.fault.id);
         let (code, why) = match role {
             None if is_sink => ("sink-dead-never", "without what this sink draws"),
+            Some(_) if fault.fault.name.ends_with(CONTACT_FAULT) => {
+                ("contact-open-never", "with this bleeder's contact open")
+            }
             Some(Role::Bleeder) => ("bleeder-open-never", "with this bleeder open"),
             Some(Role::Leakage) => ("leakage-absent-never", "without this leakage path"),
             Some(_) => ("resistor-open-never", "with this resistor open"),

@@ -1,8 +1,9 @@
-//! A voltage from isolation on, through the phases between which sinks stop drawing.
+//! A voltage from isolation on, through the phases between which sinks stop drawing and contacts close.
 
 use super::{CircuitError, ExpSum, LastExit};
 
-/// Pieces one after the other, and what follows for ever. Where no sink draws there are no pieces.
+/// Pieces one after the other, and what follows for ever. Where no sink draws and no
+/// contact closes there are no pieces.
 #[derive(Debug, Clone, PartialEq, Default)]
 pub struct Course {
     /// (length in second, what it is, from the piece's own start).

@@ -1,11 +1,11 @@
-//! Stored energy from isolation on, through the phases between which sinks stop drawing.
+//! Stored energy from isolation on, through the phases between which sinks stop drawing and contacts close.
 
 use super::{CircuitError, ExpSum, LastExit};
 
 /// The energy of some capacitors over time.
 #[derive(Debug, Clone, Default)]
 pub struct EnergyCourse {
-    /// (length in second, (half the capacitance, voltage) of every capacitor) of phases with sinks.
+    /// (length in second, (half the capacitance, voltage) of every capacitor) of the phases before the last.
     pub(super) phases: Vec<(f64, Vec<(f64, ExpSum)>)>,
     /// What follows them.
     pub(super) last: ExpSum,
@@ -29,8 +29,9 @@ impl EnergyCourse {
 
     /// The last time at which the energy is over `level`, or `from` where it is not after that.
     ///
-    /// Where sinks draw there are no sources, and resistors and sinks only take: the energy never rises, and halving
-    /// finds its one crossing.
+    /// Where sinks draw or a contact closes there are no sources, and resistors and sinks only take: within a phase the
+    /// energy never rises, and halving finds its one crossing. From one phase to the next it can jump up: a contact
+    /// connects what counted for nothing before.
     ///
     /// # Errors
     /// [`CircuitError::SearchNotClosed`] where the search does not close.

@@ -1,8 +1,9 @@
 //! One scenario at one point of the tolerance box, solved: from every state that the bank can have at isolation.
 
+use super::contact::Span;
 use super::model::{Model, Part};
 use super::scenario::Scenario;
-use crate::circuit::{CircuitError, Course, Drain, EnergyCourse, Modes, Phasor, ShortCharge};
+use crate::circuit::{CircuitError, Course, Drain, EnergyCourse, Modes, Phasor};
 use std::sync::Arc;
 
 /// Potentials before isolation.
@@ -96,9 +97,14 @@ pub(crate) struct Case {
     pub map: Vec<usize>,
     /// Potentials of the network's nodes before isolation.
     before: Arc<Before>,
-    /// Resistances in ohm of all resistors of the model before and after isolation; infinite for open.
+    /// Resistances in ohm of all resistors of the model before and after isolation, the latter with all contacts closed;
+    /// infinite for open.
     pub before_ohms: Vec<f64>,
     pub after_ohms: Vec<f64>,
+    /// For every resistor the number of the network after isolation with which it comes, and the voltage that it bears
+    /// when the bank is fed again.
+    comes_with: Vec<usize>,
+    fed_volts: Vec<f64>,
     pub response: Drain,
 }
 
@@ -106,9 +112,17 @@ impl Case {
     /// Solves `scenario` at `point` with `volts` across the terminals before isolation, from every state.
     pub fn solve(model: &Model, scenario: &Scenario, point: &[f64], volts: f64) -> Result<Vec<Self>, CircuitError> {
         let Start { map, before, states } = Start::at_isolation(model, scenario, point, volts);
-        let after = Arc::new(Modes::new(model.network(&scenario.after, point, &[]))?);
+        let spans = model.spans(&scenario.after, 0.0, &[]);
+        let network = |span: &Span| {
+            let modes = Modes::new(model.network(&scenario.after, point, &span.connected))?;
+            Ok((span.length, Arc::new(modes)))
+        };
+        let networks = spans.iter().map(network).collect::<Result<Vec<_>, CircuitError>>()?;
+        let in_the_end = spans.last().map_or(&[][..], |span| &span.connected);
         let before_ohms = model.ohms(&scenario.before, point, &[]);
-        let after_ohms = model.ohms(&scenario.after, point, &[]);
+        let after_ohms = model.ohms(&scenario.after, point, in_the_end);
+        let comes_with = model.first_spans(&scenario.after, 0.0);
+        let fed_volts = model.fed_volts(&before, &map, &after_ohms);
         let (sinks, drawing) = (model.sinks(&map), scenario.drawing(model));
         let before = Arc::new(before);
         let case = |state: State| {
@@ -117,7 +131,9 @@ impl Case {
                 before: Arc::clone(&before),
                 before_ohms: before_ohms.clone(),
                 after_ohms: after_ohms.clone(),
-                response: after.drain(&state.voltages, &state.potentials, &sinks, &drawing)?,
+                comes_with: comes_with.clone(),
+                fed_volts: fed_volts.clone(),
+                response: Drain::through(&networks, &state.voltages, &state.potentials, &sinks, &drawing)?,
             })
         };
         states.into_iter().map(case).collect()
@@ -127,6 +143,18 @@ impl Case {
     pub fn across(&self, a: usize, b: usize) -> Course {
         let (a, b) = (self.map[a], self.map[b]);
         if a == b { Course::default() } else { self.response.across(a, b) }
+    }
+
+    /// Voltage across a resistor after isolation; 0 V for as long as its contact is open.
+    pub fn on_resistor(&self, model: &Model, resistor: usize) -> Course {
+        let part = &model.resistors[resistor];
+        let (a, b) = (self.map[part.a], self.map[part.b]);
+        if a == b { Course::default() } else { self.response.across_from(self.comes_with[resistor], a, b) }
+    }
+
+    /// Voltage in volt that a resistor bears until its contact opens when the bank is fed again.
+    pub fn fed_volts(&self, resistor: usize) -> f64 {
+        self.fed_volts[resistor]
     }
 
     /// Greatest voltage in volt between two nodes of the model before isolation.
@@ -153,18 +181,11 @@ impl Case {
         if a == b {
             return Course::default();
         }
-        let network = self.response.network();
-        let short = ShortCharge::new(network, a, b);
-        let parts = network.capacitors.iter().zip(short.weights());
-        let of = |(c, w): (&crate::circuit::Edge, &f64)| self.response.across(c.a, c.b).times(*w);
-        parts.map(of).reduce(|sum, part| sum.plus(&part)).unwrap_or_default()
+        self.response.short_charge(a, b)
     }
 
     /// Energy in joule in all capacitors connected to the pair through any parts.
     pub fn energy(&self, a: usize, b: usize) -> EnergyCourse {
-        let label = self.response.network().connected_parts();
-        let (a, b) = (label[self.map[a]], label[self.map[b]]);
-        let parts = if a == b { vec![a] } else { vec![a, b] };
-        self.response.stored_energy(Some(&parts))
+        self.response.stored_energy(Some((self.map[a], self.map[b])))
     }
 }

@@ -21,7 +21,8 @@ pub(crate) fn element_model(model: &Model, resistor: &Resistor) -> Option<(Model
     let whole = opened.resistors[index].clone();
     let unit = resistor.value.si();
     let spread = model.spreads.resistor(resistor).total();
-    let kind = if whole.kind == PartKind::Switched { PartKind::With(index) } else { whole.kind };
+    let together = matches!(whole.kind, PartKind::Switched | PartKind::Contact);
+    let kind = if together { PartKind::With(index) } else { whole.kind };
     let add = |opened: &mut Model, a, b, nominal, parameter| {
         opened.resistors.push(Part { id: whole.id.clone(), a, b, nominal, parameter, kind });
         opened.resistors.len() - 1

@@ -43,6 +43,9 @@ pub(crate) enum Figure {
     PeakPower { resistor: usize },
     /// Energy from isolation on.
     ResistorEnergy { resistor: usize },
+    /// Energy of one cycle, where a contact connects it every so often: from isolation to the next one, with the feeding
+    /// in between; 0 where that is not said.
+    CycleEnergy { resistor: usize },
     /// Greatest rise of the body over the air, in K, from the steady temperature before isolation.
     BodyRise { resistor: usize, body: Body },
     /// Greatest voltage before and after isolation.
@@ -57,7 +60,7 @@ impl Figure {
         let pair = |pair: usize| case.across(model.pairs[pair].0, model.pairs[pair].1);
         let charge = |pair: usize| case.charge(model.pairs[pair].0, model.pairs[pair].1);
         let energy = |pair: usize| case.energy(model.pairs[pair].0, model.pairs[pair].1);
-        let resistor = |r: usize| case.across(model.resistors[r].a, model.resistors[r].b);
+        let resistor = |r: usize| case.on_resistor(model, r);
         Ok(match *self {
             Figure::VoltageWait { pair: p, level } => pair(p).last_outside(level, floor.max(0.0))?.seconds(),
             Figure::TouchWait { pair: p, level, energy: most } => {
@@ -87,25 +90,43 @@ impl Figure {
             }
             Figure::StandingPower { resistor: r } => standing_power(model, case, r),
             Figure::ResistorVoltage { resistor: r } => {
-                let standing = case.before(model.resistors[r].a, model.resistors[r].b);
+                // What a contact connects bears nothing before isolation but what the next feeding brings.
+                let standing = match model.contact(r) {
+                    Some(_) => case.fed_volts(r),
+                    None => case.before(model.resistors[r].a, model.resistors[r].b),
+                };
                 resistor(r).greatest_magnitude_over(floor.max(standing))?.0
             }
             Figure::PeakCurrent { resistor: r } => {
                 let ohms = case.after_ohms[r];
-                per_ohm(resistor(r).greatest_magnitude_over(floor * ohms)?.0, ohms)
+                let over = case.fed_volts(r).max(floor * ohms);
+                per_ohm(resistor(r).greatest_magnitude_over(over)?.0, ohms)
             }
             Figure::PeakPower { resistor: r } => {
                 let ohms = case.after_ohms[r];
-                per_ohm(resistor(r).greatest_magnitude_over((floor * ohms).sqrt())?.0.powi(2), ohms)
+                let over = case.fed_volts(r).max((floor * ohms).sqrt());
+                per_ohm(resistor(r).greatest_magnitude_over(over)?.0.powi(2), ohms)
             }
             Figure::ResistorEnergy { resistor: r } => {
-                per_ohm(resistor(r).integral_of_square(f64::INFINITY), case.after_ohms[r])
+                let fed = model.contact(r).map_or(0.0, |c| case.fed_volts(r).powi(2) * c.opens_after);
+                per_ohm(resistor(r).integral_of_square(f64::INFINITY) + fed, case.after_ohms[r])
             }
+            Figure::CycleEnergy { resistor: r } => match model.contact(r).and_then(|c| Some((c, c.every?))) {
+                Some((contact, every)) => {
+                    let fed = case.fed_volts(r).powi(2) * contact.opens_after;
+                    per_ohm(resistor(r).integral_of_square(every) + fed, case.after_ohms[r])
+                }
+                None => 0.0,
+            },
             Figure::BodyRise { resistor: r, body } => {
-                let start = body.kelvin_per_watt * standing_power(model, case, r);
                 let ohms = case.after_ohms[r];
                 let volts = if ohms.is_finite() { resistor(r) } else { Course::default() };
-                body.heated(start, &volts, ohms, f64::INFINITY)?.greatest.max(floor)
+                let through = |start: f64, until: f64| body.heated(start, &volts, ohms, until);
+                let greatest = match model.contact(r) {
+                    Some(contact) => contact.greatest_rise(body, per_ohm(case.fed_volts(r).powi(2), ohms), through)?,
+                    None => through(body.kelvin_per_watt * standing_power(model, case, r), f64::INFINITY)?.greatest,
+                };
+                greatest.max(floor)
             }
             Figure::CapacitorVoltage { capacitor } => {
                 let c = &model.capacitors[capacitor];

@@ -52,8 +52,10 @@ pub(crate) fn asked_later(model: &Model, figures: &[Figure]) -> Vec<Figure> {
         }
         _ => false,
     };
-    // A sink makes the voltage by moment no sum of exponentials: with sinks a part opens at isolation or before only.
-    if model.loads.is_empty() && model.terminals.len() == 2 {
+    // A sink makes the voltage by moment no sum of exponentials, and a contact that closes after isolation makes the
+    // network another one: with these a part opens at isolation or before only.
+    let one_network = model.spans(&Variation::default(), 0.0, &[]).len() == 1;
+    if model.loads.is_empty() && one_network && model.terminals.len() == 2 {
         figures.iter().filter(can_count).copied().collect()
     } else {
         Vec::new()
@@ -138,7 +140,9 @@ impl Objective for LaterStudy<'_> {
 
     fn case(&self, point: &[f64]) -> Result<LaterCase, CircuitError> {
         let healthy = Case::solve(self.model, &self.healthy, point, self.volts)?;
-        let without = Arc::new(Modes::new(self.model.network(self.lost, point, &[]))?);
+        // Contacts that close at isolation have closed.
+        let closed = self.model.spans(self.lost, 0.0, &[]).pop().map_or_else(Vec::new, |span| span.connected);
+        let without = Arc::new(Modes::new(self.model.network(self.lost, point, &closed))?);
         Ok(LaterCase { healthy, without })
     }
 

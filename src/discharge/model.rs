@@ -1,6 +1,7 @@
 //! The bank as numbered nodes and parts.
 
 use super::absorption::Branches;
+use super::contact::Contact;
 use super::poles::ThreePhase;
 use super::spread::Spreads;
 use crate::bank::Bank;
@@ -42,6 +43,8 @@ pub(crate) enum PartKind {
     Fixed,
     /// A part that only a step connects: a tool, a strap, a meter, the series resistance of a supply.
     Switched,
+    /// A bleeder that a contact connects after isolation.
+    Contact,
     /// A piece of an opened array, connected together with the resistor of this number.
     With(usize),
     /// The capacitance or resistance of an absorption branch of the capacitor with this number.
@@ -95,17 +98,19 @@ pub(crate) struct Model {
     pub sources: Vec<Source>,
     /// Paths that are no resistor.
     pub loads: Vec<Load>,
+    /// What connects bleeders after isolation.
+    pub contacts: Vec<Contact>,
     /// Own voltage of every capacitor at isolation, in volt.
     pub own_voltages: Vec<Option<f64>>,
     /// Pairs that figures are asked for: the test points, then the terminals and pairs of limits that are none.
     pub pairs: Vec<(usize, usize)>,
     /// How many of the pairs are test points.
     pub test_points: usize,
-    /// Those of parts that are there at all times first.
+    /// Those of parts that no step connects first.
     pub parameters: Vec<Parameter>,
     /// How far values can lie from the marked ones.
     pub spreads: Spreads,
-    /// How many of the loose values are of parts that are there at all times; a passive discharge has no others.
+    /// How many of the loose values are of parts that no step connects; a passive discharge has no others.
     pub passive: usize,
     /// How it was fed, where that was from three phases.
     pub three_phase: Option<ThreePhase>,
@@ -152,12 +157,13 @@ impl Model {
         }
         for resistor in &description.resistors {
             let part = model.resistor(resistor);
+            model.contacts.extend(Contact::of(resistor, model.resistors.len(), (part.a, part.b)));
             model.resistors.push(part);
         }
-        for kind in [PartKind::Fixed, PartKind::Switched] {
+        for by_a_step in [false, true] {
             model.passive = model.parameters.len();
             for (index, resistor) in description.resistors.iter().enumerate() {
-                if model.resistors[index].kind == kind {
+                if (model.resistors[index].kind == PartKind::Switched) == by_a_step {
                     let spread = model.spreads.resistor(resistor).total();
                     model.resistors[index].parameter = model.parameter(&resistor.id, spread);
                 }
@@ -247,7 +253,11 @@ impl Model {
     fn resistor(&mut self, r: &Resistor) -> Part {
         let nominal = r.value.si() * f64::from(r.series) / f64::from(r.parallel);
         let (a, b) = (self.node(&r.across[0]), self.node(&r.across[1]));
-        let kind = if r.role.always_connected() { PartKind::Fixed } else { PartKind::Switched };
+        let kind = match r.role.always_connected() {
+            true if r.switched.is_some() => PartKind::Contact,
+            true => PartKind::Fixed,
+            false => PartKind::Switched,
+        };
         Part { id: r.id.clone(), a, b, nominal, parameter: None, kind }
     }
 
@@ -304,6 +314,7 @@ impl Model {
     }
 
     /// Resistances in ohm of all resistors at a point of the box; infinite for one that is open or not connected.
+    /// `connected` are those that a step or a contact connects.
     pub fn ohms(&self, variation: &Variation, point: &[f64], connected: &[usize]) -> Vec<f64> {
         let parts = self.resistors.iter().enumerate();
         parts
@@ -312,7 +323,7 @@ impl Model {
                 let failed: f64 = of_this.map(|(_, factor)| factor).product();
                 let there = match r.kind {
                     PartKind::Fixed | PartKind::Absorbing(_) => true,
-                    PartKind::Switched => connected.contains(&i),
+                    PartKind::Switched | PartKind::Contact => connected.contains(&i),
                     PartKind::With(of) => connected.contains(&of),
                 };
                 // A branch of a failed capacitor scales with it; its time constant stays.
@@ -323,7 +334,7 @@ impl Model {
             .collect()
     }
 
-    /// The network at a point of the box with the `connected` switched resistors; parts whose nodes are one are left
+    /// The network at a point of the box with the resistors that are `connected` beside those that always are; parts whose nodes are one are left
     /// out.
     pub fn network(&self, variation: &Variation, point: &[f64], connected: &[usize]) -> Network {
         let map = self.merged(variation);
@@ -386,7 +397,8 @@ impl Model {
             Some(model.parameters.len() - 1)
         };
         for index in 0..model.resistors.len() {
-            if model.resistors[index].kind == PartKind::Fixed && model.resistors[index].parameter.is_none() {
+            let there = matches!(model.resistors[index].kind, PartKind::Fixed | PartKind::Contact);
+            if there && model.resistors[index].parameter.is_none() {
                 let id = model.resistors[index].id.clone();
                 model.resistors[index].parameter = loose(&mut model, &id);
             }

@@ -63,11 +63,11 @@ pub(crate) struct Load {
     pub power: f64,
 }
 
-/// The load of a whole resistor at a moment; nothing flows in one that is not connected.
+/// The load of a whole resistor at a moment; nothing flows in one that is not connected, and the voltage stands on its
+/// contact where that is still open.
 pub(crate) fn load(model: &Model, timeline: &Timeline, stage: usize, resistor: usize, t: f64) -> Load {
-    let part = &model.resistors[resistor];
     let ohms = timeline.ohms(stage, resistor);
-    let voltage = timeline.across(stage, part.a, part.b).value(t);
+    let voltage = timeline.on_resistor(model, stage, resistor).value(t);
     let current = if ohms.is_finite() { voltage / ohms } else { 0.0 };
     Load { voltage, current, power: voltage * current }
 }

@@ -66,7 +66,7 @@ struct Element {
 }
 
 /// The network of a scenario as blocks. `None` where the argument does not apply: another network before isolation
-/// than after it, voltages of their own, nodes that only capacitors tie, sinks that draw, other than two terminals.
+/// than after it (a contact that closes makes one too), voltages of their own, nodes that only capacitors tie, sinks that draw, other than two terminals.
 pub(super) struct Blocks {
     elements: Vec<Element>,
     /// For every element the number of its block.
@@ -80,7 +80,8 @@ pub(super) struct Blocks {
 impl Blocks {
     pub fn of(model: &Model, scenario: &Scenario) -> Option<Self> {
         let own = model.own_voltages.iter().any(Option::is_some) && !scenario.drops_own_voltages;
-        if own || scenario.before != scenario.after || scenario.drawing(model).contains(&true) {
+        let switched = model.switches(&scenario.after);
+        if own || switched || scenario.before != scenario.after || scenario.drawing(model).contains(&true) {
             return None;
         }
         let map = model.merged(&scenario.after);

@@ -27,10 +27,14 @@ pub(crate) fn healthy(model: &Model) -> Vec<Scenario> {
     Scenario::default().with_and_without_sinks(model)
 }
 
+/// What the name of a fault ends with where a bleeder's contact has failed.
+pub(crate) const CONTACT_FAULT: &str = "contact does not close";
+
 /// One part failed, and the scenarios of which the worst counts.
 #[derive(Debug, Clone)]
 pub(crate) struct Fault {
-    /// `R1 open`, `R2 absent`, `C1 shorted`, `C1 one unit shorted`, `K1 dead`; in a three-phase bank `CB.AB open` too.
+    /// `R1 open`, `R2 absent`, `RS contact does not close`, `C1 shorted`, `C1 one unit shorted`, `K1 dead`; in a
+    /// three-phase bank `CB.AB open` too.
     pub name: String,
     /// The part.
     pub id: String,
@@ -87,11 +91,22 @@ pub(crate) fn faults(bank: &Bank, model: &Model) -> Vec<Fault> {
         let mut scenarios = vec![Scenario::settled(lost.clone())];
         // A part breaks at a moment; leakage that is absent was never there. What no alternating current passes has no
         // say in the state of a three-phase bank at isolation: both moments are one.
-        if resistor.role != Role::Leakage && (model.three_phase.is_none() || resistor.role == Role::Series) {
+        // Nor has what no contact connects before it.
+        let counts_before = model.three_phase.is_none() || resistor.role == Role::Series;
+        if resistor.role != Role::Leakage && resistor.switched.is_none() && counts_before {
             scenarios.push(at_isolation);
         }
         let later = (resistor.role != Role::Leakage).then_some(lost);
         faults.push(Fault { name: format!("{} {word}", resistor.id), id: resistor.id.clone(), scenarios, later });
+        if resistor.switched.is_some() {
+            let never = Variation { resistor: Some((index, f64::INFINITY)), ..Variation::default() };
+            faults.push(Fault {
+                name: format!("{} {CONTACT_FAULT}", resistor.id),
+                id: resistor.id.clone(),
+                scenarios: vec![Scenario::settled(never)],
+                later: None,
+            });
+        }
     }
     for (index, capacitor) in bank.description().capacitors.iter().enumerate() {
         let part = &model.capacitors[index];

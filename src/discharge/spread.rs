@@ -68,9 +68,10 @@ impl Spreads {
     }
 
     /// An element of a resistor lies anywhere between the reference and its body at the highest voltage, before
-    /// isolation; one that only a step connects, up to where its rating ends. Without thermal data, up to the ambient.
+    /// isolation; one that a step or a contact connects, up to where its rating ends. Without thermal data, up to the
+    /// ambient.
     pub fn resistor(&self, r: &Resistor) -> Spread {
-        let hottest = if r.role.always_connected() {
+        let hottest = if r.stands_before_isolation() {
             let watt = self.standing.iter().find(|(id, _)| *id == r.id).map_or(0.0, |(_, watt)| *watt);
             self.ambient_c + kelvin_per_watt(&r.rating).unwrap_or(0.0) * watt
         } else {
@@ -108,7 +109,7 @@ fn kelvin_per_watt(rating: &Rating) -> Option<f64> {
 fn standing(bank: &Bank) -> Vec<(String, f64)> {
     let description = bank.description();
     let [top, reference] = description.terminals.as_slice() else { return Vec::new() };
-    let there = || description.resistors.iter().filter(|r| r.role.always_connected() && r.phases.is_none());
+    let there = || description.resistors.iter().filter(|r| r.stands_before_isolation() && r.phases.is_none());
     let nodes = there().flat_map(|r| &r.across).chain(description.capacitors.iter().flat_map(|c| &c.across));
     let mut names: Vec<&str> = vec![top, reference];
     nodes.for_each(|n| {

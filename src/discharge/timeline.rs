@@ -1,15 +1,13 @@
 //! A bank through the steps of a procedure: the state is carried exactly from step to step.
 //!
 //! Capacitor voltages are continuous where a part is connected or lifted; nodes without a capacitor jump. Between
-//! two steps the network is linear, so every voltage is a sum of exponentials of its own.
+//! two steps the network is linear, so every voltage is a sum of exponentials of its own. Where a contact closes during
+//! a step the step goes through one network after the other.
 
-use super::body::Thermal;
+use super::body::{Heated, Thermal};
 use super::case::{Start, State};
-use super::model::{Model, Parameter, PartKind};
-use super::repeated::{Followed, InARow};
+use super::model::{Model, Part};
 use super::scenario::Scenario;
-use super::study::greatest;
-use super::worst::Objective;
 use crate::circuit::{CircuitError, Course, Drain, Modes};
 use std::sync::Arc;
 
@@ -25,10 +23,13 @@ pub(crate) struct Stage {
 
 /// A solved step.
 #[derive(Debug)]
-struct Run {
-    response: Drain,
-    ohms: Vec<f64>,
-    duration: f64,
+pub(super) struct Run {
+    pub response: Drain,
+    /// Resistances with all contacts closed.
+    pub ohms: Vec<f64>,
+    /// For every resistor the number of the step's networks with which it comes.
+    comes_with: Vec<usize>,
+    pub duration: f64,
     /// What follows from each voltage that a connected supply is tried from.
     tries: Vec<Drain>,
 }
@@ -36,14 +37,17 @@ struct Run {
 /// A solved procedure.
 #[derive(Debug)]
 pub(crate) struct Timeline {
-    map: Vec<usize>,
+    pub(super) map: Vec<usize>,
     /// Power in watt of every resistor before isolation.
-    standing: Vec<f64>,
+    pub(super) standing: Vec<f64>,
     /// Greatest voltage across every resistor before isolation, 0 for one that is not connected.
-    standing_volts: Vec<f64>,
+    pub(super) standing_volts: Vec<f64>,
+    /// Voltage across every resistor until its contact opens when the bank is fed again, and the energy then.
+    pub(super) fed_volts: Vec<f64>,
+    pub(super) fed_energy: Vec<f64>,
     /// Which capacitors of the model are in the network.
-    present: Vec<bool>,
-    runs: Vec<Run>,
+    pub(super) present: Vec<bool>,
+    pub(super) runs: Vec<Run>,
 }
 
 /// What surrounds a procedure.
@@ -60,8 +64,10 @@ pub(crate) struct Setting<'a> {
 
 /// What a step is before anything is known of the state in which it begins.
 struct Step {
-    modes: Arc<Modes>,
+    /// One network after the other, with lengths in second from the step's start.
+    networks: Vec<(f64, Arc<Modes>)>,
     ohms: Vec<f64>,
+    comes_with: Vec<usize>,
     /// For each voltage that a connected supply is tried from, the states that it can leave.
     tried_from: Vec<Vec<State>>,
 }
@@ -69,19 +75,29 @@ struct Step {
 impl Setting<'_> {
     fn solved_steps(&self, point: &[f64]) -> Result<Vec<Step>, CircuitError> {
         let Setting { model, scenario, .. } = *self;
-        let mut last: Option<(&[usize], Arc<Modes>)> = None;
+        // A step that connects and lifts nothing goes on with the network of the step before.
+        let mut known: Vec<(Vec<usize>, Arc<Modes>)> = Vec::new();
         let mut steps = Vec::with_capacity(self.stages.len());
+        let mut start = 0.0;
         for stage in self.stages {
-            // A step that connects and lifts nothing goes on with the network of the step before.
-            let modes = match last {
-                Some((connected, modes)) if *connected == stage.connected => modes,
-                _ => Arc::new(Modes::new(model.network(&scenario.after, point, &stage.connected))?),
-            };
-            last = Some((&stage.connected, Arc::clone(&modes)));
+            let spans = model.spans(&scenario.after, start, &stage.connected);
+            let mut networks = Vec::with_capacity(spans.len());
+            for span in &spans {
+                let modes = match known.iter().find(|(connected, _)| *connected == span.connected) {
+                    Some((_, modes)) => Arc::clone(modes),
+                    None => Arc::new(Modes::new(model.network(&scenario.after, point, &span.connected))?),
+                };
+                networks.push((span.length, modes));
+            }
+            known = spans.iter().zip(&networks).map(|(s, (_, m))| (s.connected.clone(), Arc::clone(m))).collect();
             let from = Scenario { drops_own_voltages: true, ..scenario.clone() };
             let volts = if stage.tried { self.tried_from } else { &[] };
             let tried_from = volts.iter().map(|v| Start::at_isolation(model, &from, point, *v).states).collect();
-            steps.push(Step { modes, ohms: model.ohms(&scenario.after, point, &stage.connected), tried_from });
+            let in_the_end = spans.last().map_or(&[][..], |span| &span.connected);
+            let ohms = model.ohms(&scenario.after, point, in_the_end);
+            let comes_with = model.first_spans(&scenario.after, start);
+            steps.push(Step { networks, ohms, comes_with, tried_from });
+            start += stage.duration;
         }
         Ok(steps)
     }
@@ -98,6 +114,12 @@ impl Timeline {
             parts().map(|(a, b, ohm)| if ohm.is_finite() { before.mean_square(a, b) / ohm } else { 0.0 }).collect();
         let standing_volts: Vec<f64> =
             parts().map(|(a, b, ohm)| if ohm.is_finite() { before.greatest(a, b) } else { 0.0 }).collect();
+        let contacts: Vec<usize> = model.contacts.iter().map(|c| c.resistor).collect();
+        let closed = model.ohms(&scenario.after, point, &contacts);
+        let fed_volts = model.fed_volts(&before, &map, &closed);
+        let fed_energy: Vec<f64> = (0..closed.len())
+            .map(|r| model.contact(r).map_or(0.0, |c| per_ohm(fed_volts[r].powi(2) * c.opens_after, closed[r])))
+            .collect();
         let present: Vec<bool> =
             (0..model.capacitors.len()).map(|c| model.is_there(&scenario.after, &map, c)).collect();
         let steps = setting.solved_steps(point)?;
@@ -106,19 +128,21 @@ impl Timeline {
             let mut runs = Vec::with_capacity(steps.len());
             let mut drawing = scenario.drawing(model);
             let State { mut voltages, mut potentials } = state;
-            for (Step { modes, ohms, tried_from }, stage) in steps.iter().zip(setting.stages) {
-                let response = modes.drain(&voltages, &potentials, &sinks, &drawing)?;
+            for (Step { networks, ohms, comes_with, tried_from }, stage) in steps.iter().zip(setting.stages) {
+                let response = Drain::through(networks, &voltages, &potentials, &sinks, &drawing)?;
                 let from = tried_from.iter().filter_map(|states| states.get(number));
                 let tries = from
-                    .map(|start| modes.drain(&start.voltages, &start.potentials, &sinks, &drawing))
+                    .map(|start| Drain::through(networks, &start.voltages, &start.potentials, &sinks, &drawing))
                     .collect::<Result<_, CircuitError>>()?;
                 voltages = response.voltages_at(stage.duration);
                 potentials = response.potentials_at(stage.duration);
                 drawing = response.drawing_at(stage.duration).to_vec();
-                runs.push(Run { response, ohms: ohms.clone(), duration: stage.duration, tries });
+                let (ohms, comes_with) = (ohms.clone(), comes_with.clone());
+                runs.push(Run { response, ohms, comes_with, duration: stage.duration, tries });
             }
             let (map, standing, standing_volts) = (map.clone(), standing.clone(), standing_volts.clone());
-            Ok(Timeline { map, standing, standing_volts, present: present.clone(), runs })
+            let (fed_volts, fed_energy) = (fed_volts.clone(), fed_energy.clone());
+            Ok(Timeline { map, standing, standing_volts, fed_volts, fed_energy, present: present.clone(), runs })
         };
         states.into_iter().enumerate().map(timeline).collect()
     }
@@ -128,7 +152,14 @@ impl Timeline {
         across(&self.runs[stage].response, &self.map, a, b)
     }
 
-    /// Resistance in ohm of a resistor during a step; infinite where it is open or not connected.
+    /// Voltage across a resistor during a step, from its start; 0 V for as long as its contact is open.
+    pub fn on_resistor(&self, model: &Model, stage: usize, resistor: usize) -> Course {
+        let run = &self.runs[stage];
+        on_resistor(&run.response, run.comes_with[resistor], &self.map, &model.resistors[resistor])
+    }
+
+    /// Resistance in ohm of a resistor during a step; infinite where it is open or not connected. A contact that has
+    /// yet to close counts as closed.
     pub fn ohms(&self, stage: usize, resistor: usize) -> f64 {
         self.runs[stage].ohms[resistor]
     }
@@ -151,6 +182,36 @@ impl Timeline {
     /// The voltage that counts for the heat of a resistor during a step, from its start.
     pub fn hottest(&self, model: &Model, stage: usize, resistor: usize) -> Course {
         self.runs[stage].hottest(model, &self.map, resistor)
+    }
+
+    /// A resistor's body from isolation to the end of the procedure, from `start` K over the air; where `until` is
+    /// finite, so many seconds from isolation, with the last step's parts left as they are.
+    pub(super) fn heated(
+        &self,
+        model: &Model,
+        resistor: usize,
+        body: Thermal,
+        start: f64,
+        until: f64,
+    ) -> Result<Heated, CircuitError> {
+        let mut heat = Heated { greatest: start, end: start };
+        for (time, run) in self.until(until).zip(&self.runs) {
+            let next = body.heated(heat.end, &run.hottest(model, &self.map, resistor), run.ohms[resistor], time)?;
+            heat = Heated { greatest: heat.greatest.max(next.greatest), end: next.end };
+        }
+        Ok(heat)
+    }
+
+    /// For every step how much of it lies within so many seconds from isolation; where that is finite the last step
+    /// goes on until then.
+    pub(super) fn until(&self, until: f64) -> impl Iterator<Item = f64> + '_ {
+        let mut left = until;
+        self.runs.iter().enumerate().map(move |(stage, run)| {
+            let goes_on = stage + 1 == self.runs.len() && until.is_finite();
+            let time = if goes_on { left } else { run.duration.min(left) };
+            left -= time;
+            time
+        })
     }
 
     /// Checks the energy balance of every step.
@@ -185,115 +246,9 @@ fn across(response: &Drain, map: &[usize], a: usize, b: usize) -> Course {
     if a == b { Course::default() } else { response.across(a, b) }
 }
 
-/// One figure of a procedure. Stages count from 0, pairs are those of the model.
-#[derive(Debug, Clone, Copy, PartialEq)]
-pub(crate) enum StepFigure {
-    /// Voltage at a step's end.
-    Voltage {
-        stage: usize,
-        pair: usize,
-    },
-    /// Voltage of a capacitor at a step's end.
-    CapacitorVoltage {
-        stage: usize,
-        capacitor: usize,
-    },
-    /// Voltage across a resistor at a step's start.
-    VoltageAtStart {
-        stage: usize,
-        resistor: usize,
-    },
-    /// Last time of a step, kept for ever, at which the voltage is over `level`; infinite for never.
-    LastOver {
-        stage: usize,
-        pair: usize,
-        level: f64,
-    },
-    /// When a supply that the step connects has brought an empty bank to a share of its voltage for good.
-    ChargedTo {
-        stage: usize,
-        source: usize,
-        share: f64,
-    },
-    /// How far an empty bank is below the voltage of a supply that the step connects, so many seconds after its start;
-    /// for infinite ones, where it settles.
-    ShortOfSupply {
-        stage: usize,
-        source: usize,
-        after: f64,
-    },
-    /// Energy in the capacitors themselves at a step's start, without what their dielectrics give back slowly.
-    ReadyEnergy {
-        stage: usize,
-    },
-    /// Energy in all capacitors at a step's start.
-    StoredEnergy {
-        stage: usize,
-    },
-    /// Greatest current in a resistor during a step.
-    Current {
-        stage: usize,
-        resistor: usize,
-    },
-    /// Greatest power in a resistor during a step.
-    Power {
-        stage: usize,
-        resistor: usize,
-    },
-    /// Energy in a resistor during a step.
-    Energy {
-        stage: usize,
-        resistor: usize,
-    },
-    /// Greatest voltage across a resistor while it is connected; before isolation too, where it is always there.
-    PartVoltage {
-        resistor: usize,
-    },
-    /// Greatest current, power, and energy in a resistor over the whole procedure.
-    PartCurrent {
-        resistor: usize,
-    },
-    PartPower {
-        resistor: usize,
-    },
-    PartEnergy {
-        resistor: usize,
-    },
-    /// Power before isolation.
-    StandingPower {
-        resistor: usize,
-    },
-    /// Greatest rise of a resistor's body over the air during the procedure, in K.
-    BodyRise {
-        resistor: usize,
-        body: Thermal,
-    },
-    /// The same in the last of several such discharges in a row, from cold before the first.
-    RiseInARow {
-        resistor: usize,
-        body: Thermal,
-        row: InARow,
-    },
-    /// How long the body then has to cool until one more leaves it at `allowed` K over the air at most.
-    CoolingAfter {
-        resistor: usize,
-        body: Thermal,
-        row: InARow,
-        allowed: f64,
-    },
-    /// The same rise during the last of several runs of one step, each from air temperature before the first of them and
-    /// so many seconds after the one before.
-    RepeatedRise {
-        stage: usize,
-        resistor: usize,
-        body: Thermal,
-        times: u32,
-        every: f64,
-    },
-    /// Greatest voltage from the end of the last step on.
-    Recovery {
-        pair: usize,
-    },
+fn on_resistor(response: &Drain, comes_with: usize, map: &[usize], part: &Part) -> Course {
+    let (a, b) = (map[part.a], map[part.b]);
+    if a == b { Course::default() } else { response.across_from(comes_with, a, b) }
 }
 
 impl Run {
@@ -301,11 +256,11 @@ impl Run {
     fn voltages(&self, model: &Model, map: &[usize], resistor: usize) -> Vec<Course> {
         let part = &model.resistors[resistor];
         let responses = if self.tries.is_empty() { std::slice::from_ref(&self.response) } else { &self.tries[..] };
-        responses.iter().map(|r| across(r, map, part.a, part.b)).collect()
+        responses.iter().map(|r| on_resistor(r, self.comes_with[resistor], map, part)).collect()
     }
 
     /// Greatest voltage across a resistor that is connected; 0 where it is not.
-    fn peak(&self, model: &Model, map: &[usize], resistor: usize) -> Result<f64, CircuitError> {
+    pub(super) fn peak(&self, model: &Model, map: &[usize], resistor: usize) -> Result<f64, CircuitError> {
         let mut peak = 0.0;
         if self.ohms[resistor].is_finite() {
             for voltage in self.voltages(model, map, resistor) {
@@ -315,18 +270,22 @@ impl Run {
         Ok(peak)
     }
 
-    fn energy(&self, model: &Model, map: &[usize], resistor: usize) -> f64 {
+    pub(super) fn energy(&self, model: &Model, map: &[usize], resistor: usize) -> f64 {
+        self.energy_within(model, map, resistor, self.duration)
+    }
+
+    pub(super) fn energy_within(&self, model: &Model, map: &[usize], resistor: usize, time: f64) -> f64 {
         let ohms = self.ohms[resistor];
         if !ohms.is_finite() {
             return 0.0;
         }
         let energies = self.voltages(model, map, resistor).into_iter();
-        energies.map(|v| v.integral_of_square(self.duration) / ohms).fold(0.0, f64::max)
+        energies.map(|v| v.integral_of_square(time) / ohms).fold(0.0, f64::max)
     }
 
     /// The voltage that counts for the temperature of a resistor: of what a supply is tried from, the one that heats
     /// most.
-    fn hottest(&self, model: &Model, map: &[usize], resistor: usize) -> Course {
+    pub(super) fn hottest(&self, model: &Model, map: &[usize], resistor: usize) -> Course {
         if !self.ohms[resistor].is_finite() {
             return Course::default();
         }
@@ -336,182 +295,7 @@ impl Run {
     }
 }
 
-/// Figures of a procedure, to be maximised over the box.
-pub(crate) struct ProcedureStudy<'a> {
-    pub setting: Setting<'a>,
-    /// Up to how many loose values every corner is tried.
-    pub most_corners: usize,
-    pub figures: &'a [StepFigure],
-}
-
-impl Objective for ProcedureStudy<'_> {
-    /// The procedure from every state that the bank can have at isolation; a figure is the greatest of theirs.
-    type Case = Vec<Timeline>;
-
-    fn parameters(&self) -> &[Parameter] {
-        &self.setting.model.parameters
-    }
-
-    fn count(&self) -> usize {
-        self.figures.len()
-    }
-
-    fn most_corners(&self) -> usize {
-        self.most_corners
-    }
-
-    fn case(&self, point: &[f64]) -> Result<Vec<Timeline>, CircuitError> {
-        Timeline::run(&self.setting, point)
-    }
-
-    /// Voltages to 1e-10 of the bank's, and what follows from it: the engine's rounding is a thousandth of that.
-    fn negligible(&self, index: usize) -> f64 {
-        let Setting { model, volts, .. } = self.setting;
-        let small = 1e-10 * volts;
-        let ohms = |resistor: usize| model.resistors[resistor].nominal;
-        match self.figures[index] {
-            StepFigure::Voltage { .. }
-            | StepFigure::CapacitorVoltage { .. }
-            | StepFigure::VoltageAtStart { .. }
-            | StepFigure::PartVoltage { .. }
-            | StepFigure::Recovery { .. }
-            | StepFigure::ShortOfSupply { .. } => small,
-            StepFigure::Current { resistor, .. } | StepFigure::PartCurrent { resistor } => small / ohms(resistor),
-            StepFigure::Power { resistor, .. }
-            | StepFigure::PartPower { resistor }
-            | StepFigure::StandingPower { resistor } => small * small / ohms(resistor),
-            StepFigure::Energy { .. }
-            | StepFigure::PartEnergy { .. }
-            | StepFigure::ReadyEnergy { .. }
-            | StepFigure::StoredEnergy { .. } => {
-                1e-10 * model.capacitors.iter().map(|c| 0.5 * c.nominal * small * volts).sum::<f64>()
-            }
-            StepFigure::BodyRise { .. } | StepFigure::RiseInARow { .. } | StepFigure::RepeatedRise { .. } => 1e-6,
-            StepFigure::LastOver { .. } | StepFigure::ChargedTo { .. } | StepFigure::CoolingAfter { .. } => 0.0,
-        }
-    }
-
-    fn case_for(&self, index: usize, point: &[f64]) -> Result<Vec<Timeline>, CircuitError> {
-        let needed = match self.figures[index] {
-            StepFigure::Voltage { stage, .. }
-            | StepFigure::CapacitorVoltage { stage, .. }
-            | StepFigure::VoltageAtStart { stage, .. }
-            | StepFigure::LastOver { stage, .. }
-            | StepFigure::ChargedTo { stage, .. }
-            | StepFigure::ShortOfSupply { stage, .. }
-            | StepFigure::RepeatedRise { stage, .. }
-            | StepFigure::ReadyEnergy { stage }
-            | StepFigure::StoredEnergy { stage }
-            | StepFigure::Current { stage, .. }
-            | StepFigure::Power { stage, .. }
-            | StepFigure::Energy { stage, .. } => stage + 1,
-            _ => self.setting.stages.len(),
-        };
-        Timeline::run(&Setting { stages: &self.setting.stages[..needed], ..self.setting }, point)
-    }
-
-    fn certify(&self, cases: &Vec<Timeline>) -> Result<(), CircuitError> {
-        cases.iter().try_for_each(Timeline::certify)
-    }
-
-    fn figure(&self, index: usize, cases: &Vec<Timeline>, floor: f64) -> Result<f64, CircuitError> {
-        greatest(cases, floor, |timeline, floor| self.figures[index].of(self.setting.model, timeline, floor))
-    }
-}
-
-impl StepFigure {
-    fn of(&self, model: &Model, timeline: &Timeline, floor: f64) -> Result<f64, CircuitError> {
-        let Timeline { map, runs, standing, standing_volts, present } = timeline;
-        let at_pair = |stage: usize, pair: usize| timeline.across(stage, model.pairs[pair].0, model.pairs[pair].1);
-        let all = |of: &dyn Fn(&Run) -> Result<f64, CircuitError>| -> Result<Vec<f64>, CircuitError> {
-            runs.iter().map(of).collect()
-        };
-        let greatest = |list: Vec<f64>| list.into_iter().fold(0.0, f64::max);
-        Ok(match *self {
-            StepFigure::Voltage { stage, pair } => at_pair(stage, pair).value(runs[stage].duration).abs(),
-            StepFigure::CapacitorVoltage { stage, capacitor: c } => {
-                let c = &model.capacitors[c];
-                timeline.across(stage, c.a, c.b).value(runs[stage].duration).abs()
-            }
-            StepFigure::VoltageAtStart { stage, resistor } => {
-                let r = &model.resistors[resistor];
-                timeline.across(stage, r.a, r.b).value(0.0).abs()
-            }
-            StepFigure::LastOver { stage, pair, level } => {
-                at_pair(stage, pair).last_outside(level, floor.max(0.0))?.seconds()
-            }
-            StepFigure::ChargedTo { stage, source, share } => match timeline.charging(model, stage, source) {
-                Some((bank, _, _)) => {
-                    let volts = model.sources[source].volts;
-                    bank.short_of(volts).last_outside((1.0 - share) * volts, floor.max(0.0))?.seconds()
-                }
-                None => 0.0,
-            },
-            StepFigure::ShortOfSupply { stage, source, after } => match timeline.charging(model, stage, source) {
-                Some((bank, _, _)) => {
-                    let short = bank.short_of(model.sources[source].volts);
-                    if after.is_finite() { short.value(after) } else { short.constant() }
-                }
-                None => 0.0,
-            },
-            StepFigure::ReadyEnergy { stage } => {
-                let network = runs[stage].response.network();
-                let there = model.capacitors.iter().zip(present).filter(|(_, there)| **there).map(|(c, _)| c);
-                let voltages = runs[stage].response.voltages_at(0.0);
-                let parts = there.zip(&network.capacitors).zip(voltages);
-                parts.filter(|((c, _), _)| c.kind == PartKind::Fixed).map(|((_, e), u)| 0.5 * e.value * u * u).sum()
-            }
-            StepFigure::StoredEnergy { stage } => runs[stage].response.initial_energy(),
-            StepFigure::Current { stage, resistor } => {
-                per_ohm(runs[stage].peak(model, map, resistor)?, runs[stage].ohms[resistor])
-            }
-            StepFigure::Power { stage, resistor } => {
-                per_ohm(runs[stage].peak(model, map, resistor)?.powi(2), runs[stage].ohms[resistor])
-            }
-            StepFigure::Energy { stage, resistor } => runs[stage].energy(model, map, resistor),
-            StepFigure::PartVoltage { resistor } => {
-                let peaks = greatest(all(&|run| run.peak(model, map, resistor))?);
-                let fixed = model.resistors[resistor].kind != PartKind::Switched;
-                if fixed { peaks.max(standing_volts[resistor]) } else { peaks }
-            }
-            StepFigure::PartCurrent { resistor } => {
-                greatest(all(&|run| Ok(per_ohm(run.peak(model, map, resistor)?, run.ohms[resistor])))?)
-            }
-            StepFigure::PartPower { resistor } => {
-                greatest(all(&|run| Ok(per_ohm(run.peak(model, map, resistor)?.powi(2), run.ohms[resistor])))?)
-            }
-            StepFigure::PartEnergy { resistor } => runs.iter().map(|run| run.energy(model, map, resistor)).sum(),
-            StepFigure::StandingPower { resistor } => standing[resistor],
-            StepFigure::BodyRise { resistor, body } => {
-                let mut rise = body.kelvin_per_watt * standing[resistor];
-                let mut greatest = rise;
-                for run in runs {
-                    let volts = run.hottest(model, map, resistor);
-                    let heated = body.heated(rise, &volts, run.ohms[resistor], run.duration)?;
-                    greatest = greatest.max(heated.greatest);
-                    rise = heated.end;
-                }
-                greatest
-            }
-            StepFigure::RiseInARow { resistor, body, row } => {
-                row.greatest(Followed { model, timeline, resistor, body })?
-            }
-            StepFigure::CoolingAfter { resistor, body, row, allowed } => {
-                row.cooling(Followed { model, timeline, resistor, body }, allowed)?
-            }
-            StepFigure::RepeatedRise { stage, resistor, body, times, every } => {
-                let run = &runs[stage];
-                let volts = run.hottest(model, map, resistor);
-                body.repeated(&volts, run.ohms[resistor], run.duration, times, every)?
-            }
-            StepFigure::Recovery { pair } => {
-                let (a, b) = model.pairs[pair];
-                timeline.afterwards(a, b).greatest_magnitude_over(floor)?.0
-            }
-        })
-    }
-}
-
-fn per_ohm(value: f64, ohms: f64) -> f64 {
+/// What an open resistor, which carries nothing, comes to whatever its voltage.
+pub(super) fn per_ohm(value: f64, ohms: f64) -> f64 {
     if ohms.is_finite() { value / ohms } else { 0.0 }
 }

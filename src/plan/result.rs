@@ -128,7 +128,7 @@ pub struct Working {
     /// Voltage across the terminals at isolation.
     #[serde(rename = "charged_to_v", serialize_with = "si")]
     pub charged_to: Voltage,
-    /// From when on the modes below hold, where sinks draw before; absent for from isolation on.
+    /// From when on the modes below hold, where sinks draw or contacts close before; absent for from isolation on.
     #[serde(rename = "from_s", serialize_with = "si_or_null", skip_serializing_if = "Option::is_none")]
     pub from: Option<Time>,
     /// Where the voltage settles; with its sign.

@@ -14,7 +14,7 @@ fn solve(model: &Model, scenario: &Scenario, point: &[f64], volts: Voltage) -> R
     states.next().ok_or_else(|| failed(CircuitError::SearchNotClosed))
 }
 
-/// Nominal time constants in second, the slowest first.
+/// Nominal time constants in second, the slowest first; with contacts that close after isolation, once all of them have.
 pub(super) fn time_constants(bank: &Bank, model: &Model) -> Result<Vec<f64>, EngineError> {
     let nominal = bank.description().charged_to.nominal;
     Ok(solve(model, &Scenario::default(), &model.nominal_point(), nominal)?.response.modes().time_constants())
@@ -45,7 +45,7 @@ pub(super) fn working(
     Ok(list)
 }
 
-/// The resistors that are there at all times.
+/// The resistors that no step connects.
 fn resistors_of(model: &Model) -> impl Iterator<Item = &Part> {
     model.resistors.iter().filter(|r| r.kind != PartKind::Switched)
 }

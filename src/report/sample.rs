@@ -66,6 +66,7 @@ fn resistor(id: &str, role: &'static str, ohm: f64, watt: f64) -> ResistorResult
         peak_power: Some(Power::from_si(watt)),
         energy: Some(Energy::from_si(1061.0)),
         body_temperature: None,
+        contact: None,
         checks: vec![
             check("continuous power", "W", watt, Some(25.0)),
             check("element voltage", "V", 750.0, Some(750.0)),

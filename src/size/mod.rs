@@ -22,7 +22,7 @@ mod trial;
 mod window;
 
 pub use balancing::{BalancingAsk, BalancingFigures, UnitShare, WrittenOut, balancing};
-pub use bleeder::{BleederAsk, BleederFigures, LimitHeld, Target, bleeder};
+pub use bleeder::{BleederAsk, BleederFigures, ContactFigures, LimitHeld, Target, bleeder};
 pub use build::{Build, Rank};
 pub use error::SizeError;
 pub use precharge::{

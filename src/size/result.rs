@@ -95,7 +95,8 @@ pub struct Searched {
 /// Arrays that were set aside without a plan.
 #[derive(Debug, Clone, PartialEq, Serialize)]
 pub struct SetAside {
-    /// What one element would carry too much of: `power`, `voltage`.
+    /// What one element would carry too much of: `power`, `voltage`; of a discharge through a contact `average power`,
+    /// `pulse energy`, `peak power`, `overload energy`, `heat`.
     pub of: &'static str,
     /// How many arrays.
     pub arrays: usize,
@@ -126,7 +127,7 @@ pub struct Candidate<F> {
     pub resistance: Resistance,
     /// True where no other design is at least as good in element count, loss and wait, and better in one.
     pub pareto: bool,
-    /// Power of one element before isolation.
+    /// Power of one element before isolation; of one that a contact connects, on average.
     #[serde(rename = "element_power_w", serialize_with = "si_or_null")]
     pub element_power: Option<Power>,
     /// What one element bears at the ambient.

@@ -7,7 +7,7 @@ use super::result::Candidate;
 use crate::bank::description::Resistor;
 use crate::check::Verdict;
 use crate::plan::{Plan, ResistorResult};
-use crate::quantity::{Quantity, Resistance, Time};
+use crate::quantity::{Power, Quantity, Resistance, Time};
 use rayon::prelude::*;
 
 /// Designs that are put into the bank and fail the full plan are passed over, but not more than this many for each
@@ -48,7 +48,7 @@ pub(super) fn planned<F: Send>(
 }
 
 /// A design with what one element carries by the plan. Of several results, such as the legs of a three-phase resistor,
-/// the one that carries most before isolation.
+/// the one that carries most before isolation, or in a discharge.
 pub(super) fn candidate<F>(
     build: &Build,
     design: &Design,
@@ -59,8 +59,11 @@ pub(super) fn candidate<F>(
     figures: F,
 ) -> Candidate<F> {
     let element = &build.elements[design.element];
-    let standing = |r: &&&ResistorResult| r.continuous_power.map_or(0.0, Quantity::si);
-    let result = results.iter().max_by(|x, y| standing(x).total_cmp(&standing(y)));
+    let carried = |r: &ResistorResult| (lasting(r).map_or(0.0, Quantity::si), r.energy.map_or(0.0, Quantity::si));
+    let result = results.iter().max_by(|x, y| {
+        let (x, y) = (carried(x), carried(y));
+        x.0.total_cmp(&y.0).then(x.1.total_cmp(&y.1))
+    });
     let count = f64::from(design.count());
     Candidate {
         rank: 0,
@@ -72,7 +75,7 @@ pub(super) fn candidate<F>(
         elements: design.count(),
         resistance: Resistance::from_si(design.value * f64::from(design.series) / f64::from(design.parallel)),
         pareto: design.pareto,
-        element_power: result.and_then(|r| r.continuous_power),
+        element_power: result.and_then(|r| lasting(r)),
         allowed_power: result.and_then(|r| r.allowed_power),
         element_voltage: result.and_then(|r| r.element_voltage),
         allowed_voltage: resistor.rating.voltage,
@@ -88,13 +91,18 @@ pub(super) fn candidate<F>(
     }
 }
 
-/// Are the ratings of the new resistors kept, with the margin on continuous power? Each has to be in the plan.
+/// What an element carries for ever: before isolation, or on average where a contact connects it at every so often.
+fn lasting(result: &ResistorResult) -> Option<Power> {
+    result.continuous_power.or_else(|| result.contact.as_ref()?.average_power)
+}
+
+/// Are the ratings of the new resistors kept, with the margin on continuous (or average) power? Each has to be in the plan.
 pub(super) fn rated(build: &Build, results: &[&ResistorResult], how_many: usize) -> bool {
     results.len() == how_many
         && results.iter().all(|r| {
             let with_margin = r
                 .allowed_power
-                .zip(r.continuous_power)
+                .zip(lasting(r))
                 .is_none_or(|(allowed, found)| at_most(found.si(), allowed.si() * (1.0 - build.margin)));
             with_margin && r.checks.iter().all(|c| c.verdict != Verdict::NotMet)
         })

@@ -111,6 +111,12 @@ fn a_request_that_makes_no_sense_is_refused_with_what_to_write_instead() {
         (&["--id", "C1"], &bare(), "C1"),
         (&["--stock", "no-such-shelf.csv"], &bare(), "no-such-shelf.csv"),
         (&["--voltage", "60V"], &bare(), "--within"),
+        (&["--closes-after", "1s"], &bare(), "--switched"),
+        (&["--switched", "--discharges", "5"], &bare(), "--every"),
+        (&["--switched", "--max-loss", "5W"], &bare(), "--max-loss"),
+        (&["--switched", "--closes-after", "1"], &bare(), "--closes-after"),
+        (&["--switched", "--every", "0s"], &bare(), "--every"),
+        (&["--switched", "--closes-after", "2s", "--every", "1s"], &bare(), "every"),
     ] {
         let run = run_with(&[&["size", "bleeder", "-"], words].concat(), bank.as_bytes());
         assert_eq!((run.status, run.out.as_str()), (2, ""), "{words:?}");
@@ -125,5 +131,35 @@ fn every_demo_bank_of_two_terminals_can_be_sized_for_a_day() {
         let name = path.to_string_lossy().into_owned();
         let run = run(&["size", "bleeder", &name, "--within", "1d", "--show", "1"]);
         assert!(run.status <= 1 && run.err.is_empty(), "{name}: {}", run.err);
+    }
+}
+
+#[test]
+fn a_bleeder_for_a_contact_is_found_told_and_written_with_its_key() {
+    let words =
+        ["--switched", "--closes-after", "100ms", "--opens-after", "50ms", "--discharges", "3", "--every", "10min"];
+    let (status, found) = json(&words, &bare());
+    assert_eq!(status, 0, "{found}");
+    let first = &found["candidates"][0];
+    assert!(first["contact"]["closes_after_s"] == 0.1 && first["contact"]["not_closing_wait_s"].is_null());
+    assert!(first["loss_highest_w"] == 0.0 && first["element_energy_j"].as_f64().is_some_and(|joule| joule > 0.0));
+    let text = run_with(&[&["size", "bleeder", "-"], &words[..]].concat(), bare().as_bytes());
+    assert_eq!((text.status, text.err.as_str()), (0, ""));
+    let joined = text.out.split_whitespace().collect::<Vec<_>>().join(" ");
+    for part in
+        ["no standing loss", "Where it does not close, the wait NEVER ends", "stays closed while the bank is fed"]
+    {
+        assert!(joined.contains(part), "{part}: {joined}");
+    }
+    assert!(text.out.lines().all(|line| line.chars().count() <= 80), "{}", text.out);
+    let part = run_with(&[&["size", "bleeder", "-", "--part"], &words[..]].concat(), bare().as_bytes());
+    let key = "switched: {closes_after: 100 ms, opens_after: 50 ms, discharges: 3, every: 600 s}";
+    assert!(part.out.contains(key), "{}", part.out);
+    let pasted = bare().replace("limits:", &format!("resistors:\n  {}limits:", part.out));
+    let plan = run_with(&["plan", "-"], pasted.as_bytes());
+    assert_eq!(plan.status, 0, "{}", plan.out);
+    let told = plan.out.split_whitespace().collect::<Vec<_>>().join(" ");
+    for part in ["RB contact stuck open: NEVER", "wait-rests-on-contact", "average power"] {
+        assert!(told.contains(part), "{part}: {told}");
     }
 }

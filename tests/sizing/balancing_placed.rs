@@ -160,6 +160,7 @@ fn everything(file: &Bank, ask: &BalancingAsk, spread: f64, highest: f64) -> Vec
                         tempco: None,
                         ageing: None,
                         phases: None,
+                        switched: None,
                     });
                 }
                 let plan = planned(&Bank::new(with).expect("a bank"));

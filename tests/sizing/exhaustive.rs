@@ -82,6 +82,7 @@ fn everything(bank: &Bank, ask: &BleederAsk) -> Vec<Good> {
                         tempco: None,
                         ageing: None,
                         phases: None,
+                        switched: None,
                     });
                     let plan = planned(&Bank::new(with).expect("a bank"));
                     let ohms = value.si() * f64::from(series) / f64::from(parallel);

@@ -92,6 +92,7 @@ fn everything(bank: &Bank, ask: &ToolAsk) -> Vec<(String, f64, u32, u32, f64)> {
                             tempco: None,
                             ageing: None,
                             phases: None,
+                            switched: None,
                         },
                     ));
                     if does(&plan, ask, parallel) {

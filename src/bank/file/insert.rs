@@ -240,6 +240,7 @@ mod tests {
             tempco: None,
             ageing: None,
             phases: None,
+            switched: None,
         }
     }
 

@@ -16,6 +16,7 @@ mod replace;
 mod source;
 mod steps;
 mod stock;
+mod switched;
 mod syntax;
 mod top;
 mod tree;

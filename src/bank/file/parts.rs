@@ -1,9 +1,9 @@
 //! The parts: capacitors, resistors, sinks, supplies.
 
 use super::charge::phases;
-use super::rating;
 use super::reader::{Group, Reader, Spot};
 use super::top::{optional, unread};
+use super::{rating, switched};
 use crate::bank::description::{Capacitor, Connection, Draw, Kvar, Pair, Resistor, Role, Sink, Supply};
 use crate::quantity::{Capacitance, Current, Frequency, Power, Quantity, Ratio, Resistance, Voltage};
 
@@ -23,8 +23,20 @@ const CAPACITOR: [&str; 14] = [
     "phases",
     "connection",
 ];
-const RESISTOR: [&str; 11] =
-    ["id", "role", "value", "tolerance", "tempco", "ageing", "across", "array", "rating", "phases", "connection"];
+const RESISTOR: [&str; 12] = [
+    "id",
+    "role",
+    "value",
+    "tolerance",
+    "tempco",
+    "ageing",
+    "across",
+    "array",
+    "rating",
+    "phases",
+    "connection",
+    "switched",
+];
 const SINK: [&str; 6] = ["id", "kind", "value", "across", "stops_below", "counted"];
 const SUPPLY: [&str; 7] = ["id", "voltage", "series", "tolerance", "array", "across", "rating"];
 
@@ -161,6 +173,7 @@ fn resistor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &Term
         parallel: 1,
         rating: Default::default(),
         phases: None,
+        switched: None,
     };
     let Some(group) = part(reader, spot, "resistor", &RESISTOR) else { return r };
     r.id = id(reader, &group, "R1").unwrap_or(r.id);
@@ -181,6 +194,7 @@ fn resistor(reader: &mut Reader<'_>, spot: &Spot<'_>, i: usize, terminals: &Term
     r.across = across.unwrap_or(r.across);
     (r.series, r.parallel) = counts(reader, &group, "array");
     r.rating = rating::read(reader, &group);
+    r.switched = switched::read(reader, &group);
     r
 }
 

@@ -130,6 +130,7 @@ mod exchanged {
             tempco: None,
             ageing: None,
             phases: None,
+            switched: None,
         }
     }
 

@@ -6,9 +6,9 @@
 use crate::bank::Bank;
 use crate::bank::description::{
     Bound, Capacitor, ChargedTo, Connection, Description, Draw, Hold, Lasts, Neutral, Pair, Rating, Resistor, Rule,
-    Sink, Source, Step, Supply,
+    Sink, Source, Step, Supply, Switched,
 };
-use crate::quantity::{Quantity, Ratio, Tolerance, Voltage, parse};
+use crate::quantity::{Quantity, Ratio, Time, Tolerance, Voltage, parse};
 
 /// The bank file that describes `bank`, key by key. Reading it gives the same bank.
 ///
@@ -249,8 +249,21 @@ pub(super) fn resistor(r: &Resistor) -> String {
         place,
         connection,
         counts("array", r.series, r.parallel),
+        switched(r.switched),
         rating(&r.rating),
     ])
+}
+
+fn switched(contact: Option<Switched>) -> Option<(&'static str, String)> {
+    let contact = contact?;
+    let delay = |key, time: Time| (time.si() > 0.0).then(|| (key, figure(time, &SECOND)));
+    let text = mapping([
+        delay("closes_after", contact.closes_after),
+        delay("opens_after", contact.opens_after),
+        (contact.discharges > 1).then(|| ("discharges", contact.discharges.to_string())),
+        contact.every.map(|time| ("every", figure(time, &SECOND))),
+    ]);
+    Some(("switched", text))
 }
 
 fn rating(rating: &Rating) -> Option<(&'static str, String)> {

@@ -139,7 +139,7 @@ impl<'a> OperatingPoints<'a> {
         let resistors: Vec<_> = d
             .resistors
             .iter()
-            .filter(|r| r.role.always_connected())
+            .filter(|r| r.stands_before_isolation())
             .map(|r| edge(&r.across, r.value.si() * f64::from(r.series) / f64::from(r.parallel.max(1))))
             .collect();
         let (top, reference) = (*numbers.get(ends[0].as_str())?, *numbers.get(ends[1].as_str())?);

@@ -7,6 +7,7 @@ mod loops;
 mod names;
 mod nodes;
 mod procedure;
+mod switched;
 mod three_phase;
 
 use super::description::Description;
@@ -57,6 +58,7 @@ pub(super) fn check(d: &Description, doubt: &Doubt) -> (Vec<Problem>, usize) {
         });
     }
     three_phase::check(d, doubt, &mut sink);
+    switched::check(d, &mut sink);
     let nodes = nodes::check(d, &parts, doubt, &mut sink);
     if !doubt.voltages {
         loops::check(d, &mut sink);
@@ -112,6 +114,7 @@ pub(super) mod samples {
             parallel: 1,
             rating: Rating::default(),
             phases: None,
+            switched: None,
         }
     }
 

@@ -3,7 +3,7 @@
 use super::typed::{BuildArgs, GivenArgs};
 use super::{Refused, Written, ambient, build, conclude, free_id, pair, read, sized, target, value, zero};
 use crate::bank::Bank;
-use crate::bank::description::Connection;
+use crate::bank::description::{Connection, Switched};
 use crate::bank::file;
 use crate::cli::output::Output;
 use crate::quantity::Quantity;
@@ -17,6 +17,7 @@ const EXAMPLES: &str = "\
 Examples: ebbvolt size bleeder bank.yaml --series E24 --parallel-up-to 2
           ebbvolt size bleeder bank.yaml --within 5min --stock shelf.csv --margin 40%
           ebbvolt size bleeder bank.yaml --write with-bleeder.yaml
+          ebbvolt size bleeder bank.yaml --switched --closes-after 100ms
 
 Exit status: 0 found; 1 nothing does the job; 2 wrong input; 3 no verdict";
 
@@ -50,6 +51,21 @@ pub(in crate::cli) struct BleederArgs {
     /// How it is connected in a three-phase bank; without it delta
     #[arg(long, value_enum)]
     pub connection: Option<Connected>,
+    /// A contact connects it at isolation: no standing loss, but every discharge heats it
+    #[arg(long, conflicts_with = "max_loss")]
+    pub switched: bool,
+    /// How long after isolation the slowest contact has closed, such as 100ms
+    #[arg(long, value_name = "TIME", allow_hyphen_values = true, requires = "switched")]
+    pub closes_after: Option<String>,
+    /// How long after the bank is fed again the slowest contact has opened, such as 50ms
+    #[arg(long, value_name = "TIME", allow_hyphen_values = true, requires = "switched")]
+    pub opens_after: Option<String>,
+    /// How many discharges in a row it has to bear; without it one
+    #[arg(long, value_name = "COUNT", requires = "every", value_parser = clap::value_parser!(u32).range(1..=1_000_000))]
+    pub discharges: Option<u32>,
+    /// How far apart they are, from one isolation to the next, such as 10min
+    #[arg(long, value_name = "TIME", allow_hyphen_values = true, requires = "switched")]
+    pub every: Option<String>,
     #[command(flatten)]
     pub build: BuildArgs,
     #[command(flatten)]
@@ -96,6 +112,7 @@ fn ask(typed: &BleederArgs, bank: &Bank) -> Result<BleederAsk, Refused> {
             Connected::Star => Connection::Star,
             Connected::OpenDelta => Connection::OpenDelta,
         }),
+        switched: typed.switched.then(|| contact(typed, &mut wrong)),
     };
     zero(
         &[
@@ -103,8 +120,20 @@ fn ask(typed: &BleederArgs, bank: &Bank) -> Result<BleederAsk, Refused> {
             ("--voltage", ask.target.map(|t| t.voltage.si()), "60V"),
             ("--max-loss", ask.max_loss.map(Quantity::si), "20W"),
             ("--max-current", ask.max_current.map(Quantity::si), "100mA"),
+            ("--every", ask.switched.and_then(|c| c.every).map(Quantity::si), "10min"),
         ],
         &mut wrong,
     );
     if wrong.is_empty() { Ok(ask) } else { Err(Refused::Words(wrong.join("\n"))) }
+}
+
+/// The contact that the words speak of.
+fn contact(typed: &BleederArgs, wrong: &mut Vec<String>) -> Switched {
+    let none = Switched::default();
+    Switched {
+        closes_after: value("--closes-after", &typed.closes_after, wrong).unwrap_or(none.closes_after),
+        opens_after: value("--opens-after", &typed.opens_after, wrong).unwrap_or(none.opens_after),
+        discharges: typed.discharges.unwrap_or(none.discharges),
+        every: value("--every", &typed.every, wrong),
+    }
 }

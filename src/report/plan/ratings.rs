@@ -39,7 +39,13 @@ fn counted(plan: &Plan) -> String {
         || "to infinite time, nobody doing anything".into(),
         |last| format!("to the end of the last step at {}", whole(last.end)),
     );
-    format!("Air at the resistors: {}. Peaks and energy count from isolation {until}.", up(plan.ambient))
+    let switched = plan.resistors.iter().filter(|r| r.contact.as_ref().is_some_and(|c| c.opens_after.si() > 0.0));
+    let switched: Vec<String> = switched.map(|r| r.id.clone()).collect();
+    let fed = match switched.is_empty() {
+        true => String::new(),
+        false => format!("; those of {} with the feeding until its contact opens", list(&switched)),
+    };
+    format!("Air at the resistors: {}. Peaks and energy count from isolation {until}{fed}.", up(plan.ambient))
 }
 
 fn checks(plan: &Plan) -> Grid {

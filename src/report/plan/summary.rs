@@ -191,6 +191,11 @@ fn keep(plan: &Plan, governing: &Wait) -> Vec<String> {
     if !sinks.is_empty() {
         text.push(format!("It relies on {}, which must work to draw anything.", list(&sinks)));
     }
+    let switched = plan.resistors.iter().filter(|r| r.contact.is_some());
+    let switched: Vec<String> = switched.map(|r| r.id.clone()).collect();
+    if !switched.is_empty() {
+        text.push(format!("It relies on a contact that must close ({}).", list(&switched)));
+    }
     text
 }
 

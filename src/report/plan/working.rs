@@ -85,10 +85,10 @@ fn network(working: &Working) -> Vec<Block> {
     let settles: Voltage = working.settles_at;
     let from = if working.from.is_some() { " from isolation" } else { "" };
     let wait = working.wait.map_or_else(|| "t: never".into(), |t| format!("last crossing: t = {}{from}", six(t)));
-    let sinks = working.from.map(|from| {
+    let before = working.from.map(|from| {
         Block::Paragraph(format!(
-            "While a sink draws, until t = {0}, the voltage falls by its current too (a sum of exponentials over each \
-             such time); from then on, with t counted from {0}:",
+            "Until t = {0} a sink draws or a contact has yet to close, and the voltage is another sum of exponentials \
+             over each such time; from then on, with t counted from {0}:",
             six(from)
         ))
     });
@@ -97,5 +97,5 @@ fn network(working: &Working) -> Vec<Block> {
         Block::Table(grid),
         Block::Formula(wait),
     ];
-    sinks.into_iter().chain(sum).collect()
+    before.into_iter().chain(sum).collect()
 }

@@ -13,13 +13,23 @@ pub fn size_bleeder(sizing: &Sizing<BleederFigures>) -> SizeReport {
         None => format!("Across {}, from up to {}.", pair(&sizing.across), up(sizing.charged_to.highest)),
     };
     let first = sizing.candidates.first();
-    let explained = "* none other has as few elements, as little loss and as short a wait, and less of one. Loss: at \
-                     the highest voltage, all of the array. Each design was put into the bank and planned in full; the \
-                     figures are that plan's.";
-    let tables = vec![
-        ("Designs", designs(&sizing.candidates), Some(explained.into())),
-        ("One element", elements(&sizing.candidates), None),
-    ];
+    let tables = if first.is_some_and(|c| c.figures.contact.is_some()) {
+        let explained = "* none other has as few elements, as low a peak and as short a wait, and less of one. Current: \
+                         the peak, all of the array. Each design was put into the bank and planned in full; the figures \
+                         are that plan's.";
+        vec![
+            ("Designs", designs(&sizing.candidates), Some(explained.into())),
+            ("One element, each discharge with its feeding", pulses(&sizing.candidates), None),
+        ]
+    } else {
+        let explained = "* none other has as few elements, as little loss and as short a wait, and less of one. Loss: at \
+                         the highest voltage, all of the array. Each design was put into the bank and planned in full; \
+                         the figures are that plan's.";
+        vec![
+            ("Designs", designs(&sizing.candidates), Some(explained.into())),
+            ("One element", elements(&sizing.candidates), None),
+        ]
+    };
     let told = Told {
         place,
         clock: "Times run from isolation.",
@@ -35,10 +45,15 @@ fn predicted(first: &Candidate<BleederFigures>) -> String {
         let within = l.within.map_or_else(String::new, |t| format!(" (due {})", whole(t)));
         format!("{} holds from {}{within}", l.id, wait(l.holds_from))
     });
-    format!("Predicted: {}; standing loss {}.", list(&kept.collect::<Vec<_>>()), up(first.figures.loss_highest))
+    let kept = list(&kept.collect::<Vec<_>>());
+    match &first.figures.contact {
+        None => format!("Predicted: {kept}; standing loss {}.", up(first.figures.loss_highest)),
+        Some(_) => format!("Predicted: {kept}; no standing loss, up to {}.", up(first.figures.peak_current)),
+    }
 }
 
 fn designs(candidates: &[Candidate<BleederFigures>]) -> Grid {
+    let switched = candidates.iter().any(|c| c.figures.contact.is_some());
     let mut grid = Grid::new(&[
         ("No.", Side::Left),
         ("Element", Side::Left),
@@ -46,7 +61,7 @@ fn designs(candidates: &[Candidate<BleederFigures>]) -> Grid {
         ("s x p", Side::Right),
         ("Wait", Side::Right),
         ("One open", Side::Right),
-        ("Loss", Side::Right),
+        (if switched { "Current" } else { "Loss" }, Side::Right),
     ]);
     for c in candidates {
         grid.row([
@@ -56,8 +71,39 @@ fn designs(candidates: &[Candidate<BleederFigures>]) -> Grid {
             strings(c),
             wait(c.figures.wait),
             wait(c.figures.open_wait),
-            up(c.figures.loss_highest),
+            if switched { up(c.figures.peak_current) } else { up(c.figures.loss_highest) },
         ]);
+    }
+    grid
+}
+
+/// What one element bears of a discharge through a contact.
+fn pulses(candidates: &[Candidate<BleederFigures>]) -> Grid {
+    let mut columns = vec![
+        ("No.", Side::Left),
+        ("Peak", Side::Right),
+        ("Energy", Side::Right),
+        ("On average", Side::Right),
+        ("Voltage", Side::Right),
+        ("Body", Side::Right),
+        ("All of it", Side::Right),
+    ];
+    let bought = bought(&mut columns, candidates);
+    let mut grid = Grid::new(&columns);
+    for c in candidates {
+        let peak = c.figures.contact.as_ref().and_then(|contact| contact.element_peak_power);
+        let average = c.element_power.map(up).map(|found| of(Some(found), c.allowed_power.map(down)));
+        let mut row = vec![
+            c.rank.to_string(),
+            peak.map_or_else(String::new, up),
+            c.element_energy.map_or_else(String::new, up),
+            average.unwrap_or_else(|| "-".into()),
+            of(c.element_voltage.map(up), c.allowed_voltage.map(down)),
+            c.body_temperature.map_or_else(String::new, up),
+            value(c.resistance),
+        ];
+        row.extend(bought(c));
+        grid.row(row);
     }
     grid
 }
@@ -114,6 +160,13 @@ fn first_design(c: &Candidate<BleederFigures>) -> Vec<Labelled> {
         None => "The wait then NEVER ends by itself: test before touch, whatever time has passed.".into(),
     };
     items.push(Labelled::new("one open", vec![open]));
+    items.extend(c.figures.contact.as_ref().map(|contact| {
+        let text = match contact.not_closing_wait {
+            Some(wait) => format!("Where it does not close, the longest wait is {}.", time(wait)),
+            None => "Where it does not close, the wait NEVER ends by itself: test before touch.".into(),
+        };
+        Labelled::new("contact", vec![text])
+    }));
     items.push(Labelled::new("current", vec![format!("Up to {} through the array.", up(c.figures.peak_current))]));
     items
 }

@@ -211,6 +211,7 @@ impl Job {
             tempco: None,
             ageing: None,
             phases: None,
+            switched: None,
         };
         let (ambient, fast_charge) = (ask.ambient.unwrap_or_else(|| bank.ambient()), ask.fast_charge);
         let job = Job { description, across, members, bears, written_out, place, counted, ambient, fast_charge };

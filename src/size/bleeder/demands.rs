@@ -4,11 +4,14 @@ use super::probe::Point;
 use super::request::BleederAsk;
 use crate::bank::description::{Bound, Description, Rule};
 use crate::quantity::{
-    CELSIUS_ZERO_K, Current, Direction, Power, Quantity, Temperature, Time, celsius, duration, exact, show,
+    CELSIUS_ZERO_K, Current, Direction, Energy, Power, Quantity, Temperature, Time, celsius, duration, exact, show,
 };
 use crate::size::Build;
 use crate::size::arrays::usable_power;
 use crate::size::scan::{Demand, Measure, ratio};
+
+/// What the name of a limit ends with that has to hold under faults too.
+const ANY_FAULT: &str = " with any one part failed";
 
 /// What a demand looks at.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -21,6 +24,10 @@ pub(super) enum Kind {
     Current(f64),
     /// What the largest arrays of the elements at hand bear, in watt.
     Rating(f64),
+    /// What they bear of one discharge, or of the last of a row, through a contact.
+    Discharge,
+    /// What they bear on average over a cycle, in watt.
+    Average(f64),
 }
 
 impl Measure<Point> for Kind {
@@ -29,6 +36,8 @@ impl Measure<Point> for Kind {
             Kind::Limit(index) => point.limits.get(*index).copied().unwrap_or((f64::INFINITY, 0.0)),
             Kind::Loss(watt) | Kind::Rating(watt) => (point.standing, *watt),
             Kind::Current(ampere) => (point.current, *ampere),
+            Kind::Discharge => (point.burden, 1.0),
+            Kind::Average(watt) => (point.average, *watt),
         };
         ratio(found, allowed)
     }
@@ -53,7 +62,7 @@ pub(super) fn demands(
             },
             Rule::Published(_) => String::new(),
         };
-        let faults = if limit.single_fault { " with any one part failed" } else { "" };
+        let faults = if limit.single_fault { ANY_FAULT } else { "" };
         Demand { name: format!("limit {}{rule}{faults}", limit.id), kind: Kind::Limit(number) }
     });
     let loss = ask.max_loss.map(|most| Demand {
@@ -66,15 +75,26 @@ pub(super) fn demands(
     let most =
         ask.build.elements.iter().map(|e| usable_power(&e.rating, ambient, ask.build.margin)).fold(0.0, f64::max)
             * f64::from(ask.build.series_up_to * ask.build.parallel_up_to);
-    let rating = most.is_finite().then(|| Demand {
-        name: format!(
-            "what the largest arrays bear in air of {:.0} °C ({})",
-            celsius(ambient),
-            show(Power::from_si(most), Direction::Down)
-        ),
-        kind: Kind::Rating(most),
+    let power = show(Power::from_si(most), Direction::Down);
+    let air = celsius(ambient);
+    let lasting = match ask.switched {
+        None => Some((format!("what the largest arrays bear in air of {air:.0} °C ({power})"), Kind::Rating(most))),
+        Some(contact) => contact.every.map(|every| {
+            let every = duration(every, Direction::Down);
+            let name = format!("what the largest arrays bear on average, one discharge every {every} ({power})");
+            (name, Kind::Average(most))
+        }),
+    };
+    let lasting = lasting.filter(|_| most.is_finite()).map(|(name, kind)| Demand { name, kind });
+    let pulse = ask.switched.map(|contact| {
+        let row = match contact.discharges {
+            1 => "one discharge".to_string(),
+            n => format!("the last of {n} discharges"),
+        };
+        let name = format!("what the largest arrays bear of {row} in air of {air:.0} °C");
+        Demand { name, kind: Kind::Discharge }
     });
-    limits.chain(loss).chain(current).chain(rating).collect()
+    limits.chain(loss).chain(current).chain(lasting).chain(pulse).collect()
 }
 
 /// What a demand would have to allow for the resistance at which `point` was found.
@@ -97,6 +117,23 @@ pub(super) fn way_for(ask: &BleederAsk, demand: &Demand<Kind>, point: &Point) ->
             );
             ways
         }
+        Kind::Discharge => {
+            let (energy, peak) = (Energy::from_si(point.discharge.energy), Power::from_si(point.discharge.peak));
+            vec![format!(
+                "elements that together bear a discharge of {} with a peak of {}",
+                show(energy, Direction::Up),
+                show(peak, Direction::Up)
+            )]
+        }
+        Kind::Average(most) => {
+            let average = show(Power::from_si(point.average), Direction::Up);
+            let mut ways = vec![format!("elements that together bear {average} on average")];
+            // The energy of a cycle stays: a longer cycle thins it out.
+            let apart = ask.switched.and_then(|contact| contact.every).map(|t| t.si() * point.average / most);
+            let apart = apart.filter(|t| t.is_finite()).map(|t| duration(Time::from_si(t), Direction::Up));
+            ways.extend(apart.map(|apart| format!("{apart} between discharges")));
+            ways
+        }
     }
 }
 
@@ -115,14 +152,36 @@ fn cooler(build: &Build, watt: f64) -> Option<f64> {
 /// What would open a window whose lower end comes from this demand, beside allowing more.
 pub(super) fn instead(demand: &Demand<Kind>) -> Option<String> {
     let standing = matches!(demand.kind, Kind::Loss(_) | Kind::Rating(_));
-    standing.then(|| "a bleeder that a contact switches on at isolation, which has no standing loss".into())
+    let contact = "a bleeder that a contact switches on at isolation, which has no standing loss (`--switched`)";
+    standing.then(|| contact.into())
 }
 
 /// What to look at where nothing meets a demand.
-pub(super) fn nowhere(demand: &Demand<Kind>) -> Option<String> {
-    matches!(demand.kind, Kind::Limit(_)).then(|| {
-        "Look at what the resistor does not reach: a capacitor behind a series resistor, the units of a string, a \
-         source of charge. Another place (`--across`), more strings (with single faults) or a longer time may do."
-            .into()
-    })
+pub(super) fn nowhere(ask: &BleederAsk, demand: &Demand<Kind>) -> Option<String> {
+    let faults = ask.switched.is_some() && demand.name.ends_with(ANY_FAULT);
+    let text = match demand.kind {
+        Kind::Limit(_) if faults => {
+            "A contact that does not close is a single fault: it takes a second path beside it, a bleeder that is always \
+             connected or one with a contact of its own."
+        }
+        Kind::Limit(_) if ask.switched.is_some() => {
+            "The contact's delay counts: nothing flows before it closes. Look also at what the resistor does not reach: a \
+             capacitor behind a series resistor, the units of a string, a source of charge."
+        }
+        Kind::Limit(_) => {
+            "Look at what the resistor does not reach: a capacitor behind a series resistor, the units of a string, a \
+             source of charge. Another place (`--across`), more strings (with single faults) or a longer time may do."
+        }
+        Kind::Discharge => {
+            "The energy that the bank holds goes into the resistor at every discharge, whatever its value: elements that \
+             bear more, more of them (`--series-up-to`, `--parallel-up-to`), fewer discharges in a row or more time \
+             between them may do."
+        }
+        Kind::Average(_) => {
+            "The energy of a cycle hardly depends on the resistance: more time between discharges (`--every`), larger \
+             elements or more of them may do."
+        }
+        Kind::Loss(_) | Kind::Current(_) | Kind::Rating(_) => return None,
+    };
+    Some(text.into())
 }

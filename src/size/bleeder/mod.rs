@@ -1,5 +1,6 @@
 //! `bleeder`: a resistor that drains the bank for good, from isolation on.
 
+mod bearing;
 mod demands;
 mod probe;
 mod request;
@@ -7,7 +8,7 @@ mod result;
 mod trial;
 
 pub use request::{BleederAsk, Target};
-pub use result::{BleederFigures, LimitHeld};
+pub use result::{BleederFigures, ContactFigures, LimitHeld};
 
 use super::arrays::{Design, clearly_over, element_load, listed, usable_power};
 use super::collision::{self, Ways};
@@ -20,10 +21,12 @@ use super::window::{demand_results, nothing_fits, searched, window_result};
 use crate::bank::Bank;
 use crate::bank::description::{Bound, Connection, Description, Limit, Pair, Resistor, Role, Rule};
 use crate::bank::stock::Element;
+use crate::check::contact;
 use crate::data::{LimitKind, published_limit};
 use crate::finding::{Finding, Severity};
 use crate::plan::{ChargedTo, Stamp};
 use crate::quantity::{Quantity, Resistance, Time, celsius};
+use bearing::{Bearing, Discharge};
 use demands::{Kind, demands, instead, nowhere, way_for};
 use probe::{Fitted, Point};
 use rayon::prelude::*;
@@ -63,10 +66,13 @@ pub fn bleeder(bank: &Bank, input_sha256: &str, ask: &BleederAsk) -> Result<Sizi
     // With single faults the number of strings decides what one open element leaves.
     let faults = counted.iter().any(|i| description.limits[*i].single_fault);
     let strings: Vec<u32> = if faults { (1..=ask.build.parallel_up_to).collect() } else { vec![1] };
-    let probes: Vec<Fitted> = strings
-        .iter()
-        .map(|n| Fitted::new(&description, &Resistor { parallel: *n, ..place.clone() }, counted.clone()))
-        .collect::<Result<_, _>>()?;
+    let largest = ask.build.series_up_to * ask.build.parallel_up_to;
+    let bearing = ask.switched.map(|_| Bearing::of(&ask.build.elements, largest, ambient));
+    let fitted = |n: &u32| {
+        let part = Resistor { parallel: *n, ..place.clone() };
+        Fitted::new(&description, &part, counted.clone(), bearing.clone())
+    };
+    let probes: Vec<Fitted> = strings.iter().map(fitted).collect::<Result<_, _>>()?;
     let scans: Vec<Scan<Fitted>> =
         probes.iter().map(|p| Scan::around(middle, p, &demands)).collect::<Result<_, SizeError>>()?;
     let met: Vec<Vec<Spans>> = scans
@@ -83,10 +89,19 @@ pub fn bleeder(bank: &Bank, input_sha256: &str, ask: &BleederAsk) -> Result<Sizi
     let overload = |design: &Design, element: &Element| {
         let volts = voltage(scan, design.lowest).max(voltage(scan, design.highest)) * (1.0 - slack);
         let (watt, volt) = element_load(design, element.tolerance, volts);
-        if clearly_over(watt, usable_power(&element.rating, ambient, ask.build.margin)) {
+        let usable = usable_power(&element.rating, ambient, ask.build.margin);
+        if bearing.is_none() && clearly_over(watt, usable) {
             return Some("power");
         }
-        element.rating.voltage.filter(|most| clearly_over(volt, most.si())).map(|_| "voltage")
+        if element.rating.voltage.is_some_and(|most| clearly_over(volt, most.si())) {
+            return Some("voltage");
+        }
+        let bearing = bearing.as_ref()?;
+        let (discharge, average) = least_discharge(scan, design.lowest, design.highest);
+        if clearly_over(average / f64::from(design.count()), usable) {
+            return Some("average power");
+        }
+        bearing.overloaded(design.element, &discharge, design.count())
     };
     let found = listed(&ask.build, of, overload);
     let one = |design: &Design| tried(&description, ask, design, design.resistor(&ask.build, &place), &counted);
@@ -98,7 +113,11 @@ pub fn bleeder(bank: &Bank, input_sha256: &str, ask: &BleederAsk) -> Result<Sizi
             &demands,
             spans,
             scan,
-            &Ways { allow: &|demand, point| way_for(ask, demand, point), instead: &instead, nowhere: &nowhere },
+            &Ways {
+                allow: &|demand, point| way_for(ask, demand, point),
+                instead: &instead,
+                nowhere: &|demand| nowhere(ask, demand),
+            },
         )?);
     } else if candidates.is_empty() {
         findings.push(nothing_fits(&ask.build, &found, refused, window));
@@ -148,6 +167,12 @@ struct Job {
 impl Job {
     fn of(bank: &Bank, ask: &BleederAsk) -> Result<Self, SizeError> {
         ask.build.check()?;
+        if ask.switched.is_some() && ask.max_loss.is_some() {
+            return Err(SizeError::Asked(
+                "a bleeder that a contact connects has no standing loss to bound; leave `--max-loss` or `--switched` out"
+                    .into(),
+            ));
+        }
         let mut description = bank.description().clone();
         description.ambient = ask.ambient.or(description.ambient);
         let counted: Vec<usize> = match ask.target {
@@ -184,7 +209,8 @@ impl Job {
                 "`--connection` is for a three-phase resistor between the terminals; leave it out".into(),
             ));
         }
-        Ok(Job { description, counted, place: Resistor { phases, ..stand_in(ask, &across) } })
+        let place = Resistor { phases, switched: ask.switched, ..stand_in(ask, &across) };
+        Ok(Job { description, counted, place })
     }
 }
 
@@ -225,6 +251,7 @@ fn stand_in(ask: &BleederAsk, across: &Pair) -> Resistor {
         tempco: None,
         ageing: None,
         phases: None,
+        switched: None,
     }
 }
 
@@ -252,8 +279,11 @@ fn assumptions(bank: &Bank, ask: &BleederAsk, faults: bool) -> Vec<String> {
         "The array's elements share one tolerance end where the wait and the loss are found; unequal sharing counts in \
          the figures of one element."
             .to_string(),
-        "The year's energy is that of the nominal voltage, connected for 8760 h.".to_string(),
     ];
+    list.push(match ask.switched {
+        None => "The year's energy is that of the nominal voltage, connected for 8760 h.".to_string(),
+        Some(asked) => contact(&ask.id, &asked),
+    });
     list.extend(ask.build.assumptions());
     match ask.ambient {
         Some(ambient) => list.push(format!(
@@ -277,6 +307,23 @@ fn assumptions(bank: &Bank, ask: &BleederAsk, faults: bool) -> Vec<String> {
         ));
     }
     list
+}
+
+/// The least that the points around these resistances say of one discharge, and of the average power: what is too much
+/// there is too much in between.
+fn least_discharge(scan: &Scan<Fitted>, lowest: f64, highest: f64) -> (Discharge, f64) {
+    let points = scan.points();
+    let first = points.partition_point(|(at, _)| *at <= lowest).saturating_sub(1);
+    let last = points.partition_point(|(at, _)| *at < highest).min(points.len().saturating_sub(1));
+    let around = || points[first.min(last)..=last].iter().map(|(_, p)| p);
+    let least = |of: &dyn Fn(&Point) -> f64| around().map(of).fold(f64::INFINITY, f64::min);
+    let times = around().next().map_or(0, |p| p.discharge.heat.len());
+    let discharge = Discharge {
+        peak: least(&|p| p.discharge.peak),
+        energy: least(&|p| p.discharge.energy),
+        heat: (0..times).map(|k| least(&|p| p.discharge.heat[k])).collect(),
+    };
+    (discharge, least(&|p| p.average))
 }
 
 /// The voltage across the resistor at an actual resistance, between the points that were looked at; exact where the

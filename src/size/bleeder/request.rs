@@ -1,6 +1,6 @@
 //! What is asked of a bleeder.
 
-use crate::bank::description::{Connection, Pair};
+use crate::bank::description::{Connection, Pair, Switched};
 use crate::quantity::{Current, Power, Temperature, Time, Voltage};
 use crate::size::Build;
 
@@ -24,7 +24,7 @@ pub struct BleederAsk {
     pub single_fault: bool,
     /// Air at the resistors, in place of that of the file.
     pub ambient: Option<Temperature>,
-    /// Greatest standing loss of the new resistor at the highest voltage.
+    /// Greatest standing loss of the new resistor at the highest voltage; not with a contact, which leaves none.
     pub max_loss: Option<Power>,
     /// Greatest current through the new resistor.
     pub max_current: Option<Current>,
@@ -34,6 +34,8 @@ pub struct BleederAsk {
     pub across: Option<Pair>,
     /// How it is connected in a three-phase bank; `None` is delta.
     pub connection: Option<Connection>,
+    /// The contact that connects it at isolation; `None` is a bleeder that is always connected.
+    pub switched: Option<Switched>,
 }
 
 impl Default for BleederAsk {
@@ -48,6 +50,7 @@ impl Default for BleederAsk {
             id: "RB".into(),
             across: None,
             connection: None,
+            switched: None,
         }
     }
 }

@@ -27,9 +27,34 @@ pub struct BleederFigures {
     pub open_wait: Option<Time>,
     /// The limits that were asked for.
     pub limits: Vec<LimitHeld>,
+    /// For a bleeder that a contact connects: what decides there in place of the standing loss.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub contact: Option<ContactFigures>,
     /// The part itself.
     #[serde(skip)]
     pub resistor: Resistor,
+}
+
+/// What a bleeder that a contact connects comes to.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct ContactFigures {
+    /// How long after isolation the contact has closed.
+    #[serde(rename = "closes_after_s", serialize_with = "si")]
+    pub closes_after: Time,
+    /// How long after the bank is fed again it has opened.
+    #[serde(rename = "opens_after_s", serialize_with = "si")]
+    pub opens_after: Time,
+    /// Discharges in a row, from cold.
+    pub discharges: u32,
+    /// How far apart; `None` (null) where that was not asked.
+    #[serde(rename = "every_s", serialize_with = "si_or_null")]
+    pub every: Option<Time>,
+    /// Greatest power in one element.
+    #[serde(rename = "element_peak_power_w", serialize_with = "si_or_null")]
+    pub element_peak_power: Option<Power>,
+    /// The longest wait of all test points where the contact does not close; `None` (null) is never.
+    #[serde(rename = "not_closing_wait_s", serialize_with = "si_or_null")]
+    pub not_closing_wait: Option<Time>,
 }
 
 /// A limit that was asked for, as the plan finds it.

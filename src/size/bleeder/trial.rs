@@ -1,12 +1,12 @@
 //! One design in the bank: the full plan with it, and whether it does what was asked.
 
 use super::request::BleederAsk;
-use super::result::{BleederFigures, LimitHeld};
+use super::result::{BleederFigures, ContactFigures, LimitHeld};
 use crate::bank::Bank;
 use crate::bank::description::{Description, Resistor};
 use crate::bank::file::resistor_text;
 use crate::check::{Answers, EngineError};
-use crate::discharge::{Figure, Model};
+use crate::discharge::{CONTACT_FAULT, Figure, Model};
 use crate::finding::Findings;
 use crate::plan::{Options, Plan, ResistorResult, plan};
 use crate::quantity::{Current, Power, Quantity};
@@ -32,7 +32,7 @@ pub(super) fn tried(
     let plan = plan(&bank, "", Findings::new(), Options::default())?;
     let whole = Whole::of(&bank.expanded(), &legs)?;
     let results: Vec<&ResistorResult> = plan.resistors.iter().filter(|r| legs.contains(&r.id)).collect();
-    let figures = figures(&resistor, &legs, &plan, counted, &whole);
+    let figures = figures(&resistor, &legs, &plan, &results, counted, &whole);
     let limits = figures.limits.iter().all(|l| l.met == Some(true) && l.single_fault_met != Some(false));
     let loss = ask.max_loss.is_none_or(|most| at_most(whole.loss_highest, most.si()));
     let current = ask.max_current.is_none_or(|most| at_most(whole.current, most.si()));
@@ -65,7 +65,14 @@ impl Whole {
     }
 }
 
-fn figures(resistor: &Resistor, legs: &[String], plan: &Plan, counted: &[usize], whole: &Whole) -> BleederFigures {
+fn figures(
+    resistor: &Resistor,
+    legs: &[String],
+    plan: &Plan,
+    results: &[&ResistorResult],
+    counted: &[usize],
+    whole: &Whole,
+) -> BleederFigures {
     let fault = |name: &str| name.strip_suffix(" open").is_some_and(|id| legs.iter().any(|leg| leg == id));
     let limits = counted.iter().filter_map(|i| plan.limits.get(*i)).map(|l| LimitHeld {
         id: l.id.clone(),
@@ -76,7 +83,22 @@ fn figures(resistor: &Resistor, legs: &[String], plan: &Plan, counted: &[usize],
         // Only where it was asked for does a failed part decide.
         single_fault_met: l.single_fault_met.filter(|_| l.single_fault_asked),
     });
+    let contact = resistor.switched.map(|contact| {
+        let peak = |r: &&&ResistorResult| r.peak_power.map_or(0.0, Quantity::si);
+        let named =
+            |name: &str| name.strip_suffix(CONTACT_FAULT).is_some_and(|id| legs.iter().any(|leg| leg == id.trim_end()));
+        let unclosed = plan.waits.iter().flat_map(|w| w.faults.iter().filter(|f| named(&f.fault)).map(|f| f.wait));
+        ContactFigures {
+            closes_after: contact.closes_after,
+            opens_after: contact.opens_after,
+            discharges: contact.discharges,
+            every: contact.every,
+            element_peak_power: results.iter().max_by(|x, y| peak(x).total_cmp(&peak(y))).and_then(|r| r.peak_power),
+            not_closing_wait: longest(unclosed),
+        }
+    });
     BleederFigures {
+        contact,
         loss_highest: Power::from_si(whole.loss_highest),
         loss_nominal: Power::from_si(whole.loss_nominal),
         energy_per_year_kwh: whole.loss_nominal * HOURS_A_YEAR / 1000.0,

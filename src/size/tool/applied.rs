@@ -185,6 +185,7 @@ fn place(
         parallel: 1,
         rating: Default::default(),
         phases: three_legs.then(|| ask.connection.unwrap_or(before)),
+        switched: None,
     })
 }
 
