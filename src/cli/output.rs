@@ -62,7 +62,7 @@ impl<'a> Output<'a> {
     }
 
     /// Tells lines to paste on standard error, as they stand: where one breaks it would be another text.
-    pub fn to_paste(&mut self, lines: &str) {
+    pub fn lines_to_paste(&mut self, lines: &str) {
         let _ = self.stderr.write_all(lines.as_bytes());
     }
 

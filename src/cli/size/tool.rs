@@ -109,7 +109,7 @@ pub(super) fn run(typed: &ToolArgs, stdin: &mut dyn Read, output: &mut Output) -
     let lacking = picked.filter(|f| !f.steps.is_empty() && (pasted || written && f.placement != Placement::WithSteps));
     if let Some(figures) = lacking.filter(|_| status == 0) {
         output.notice("The figures are those of these steps, which the procedure of the file does not have:");
-        output.to_paste(&file::steps_text(&figures.steps));
+        output.lines_to_paste(&file::steps_text(&figures.steps));
     }
     status
 }
