@@ -498,7 +498,8 @@ fn check_steps(plan: &Plan) {
         assert!(step.until || !step.never, "only an `until` can fail to come");
         for charging in &step.charging {
             assert!(plan.steps.iter().any(|s| s.connect.contains(&charging.supply)) && charging.voltage_v > 0.0);
-            assert!(charging.reached_lowest_v <= charging.reached_nominal_v * (1.0 + 1e-9));
+            assert!(0.0 <= charging.reached_lowest_v && charging.reached_lowest_v <= charging.reached_nominal_v);
+            assert!(charging.reached_nominal_v <= charging.voltage_v * (1.0 + 1e-9));
             for m in &charging.moments {
                 let reached = m.share * charging.voltage_v;
                 assert!(m.bank_v.is_none_or(|v| (v / reached - 1.0).abs() < 1e-9));

@@ -121,12 +121,10 @@ fn ask(typed: &PrechargeArgs) -> Result<PrechargeAsk, Refused> {
         ],
         &mut wrong,
     );
-    if let (Some(within), Some(every)) = (within, every) {
-        if every.si() > 0.0 && every.si() < within.si() {
-            wrong.push(
-                "`--every` is shorter than `--within`: one attempt can't begin before the one before is over".into(),
-            );
-        }
+    let overlap = within.zip(every).is_some_and(|(within, every)| every.si() > 0.0 && every < within);
+    if overlap {
+        wrong
+            .push("`--every` is shorter than `--within`: one attempt can't begin before the one before is over".into());
     }
     let build = build(&typed.build, &mut wrong)?;
     if wrong.is_empty() { Ok(PrechargeAsk { build, ..ask }) } else { Err(Refused::Words(wrong.join("\n"))) }
