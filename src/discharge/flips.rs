@@ -82,11 +82,12 @@ fn around<O: Objective>(
                 continue;
             }
             let value = objective.figure(*i, &case, bar)?;
+            // What does not exceed the bar may be given as the bar.
             if value > bar {
                 together[p] = flipped[p];
-            }
-            if value > worst.value {
-                *worst = Worst { value, point: flipped.clone(), ..*worst };
+                if value > worst.value {
+                    *worst = Worst { value, point: flipped.clone(), ..*worst };
+                }
             }
         }
     }

@@ -47,6 +47,15 @@ fn the_text_says_what_it_is_in_any_width_that_a_terminal_has() {
 }
 
 #[test]
+fn a_bank_that_needs_no_new_resistor_is_told_so_before_any_design() {
+    let text = run_with(&["size", "bleeder", "-"], MET.as_bytes());
+    let (met, first) = (text.out.find("ALREADY MET"), text.out.find("FIRST DESIGN"));
+    assert!(text.status == 0 && met.is_some() && met < first, "{}", text.out);
+    let needed = run_with(&["size", "bleeder", "-"], bare().as_bytes());
+    assert!(!needed.out.contains("ALREADY MET"), "{}", needed.out);
+}
+
+#[test]
 fn the_part_pasted_and_the_file_written_pass_the_plan() {
     let part = run_with(&["size", "bleeder", "-", "--part", "--pick", "2"], bare().as_bytes());
     assert_eq!((part.status, part.err.as_str()), (0, ""));

@@ -145,3 +145,18 @@ fn a_bank_that_meets_its_limits_without_a_resistor_is_told_so() {
     assert!(sizing.findings.iter().any(|f| f.code == "already-met"));
     assert!(sizing.window.is_some_and(|w| w.greatest.is_none()));
 }
+
+#[test]
+fn each_leg_of_a_three_phase_resistor_is_an_array_of_its_own() {
+    // Each leg of a delta stands at up to 440 V rms: 10 W allow 440^2 / 10 = 19.36 kohm, however many legs there are.
+    let text = format!(
+        "{HEAD}touch_voltage: 50 V\nterminals: [A, B, C]\ncharged_to: {{ac_rms: 400 V, rise: 10 %, phases: 3, neutral: \
+         isolated}}\ncapacitors: [{{id: CB, kvar: {{power: 50 kvar, voltage: 400 V, frequency: 50 Hz}}, phases: 3, \
+         connection: delta}}]\n"
+    );
+    let stock = "elements: [{name: a, value: 47 kohm, rating: {power: 10 W, full_to: 70 °C, zero_at: 155 °C}}]\n";
+    let build = Build { elements: elements(stock), series_up_to: 1, parallel_up_to: 1, ..Build::default() };
+    let sizing = sized(&bank(&text), &BleederAsk { build, target: target(75.0, 180.0), ..BleederAsk::default() });
+    assert_relative_eq!(least(&sizing), 440.0f64.powi(2) / 10.0, max_relative = 1e-9);
+    assert!(!sizing.candidates.is_empty(), "{:?}", sizing.findings);
+}

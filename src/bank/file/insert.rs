@@ -51,7 +51,7 @@ pub fn with_resistor_and_steps(
     changed(
         name,
         bytes,
-        "the list `resistors` stands neither in lines of its own nor in brackets, or a `procedure` is there already",
+        "the list `resistors` stands neither in lines of its own nor in brackets, or the file has a `procedure` already",
         |source, tree, _| {
             let (text, at_head) = placed(source, tree, "resistors", &part)?;
             if steps.is_empty() {

@@ -137,7 +137,10 @@ fn headline<F>(sizing: &Sizing<F>, predicted: Option<String>, each: &str) -> Vec
     let mut text = vec![format!("{}{}{each}, {}.", built(first), in_all(first), first.element)];
     text.extend(predicted);
     text.push(looked);
-    vec![Labelled::new("FIRST DESIGN", text)]
+    // What is not needed is said before what would do.
+    let met = sizing.findings.iter().find(|f| f.code == "already-met");
+    let met = met.map(|f| Labelled::new("ALREADY MET", vec![f.text.clone()]));
+    met.into_iter().chain([Labelled::new("FIRST DESIGN", text)]).collect()
 }
 
 /// What of the new resistor's ratings was not given.

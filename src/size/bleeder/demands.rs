@@ -22,7 +22,7 @@ pub(super) enum Kind {
     Loss(f64),
     /// Current, at most this many ampere.
     Current(f64),
-    /// What the largest arrays of the elements at hand bear, in watt.
+    /// What the largest arrays of the elements at hand bear, in watt; each leg of a three-phase resistor is one.
     Rating(f64),
     /// What they bear of one discharge, or of the last of a row, through a contact.
     Discharge,
@@ -34,7 +34,8 @@ impl Measure<Point> for Kind {
     fn ratio(&self, point: &Point) -> f64 {
         let (found, allowed) = match self {
             Kind::Limit(index) => point.limits.get(*index).copied().unwrap_or((f64::INFINITY, 0.0)),
-            Kind::Loss(watt) | Kind::Rating(watt) => (point.standing, *watt),
+            Kind::Loss(watt) => (point.standing, *watt),
+            Kind::Rating(watt) => (point.standing_leg, *watt),
             Kind::Current(ampere) => (point.current, *ampere),
             Kind::Discharge => (point.burden, 1.0),
             Kind::Average(watt) => (point.average, *watt),
@@ -109,10 +110,12 @@ pub(super) fn way_for(ask: &BleederAsk, demand: &Demand<Kind>, point: &Point) ->
         Kind::Loss(_) => vec![format!("a standing loss of {}", show(Power::from_si(point.standing), Direction::Up))],
         Kind::Current(_) => vec![format!("a current of {}", show(Current::from_si(point.current), Direction::Up))],
         Kind::Rating(_) => {
-            let mut ways =
-                vec![format!("elements that together bear {}", show(Power::from_si(point.standing), Direction::Up))];
+            let mut ways = vec![format!(
+                "elements that together bear {}",
+                show(Power::from_si(point.standing_leg), Direction::Up)
+            )];
             ways.extend(
-                cooler(&ask.build, point.standing)
+                cooler(&ask.build, point.standing_leg)
                     .map(|kelvin| format!("air of at most {}", show(Temperature::from_si(kelvin), Direction::Down))),
             );
             ways

@@ -85,10 +85,16 @@ pub fn bleeder(bank: &Bank, input_sha256: &str, ask: &BleederAsk) -> Result<Sizi
         return Err(SizeError::Asked("at least one string is needed; write `--parallel-up-to 1` or more".into()));
     };
     let of = |parallel: u32| windows.get(parallel as usize - 1).unwrap_or(window).clone();
-    let slack = if voltage_is_held(scan) { 0.0 } else { 0.05 };
+    let load = |design: &Design, element: &Element, volts: &dyn Fn(f64, &Point) -> f64| {
+        let slack = if is_held(scan, volts) { 0.0 } else { 0.05 };
+        let volts = between(scan, design.lowest, volts).max(between(scan, design.highest, volts)) * (1.0 - slack);
+        element_load(design, element.tolerance, volts)
+    };
+    // What heats before isolation is the mean square; what stresses is the greatest, after isolation too.
+    let standing = |ohms: f64, point: &Point| (point.standing_leg * ohms).sqrt();
+    let greatest = |_: f64, point: &Point| point.voltage;
     let overload = |design: &Design, element: &Element| {
-        let volts = voltage(scan, design.lowest).max(voltage(scan, design.highest)) * (1.0 - slack);
-        let (watt, volt) = element_load(design, element.tolerance, volts);
+        let ((watt, _), (_, volt)) = (load(design, element, &standing), load(design, element, &greatest));
         let usable = usable_power(&element.rating, ambient, ask.build.margin);
         if bearing.is_none() && clearly_over(watt, usable) {
             return Some("power");
@@ -326,24 +332,24 @@ fn least_discharge(scan: &Scan<Fitted>, lowest: f64, highest: f64) -> (Discharge
     (discharge, least(&|p| p.average))
 }
 
-/// The voltage across the resistor at an actual resistance, between the points that were looked at; exact where the
-/// resistance does not move it.
-fn voltage(scan: &Scan<Fitted>, ohms: f64) -> f64 {
+/// A voltage of the resistor at an actual resistance, between the points that were looked at; exact where the resistance
+/// does not move it.
+fn between(scan: &Scan<Fitted>, ohms: f64, volts: &dyn Fn(f64, &Point) -> f64) -> f64 {
     let points = scan.points();
     let after = points.partition_point(|(at, _)| *at < ohms);
     let (left, right) = (points.get(after.saturating_sub(1)), points.get(after));
     match (left, right) {
         (Some((low, a)), Some((high, b))) => {
             let share = ((ohms / low).ln() / (high / low).ln()).clamp(0.0, 1.0);
-            if share.is_finite() { a.voltage + share * (b.voltage - a.voltage) } else { a.voltage.min(b.voltage) }
+            let (a, b) = (volts(*low, a), volts(*high, b));
+            if share.is_finite() { a + share * (b - a) } else { a.min(b) }
         }
-        (one, other) => one.or(other).map_or(f64::NAN, |(_, p)| p.voltage),
+        (one, other) => one.or(other).map_or(f64::NAN, |(ohms, p)| volts(*ohms, p)),
     }
 }
 
-/// True where the resistance does not move the voltage across it, as at the terminals.
-fn voltage_is_held(scan: &Scan<Fitted>) -> bool {
-    let of = |point: &Point| point.voltage;
-    let first = scan.points().first().map_or(f64::NAN, |(_, p)| of(p));
-    scan.points().iter().all(|(_, p)| (of(p) - first).abs() <= 1e-12 * first)
+/// True where the resistance does not move a voltage, as at the terminals.
+fn is_held(scan: &Scan<Fitted>, volts: &dyn Fn(f64, &Point) -> f64) -> bool {
+    let first = scan.points().first().map_or(f64::NAN, |(ohms, p)| volts(*ohms, p));
+    scan.points().iter().all(|(ohms, p)| (volts(*ohms, p) - first).abs() <= 1e-12 * first)
 }

@@ -21,6 +21,8 @@ pub(super) struct Point {
     pub limits: Vec<(f64, f64)>,
     /// Power in the resistor before isolation, all legs of a three-phase one together.
     pub standing: f64,
+    /// The greatest of its legs': what one array bears.
+    pub standing_leg: f64,
     /// Greatest current through it.
     pub current: f64,
     /// Greatest voltage across it.
@@ -141,6 +143,7 @@ impl Probe for Fitted {
             discharge,
             limits: counted.collect(),
             standing: self.legs.iter().map(|leg| healthy.worst(standing(leg))).sum(),
+            standing_leg: self.legs.iter().map(|leg| healthy.worst(standing(leg))).fold(0.0, f64::max),
             current: self.legs.iter().map(|leg| healthy.worst(current(leg))).fold(0.0, f64::max),
             voltage: self.legs.iter().map(|leg| healthy.worst(voltage(leg))).fold(0.0, f64::max),
         })
