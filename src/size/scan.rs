@@ -72,7 +72,11 @@ impl<'a, P: Probe> Scan<'a, P> {
         let mut points = found?;
         let served = |p: &P::Point| demands.iter().filter(|d| d.kind.is_purpose()).all(|d| d.is_met(p));
         let mut step = CLOSE * PER_DECADE;
-        while !served(&open) && points.last().is_some_and(|(ohms, p)| served(p) && *ohms < HIGHEST) {
+        // Demands that more resistance is good for (a loss, a current) are followed to where they are met, so that what
+        // collides can be told by how much.
+        let spared = |p: &P::Point| demands.iter().filter(|d| !d.kind.is_purpose()).all(|d| d.is_met(p));
+        let goes_on = |p: &P::Point| (served(p) && !served(&open)) || (!spared(p) && spared(&open));
+        while points.last().is_some_and(|(ohms, p)| goes_on(p) && *ohms < HIGHEST) {
             step += PER_DECADE;
             points.push(at(ohms(step))?);
         }

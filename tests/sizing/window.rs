@@ -160,3 +160,11 @@ fn each_leg_of_a_three_phase_resistor_is_an_array_of_its_own() {
     assert_relative_eq!(least(&sizing), 440.0f64.powi(2) / 10.0, max_relative = 1e-9);
     assert!(!sizing.candidates.is_empty(), "{:?}", sizing.findings);
 }
+
+#[test]
+fn demands_that_lie_decades_apart_collide_by_as_much() {
+    // 1 mW asks for 750^2 / 1 mW = 562.5 Mohm; 27.97 kohm is the most for the time: 20 109 times.
+    let sizing = sized(&bank(&one("")), &BleederAsk { max_loss: Some(Power::from_si(1e-3)), ..ask() });
+    let finding = &sizing.findings[0];
+    assert!(finding.code == "demands-collide" && finding.text.contains("563 Mohm"), "{}", finding.text);
+}
