@@ -6,6 +6,7 @@ use super::error::SizeError;
 use super::result::Candidate;
 use crate::bank::description::Resistor;
 use crate::check::Verdict;
+use crate::finding::{Finding, Severity};
 use crate::plan::{Plan, ResistorResult};
 use crate::quantity::{Power, Quantity, Resistance, Time};
 use rayon::prelude::*;
@@ -111,6 +112,15 @@ pub(super) fn rated(build: &Build, results: &[&ResistorResult], how_many: usize)
 /// A limit is only kept by a comparison of finite numbers, here as in a plan.
 pub(super) fn at_most(found: f64, allowed: f64) -> bool {
     Verdict::at_most(found, allowed) == Verdict::Met
+}
+
+/// What the plan with the first design does not meet of the rest of `whose`, where there is any.
+pub(super) fn rest_not_met(not_met: &[String], whose: &str) -> Option<Finding> {
+    let text = format!(
+        "The plan with the first design does not meet everything else in the {whose}: {}. `ebbvolt plan` tells more.",
+        not_met.join(", ")
+    );
+    (!not_met.is_empty()).then(|| Finding::new(Severity::Warning, "rest-of-plan-not-met", text))
 }
 
 /// The longest of some times; never, where one of them is, or where there is none.

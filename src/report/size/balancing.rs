@@ -1,7 +1,6 @@
 //! What a report on balancing resistors says of its designs.
 
-use super::{SizeReport, Terms, Told, bought, document_in, of, rank, strings, value};
-use crate::quantity::{Direction, Quantity, Ratio, show};
+use super::{SizeReport, Terms, Told, bought, document_in, energy, of, rank, strings, value};
 use crate::report::block::{Grid, Labelled, Side};
 use crate::report::words::{count, down, list, pair, time, typed, up, wait};
 use crate::size::{BalancingFigures, Candidate, Sizing, UnitShare};
@@ -92,12 +91,6 @@ fn units(units: &[UnitShare]) -> Grid {
         grid.row(row);
     }
     grid
-}
-
-/// Kilowatt hours, rounded up to three digits.
-fn energy(kwh: f64) -> String {
-    let text = show(Ratio::from_si(kwh / 100.0), Direction::Up);
-    text.trim_end_matches(" %").to_string()
 }
 
 fn elements(candidates: &[Candidate<BalancingFigures>]) -> Grid {

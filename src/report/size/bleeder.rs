@@ -1,7 +1,6 @@
 //! What a bleeder's report says of its designs.
 
-use super::{SizeReport, Told, bought, document, of, rank, strings, value};
-use crate::quantity::{Direction, Quantity, Ratio, show};
+use super::{SizeReport, Told, bought, document, energy, of, rank, strings, value};
 use crate::report::block::{Grid, Labelled, Side};
 use crate::report::words::{down, list, pair, time, up, wait, whole};
 use crate::size::{BleederFigures, Candidate, Sizing};
@@ -106,12 +105,6 @@ fn pulses(candidates: &[Candidate<BleederFigures>]) -> Grid {
         grid.row(row);
     }
     grid
-}
-
-/// Kilowatt hours, rounded up to three digits.
-fn energy(kwh: f64) -> String {
-    let text = show(Ratio::from_si(kwh / 100.0), Direction::Up);
-    text.trim_end_matches(" %").to_string()
 }
 
 fn elements(candidates: &[Candidate<BleederFigures>]) -> Grid {

@@ -17,7 +17,7 @@ use super::words::{count, list, typed, up};
 use super::{markdown, text};
 use crate::finding::Finding;
 use crate::plan::Verdict;
-use crate::quantity::{Direction, Mass, Quantity, Resistance, show_digits};
+use crate::quantity::{Direction, Mass, Quantity, Ratio, Resistance, show, show_digits};
 use crate::size::{Candidate, DemandResult, Sizing};
 use serde::Serialize;
 
@@ -154,6 +154,12 @@ fn not_checked<F>(c: &Candidate<F>) -> Option<Labelled> {
 fn of(found: Option<String>, allowed: Option<String>) -> String {
     let limit = allowed.unwrap_or_else(|| "not\u{a0}given".into());
     format!("{} of {limit}", found.unwrap_or_default())
+}
+
+/// Kilowatt hours, rounded up to three digits.
+fn energy(kwh: f64) -> String {
+    let text = show(Ratio::from_si(kwh / 100.0), Direction::Up);
+    text.trim_end_matches(" %").to_string()
 }
 
 /// The place in the order, with a star for what none other beats.

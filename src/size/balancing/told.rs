@@ -12,6 +12,7 @@ use crate::bank::file::{capacitor_text, resistor_text};
 use crate::finding::{Finding, Severity};
 use crate::quantity::{Direction, Quantity, Ratio, Voltage, celsius, exact, show};
 use crate::size::error::SizeError;
+use crate::size::trial::rest_not_met;
 
 /// Where the division by capacitance alone breaks a rating: no resistor helps there.
 pub(super) fn over_by_fast_charge(job: &Job) -> Result<Option<Finding>, SizeError> {
@@ -61,13 +62,7 @@ pub(super) fn about_the_first(figures: &BalancingFigures, not_met: &[String]) ->
         let finding = Finding::new(Severity::Warning, "open-resistor-overloads-unit", text);
         findings.push(finding.with_help("More strings in an array leave more when one is lost: `--parallel-up-to`."));
     }
-    if !not_met.is_empty() {
-        let text = format!(
-            "The plan with the first design does not meet everything else in the file: {}. `ebbvolt plan` tells more.",
-            not_met.join(", ")
-        );
-        findings.push(Finding::new(Severity::Warning, "rest-of-plan-not-met", text));
-    }
+    findings.extend(rest_not_met(not_met, "file"));
     findings
 }
 

@@ -16,7 +16,7 @@ use super::error::SizeError;
 use super::result::Sizing;
 use super::scan::Scan;
 use super::spans::Spans;
-use super::trial::planned;
+use super::trial::{planned, rest_not_met};
 use super::window::{demand_results, nothing_fits, searched, window_result};
 use crate::bank::Bank;
 use crate::bank::description::{Bound, Connection, Description, Limit, Pair, Resistor, Role, Rule};
@@ -132,14 +132,7 @@ pub fn bleeder(bank: &Bank, input_sha256: &str, ask: &BleederAsk) -> Result<Sizi
         let text = "The bank meets these limits without a new resistor.";
         findings.push(Finding::new(Severity::Note, "already-met", text));
     }
-    if candidates.iter().any(|c| !c.not_met.is_empty()) {
-        let missed: Vec<String> = candidates.first().map_or_else(Vec::new, |c| c.not_met.clone());
-        let text = format!(
-            "The plan with the first design does not meet everything else in the file: {}. `ebbvolt plan` tells more.",
-            missed.join(", ")
-        );
-        findings.push(Finding::new(Severity::Warning, "rest-of-plan-not-met", text));
-    }
+    findings.extend(candidates.first().and_then(|c| rest_not_met(&c.not_met, "file")));
     Ok(Sizing {
         ebbvolt: Stamp { version: env!("CARGO_PKG_VERSION"), format: 1 },
         size: "bleeder",

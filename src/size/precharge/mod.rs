@@ -17,7 +17,7 @@ use super::error::SizeError;
 use super::result::Sizing;
 use super::scan::Scan;
 use super::spans::Spans;
-use super::trial::planned;
+use super::trial::{planned, rest_not_met};
 use super::window::{demand_results, nothing_fits, searched, window_result};
 use crate::bank::Bank;
 use crate::bank::description::Lasts;
@@ -87,14 +87,7 @@ pub fn precharge(bank: &Bank, input_sha256: &str, ask: &PrechargeAsk) -> Result<
         findings.push(nothing_fits(&ask.build, &found, refused, &window));
     }
     findings.extend(notes(&job));
-    let missed = candidates.first().map_or(&[][..], |c| &c.not_met[..]);
-    if !missed.is_empty() {
-        let text = format!(
-            "The plan with the first design does not meet everything else in the file: {}. `ebbvolt plan` tells more.",
-            missed.join(", ")
-        );
-        findings.push(Finding::new(Severity::Warning, "rest-of-plan-not-met", text));
-    }
+    findings.extend(candidates.first().and_then(|c| rest_not_met(&c.not_met, "file")));
     Ok(Sizing {
         ebbvolt: Stamp { version: env!("CARGO_PKG_VERSION"), format: 1 },
         size: "precharge",

@@ -11,6 +11,7 @@ use crate::finding::{Finding, Severity};
 use crate::quantity::{Direction, Quantity, Time, celsius, duration, exact, show};
 use crate::size::error::SizeError;
 use crate::size::result::Candidate;
+use crate::size::trial::rest_not_met;
 
 /// A time that was typed, as people say it.
 pub(super) fn spoken(time: Time) -> String {
@@ -109,13 +110,9 @@ pub(super) fn findings(
         findings
             .push(finding.with_help("apply it to every unit in turn (`--across`), and short every unit on its own"));
     }
-    if !first.not_met.is_empty() && applied.nothing_to_do != Some(Instead::WithoutBleeders) {
+    if applied.nothing_to_do != Some(Instead::WithoutBleeders) {
         let whose = if applied.as_filed { "file" } else { "file, with the steps of this trial," };
-        let text = format!(
-            "The plan with the first design does not meet everything else in the {whose}: {}. `ebbvolt plan` tells more.",
-            first.not_met.join(", ")
-        );
-        findings.push(Finding::new(Severity::Warning, "rest-of-plan-not-met", text));
+        findings.extend(rest_not_met(&first.not_met, whose));
     }
     let names: Vec<String> = applied.steps.iter().map(|s| format!("`{}`", s.name)).collect();
     if first.figures.placement != Placement::WithSteps && !applied.steps.is_empty() {
